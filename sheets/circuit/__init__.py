@@ -1,0 +1,1 @@
+"""The circuit: graph, laws on arrays, solver, plant states and what a step does to them."""

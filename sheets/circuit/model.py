@@ -1,0 +1,86 @@
+"""The circuit as arrays: nodes, elements and what may be changed on them.
+
+Node 0 is the tank, at 0 bar. Every other node is a net, or several nets that hoses and pipes join.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from sheets.circuit.laws import Actuators, Checks, Pumps, Reliefs, Ways
+from sheets.circuit.plant import PlantState
+
+Floats = npt.NDArray[np.float64]
+TANK = 0
+
+
+@dataclass(frozen=True, kw_only=True)
+class Node:
+    """One pressure."""
+
+    name: str
+    """Net names as in the file, joined with ' + ' where lines join them."""
+    ports: tuple[str, ...]
+    rating_bar: float
+    """Lowest rating on it; infinite where nothing on it has one."""
+    rated_by: str
+    """Part that has the lowest rating; empty where none has."""
+    volume_l: float = 1.0
+    """Policy: 1 L a net. It decides only how a cut-off group shares its oil."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class AdjusterSite:
+    """Where an adjuster acts in the circuit."""
+
+    id: str
+    """``RV1`` where the part has one adjuster called 'adjuster', else ``PU1.compensator``."""
+    part: str
+    controlled_node: int
+    """Node whose pressure it sets."""
+    reference_node: int
+    """Node from which that pressure counts: tank or case, or LS for a load-sensing control."""
+    lowest_bar: float
+    highest_bar: float
+    flow_slope: float
+    """κ for a relief (reading at flow q is S·(κ + (1 − κ)·q/q_ref)); 1 for the controls of a pump."""
+    reference_flow_lpm: float
+    """q_ref of a relief, else 0."""
+    width_bar: float
+    """From full stroke to none for the controls of a pump; (1 − κ)·highest for a relief."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class Circuit:
+    """All that the solver needs; knows no family of machines by name."""
+
+    nodes: tuple[Node, ...]
+    node_of: Mapping[str, int]
+    """Port (``PU1.P``) to node; plugged ports are missing."""
+    adjusters: tuple[AdjusterSite, ...]
+    """In the order of the file; the order of settings in batches."""
+    positions: Mapping[str, tuple[str, ...]]
+    """Valve id to the positions that it has, the rest position first."""
+    drives: tuple[str, ...]
+    actuators_ids: tuple[str, ...]
+    ways: Ways
+    checks: Checks
+    reliefs: Reliefs
+    pumps: Pumps
+    actuators: Actuators
+    reference_flow_lpm: float
+    """Sum of the full flows of all pumps; the scale of residuals."""
+
+    def rest_state(self, settings_bar: Mapping[str, float]) -> PlantState:
+        """Valves at rest, drives off, no pressure anywhere."""
+        return PlantState(
+            positions={valve: positions[0] for valve, positions in self.positions.items()},
+            running=frozenset(),
+            settings_bar=dict(settings_bar),
+            pressures_bar=(0.0,) * len(self.nodes),
+            travel={actuator: "between" for actuator in self.actuators_ids},
+        )

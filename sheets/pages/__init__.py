@@ -1,0 +1,1 @@
+"""Document values, placed boxes, and reportlab's drawing of them."""
