@@ -72,6 +72,10 @@ class Box:
     unit: str = ""
     size: Literal["tick", "short", "medium", "wide"] = "short"
     strong: bool = False
+    signed: bool = False
+    """For a person's name or sign: a draft says in its place that it is not signed."""
+    never_exceed: str = ""
+    """Printed below a box for a reading, for example 'never exceed 250 bar'."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -169,6 +173,8 @@ class Table:
     light: str = ""
     """Said beside the title."""
     row_height_mm: float | None = None
+    signed: bool = False
+    """The blank rows are for names and signs: a draft keeps their room and says that it is not signed."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -223,6 +229,23 @@ class Section:
 
 
 @dataclass(frozen=True, kw_only=True)
+class PageWords:
+    """The few words of the page frame, in the language of the document."""
+
+    draft: str = "DRAFT"
+    not_issued: str = "not issued"
+    not_signed: str = "not signed as a draft"
+    revision: str = "rev"
+    page: str = "page {number} of {total}"
+    machine_data: str = "machine data"
+    content: str = "content"
+    continued: str = "continued"
+    issued: str = "issued"
+    state: str = "state"
+    changes: str = "changes"
+
+
+@dataclass(frozen=True, kw_only=True)
 class Document:
     """The content of a pack. Revision, names, dates of issue and the record id are not content."""
 
@@ -235,6 +258,7 @@ class Document:
     sections: tuple[Section, ...]
     footer: str
     """Not valid unless checked current…"""
+    words: PageWords = PageWords()
 
 
 @dataclass(frozen=True, kw_only=True)
