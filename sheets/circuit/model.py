@@ -7,15 +7,15 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-
-import numpy as np
-import numpy.typing as npt
+from typing import Literal
 
 from sheets.circuit.laws import Actuators, Checks, Pumps, Reliefs, Ways
 from sheets.circuit.plant import PlantState
 
-Floats = npt.NDArray[np.float64]
 TANK = 0
+
+SealedEnd = Literal["standby end", "compensator end"]
+"""Where leakage leaves an LS port that is sealed or cut off: at case pressure, or at outlet pressure."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -52,6 +52,8 @@ class AdjusterSite:
     """q_ref of a relief, else 0."""
     width_bar: float
     """From full stroke to none for the controls of a pump; (1 − κ)·highest for a relief."""
+    policy: frozenset[str] = frozenset()
+    """Figures that no plate gives, so policy does: ``opening ratio``, ``reference flow``, ``width``."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -60,7 +62,7 @@ class Circuit:
 
     nodes: tuple[Node, ...]
     node_of: Mapping[str, int]
-    """Port (``PU1.P``) to node; plugged ports are missing."""
+    """Port (``PU1.P``) to node; ports that are in no net are missing."""
     adjusters: tuple[AdjusterSite, ...]
     """In the order of the file; the order of settings in batches."""
     positions: Mapping[str, tuple[str, ...]]
@@ -74,6 +76,10 @@ class Circuit:
     actuators: Actuators
     reference_flow_lpm: float
     """Sum of the full flows of all pumps; the scale of residuals."""
+    sealed_end: SealedEnd = "standby end"
+    """The end at which LS ports in ``sealed_ports`` are taken when nothing else decides their pressure."""
+    sealed_ports: tuple[str, ...] = ()
+    """LS ports whose pressure leakage decides once they are cut off: solve both ends, carry the worse."""
 
     def rest_state(self, settings_bar: Mapping[str, float]) -> PlantState:
         """Valves at rest, drives off, no pressure anywhere."""
@@ -82,5 +88,5 @@ class Circuit:
             running=frozenset(),
             settings_bar=dict(settings_bar),
             pressures_bar=(0.0,) * len(self.nodes),
-            travel={actuator: "between" for actuator in self.actuators_ids},
+            travel=dict.fromkeys(self.actuators_ids, "between"),
         )

@@ -1,0 +1,207 @@
+"""Newton's method on a batch of states: damped, then by pseudo-time, then with wide bends made narrow.
+
+Every state goes its own way; what a state becomes never hangs on which others are solved beside it.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Final
+
+import numpy as np
+
+from sheets.circuit.equations import Balance, balance, jacobian
+from sheets.circuit.model import Circuit
+from sheets.circuit.smooth import Bools, Floats, Ints
+from sheets.circuit.stamp import StateArrays
+
+RESIDUAL_SHARE: Final = 1e-9
+STEP_BAR: Final = 1e-6
+LONGEST_STEP_BAR: Final = 1e4
+HALVINGS: Final = 40
+ARMIJO: Final = 1e-4
+NEWTON_STEPS: Final = 80
+TIME_STEPS: Final = 400
+FIRST_TIME_STEP: Final = 0.1
+"""bar for each L/min of residual"""
+LONGEST_TIME_STEP: Final = 1e12
+WORSE_BY: Final = 1.5
+WIDENINGS: Final = (400.0, 100.0, 20.0, 4.0, 1.0)
+"""On a bend of 0.05 bar: 20, 5, 1, 0.2 and 0.05 bar."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class Found:
+    """Where the method stopped."""
+
+    pressures_bar: Floats
+    accepted: Bools
+
+
+def tolerance(circuit: Circuit, at: Balance) -> Floats:
+    """[B, N − 1] residual that is accepted at each node."""
+    return RESIDUAL_SHARE * (max(circuit.reference_flow_lpm, 1.0) + at.throughput_lpm)
+
+
+def solve_each(matrices: Floats, right: Floats) -> Floats:
+    """[B, n, k] solutions of many linear systems; not a number where a matrix is singular."""
+    try:
+        return np.asarray(np.linalg.solve(matrices, right), dtype=np.float64)
+    except np.linalg.LinAlgError:
+        found: Floats = np.full_like(right, np.nan)
+        for row in range(len(right)):
+            try:
+                found[row] = np.linalg.solve(matrices[row], right[row])
+            except np.linalg.LinAlgError:
+                continue  # stays not a number, so this state is not accepted
+        return found
+
+
+def newton_step(circuit: Circuit, at: Balance) -> Floats:
+    """[B, N − 1] the undamped step."""
+    return solve_each(jacobian(circuit, at), -at.residual_lpm[:, :, None])[:, :, 0]
+
+
+def acceptable(circuit: Circuit, at: Balance, step_bar: Floats) -> Bools:
+    """[B] residual small and undamped step small: the residual alone lets a group that is cut off drift."""
+    small = np.all(np.abs(at.residual_lpm) <= tolerance(circuit, at), axis=1)
+    return np.asarray(small & np.all(np.abs(step_bar) <= STEP_BAR, axis=1))
+
+
+def find(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Found:
+    """Pressures of a batch, from a start: [B, N]."""
+    pressures_bar = start_bar.copy()
+    accepted = np.zeros(len(pressures_bar), dtype=np.bool_)
+
+    def put(rows: Ints, found: Found) -> None:
+        pressures_bar[rows] = found.pressures_bar
+        accepted[rows] = found.accepted
+
+    everyone = np.arange(len(pressures_bar))
+    put(everyone, _damped(circuit, state, start_bar, widening=1.0))
+    for attempt in (_by_pseudo_time, _by_narrowing):
+        left = np.flatnonzero(~accepted)
+        if left.size:
+            put(left, attempt(circuit, state.take(left), start_bar[left]))
+    return Found(pressures_bar=pressures_bar, accepted=accepted)
+
+
+def _by_pseudo_time(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Found:
+    return _pseudo_time(circuit, state, start_bar, widening=1.0)
+
+
+def _by_narrowing(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Found:
+    """From no pressure, with bends so wide that the circuit is nearly linear, then narrower ones."""
+    pressures_bar = np.zeros_like(start_bar)
+    found = Found(pressures_bar=pressures_bar, accepted=np.zeros(len(start_bar), dtype=np.bool_))
+    for widening in WIDENINGS:
+        found = _damped(circuit, state, pressures_bar, widening=widening)
+        left = np.flatnonzero(~found.accepted)
+        if left.size:
+            slow = _pseudo_time(circuit, state.take(left), pressures_bar[left], widening=widening)
+            found.pressures_bar[left] = slow.pressures_bar
+            found.accepted[left] = slow.accepted
+        # A width that wasn't solved still gives the next one a better start than none.
+        pressures_bar = found.pressures_bar
+    return found
+
+
+def _norm(at: Balance) -> Floats:
+    return np.asarray(np.sqrt(np.sum(at.residual_lpm * at.residual_lpm, axis=1)))
+
+
+def _moved(pressures_bar: Floats, step_bar: Floats, share: Floats) -> Floats:
+    """Pressures after a share of a step; the tank stays where it is."""
+    longest = np.max(np.abs(step_bar), axis=1, initial=0.0)
+    bounded = share * np.minimum(1.0, LONGEST_STEP_BAR / np.maximum(longest, LONGEST_STEP_BAR))
+    moved = pressures_bar.copy()
+    moved[:, 1:] += bounded[:, None] * step_bar
+    return moved
+
+
+def _damped(circuit: Circuit, state: StateArrays, start_bar: Floats, *, widening: float) -> Found:
+    """Newton's method; each step halved until the residual falls enough (Armijo's rule)."""
+    pressures_bar = start_bar.copy()
+    accepted = np.zeros(len(pressures_bar), dtype=np.bool_)
+    active = np.arange(len(pressures_bar))
+    for _ in range(NEWTON_STEPS):
+        part = state.take(active)
+        here = pressures_bar[active]
+        at = balance(circuit, part, here, widening=widening)
+        step_bar = newton_step(circuit, at)
+        done = acceptable(circuit, at, step_bar)
+        accepted[active[done]] = True
+        going = ~done & np.all(np.isfinite(step_bar), axis=1)
+        if not np.any(going):
+            break
+        rows = np.flatnonzero(going)
+        # At the floor of rounding no step lowers the residual, yet a cut-off group may still have far to go.
+        floor = np.sqrt(np.sum(np.square(tolerance(circuit, at)), axis=1))
+        better, moved = _searched(
+            circuit, part.take(rows), here[rows], step_bar[rows], _norm(at)[rows], floor[rows], widening
+        )
+        active = active[rows][better]
+        pressures_bar[active] = moved[better]
+        if not active.size:
+            break
+    return Found(pressures_bar=pressures_bar, accepted=accepted)
+
+
+def _searched(
+    circuit: Circuit,
+    state: StateArrays,
+    here: Floats,
+    step_bar: Floats,
+    norm: Floats,
+    floor: Floats,
+    widening: float,
+) -> tuple[Bools, Floats]:
+    """Whether a share of each step lowers the residual enough, and the pressures after it."""
+    moved = here.copy()
+    better = np.zeros(len(here), dtype=np.bool_)
+    left = np.arange(len(here))
+    share = 1.0
+    for _ in range(HALVINGS):
+        trial = _moved(here[left], step_bar[left], np.full(len(left), share))
+        at = balance(circuit, state.take(left), trial, widening=widening)
+        new = _norm(at)
+        good = (new <= (1.0 - ARMIJO * share) * norm[left]) | (new <= floor[left])
+        moved[left[good]] = trial[good]
+        better[left[good]] = True
+        left = left[~good]
+        if not left.size:
+            break
+        share *= 0.5
+    return better, moved
+
+
+def _pseudo_time(circuit: Circuit, state: StateArrays, start_bar: Floats, *, widening: float) -> Found:
+    """Implicit steps of a made-up time that may climb a little: a way out of cycles across the root."""
+    pressures_bar = start_bar.copy()
+    accepted = np.zeros(len(pressures_bar), dtype=np.bool_)
+    time_step = np.full(len(pressures_bar), FIRST_TIME_STEP)
+    active = np.arange(len(pressures_bar))
+    diagonal = np.arange(pressures_bar.shape[1] - 1)
+    for _ in range(TIME_STEPS):
+        part = state.take(active)
+        here = pressures_bar[active]
+        at = balance(circuit, part, here, widening=widening)
+        slopes = jacobian(circuit, at)
+        right = -at.residual_lpm[:, :, None]
+        done = acceptable(circuit, at, solve_each(slopes, right)[:, :, 0])
+        accepted[active[done]] = True
+        slopes[:, diagonal, diagonal] += 1.0 / time_step[active][:, None]
+        step_bar = solve_each(slopes, right)[:, :, 0]
+        rows = np.flatnonzero(~done & np.all(np.isfinite(step_bar), axis=1))
+        if not rows.size:
+            break
+        active, here, step_bar = active[rows], here[rows], step_bar[rows]
+        moved = _moved(here, step_bar, np.ones(len(rows)))
+        old = _norm(at)[rows]
+        new = _norm(balance(circuit, state.take(active), moved, widening=widening))
+        good = new <= WORSE_BY * old
+        growth = np.clip(old / np.maximum(new, 1e-300), 2.0, 1000.0)
+        longer = np.minimum(time_step[active] * growth, LONGEST_TIME_STEP)
+        time_step[active] = np.where(good, longer, time_step[active] / 4.0)
+        pressures_bar[active[good]] = moved[good]
+    return Found(pressures_bar=pressures_bar, accepted=accepted)

@@ -1,0 +1,171 @@
+"""Pumps: fixed, and variable with a compensator and a load-sensing control."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from sheets.circuit.smooth import Bools, Floats, Ints, orifice_flow, smaller
+from sheets.circuit.stamp import Stamp, StateArrays
+
+STROKE_BEND = 0.05
+"""Share of full flow over which one limit of the stroke hands over to another."""
+CLOSED_BEND_AT_LEAST = 1e-9
+"""Of full flow: keeps the bend at no stroke from vanishing where a plate claims no leakage."""
+
+OUTLET, SUCTION, CASE, SIGNAL = range(4)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Pumps:
+    """Pumps on a shaft of constant speed; with the drive off every flow is exactly zero.
+
+    Parameters
+    ----------
+    outlet, suction, case, signal : node
+        Case is the suction node where leakage stays inside. Signal is the LS node: the case node where the
+        port is drained, the outlet where it is fed.
+    drive : index
+        Drive that turns it.
+    displaced_lpm : L/min
+        V·n, theoretical flow at full stroke.
+    leakage_per_bar : L/min/bar
+        (1 − η_v)·V·n / rating.
+    compensator, load_sensing : index
+        Adjusters in bar; −1 where there is none. A pump with neither is fixed.
+    compensator_width_bar, load_sensing_width_bar : bar
+        Rise of the controlled pressure that takes the pump from full stroke to no net flow.
+    closed_bend_lpm : L/min
+        Bend at no stroke; no more than twice the leakage at the lowest setting, so that the reading at no
+        net flow stays exact.
+    signal_bleed : L/min/√bar
+        Tiny conductance inside the pump, from the outlet or the case into the LS node, while it turns.
+    bled_from_outlet : truth
+        Where that bleed comes from.
+
+    Returns
+    -------
+    net flow : L/min
+        The smallest of full stroke (V·n − leakage), compensator: full flow·(S − (p − p_case))/width, and
+        load sensing: full flow·(S − (p − p_LS))/width; never below −leakage (no stroke).
+        A setting is thus the reading at no net flow. Full flow is V·n less the leakage at (S − width) for
+        the compensator, V·n·η_v for load sensing: there width = (standby − differential)·full flow/flow.
+
+    Valid for steady states at the drive's speed; suction is assumed filled (a void is reported apart).
+    Limits that meet within 5 % of full flow are rounded by at most 0.6 % of it.
+    Source: definition of deadhead and standby readings; leakage linear in pressure by volumetric efficiency.
+    """
+
+    ids: tuple[str, ...]
+    outlet: Ints
+    suction: Ints
+    case: Ints
+    signal: Ints
+    drive: Ints
+    displaced_lpm: Floats
+    leakage_per_bar: Floats
+    full_flow_lpm: Floats
+    """V·n·η_v: at the pressure of its rating."""
+    overall_efficiency: Floats
+    compensator: Ints
+    compensator_width_bar: Floats
+    load_sensing: Ints
+    load_sensing_width_bar: Floats
+    closed_bend_lpm: Floats
+    signal_bleed: Floats
+    bled_from_outlet: Bools
+
+    def turning(self, state: StateArrays) -> Bools:
+        """[B, pumps] whether its drive runs."""
+        return state.running[:, self.drive]
+
+    def stamp(self, pressures_bar: Floats, state: StateArrays, *, widening: float) -> Stamp:
+        """Net flows of a batch and what they do to the nodes."""
+        batch, count = len(pressures_bar), len(self.ids)
+        net, by_pressure, by_setting = self._net_flow(pressures_bar, state, widening=widening)
+        leakage = self.leakage_per_bar * (pressures_bar[:, self.outlet] - pressures_bar[:, self.case])
+        turning = self.turning(state).astype(np.float64)
+
+        inflow = np.zeros((batch, count, 4))
+        slopes = np.zeros((batch, count, 4, 4))
+        setting_slopes = np.zeros((batch, count, 4, 2))
+        inflow[:, :, OUTLET] = net
+        inflow[:, :, SUCTION] = -(net + leakage)
+        inflow[:, :, CASE] = leakage
+        slopes[:, :, OUTLET] = by_pressure
+        slopes[:, :, SUCTION] = -by_pressure
+        setting_slopes[:, :, OUTLET] = by_setting
+        setting_slopes[:, :, SUCTION] = -by_setting
+        for node, sign in ((OUTLET, 1.0), (CASE, -1.0)):
+            slopes[:, :, CASE, node] += sign * self.leakage_per_bar
+            slopes[:, :, SUCTION, node] -= sign * self.leakage_per_bar
+        self._add_bleed(pressures_bar, inflow, slopes)
+        return Stamp(
+            terminals=np.stack((self.outlet, self.suction, self.case, self.signal), axis=-1),
+            through_lpm=net * turning,
+            inflow_lpm=inflow * turning[:, :, None],
+            slopes=slopes * turning[:, :, None, None],
+            adjusters=np.stack((self.compensator, self.load_sensing), axis=-1),
+            setting_slopes=setting_slopes * turning[:, :, None, None],
+        )
+
+    def stroke(self, pressures_bar: Floats, net_flow_lpm: Floats, state: StateArrays) -> Floats:
+        """[B, pumps] stroke that the controls ask for, 0 to 1; 0 where the drive stands."""
+        leakage = self.leakage_per_bar * (pressures_bar[:, self.outlet] - pressures_bar[:, self.case])
+        return np.where(self.turning(state), (net_flow_lpm + leakage) / self.displaced_lpm, 0.0)
+
+    def _net_flow(
+        self, pressures_bar: Floats, state: StateArrays, *, widening: float
+    ) -> tuple[Floats, Floats, Floats]:
+        """Net flow, [B, E, 4] slopes by the terminals' pressures and [B, E, 2] by the two settings."""
+        over_case = pressures_bar[:, self.outlet] - pressures_bar[:, self.case]
+        over_signal = pressures_bar[:, self.outlet] - pressures_bar[:, self.signal]
+        leakage = self.leakage_per_bar * over_case
+        full = self.displaced_lpm - leakage
+        bend = min(STROKE_BEND * widening, 1.0) * self.displaced_lpm
+
+        compensator_bar = state.setting(self.compensator)
+        full_at_limit = self.displaced_lpm - self.leakage_per_bar * (
+            compensator_bar - self.compensator_width_bar
+        )
+        opening = (compensator_bar - over_case) / self.compensator_width_bar
+        by_case_rise = -full_at_limit / self.compensator_width_bar
+        by_compensator = -by_case_rise - self.leakage_per_bar * opening
+        # One more control joins at a time; `keeps` is the share by which the earlier ones still decide.
+        has = self.load_sensing >= 0
+        signal_opening = (state.setting(self.load_sensing) - over_signal) / self.load_sensing_width_bar
+        asked, keeps, takes = smaller(
+            a=full_at_limit * opening, b=self.full_flow_lpm * signal_opening, width=bend
+        )
+        asked = np.where(has, asked, full_at_limit * opening)
+        keeps, takes = np.where(has, keeps, 1.0), np.where(has, takes, 0.0)
+        signal_gain = self.full_flow_lpm / self.load_sensing_width_bar
+        limited, by_full, by_asked = smaller(a=full, b=asked, width=bend)
+        # The larger of two is the smaller of their negatives.
+        closed_bend = np.minimum(self.closed_bend_lpm * widening, self.displaced_lpm)
+        negative, by_limited, by_closed = smaller(a=-limited, b=leakage, width=closed_bend)
+
+        controlled = self.compensator >= 0
+        through = np.where(controlled, by_limited * by_asked, 0.0)
+        leaks = np.where(controlled, -by_limited * by_full - by_closed, -1.0) * self.leakage_per_bar
+        by_over_case = leaks + through * keeps * by_case_rise
+        by_over_signal = -through * takes * signal_gain
+        zero = np.zeros_like(by_over_case)
+        by_pressure = np.stack((by_over_case + by_over_signal, zero, -by_over_case, -by_over_signal), axis=-1)
+        by_setting = np.stack((through * keeps * by_compensator, through * takes * signal_gain), axis=-1)
+        return np.where(controlled, -negative, full), by_pressure, by_setting
+
+    def _add_bleed(self, pressures_bar: Floats, inflow: Floats, slopes: Floats) -> None:
+        """Add what seeps inside the pump into its LS node."""
+        for source, conducts in (
+            (OUTLET, np.where(self.bled_from_outlet, self.signal_bleed, 0.0)),
+            (CASE, np.where(self.bled_from_outlet, 0.0, self.signal_bleed)),
+        ):
+            node = self.outlet if source == OUTLET else self.case
+            drop_bar = pressures_bar[:, node] - pressures_bar[:, self.signal]
+            flow, slope = orifice_flow(drop_bar=drop_bar, conductance=conducts)
+            for terminal, sign in ((source, -1.0), (SIGNAL, 1.0)):
+                inflow[:, :, terminal] += sign * flow
+                slopes[:, :, terminal, source] += sign * slope
+                slopes[:, :, terminal, SIGNAL] -= sign * slope
