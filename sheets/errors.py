@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass
+from difflib import get_close_matches
 from enum import IntEnum
 
 
@@ -61,3 +63,20 @@ class NotEstablishedError(JamnutError):
     """No answer within the stated limit: neither yes nor no (exit status 3)."""
 
     status = ExitStatus.NOT_ESTABLISHED
+
+
+LONGEST_QUOTE = 60
+
+
+def quoted(text: str) -> str:
+    """A user's words as they may stand in a message: on one line, printable, not endless."""
+    short = text if len(text) <= LONGEST_QUOTE else text[: LONGEST_QUOTE - 1] + "…"
+    plain = "".join(sign if sign.isprintable() else sign.encode("unicode_escape").decode() for sign in short)
+    return f"'{plain}'"
+
+
+def nearest(wrong: str, right: Iterable[str]) -> str | None:
+    """The right word that the wrong one most likely stands for, or None if none is near."""
+    by_small = {word.casefold(): word for word in right}
+    found = get_close_matches(wrong[:LONGEST_QUOTE].casefold(), by_small, n=1, cutoff=0.6)
+    return by_small[found[0]] if found else None

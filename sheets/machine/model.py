@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from typing import Annotated, Literal
 
 from pydantic import Field
 
 from sheets.machine.fields import Entry, FormatNumber, Identifier, IsoDate, PortRef, Text, Volt, YesNo
+from sheets.machine.flaws import Flaw
+from sheets.machine.isolating import ELECTRICAL, IsolatorKind
 from sheets.machine.parts import AnyGauge, Fluid, Part
 
 
@@ -15,8 +18,10 @@ class Isolator(Entry):
 
     plate: Text
     """The words on its plate; printed as they stand, never translated."""
-    kind: Literal["main switch", "circuit breaker", "plug", "hand valve", "blank"]
+    kind: IsolatorKind
+    """What it is. A device of the control circuit is refused."""
     where: Text
+    """Where it is to be found."""
     action: Text
     """What to do with it: turn to OFF."""
     lock: Text
@@ -27,54 +32,97 @@ class Supply(Entry):
     """An electrical supply: power to motors, or control voltage to solenoids and controllers."""
 
     kind: Literal["electrical supply", "control supply"]
+    """Electrical supply for motors, control supply for solenoids."""
     voltage_v: Volt
+    """Rated voltage."""
     feeds: tuple[Identifier, ...]
+    """Parts that it feeds."""
     isolator: Isolator
+    """What isolates it."""
     verify: Text
     """How to verify that it is dead, and by whom."""
+
+    def contradictions(self) -> Iterator[Flaw]:
+        yield from super().contradictions()
+        if self.isolator.kind not in ELECTRICAL:
+            yield Flaw(
+                at=("isolator", "kind"),
+                what=f"A {self.isolator.kind} doesn't isolate an electrical supply.",
+                fix=f"Name the device that separates it: {', '.join(ELECTRICAL)}.",
+            )
 
 
 class Control(Entry):
     """A start or stop place. Never an isolating device."""
 
     name: Text
+    """The words beside it."""
     where: Text
+    """Where it is to be found."""
 
 
 class Controls(Entry):
+    """Where the machine is started and stopped."""
+
     start: tuple[Control, ...]
+    """Places from which it can be started."""
     stop: tuple[Control, ...]
+    """Places from which it is stopped in normal service."""
     emergency_stop: tuple[Control, ...]
+    """Emergency stops."""
 
 
 class Units(Entry):
     """Units on the pages: the first is worked in, the second stands beside it."""
 
-    pressure: tuple[Literal["bar", "psi", "MPa"], ...] = ("bar",)
-    flow: tuple[Literal["L/min", "gal/min"], ...] = ("L/min",)
+    pressure: Annotated[tuple[Literal["bar", "psi", "MPa"], ...], Field(min_length=1, max_length=2)] = (
+        "bar",
+    )
+    """One or two units of pressure."""
+    flow: Annotated[tuple[Literal["L/min", "gal/min"], ...], Field(min_length=1, max_length=2)] = ("L/min",)
+    """One or two units of flow; the gallon is the US gallon."""
+
+    def contradictions(self) -> Iterator[Flaw]:
+        yield from super().contradictions()
+        for key, units in (("pressure", self.pressure), ("flow", self.flow)):
+            if len(set(units)) < len(units):
+                yield Flaw(at=(key, 1), what="The same unit stands here twice.", fix="Write it once.")
 
 
 class Machine(Entry):
     """One power unit, its circuit and its energy sources."""
 
     format: FormatNumber
+    """Number of the file format; 1."""
     tag: Identifier
+    """The machine's own tag."""
     name: Text
+    """What people call the machine."""
     plant: Text
+    """Works in which it stands."""
     area: Text
+    """Where in the works it stands."""
     document: Identifier
     """Number of the document that is printed."""
     dated: IsoDate
     """Date of this data."""
     language: Literal["en"] = "en"
+    """Language of the pages."""
     units: Units = Units()
+    """Units on the pages."""
     fluid: Fluid
+    """The fluid and its temperatures."""
     parts: Annotated[dict[Identifier, Part], Field(min_length=1)]
+    """Parts by their identifier."""
     gauges: dict[Identifier, AnyGauge]
-    nets: dict[Text, tuple[PortRef, ...]]
+    """Gauges by their identifier. May be empty, but not left out."""
+    nets: Annotated[dict[Text, tuple[PortRef, ...]], Field(min_length=1)]
     """Which ports are joined, by the name of the line."""
-    energy: dict[Identifier, Supply]
+    energy: Annotated[dict[Identifier, Supply], Field(min_length=1)]
+    """Energy sources beside the hydraulic ones, by their identifier."""
     controls: Controls
+    """Where the machine is started and stopped."""
     absent: tuple[Text, ...]
     """Sources that somebody looked for and didn't find; printed as such. May be empty, but not left out."""
     load_is_held_up: YesNo = False
+    """Yes if a load could fall or turn by itself when the pressure goes."""

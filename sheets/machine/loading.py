@@ -1,0 +1,188 @@
+"""Machine and site files into values, or one error with everything that is wrong in them, line by line."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable, Iterator
+from dataclasses import dataclass
+from functools import lru_cache
+from pathlib import Path
+from typing import Any, Final, TypeVar
+
+from pydantic import TypeAdapter, ValidationError
+
+from sheets.errors import InputError, Problem, quoted
+from sheets.machine import flaws, reading
+from sheets.machine.checks import Survey, cross_check
+from sheets.machine.fields import Entry, Identifier, PortRef
+from sheets.machine.flaws import Flaw
+from sheets.machine.model import Machine, Supply
+from sheets.machine.parts import AnyGauge, Part
+from sheets.machine.reporting import flaws_of
+from sheets.machine.site import Site
+
+MOST_PROBLEMS: Final = 50
+"""So many are told of one file; the rest shows when these are corrected."""
+
+_SECTIONS: Final = ("parts", "gauges", "energy")
+"""Their names are left out where an entry's identifier says enough."""
+
+E = TypeVar("E", bound=Entry)
+
+
+@dataclass(frozen=True, kw_only=True)
+class LoadedMachine:
+    """A machine, and the file that it came from."""
+
+    machine: Machine
+    source: bytes
+    """The file as it stood."""
+    name: str
+    """Name of the file, without its folder."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class LoadedSite:
+    """A site, and the file that it came from."""
+
+    site: Site
+    source: bytes
+    """The file as it stood."""
+    name: str
+    """Name of the file, without its folder."""
+
+
+def load_machine(path: Path) -> LoadedMachine:
+    """Read a machine file. Raises InputError with every problem in it, in the order of its lines."""
+    source = _bytes_of(path)
+    return LoadedMachine(machine=parse_machine(source, path.name), source=source, name=path.name)
+
+
+def load_site(path: Path) -> LoadedSite:
+    """Read a site file. Raises InputError with every problem in it, in the order of its lines."""
+    source = _bytes_of(path)
+    return LoadedSite(site=parse_site(source, path.name), source=source, name=path.name)
+
+
+def parse_machine(text: bytes, name: str) -> Machine:
+    """The machine in that text; ``name`` stands in the problems. Raises InputError."""
+    return _parsed(text, name, Machine, lambda machine: cross_check(Survey.of(machine)), _holed_survey)
+
+
+def parse_site(text: bytes, name: str) -> Site:
+    """The site in that text; ``name`` stands in the problems. Raises InputError."""
+    return _parsed(text, name, Site, lambda _: (), lambda _: None)
+
+
+def _bytes_of(path: Path) -> bytes:
+    try:
+        with path.open("rb") as file:
+            return file.read(reading.LARGEST_BYTES + 1)
+    except OSError as error:
+        raise InputError(
+            Problem(
+                where=path.name,
+                what=f"The file can't be read: {error.strerror or 'no reason is given'}.",
+                fix="Look at the name of the file and whether you may read it.",
+            )
+        ) from None
+
+
+def _parsed(
+    source: bytes,
+    name: str,
+    model: type[E],
+    check: Callable[[E], Iterable[Flaw]],
+    survey_with_holes: Callable[[dict[str, Any]], Survey | None],
+) -> E:
+    text = reading.read_text(source, name)
+    try:
+        value = model.model_validate(text.data, by_alias=True, by_name=False)
+        found = list(check(value))
+    except ValidationError as error:
+        found = list(flaws_of(error, model=model, data=text.data))
+        survey = survey_with_holes(text.data)
+        found += cross_check(survey) if survey else ()
+        value = None
+    placed = [(_line(flaw.at, text.lines), flaw) for flaw in found] + list(text.flaws)
+    if placed or value is None:
+        placed.sort(key=lambda each: each[0])
+        raise InputError(*_problems(placed, name))
+    return value
+
+
+def _problems(placed: list[tuple[int, Flaw]], name: str) -> Iterator[Problem]:
+    for line, flaw in placed[:MOST_PROBLEMS]:
+        where = ", ".join([f"{name}, line {line}", *_steps(flaw.at)])
+        yield Problem(where=where, what=flaw.what, fix=flaw.fix)
+    if len(placed) > MOST_PROBLEMS:
+        yield Problem(
+            where=name,
+            what=f"There are {len(placed) - MOST_PROBLEMS} more problems.",
+            fix="Correct these first, then read the file again.",
+        )
+
+
+def _steps(path: flaws.Path) -> Iterator[str]:
+    """A place in words: RV1, adjuster, lowest."""
+    shortened = path[1:] if len(path) > 1 and path[0] in _SECTIONS else path
+    for step in shortened:
+        yield f"item {step + 1}" if isinstance(step, int) else quoted(step)[1:-1]
+
+
+def _line(path: flaws.Path, lines: dict[flaws.Path, int]) -> int:
+    """Line of that place, or of the nearest one around it."""
+    while path not in lines:
+        path = path[:-1]
+    return lines[path]
+
+
+@lru_cache(maxsize=8)
+def _adapter(section: str) -> TypeAdapter[Any]:
+    kinds: dict[str, Any] = {
+        "parts": Part,
+        "gauges": AnyGauge,
+        "energy": Supply,
+        "port": PortRef,
+        "id": Identifier,
+    }
+    return TypeAdapter(kinds[section])
+
+
+def _holed_survey(data: dict[str, Any]) -> Survey | None:
+    """What can be read of a machine file that has flaws; None where a whole section can't."""
+    sections = {section: data.get(section) for section in (*_SECTIONS, "nets")}
+    if not all(isinstance(entries, dict) for entries in sections.values()):
+        return None
+    if not all(isinstance(references, list) for references in data["nets"].values()):
+        return None
+    read = {
+        section: {
+            id: value
+            for id, given in data[section].items()
+            for value in _readable(section, given)
+            if any(_readable("id", id))
+        }
+        for section in _SECTIONS
+    }
+    nets = {
+        net: tuple(
+            (place, port) for place, given in enumerate(references) for port in _readable("port", given)
+        )
+        for net, references in data["nets"].items()
+    }
+    return Survey(
+        parts=read["parts"],
+        gauges=read["gauges"],
+        energy=read["energy"],
+        nets=nets,
+        torn_nets=frozenset(net for net, ports in nets.items() if len(ports) < len(data["nets"][net])),
+        identifiers=tuple((section, id) for section in _SECTIONS for id in data[section]),
+    )
+
+
+def _readable(section: str, given: object) -> Iterator[Any]:
+    """The value, if it can be read."""
+    try:
+        yield _adapter(section).validate_python(given, by_alias=True, by_name=False)
+    except ValidationError:
+        return

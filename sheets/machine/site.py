@@ -1,0 +1,106 @@
+"""The site file: telephones, local rules, and the policy figures of the works."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Annotated
+
+from sheets.machine.fields import (
+    Bar,
+    Celsius,
+    Entry,
+    FormatNumber,
+    PositiveBar,
+    Quantity,
+    Ratio,
+    Second,
+    Text,
+)
+from sheets.machine.flaws import Flaw
+from sheets.machine.words import Name
+
+AccuracyRatio = Annotated[float, Quantity(unit="", example="3", least=1.0, most=20.0)]
+RecordAddress = Annotated[
+    str,
+    Name(
+        pattern=r"https?://[A-Za-z0-9][A-Za-z0-9.-]*(?::[0-9]{1,5})?(?:/[A-Za-z0-9_-]+)*",
+        says="a web address without a closing slash",
+        example="https://records.example",
+        longest=54,  # the code on a page has room for 84 characters, and 30 of them are the record's own
+    ),
+]
+
+
+class Policies(Entry):
+    """Figures of common practice, for where neither maker nor owner gives one. The pages call them policy."""
+
+    window_ratio: Ratio = 0.02
+    """Half of the accepted window over the target; the larger of this and the smallest half."""
+    window_minimum_bar: PositiveBar = 3.0
+    """Smallest half of the accepted window."""
+    standby_window_bar: PositiveBar = 1.0
+    """Half of the accepted window for a standby or a differential."""
+    reserve_ratio: Ratio = 0.05
+    """Reserve of a compensator over work pressure, margin and losses, and of a working limit."""
+    gap_bar: Bar = 5.0
+    """Between the top of a compensator's window and the closing pressure of the relief above it."""
+    accuracy_ratio: AccuracyRatio = 3.0
+    """Half of a printed window over the gauge's error; below it a warning."""
+    compensator_width_bar: PositiveBar = 4.0
+    """From full stroke to none, where the plate gives none."""
+    direct_opening_ratio: Ratio = 0.80
+    """Opening pressure of a direct acting relief over its setting."""
+    direct_closing_ratio: Ratio = 0.75
+    """Closing pressure of a direct acting relief over its setting."""
+    pilot_opening_ratio: Ratio = 0.93
+    """Opening pressure of a pilot operated relief over its setting."""
+    pilot_closing_ratio: Ratio = 0.90
+    """Closing pressure of a pilot operated relief over its setting."""
+    longest_try_s: Second = 60.0
+    """Longest time of one try over a relief."""
+    lowest_setting_temperature_c: Celsius = 45.0
+    """Lower end of the oil temperature window for settings; mineral oil only."""
+    highest_setting_temperature_c: Celsius = 55.0
+    """Upper end of that window."""
+    zero_limit_bar: PositiveBar = 2.0
+    """Smallest pressure that a gauge must still show for a verification of zero."""
+
+    def contradictions(self) -> Iterator[Flaw]:
+        yield from super().contradictions()
+        for name, opening, closing in (
+            ("direct", self.direct_opening_ratio, self.direct_closing_ratio),
+            ("pilot", self.pilot_opening_ratio, self.pilot_closing_ratio),
+        ):
+            if closing > opening:
+                yield Flaw(
+                    at=(f"{name} closing ratio",),
+                    what="A relief would close at a higher pressure than it opens at.",
+                    fix=f"Write a {name} closing ratio of at most {name} opening ratio.",
+                )
+        if self.lowest_setting_temperature_c >= self.highest_setting_temperature_c:
+            yield Flaw(
+                at=("lowest setting temperature",),
+                what="The lowest setting temperature isn't below the highest.",
+                fix="Write both ends of the window, such as 45 °C and 55 °C.",
+            )
+
+
+class Site(Entry):
+    """What holds for all machines of one works."""
+
+    format: FormatNumber
+    """Number of the file format; 1."""
+    plant: Text
+    """Name of the works."""
+    record_address: RecordAddress | None = None
+    """Web address of the record page; the code on each page begins with it."""
+    planner_telephone: Text
+    """Whom a technician calls about a sheet."""
+    emergency_telephone: Text
+    """Whom anybody calls after an accident."""
+    hospital: Text = ""
+    """Where an injection injury is treated, in the words for the card."""
+    local_rules: tuple[Text, ...] = ()
+    """Rules of the works, each printed as it stands."""
+    policies: Policies = Policies()
+    """Policy figures of the works, where they differ from the project's."""
