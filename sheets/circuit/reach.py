@@ -1,0 +1,81 @@
+"""Which nodes an open way joins, read from the graph alone: no pressure is computed here."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass
+
+from sheets.circuit.model import TANK, Circuit
+from sheets.machine.model import Machine
+from sheets.machine.parts import CheckValve, DirectionalValve, FlowPath, HandValve
+
+
+@dataclass(frozen=True, kw_only=True)
+class OpenWay:
+    """A way that passes oil at no pressure difference, save a check's opening pressure."""
+
+    part: str
+    start: int
+    end: int
+    one_way: bool
+    """Passes from start to end only."""
+
+
+def open_ways(machine: Machine, circuit: Circuit, positions: Mapping[str, str]) -> Iterator[OpenWay]:
+    """Every open way with the valves at those positions.
+
+    Reliefs, pumps, spool clearances and motor leakage are no ways: they hold some pressure, or nobody knows
+    how long they take. A check valve passes in its own direction.
+    """
+    for id_, part in machine.parts.items():
+        if isinstance(part, DirectionalValve):
+            for first, second in part.paths(positions[id_]):
+                start, end = circuit.node_of.get(f"{id_}.{first}"), circuit.node_of.get(f"{id_}.{second}")
+                if start is not None and end is not None:
+                    yield OpenWay(part=id_, start=start, end=end, one_way=False)
+        elif isinstance(part, FlowPath):
+            if isinstance(part, HandValve) and positions[id_] == "closed":
+                continue
+            start, end = circuit.node_of.get(f"{id_}.A"), circuit.node_of.get(f"{id_}.B")
+            if start is not None and end is not None:
+                yield OpenWay(part=id_, start=start, end=end, one_way=isinstance(part, CheckValve))
+
+
+def joined_at_rest(machine: Machine, circuit: Circuit, node: int) -> frozenset[int]:
+    """Nodes that a line valve at rest, a filter or an orifice joins with a node; spools don't count."""
+    rest = {valve: positions[0] for valve, positions in circuit.positions.items()}
+    reached, front = {node}, [node]
+    ways = [
+        way
+        for way in open_ways(machine, circuit, rest)
+        if not isinstance(machine.parts[way.part], DirectionalValve)
+    ]
+    while front:
+        here = front.pop()
+        for way in ways:
+            for start, end in ((way.start, way.end), (way.end, way.start)):
+                if start == here and end not in reached and end != TANK:
+                    reached.add(end)
+                    front.append(end)
+    return frozenset(reached)
+
+
+def drained_nodes(machine: Machine, circuit: Circuit, positions: Mapping[str, str]) -> frozenset[int]:
+    """Nodes from which an open way leads to tank, the tank itself included.
+
+    Flooded from the tank backwards. What isn't reached keeps its pressure after shutdown. A check valve in
+    the draining direction counts, and leaves its opening pressure.
+    """
+    ways = tuple(open_ways(machine, circuit, positions))
+    drained, front = {TANK}, [TANK]
+    while front:
+        here = front.pop()
+        for way in ways:
+            sources = [way.start] if way.end == here else []
+            if way.start == here and not way.one_way:
+                sources.append(way.end)
+            for source in sources:
+                if source not in drained:
+                    drained.add(source)
+                    front.append(source)
+    return frozenset(drained)

@@ -1,0 +1,1 @@
+"""Energy sources, stored energy and trapped volumes."""

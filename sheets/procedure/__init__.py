@@ -1,0 +1,1 @@
+"""The search for test states, the derived order, and the steps."""

@@ -1,0 +1,186 @@
+"""Which gauge shows an adjuster's pressure in a state, and how well."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from sheets.amounts import Amount, Finding, Severity, bar, ratio
+from sheets.circuit.model import Circuit
+from sheets.machine.model import Machine
+from sheets.machine.parts import DialGauge, DigitalGauge
+from sheets.machine.site import Policies
+from sheets.procedure.conditions import SAME_PRESSURE_BAR, Condition, Failure
+from sheets.targets.reading import ReadingWindow, accuracy_ratio, never_exceed_bar, reading_window
+from sheets.targets.settings import Origin, Setting
+
+WORKING_SHARE = (0.25, 0.75)
+"""Working point of a dial, as a share of its scale."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class GaugeChoice:
+    """A gauge at a test point, with what is read on it."""
+
+    gauge: str
+    test_point: str
+    window: ReadingWindow
+    target_bar: float
+    """Reading to come to."""
+    never_exceed_bar: float
+    error_bar: float
+    graduation_bar: float
+    accuracy_ratio: float
+    findings: tuple[Finding, ...]
+
+
+def error_bar(gauge: DialGauge | DigitalGauge) -> float:
+    """Largest error of a gauge in bar: class times range of a dial, stated error of a digital one."""
+    if isinstance(gauge, DialGauge):
+        return gauge.range_bar * gauge.accuracy_class / 100.0
+    return gauge.error_bar
+
+
+def graduation_bar(gauge: DialGauge | DigitalGauge) -> float:
+    """Smallest division of a dial, resolution of a digital gauge; bar."""
+    return gauge.graduation_bar if isinstance(gauge, DialGauge) else gauge.resolution_bar
+
+
+def choose_gauge(
+    machine: Machine,
+    circuit: Circuit,
+    policies: Policies,
+    setting: Setting,
+    *,
+    node: int,
+    pressures_bar: tuple[float, ...],
+    reading_bar: float,
+    low_bar: float,
+    high_bar: float,
+    highest_bar: float,
+    rating_bar: float,
+    floor_bar: float,
+    ceiling_bar: float,
+) -> GaugeChoice | Failure:
+    """The gauge that shows this reading best, in the order of the file where several do.
+
+    ``node`` is controlled; ``pressures_bar`` of all nodes at the target. ``reading_bar``, ``low_bar`` and ``high_bar`` are what
+    the setting and its window convert to; ``highest_bar`` what the gauge may see with the screw at its stop;
+    ``rating_bar`` the lowest rating in reach; ``floor_bar`` and ``ceiling_bar`` bound a widened window. All in bar.
+    A gauge that would be over-ranged, or whose error is as wide as the window, is refused.
+    """
+    best: tuple[tuple[int, float], GaugeChoice] | None = None
+    nearest = Failure(condition=Condition.SEEN, data={"line": circuit.nodes[node].name})
+    for id_, gauge in machine.gauges.items():
+        for test_point in gauge.fitted_at:
+            place = circuit.node_of.get(f"{test_point}.P")
+            if place is None or abs(pressures_bar[place] - pressures_bar[node]) > SAME_PRESSURE_BAR:
+                continue
+            outcome = _judge(
+                id_,
+                gauge,
+                test_point,
+                policies,
+                setting,
+                reading_bar=reading_bar,
+                low_bar=low_bar,
+                high_bar=high_bar,
+                highest_bar=highest_bar,
+                rating_bar=rating_bar,
+                floor_bar=floor_bar,
+                ceiling_bar=ceiling_bar,
+            )
+            if isinstance(outcome, Failure):
+                nearest = outcome
+            else:
+                rank = (len(outcome.findings), -min(outcome.accuracy_ratio, policies.accuracy_ratio))
+                if best is None or rank < best[0]:
+                    best = (rank, outcome)
+            break
+    return best[1] if best else nearest
+
+
+def _judge(
+    id_: str,
+    gauge: DialGauge | DigitalGauge,
+    test_point: str,
+    policies: Policies,
+    setting: Setting,
+    *,
+    reading_bar: float,
+    low_bar: float,
+    high_bar: float,
+    highest_bar: float,
+    rating_bar: float,
+    floor_bar: float,
+    ceiling_bar: float,
+) -> GaugeChoice | Failure:
+    error, graduation = error_bar(gauge), graduation_bar(gauge)
+    data: dict[str, Amount | str] = {"gauge": id_, "test_point": test_point}
+    if highest_bar > gauge.rating_bar or high_bar > gauge.range_bar:
+        most = gauge.rating_bar if highest_bar > gauge.rating_bar else gauge.range_bar
+        return Failure(
+            condition=Condition.SEEN,
+            data={**data, "over": bar(max(highest_bar, high_bar)), "most": bar(most)},
+        )
+    never = never_exceed_bar(
+        rating_bar=min(rating_bar, gauge.rating_bar), gauge_error_bar=error, graduation_bar=graduation
+    )
+    window = reading_window(
+        low_bar=low_bar,
+        high_bar=high_bar,
+        graduation_bar=graduation,
+        widen=setting.window_origin is Origin.POLICY,
+        floor_bar=floor_bar,
+        ceiling_bar=min(ceiling_bar, never - graduation),
+    )
+    if window.too_coarse:
+        return Failure(condition=Condition.SEEN, data={**data, "graduation": bar(graduation)})
+    if never < window.high_bar + graduation - 1e-9:
+        return Failure(
+            condition=Condition.SEEN,
+            data={**data, "never_exceed": bar(never), "top": bar(window.high_bar)},
+        )
+    achieved = accuracy_ratio(half_window_bar=window.half_width_bar, gauge_error_bar=error)
+    if achieved < 1.0:
+        return Failure(condition=Condition.SEEN, data={**data, "accuracy_ratio": ratio(achieved)})
+    findings: list[Finding] = []
+    if achieved < policies.accuracy_ratio:
+        findings.append(
+            Finding(
+                code="gauge_accuracy",
+                severity=Severity.WARNING,
+                subject=setting.adjuster,
+                data={**data, "accuracy_ratio": ratio(achieved), "wanted": ratio(policies.accuracy_ratio)},
+            )
+        )
+    share = reading_bar / gauge.range_bar
+    if isinstance(gauge, DialGauge) and not WORKING_SHARE[0] <= share <= WORKING_SHARE[1]:
+        findings.append(
+            Finding(
+                code="gauge_working_point",
+                severity=Severity.WARNING,
+                subject=setting.adjuster,
+                data={**data, "share": ratio(share)},
+            )
+        )
+    return GaugeChoice(
+        gauge=id_,
+        test_point=test_point,
+        window=window,
+        target_bar=_on_graduation(reading_bar, graduation, setting.origin),
+        never_exceed_bar=never,
+        error_bar=error,
+        graduation_bar=graduation,
+        accuracy_ratio=achieved,
+        findings=tuple(findings),
+    )
+
+
+def _on_graduation(reading_bar: float, graduation: float, origin: Origin) -> float:
+    """A computed target stands on a graduation, rounded up; a given one as it was given.
+
+    Up is the direction of every inequality that computes a target so far: each has a lowest value.
+    """
+    if origin is Origin.GIVEN:
+        return reading_bar
+    return -(-(reading_bar - 1e-6) // graduation) * graduation

@@ -1,0 +1,171 @@
+"""A plant that a procedure is tried on while it is written: each step acts, and its readings are noted."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+from sheets.amounts import Amount, Finding, Severity
+from sheets.circuit.drive_load import drive_loads, hydraulic_power
+from sheets.circuit.model import Circuit
+from sheets.circuit.plant import PlantAction, PlantState
+from sheets.circuit.solution import Solution
+from sheets.circuit.solver import solve_one
+from sheets.circuit.step import Outcome, take_step
+from sheets.machine.model import Machine
+from sheets.procedure.conditions import OWN_SHARE, Failure, over_rating
+from sheets.procedure.gauges import GaugeChoice, graduation_bar
+from sheets.procedure.steps import Band, Reading, Step, StepKind, Trace
+from sheets.targets.reading import graduations_within
+
+AS_FOUND_SHARE = 0.10
+"""Policy: a setting that is out by more than this has a cause to be found before it is adjusted."""
+AS_FOUND_LEAST_BAR = 3.0
+
+
+class Rig:
+    """Holds the plant state while steps are written. The only mutable thing in this stage."""
+
+    def __init__(self, machine: Machine, circuit: Circuit, state: PlantState) -> None:
+        self.machine = machine
+        self.circuit = circuit
+        self.state = state
+        self.steps: list[Step] = []
+        self.findings: list[Finding] = []
+        self.gauge: GaugeChoice | None = None
+        """Gauge that the steps read at present."""
+        self.fitted: dict[str, str] = {}
+        """Gauge to the test point at which it is fitted."""
+
+    def take_steps(self) -> tuple[Step, ...]:
+        """The steps since the last call."""
+        steps, self.steps = tuple(self.steps), []
+        return steps
+
+    def say(self, kind: StepKind, subject: str = "", **data: Amount | str) -> None:
+        """A step that doesn't act on the plant."""
+        self.steps.append(Step(kind=kind, subject=subject, data=data))
+
+    def do(
+        self,
+        kind: StepKind,
+        subject: str,
+        *actions: PlantAction,
+        reason: Failure | None = None,
+        window_of: str = "",
+        data: Mapping[str, Amount | str] | None = None,
+    ) -> None:
+        """A step that acts on the plant; its readings are those after the last action.
+
+        ``window_of`` names the adjuster whose window the reading must lie in; without it the reading is a band
+        around what is expected.
+        """
+        for action in actions:
+            self._act(kind, subject, action)
+        solution = self.look()
+        self.steps.append(
+            Step(
+                kind=kind,
+                subject=subject,
+                data=data or {},
+                reason=reason,
+                reading=self._reading(solution, window_of),
+                bands=self._bands(solution),
+                trace=self._trace(solution),
+            )
+        )
+
+    def _act(self, kind: StepKind, subject: str, action: PlantAction) -> None:
+        before = self.state
+        result = take_step(self.circuit, before, action, to_stops=False)
+        self.state = result.state
+        if result.outcome is Outcome.NOT_ESTABLISHED:
+            self._find("step_not_established", Severity.NOT_ESTABLISHED, subject, {"step": kind.value})
+        elif result.moved and self.state.running:
+            self._find("step_moves", Severity.REFUSED, subject, {"step": kind.value})
+        for solution in result.passes:
+            over = over_rating(solution) if solution.established else None
+            if over is not None:
+                self._find("step_over_rating", Severity.REFUSED, str(over.data["part"]), dict(over.data))
+
+    def look(self) -> Solution:
+        """The plant as it stands, solved with effects."""
+        return solve_one(self.circuit, self.state, effects=True)
+
+    def _trace(self, solution: Solution) -> Trace:
+        loads = drive_loads(self.circuit, solution).values() if solution.established else ()
+        return Trace(
+            established=solution.established,
+            moving=solution.moving,
+            pressures_bar=solution.pressures_bar,
+            drive_kw=max((load.shaft_kw for load in loads), default=0.0),
+            relief_kw=sum(
+                hydraulic_power(
+                    pressure_bar=solution.pressures_bar[site.controlled_node],
+                    flow_lpm=solution.flows_lpm[site.part],
+                )
+                for site in self.circuit.adjusters
+                if site.reference_flow_lpm > 0.0
+            ),
+        )
+
+    def _find(
+        self, code: str, severity: Severity, subject: str, data: Mapping[str, Amount | str]
+    ) -> None:
+        finding = Finding(code=code, severity=severity, subject=subject, data=data)
+        if finding not in self.findings:
+            self.findings.append(finding)
+
+    def _reading(self, solution: Solution, window_of: str) -> Reading | None:
+        choice = self.gauge
+        if choice is None or not self.state.running or not solution.established:
+            return None
+        node = self.circuit.node_of[f"{choice.test_point}.P"]
+        expected_bar = solution.pressures_bar[node]
+        if window_of:
+            low_bar, high_bar, governs = choice.window.low_bar, choice.window.high_bar, window_of
+        else:
+            governs = _governor(solution, node)
+            low_bar, high_bar = _band(expected_bar, choice.graduation_bar)
+        return Reading(
+            adjuster=governs,
+            gauge=choice.gauge,
+            test_point=choice.test_point,
+            expected_bar=expected_bar,
+            low_bar=low_bar,
+            high_bar=high_bar,
+            never_exceed_bar=choice.never_exceed_bar,
+            graduation_bar=choice.graduation_bar,
+        )
+
+    def _bands(self, solution: Solution) -> tuple[Band, ...]:
+        """Other fitted gauges, where they stand on another line than the governing one."""
+        if self.gauge is None or not self.state.running or not solution.established:
+            return ()
+        here = self.circuit.node_of[f"{self.gauge.test_point}.P"]
+        bands = []
+        for id_, test_point in self.fitted.items():
+            node = self.circuit.node_of[f"{test_point}.P"]
+            if node != here:
+                graduation = graduation_bar(self.machine.gauges[id_])
+                low_bar, high_bar = _band(solution.pressures_bar[node], graduation)
+                bands.append(
+                    Band(gauge=id_, low_bar=low_bar, high_bar=high_bar, graduation_bar=graduation)
+                )
+        return tuple(bands)
+
+
+def _governor(solution: Solution, node: int) -> str:
+    """Adjuster that the pressure at a node follows; empty where none does."""
+    strongest = max(solution.effects, key=lambda id_: solution.effects[id_][node], default="")
+    return strongest if strongest and solution.effects[strongest][node] >= OWN_SHARE else ""
+
+
+def _band(expected_bar: float, graduation: float) -> tuple[float, float]:
+    """What a reading may be before a setting is made: out by the policy share, outward to graduations."""
+    half_bar = max(AS_FOUND_SHARE * expected_bar, AS_FOUND_LEAST_BAR)
+    low_bar, high_bar, _ = graduations_within(
+        low_bar=expected_bar - half_bar - graduation,
+        high_bar=expected_bar + half_bar + graduation,
+        graduation_bar=graduation,
+    )
+    return max(0.0, low_bar), high_bar

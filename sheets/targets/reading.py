@@ -1,0 +1,84 @@
+"""From a setting to what may be read on a gauge: window, never-exceed, accuracy ratio."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+_UNREADABLE = 0.2
+"""Of a graduation: nobody reads less, so a window's end that misses a graduation by less counts as on it."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class ReadingWindow:
+    """Accepted readings, on the graduations of the gauge."""
+
+    low_bar: float
+    high_bar: float
+    too_coarse: bool
+    """Fewer than three graduations lie in it."""
+
+    @property
+    def half_width_bar(self) -> float:
+        return (self.high_bar - self.low_bar) / 2.0
+
+
+def graduations_within(*, low_bar: float, high_bar: float, graduation_bar: float) -> tuple[float, float, int]:
+    """Lowest and highest graduation inside an interval, in bar, and how many lie in it.
+
+    ``low_bar`` and ``high_bar`` in bar, ``graduation_bar`` in bar, more than 0. Valid for any dial that starts
+    at 0. Source: definition.
+    """
+    first = math.ceil(low_bar / graduation_bar - _UNREADABLE)
+    last = math.floor(high_bar / graduation_bar + _UNREADABLE)
+    return first * graduation_bar, last * graduation_bar, max(0, last - first + 1)
+
+
+def reading_window(
+    *,
+    low_bar: float,
+    high_bar: float,
+    graduation_bar: float,
+    widen: bool,
+    floor_bar: float,
+    ceiling_bar: float,
+) -> ReadingWindow:
+    """The window as it can be read.
+
+    ``low_bar`` and ``high_bar``: readings that the setting's window converts to. ``widen``: the window comes
+    from policy, so it may grow by whole graduations until three lie in it, to at most twice its half width and
+    never past ``floor_bar`` and ``ceiling_bar`` (neighbours, inequality, ratings). A given window is only
+    ever cut inward. Returns bar. Source: rule of this project.
+    """
+    first, last, count = graduations_within(
+        low_bar=low_bar, high_bar=high_bar, graduation_bar=graduation_bar
+    )
+    if count < 3 and widen:
+        middle_bar = (low_bar + high_bar) / 2.0
+        half_bar = high_bar - low_bar  # twice the half width
+        first, last, count = graduations_within(
+            low_bar=max(middle_bar - half_bar, floor_bar),
+            high_bar=min(middle_bar + half_bar, ceiling_bar),
+            graduation_bar=graduation_bar,
+        )
+        nearest = round(middle_bar / graduation_bar) * graduation_bar
+        if count > 3 and first <= nearest - graduation_bar and nearest + graduation_bar <= last:
+            first, last, count = nearest - graduation_bar, nearest + graduation_bar, 3
+    return ReadingWindow(low_bar=first, high_bar=last, too_coarse=count < 3)
+
+
+def never_exceed_bar(*, rating_bar: float, gauge_error_bar: float, graduation_bar: float) -> float:
+    """The reading that must never be passed, in bar, on a graduation.
+
+    ``rating_bar``: lowest rating in reach; ``gauge_error_bar``: largest error of the gauge. The true pressure
+    may stand above the reading by that error. Source: rule of this project.
+    """
+    return math.floor((rating_bar - gauge_error_bar) / graduation_bar + 1e-6) * graduation_bar
+
+
+def accuracy_ratio(*, half_window_bar: float, gauge_error_bar: float) -> float:
+    """Half of the printed window over the gauge's error; both in bar.
+
+    An accuracy ratio, not a test uncertainty ratio: it knows the gauge's class only. Source: common practice.
+    """
+    return half_window_bar / gauge_error_bar

@@ -1,0 +1,1 @@
+"""Sentences from templates/, and the rules that they keep."""
