@@ -63,21 +63,22 @@ def volume_kept(circuit: Circuit, state: StateArrays, at: Balance, pressures_bar
     What came in is the oil that a moving piston shifts and the void that stands for missing oil.
     """
     batch, count = pressures_bar.shape
-    edges = [*_edges(circuit, state, at), *_pump_edges(circuit, state)]
-    labels = _labels(edges, batch=batch, count=count)
+    labels = _labels([*_edges(circuit, state, at), *_pump_edges(circuit, state)], batch=batch, count=count)
     capacity = np.broadcast_to(capacities(circuit), (batch, count))
     surplus = capacity * (pressures_bar - state.held_bar) - at.void_lpm
+    yields = -at.void_slopes
     moved = circuit.actuators.moves_volume(at.actuators)
     for end, nodes in enumerate((circuit.actuators.node_a, circuit.actuators.node_b)):
         for column, node in enumerate(nodes):
             surplus[:, node] -= moved[:, column, end]
-    row = np.arange(batch)[:, None]
-    totals = [
-        np.bincount((row * count + labels).ravel(), weights=values.ravel(), minlength=batch * count)
-        for values in (surplus, capacity, np.abs(surplus))
-    ]
-    drift, takes, passed = (total.reshape(batch, count) for total in totals)
-    rounding = 1e-13 * passed  # what flows through a group rounds; what it stores is far smaller
+            yields[:, node] += np.sum(np.abs(at.actuators.slopes[:, column, end]), axis=-1)
+    place = (np.arange(batch)[:, None] * count + labels).ravel()
+    highest = np.max(np.abs(pressures_bar), axis=1, initial=0.0)[:, None]
+    drift, takes, passed, slope = (
+        np.bincount(place, weights=values.ravel(), minlength=batch * count).reshape(batch, count)
+        for values in (surplus, capacity, np.abs(surplus), yields)
+    )
+    rounding = 4.0 * np.finfo(np.float64).eps * (slope * highest + passed)
     kept = np.abs(drift) <= VOLUME_BAR * takes + rounding
     kept[:, TANK] = True
     return np.asarray(np.all(kept, axis=1))

@@ -10,13 +10,14 @@ from typing import Final
 
 import numpy as np
 
-from sheets.circuit.equations import Balance, balance, jacobian
+from sheets.circuit.equations import Balance, balance, capacities, jacobian
 from sheets.circuit.model import Circuit
 from sheets.circuit.smooth import Bools, Floats, Ints
 from sheets.circuit.stamp import StateArrays
 
 RESIDUAL_SHARE: Final = 1e-9
 STEP_BAR: Final = 1e-6
+EPSILON: Final = float(np.finfo(np.float64).eps)
 LONGEST_STEP_BAR: Final = 1e4
 HALVINGS: Final = 40
 ARMIJO: Final = 1e-4
@@ -57,14 +58,29 @@ def solve_each(matrices: Floats, right: Floats) -> Floats:
         return found
 
 
-def newton_step(circuit: Circuit, at: Balance) -> Floats:
+def rounding(slopes: Floats, pressures_bar: Floats, throughput_lpm: Floats) -> Floats:
+    """[B, N − 1] what a flow may be off because pressures are stored in 53 bits."""
+    highest = np.max(np.abs(pressures_bar), axis=1, initial=0.0)[:, None]
+    return np.asarray(4.0 * EPSILON * (np.sum(np.abs(slopes), axis=2) * highest + throughput_lpm))
+
+
+def newton_step(slopes: Floats, at: Balance) -> Floats:
     """[B, N − 1] the undamped step."""
-    return solve_each(jacobian(circuit, at), -at.residual_lpm[:, :, None])[:, :, 0]
+    return solve_each(slopes, -at.residual_lpm[:, :, None])[:, :, 0]
 
 
-def acceptable(circuit: Circuit, at: Balance, step_bar: Floats) -> Bools:
-    """[B] residual small and undamped step small: the residual alone lets a group that is cut off drift."""
-    small = np.all(np.abs(at.residual_lpm) <= tolerance(circuit, at), axis=1)
+def acceptable(
+    circuit: Circuit, at: Balance, slopes: Floats, pressures_bar: Floats, step_bar: Floats
+) -> Bools:
+    """[B] residual small and undamped step small.
+
+    The residual alone lets a group that is cut off drift. The step alone stops short where a curve begins
+    as a parabola: there it halves what is left, while next to nothing flows. So the residual must also
+    be what 1e-6 bar stores, or else what rounding leaves.
+    """
+    left = np.abs(at.residual_lpm)
+    stored = STEP_BAR * capacities(circuit)[1:] + rounding(slopes, pressures_bar, at.throughput_lpm)
+    small = np.all((left <= tolerance(circuit, at)) & (left <= stored), axis=1)
     return np.asarray(small & np.all(np.abs(step_bar) <= STEP_BAR, axis=1))
 
 
@@ -128,8 +144,9 @@ def _damped(circuit: Circuit, state: StateArrays, start_bar: Floats, *, widening
         part = state.take(active)
         here = pressures_bar[active]
         at = balance(circuit, part, here, widening=widening)
-        step_bar = newton_step(circuit, at)
-        done = acceptable(circuit, at, step_bar)
+        slopes = jacobian(circuit, at)
+        step_bar = newton_step(slopes, at)
+        done = acceptable(circuit, at, slopes, here, step_bar)
         accepted[active[done]] = True
         going = ~done & np.all(np.isfinite(step_bar), axis=1)
         if not np.any(going):
@@ -187,11 +204,10 @@ def _pseudo_time(circuit: Circuit, state: StateArrays, start_bar: Floats, *, wid
         here = pressures_bar[active]
         at = balance(circuit, part, here, widening=widening)
         slopes = jacobian(circuit, at)
-        right = -at.residual_lpm[:, :, None]
-        done = acceptable(circuit, at, solve_each(slopes, right)[:, :, 0])
+        done = acceptable(circuit, at, slopes, here, newton_step(slopes, at))
         accepted[active[done]] = True
         slopes[:, diagonal, diagonal] += 1.0 / time_step[active][:, None]
-        step_bar = solve_each(slopes, right)[:, :, 0]
+        step_bar = newton_step(slopes, at)
         rows = np.flatnonzero(~done & np.all(np.isfinite(step_bar), axis=1))
         if not rows.size:
             break

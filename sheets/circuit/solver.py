@@ -9,11 +9,13 @@ import numpy as np
 from sheets.circuit.equations import Balance, balance, by_settings, jacobian
 from sheets.circuit.groups import loose_signals, volume_kept
 from sheets.circuit.model import TANK, Circuit
-from sheets.circuit.newton import acceptable, find, newton_step, solve_each
+from sheets.circuit.newton import STEP_BAR, Found, acceptable, find, newton_step, solve_each
 from sheets.circuit.plant import PlantState
 from sheets.circuit.smooth import Bools, Floats
 from sheets.circuit.solution import MOVING_LPM, BatchSolution, Solution
 from sheets.circuit.stamp import StateArrays
+
+POLISHING_STEPS = 40
 
 __all__ = ["BatchSolution", "Solution", "as_arrays", "solve", "solve_one"]
 
@@ -54,13 +56,8 @@ def solve(
     start_bar = start_bar.copy()
     start_bar[:, TANK] = 0.0
     found = find(circuit, arrays, start_bar)
+    established = _polished(circuit, arrays, found)
     at = balance(circuit, arrays, found.pressures_bar)
-    step_bar = newton_step(circuit, at)
-    established = (
-        found.accepted
-        & acceptable(circuit, at, step_bar)
-        & volume_kept(circuit, arrays, at, found.pressures_bar)
-    )
     speeds = circuit.actuators.speeds(at.actuators)
     larger = np.maximum(circuit.actuators.swept_a, circuit.actuators.swept_b)
     pump_flows = at.pumps.through_lpm
@@ -116,6 +113,29 @@ def as_arrays(circuit: Circuit, states: Sequence[PlantState]) -> StateArrays:
         may_extend=np.array(travels, dtype=object).T.reshape(shape) != "far stop",
         may_retract=np.array(travels, dtype=object).T.reshape(shape) != "near stop",
     )
+
+
+def _polished(circuit: Circuit, state: StateArrays, found: Found) -> Bools:
+    """[B] whether a state is established, after undamped steps where a group does not yet hold its volume.
+
+    Inside a group the flows round coarser than what the group stores, so its nodes may pass one by one
+    while their sum does not.
+    """
+    established = np.zeros(len(found.accepted), dtype=np.bool_)
+    left = np.flatnonzero(found.accepted)
+    for _ in range(POLISHING_STEPS):
+        if not left.size:
+            break
+        part, here = state.take(left), found.pressures_bar[left]
+        at = balance(circuit, part, here)
+        slopes = jacobian(circuit, at)
+        step_bar = newton_step(slopes, at)
+        settled = acceptable(circuit, at, slopes, here, step_bar) & volume_kept(circuit, part, at, here)
+        established[left[settled]] = True
+        here[:, 1:] += np.clip(step_bar, -STEP_BAR, STEP_BAR)
+        left = left[~settled]
+        found.pressures_bar[left] = here[~settled]
+    return established
 
 
 def _shown(values: Floats, established: Bools) -> Floats:
