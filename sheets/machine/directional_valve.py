@@ -120,7 +120,7 @@ class DirectionalValve(RatedPart):
                     fix="Write operated by: solenoids, or leave the solenoids out.",
                 )
             return
-        for position in self.positions:
+        for position in self.positions if self.rest_position in self.positions else ():
             if position != self.rest_position and position not in self.solenoids:
                 yield Flaw(
                     at=("solenoids",),

@@ -75,18 +75,20 @@ class Controls(Entry):
 class Units(Entry):
     """Units on the pages: the first is worked in, the second stands beside it."""
 
-    pressure: Annotated[tuple[Literal["bar", "psi", "MPa"], ...], Field(min_length=1, max_length=2)] = (
-        "bar",
-    )
+    pressure: tuple[Literal["bar", "psi", "MPa"], ...] = ("bar",)
     """One or two units of pressure."""
-    flow: Annotated[tuple[Literal["L/min", "gal/min"], ...], Field(min_length=1, max_length=2)] = ("L/min",)
+    flow: tuple[Literal["L/min", "gal/min"], ...] = ("L/min",)
     """One or two units of flow; the gallon is the US gallon."""
 
     def contradictions(self) -> Iterator[Flaw]:
         yield from super().contradictions()
         for key, units in (("pressure", self.pressure), ("flow", self.flow)):
-            if len(set(units)) < len(units):
-                yield Flaw(at=(key, 1), what="The same unit stands here twice.", fix="Write it once.")
+            if not 1 <= len(units) <= 2 or len(set(units)) < len(units):
+                yield Flaw(
+                    at=(key,),
+                    what="One unit, or two different ones, can stand here.",
+                    fix="Write the unit that is worked in first, such as [bar, psi] or [L/min].",
+                )
 
 
 class Machine(Entry):
@@ -121,7 +123,7 @@ class Machine(Entry):
     energy: Annotated[dict[Identifier, Supply], Field(min_length=1)]
     """Energy sources beside the hydraulic ones, by their identifier."""
     controls: Controls
-    """Where the machine is started and stopped."""
+    """Start and stop places; none of them isolates anything."""
     absent: tuple[Text, ...]
     """Sources that somebody looked for and didn't find; printed as such. May be empty, but not left out."""
     load_is_held_up: YesNo = False

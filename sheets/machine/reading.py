@@ -41,6 +41,7 @@ _YAML_PROBLEMS: Final = (
         "A colon with a blank stands where none may; a text with one needs quotes.",
     ),
     ("could not find expected ':'", "A key without its colon stands here."),
+    ("maximum nesting", f"Keys are nested more than {DEEPEST} levels deep."),
     ("end of stream", "The file ends before a bracket or quotation mark is closed."),
     ("did not find expected", "The indentation is wrong, or a bracket, comma or quotation mark is missing."),
     ("cannot start any token", "A character stands here that needs quotes around the text."),
@@ -208,7 +209,8 @@ def _events(text: str) -> Iterator[yaml.Event]:
         yield from yaml.parse(text, Loader=yaml.CBaseLoader)
     except yaml.MarkedYAMLError as error:
         problem, unclosed = error.problem or "", "quoted" in (error.context or "")
-        mark = error.context_mark if unclosed else error.problem_mark
+        begun_before = unclosed or "simple key" in (error.context or "")
+        mark = error.context_mark if begun_before else error.problem_mark
         what = next((words for sign, words in _YAML_PROBLEMS if sign in problem), f"YAML says: {problem}.")
         raise _StopError(
             mark.line + 1 if mark else 1,

@@ -18,13 +18,20 @@ GROUP: Final = "Write a group of keys here, each on its own line and indented."
 
 def flaws_of(error: ValidationError, *, model: type[Entry], data: Mapping[str, Any]) -> Iterator[Flaw]:
     """Every flaw that the error carries, each with its place in ``data``."""
-    for detail in error.errors(include_url=False):
-        path = _path(detail["loc"], data)
+    details = [(_path(detail["loc"], data), detail) for detail in error.errors(include_url=False)]
+    misspelt = {
+        (*path[:-1], _meant(str(path[-1]), _shape(model, data, path[:-1])))
+        for path, detail in details
+        if detail["type"] == "extra_forbidden"
+    }
+    for path, detail in details:
         context = detail.get("ctx", {})
         if detail["type"] == "contradiction":
             yield from (flaw.under(path) for flaw in context["flaws"])
         elif detail["type"] == "said":
             yield Flaw(at=path, what=context["what"], fix=context["fix"])
+        elif detail["type"] == "missing" and path in misspelt:
+            continue  # the misspelt key is told already
         else:
             yield _translated(detail, path, model, data)
 
@@ -35,10 +42,11 @@ def _translated(detail: ErrorDetails, path: Path, model: type[Entry], data: Mapp
         case "missing":
             return _missing(path, _shape(model, data, path))
         case "union_tag_not_found":
+            shape = _shape(model, data, path)
             return Flaw(
                 at=(*path, "kind"),
                 what="The key 'kind' is missing.",
-                fix=_choose("", _words(context["discriminator_tags"])),
+                fix=_choose("", shape.kinds if shape else []),
             )
         case "extra_forbidden":
             return _unknown_key(path, _shape(model, data, path[:-1]))
@@ -69,12 +77,6 @@ def _translated(detail: ErrorDetails, path: Path, model: type[Entry], data: Mapp
             return Flaw(
                 at=path, what="Nothing stands here; at least one is needed.", fix="Write at least one."
             )
-        case "too_long":
-            return Flaw(
-                at=path,
-                what=f"{context['actual_length']} stand here; at most {context['max_length']} have room.",
-                fix="Leave out those that aren't needed.",
-            )
         case _:
             return Flaw(
                 at=path, what="The value can't be used here.", fix="Compare it with a sample machine file."
@@ -94,12 +96,15 @@ def _missing(path: Path, shape: _Shape | None) -> Flaw:
 
 def _unknown_key(path: Path, shape: _Shape | None) -> Flaw:
     key = str(path[-1])
-    known = [key_of(name) for name in shape.annotation.model_fields] if shape and shape.entry() else []
-    right = nearest(key_of(key.replace(" ", "_")), known)
+    right = _meant(key, shape)
     hint = f"Did you mean {right}? " if right else ""
-    return Flaw(
-        at=path, what=f"The key {quoted(key)} isn't known here.", fix=f"{hint}Known keys: {', '.join(known)}."
-    )
+    known = ", ".join(shape.keys()) if shape else ""
+    return Flaw(at=path, what=f"The key {quoted(key)} isn't known here.", fix=f"{hint}Known keys: {known}.")
+
+
+def _meant(key: str, shape: _Shape | None) -> str | None:
+    """Known key that an unknown one most likely stands for."""
+    return nearest(key_of(key.replace(" ", "_")), shape.keys() if shape else [])
 
 
 def _choose(given: str, words: list[str]) -> str:
@@ -137,12 +142,14 @@ class _Shape:
         while get_origin(annotation) is Annotated:
             metadata = (*metadata, *get_args(annotation)[1:])
             annotation = get_args(annotation)[0]
+        options: list[_Shape] = []
         if get_origin(annotation) in (Union, type(int | str)):
             options = [
                 _Shape(option, metadata) for option in get_args(annotation) if option is not type(None)
             ]
-            fitting = [option for option in options if option.is_of(kind)] or options
+            fitting = [option for option in options if kind in option.own_kinds()] or options
             annotation, metadata = fitting[0].annotation, fitting[0].metadata
+        self.kinds = [kind for option in options for kind in option.own_kinds()]
         self.annotation: Any = annotation
         self.metadata: tuple[Any, ...] = metadata
 
@@ -150,10 +157,14 @@ class _Shape:
         """Whether it is a group of keys."""
         return isinstance(self.annotation, type) and issubclass(self.annotation, Entry)
 
-    def is_of(self, kind: object) -> bool:
-        """Whether it is a group of keys of that kind."""
+    def keys(self) -> list[str]:
+        """Keys that it knows, if it is a group of keys."""
+        return [key_of(name) for name in self.annotation.model_fields] if self.entry() else []
+
+    def own_kinds(self) -> tuple[Any, ...]:
+        """Kinds of which a group of keys may be."""
         field = self.annotation.model_fields.get("kind") if self.entry() else None
-        return field is not None and kind in get_args(field.annotation)
+        return get_args(field.annotation) if field is not None else ()
 
     def inside(self, step: str | int, data: Any) -> _Shape | None:
         """Shape of what stands under a key or in a list; ``data`` is what is there."""
