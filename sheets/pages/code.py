@@ -3,16 +3,20 @@
 from __future__ import annotations
 
 from functools import lru_cache
+from typing import Literal
 
 import qrcode
 from qrcode.constants import ERROR_CORRECT_M
-from qrcode.util import MODE_8BIT_BYTE, QRData
+from qrcode.util import QRData
 
 from sheets.errors import InputError, Problem
 from sheets.pages.document import IssueContext
 
 BYTES_MOST = 84
 """What version 5 holds at level M (ISO/IEC 18004, table 7, byte mode)."""
+
+BYTE_MODE: Literal[4] = 4
+"""Mode indicator of bytes (ISO/IEC 18004, table 2)."""
 
 MASK = 2
 """Fixed mask: searching for the best one takes most of the time and readers don't need it."""
@@ -39,6 +43,6 @@ def matrix(url: str) -> tuple[tuple[bool, ...], ...]:
             )
         )
     code = qrcode.QRCode(error_correction=ERROR_CORRECT_M, border=0, mask_pattern=MASK)
-    code.add_data(QRData(data, mode=MODE_8BIT_BYTE), optimize=0)
+    code.add_data(QRData(data, mode=BYTE_MODE), optimize=0)
     code.make(fit=True)
     return tuple(tuple(bool(module) for module in row) for row in code.get_matrix())

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import io
 from collections.abc import Sequence
+from typing import Literal
 
 from reportlab.pdfgen.canvas import Canvas
 from reportlab.pdfgen.pathobject import PDFPathObject
@@ -15,7 +16,8 @@ from sheets.pages.placed import MM, Circle, Code, Item, Line, PlacedPage, Polygo
 SIGN_STROKE = {Weight.REGULAR: 0.075, Weight.SEMIBOLD: 0.105, Weight.BOLD: 0.12}
 """Thickness of a sign drawn as a path, as a share of the size."""
 
-FILL_ONLY, FILL_AND_STROKE = 0, 2
+FILL_ONLY: Literal[0] = 0
+FILL_AND_STROKE: Literal[2] = 2
 DASH = (1.1 * MM, 0.9 * MM)
 
 
@@ -117,7 +119,7 @@ def draw_item(canvas: Canvas, item: Item, page_height: float) -> None:
         case Line():
             path.moveTo(item.x1, page_height - item.y1)
             path.lineTo(item.x2, page_height - item.y2)
-            canvas.setDash(*([[*DASH]] if item.dashed else [[]]))
+            canvas.setDash(list(DASH) if item.dashed else [])
             shape(canvas, thickness=item.thickness, fill="none", path=path, white=item.white)
             canvas.setDash([])
         case Rect():
@@ -148,7 +150,7 @@ def raw_pdf(pages: Sequence[PlacedPage], document: Document) -> bytes:
         buffer,
         invariant=1,
         pageCompression=0,
-        initialFontName=font_name(Weight.REGULAR),
+        initialFontName=font_name(Weight.REGULAR),  # type: ignore[arg-type]  # the stub asks a float for a name
         initialFontSize=10,
     )
     canvas.setTitle(f"{document.number} {document.title}")

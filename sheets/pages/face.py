@@ -1,8 +1,8 @@
 """Gauge faces: the dial as the technician sees it, or a number box for a digital gauge.
 
-The scale runs over 270° clockwise from the lower left. From the rim inwards: the band (window solid, beyond the
-never-exceed reading hatched), the scale with its graduations, the numbers, the needle at the target. Band,
-graduations and numbers have a ring each, so none of them covers another.
+The scale runs over 270° clockwise from the lower left. From the rim inwards: the band (window
+solid, beyond the never-exceed reading hatched), the scale with its graduations, the numbers, the needle at
+the target. Band, graduations and numbers have a ring each, so none of them covers another.
 """
 
 from __future__ import annotations
@@ -25,8 +25,10 @@ SCALE_RADIUS = 0.87
 MINOR_END, MIDDLE_END, MAJOR_END = 0.825, 0.80, 0.765
 NEEDLE_TIP = 0.875
 HUB = 0.065
-UNIT_DROP = 0.46
+UNIT_DROP = 0.70
 NICE = (1, 2, 2.5, 5)
+LESS_NICE = (4, 8)
+"""Taken only where no nicer step divides the scale: 40 on a dial to 160."""
 CROWDED = 0.85 * MM
 """Graduations nearer than this at the scale are thinned."""
 
@@ -51,7 +53,7 @@ def check(face: GaugeFace) -> None:
             Problem(
                 where=f"gauge {face.gauge}",
                 what=(
-                    f"window {low:g} to {high:g}, target {face.target:g} and never-exceed {face.never_exceed:g} "
+                    f"window {low:g} to {high:g}, target {face.target:g}, never-exceed {face.never_exceed:g} "
                     f"don't stand in this order on a scale from 0 to {face.scale_end:g} {face.unit}"
                 ),
                 fix="fit a gauge whose scale reaches beyond the never-exceed reading",
@@ -69,10 +71,10 @@ def multiples(value: float, step: float) -> bool:
     return abs(value / step - round(value / step)) < 1e-6
 
 
-def steps_from(least: float) -> list[float]:
-    """Round steps from the least one up, over three decades."""
+def steps_from(least: float, nice: tuple[float, ...]) -> list[float]:
+    """Round steps from the least one up, over some decades."""
     decade = 10.0 ** math.floor(math.log10(least))
-    found = [nice * decade * 10**power for power in range(5) for nice in NICE]
+    found = [digit * decade * 10**power for power in range(5) for digit in nice]
     return [step for step in found if step >= least * (1 - 1e-9)]
 
 
@@ -83,14 +85,19 @@ def scale_of(face: GaugeFace, radius: float) -> Scale:
     label_radius = MAJOR_END * radius - math.hypot(widest / 2, ASCENT * label.size / 2) - 0.02 * radius
     arc = math.radians(SWEEP_DEG) * label_radius
     room = math.hypot(widest, ASCENT * label.size) * 1.05 + 0.06 * radius
-    candidates = [
-        step
-        for step in steps_from(face.graduation * 2)
-        if multiples(step, face.graduation) and step <= face.scale_end
-    ]
-    apart = [step for step in candidates if arc * step / face.scale_end >= room]
-    whole = [step for step in apart if multiples(face.scale_end, step)]
-    major = (whole or apart or [face.scale_end])[0]
+
+    def apart(nice: tuple[float, ...]) -> list[float]:
+        return [
+            step
+            for step in steps_from(face.graduation * 2, nice)
+            if multiples(step, face.graduation) and room * face.scale_end / arc <= step <= face.scale_end
+        ]
+
+    def dividing(steps: list[float]) -> list[float]:
+        """Steps that divide the scale into three parts or more."""
+        return [step for step in steps if multiples(face.scale_end, step) and step * 3 <= face.scale_end]
+
+    major = (dividing(apart(NICE)) or dividing(apart(LESS_NICE)) or apart(NICE) or [face.scale_end])[0]
     turn = math.radians(SWEEP_DEG) * SCALE_RADIUS * radius / face.scale_end
     divisions = [
         face.graduation * count
@@ -185,7 +192,11 @@ def needle(ink: Ink, dial: Dial, target: float) -> None:
     thick = min(1.2, dial.radius / 45)
     body = (beside(-0.2, half), beside(-0.2, -half), beside(NEEDLE_TIP - tip, -half * 0.5),
             beside(NEEDLE_TIP - tip, half * 0.5))  # fmt: skip
-    head = (beside(NEEDLE_TIP - tip, half * 1.1), beside(NEEDLE_TIP, 0), beside(NEEDLE_TIP - tip, -half * 1.1))
+    head = (
+        beside(NEEDLE_TIP - tip, half * 1.1),
+        beside(NEEDLE_TIP, 0),
+        beside(NEEDLE_TIP - tip, -half * 1.1),
+    )
     ink.polygon(body, thickness=thick, fill="white")
     ink.polygon(head, fill="black")
     ink.circle(dial.x, dial.y, HUB * dial.radius, fill="black")
@@ -218,7 +229,9 @@ def dial_face(ink: Ink, face: GaugeFace, *, x: float, y: float, diameter: float)
     needle(ink, dial, face.target)
     drop = y + UNIT_DROP * radius
     width = unit.width(face.unit)
-    ink.rect(x - width / 2 - 1, drop - ASCENT * unit.size - 1, width + 2, ASCENT * unit.size + 2, fill="white")
+    ink.rect(
+        x - width / 2 - 1, drop - ASCENT * unit.size - 1, width + 2, ASCENT * unit.size + 2, fill="white"
+    )
     ink.text(x, drop, face.unit, unit, side="centre")
     numbers(ink, dial, scale)
     ink.line(*dial.at(face.never_exceed, MAJOR_END + 0.02), *dial.at(face.never_exceed, 1.0), 2.2 * rim / 1.6)
@@ -226,28 +239,38 @@ def dial_face(ink: Ink, face: GaugeFace, *, x: float, y: float, diameter: float)
 
 
 def number_face(
-    ink: Ink, face: GaugeFace, *, x: float, y: float, width: float, height: float, labels: tuple[str, str, str]
+    ink: Ink,
+    face: GaugeFace,
+    *,
+    x: float,
+    y: float,
+    width: float,
+    height: float,
+    labels: tuple[str, str, str] | None,
 ) -> None:
     """A digital gauge: target, window and never-exceed in a box, from its upper left corner.
 
-    `labels` are the words for the three numbers. The never-exceed line stands hatched off at the foot.
+    `labels` are the words for the three numbers; without words a sign tells the limit. The
+    never-exceed number stands white on black at the foot.
     """
     check(face)
     pad = 0.05 * width
     room = width - 2 * pad
-    target_label, window_label, never_label = labels
+    target_label, window_label, never_label = labels or ("", "", "")
+    never_text = face.never_exceed_text if labels else f"≤ {face.never_exceed_text}"
     rows = ((face.target_text, target_label, 0.44, True), (face.window_text, window_label, 0.28, False),
-            (face.never_exceed_text, never_label, 0.28, True))  # fmt: skip
+            (never_text, never_label, 0.28, True))  # fmt: skip
     ink.rect(x + 0.8, y + 0.8, width - 1.6, height - 1.6, thickness=1.6)
     top = y
     small = style(8.5 if height > 30 * MM else 7.5)
     for index, (number, word, share, heavy) in enumerate(rows):
         tall = height * share
         text = f"{number} {face.unit}"
-        room_left = room - small.width(word) - 1.5 * MM
+        room_left = room - (small.width(word) + 1.5 * MM if word else 0)
         wish = tall * (0.62 if index == 0 else 0.58)
         sizes = tuple(
-            style(wish * k, Weight.BOLD if heavy else Weight.SEMIBOLD) for k in (1, 0.85, 0.7, 0.6, 0.5, 0.4)
+            style(wish * k, Weight.BOLD if heavy else Weight.SEMIBOLD)
+            for k in (1, 0.92, 0.85, 0.78, 0.7, 0.6, 0.5, 0.4)
         )
         shape, (line, *_) = fit(text, width=room_left, styles=sizes, lines=1)
         middle = top + tall / 2 + shape.size * ASCENT / 2 * 0.94

@@ -1,4 +1,4 @@
-"""The finishing pass over a drawn PDF: version, language, how it opens, and an id that depends on nothing else."""
+"""The finishing pass over a drawn PDF: version, language, how it opens, an id from its own bytes."""
 
 from __future__ import annotations
 
@@ -28,6 +28,8 @@ def finished(raw: bytes, document: Document) -> bytes:
         for page in pdf.pages:
             if "/Trans" in page:
                 del page["/Trans"]
+        if "/ID" in pdf.trailer:
+            del pdf.trailer["/ID"]  # its first half would be kept, and that knows the date of drawing
         buffer = io.BytesIO()
         pdf.save(
             buffer,

@@ -7,7 +7,7 @@ from dataclasses import dataclass, field, replace
 
 from sheets.errors import InputError, Problem
 from sheets.pages.blocks.boxes import Signing
-from sheets.pages.blocks.panel import PanelRun, panel_run
+from sheets.pages.blocks.panel import RUN_GAP, PanelRun, panel_run
 from sheets.pages.blocks.plain import heading_piece, key_line_pieces, paragraph_pieces
 from sheets.pages.blocks.steps import act_pieces, step_piece
 from sheets.pages.blocks.tables import table_pieces
@@ -36,7 +36,7 @@ def kept(pieces: list[Piece]) -> list[Piece]:
     return [*pieces[:-1], replace(pieces[-1], keep_with_next=True)] if pieces else []
 
 
-def block_pieces(block: Block, width: float, signing: Signing) -> list[Piece]:
+def block_pieces(block: Block, width: float, signing: Signing, *, after_act: bool = False) -> list[Piece]:
     """Pieces of any block but a run with a panel and a sheet of tags."""
     match block:
         case Heading():
@@ -47,10 +47,11 @@ def block_pieces(block: Block, width: float, signing: Signing) -> list[Piece]:
             return [warning_piece(block, width)]
         case Steps():
             pieces = [step_piece(step, width, signing) for step in block.steps]
-            return [replace(piece, space_before=3.5 * MM) if index == 0 else piece
+            return [replace(piece, space_before=max(piece.space_before, 2.5 * MM)) if index == 0 else piece
                     for index, piece in enumerate(pieces)]  # fmt: skip
         case Act():
-            return act_pieces(block, width, signing)
+            first, *rows = act_pieces(block, width, signing)
+            return [replace(first, space_before=0.0 if after_act else 3.5 * MM), *rows]
         case Hold():
             return [hold_piece(block, width, signing, space_before=4 * MM)]
         case KeyLines():
@@ -79,7 +80,8 @@ def units_of(blocks: Sequence[Block], width: float, signing: Signing) -> list[Un
                 skip = True
             units.append(panel_run(block, block.panel, width, signing, tail))
             continue
-        pieces = block_pieces(block, width, signing)
+        after_act = index > 0 and isinstance(blocks[index - 1], Act)
+        pieces = block_pieces(block, width, signing, after_act=after_act)
         units.extend(kept(pieces) if isinstance(following, Hold) else pieces)
     return units
 
@@ -147,8 +149,10 @@ class Filler:
         rest: PanelRun | None = run
         while rest is not None:
             lead = self.height_of(before, fresh=not self.begun)
-            gap = 4 * MM if self.begun or before else 0.0
-            whole = self.room_of(len(self.pages)) - self.height_of(before, fresh=True) - (gap if before else 0)
+            gap = RUN_GAP if self.begun or before else 0.0
+            whole = (
+                self.room_of(len(self.pages)) - self.height_of(before, fresh=True) - (gap if before else 0)
+            )
             part, left = rest.take(self.room - lead - gap, whole if self.begun else self.room - lead - gap)
             if part is None:
                 if not self.begun:

@@ -1,7 +1,7 @@
 """Faces, their coverage and widths: which glyph of which font stands for a character.
 
 IBM Plex Sans Condensed is the face. What it lacks (Greek, Cyrillic, Δ, Ω) comes from IBM Plex Sans, narrowed
-to match; a few signs that neither has are drawn as paths. A character that none of them has is refused by name,
+to match; a few signs that neither has are drawn as paths. A character that none has is refused by name,
 because a box or a gap in a name on a lock is worse than no sheet.
 """
 
@@ -14,8 +14,8 @@ from functools import cache, lru_cache
 from pathlib import Path
 from typing import Literal
 
-import fontpkg_ibm_plex_sans
-import fontpkg_ibm_plex_sans_condensed
+import fontpkg_ibm_plex_sans  # type: ignore[import-untyped]  # the package ships no types
+import fontpkg_ibm_plex_sans_condensed  # type: ignore[import-untyped]  # the package ships no types
 from reportlab.pdfbase import pdfmetrics
 from reportlab.pdfbase.ttfonts import TTFont
 

@@ -23,7 +23,6 @@ from sheets.pages.look import (
     MARGIN_BOTTOM,
     MARGIN_LEFT,
     MARGIN_RIGHT,
-    MARGIN_TOP,
     RULE,
     SHORT_TITLES,
     TITLES,
@@ -91,7 +90,9 @@ def banner(ink: Ink, frame: Frame, state: Banner, top: float) -> float:
     pad = 3 * MM if locked else 0.0
     room = (paper.inner - word) / 2 - pad - 4 * MM
     for text, side in ((state.left, "left"), (state.right, "right")):
-        shape, lines = fit_cut(text, width=room, styles=BANNER_SIDES, lines=2) if text else (BANNER_SIDES[0], ())
+        shape, lines = (
+            fit_cut(text, width=room, styles=BANNER_SIDES, lines=2) if text else (BANNER_SIDES[0], ())
+        )
         tall = shape.leading * (len(lines) - 1) + ASCENT * shape.size
         first = top + (BANNER_HEIGHT - tall) / 2 - 0.4
         if side == "left":
@@ -99,17 +100,21 @@ def banner(ink: Ink, frame: Frame, state: Banner, top: float) -> float:
         else:
             ink.lines(paper.right - pad, first, lines, shape, side="right", white=locked)
     ink.mark(
-        Mark(kind="banner", key=state.state.value, x=paper.left, y=top, width=paper.inner, height=BANNER_HEIGHT)
+        Mark(
+            kind="banner", key=state.state.value, x=paper.left, y=top, width=paper.inner, height=BANNER_HEIGHT
+        )
     )
     return top + BANNER_HEIGHT
 
 
-def draft_block(ink: Ink, *, x: float, y: float, side: float, words: tuple[str, ...], small: Style) -> None:
+def draft_block(
+    ink: Ink, *, x: float, y: float, side: float, words: tuple[str, ...], small: Style, inset: float = 1 * MM
+) -> None:
     """A filled square that says DRAFT, in the room of the code."""
     word, *rest = words
     ink.rect(x, y, side, side, fill="black")
-    sizes = tuple(style(size, Weight.BOLD) for size in (24, 22, 20, 18, 16, 14, 12, 10, 8))
-    shape, _ = fit(word, width=side - 2 * MM, styles=sizes, lines=1)
+    sizes = tuple(style(size, Weight.BOLD) for size in (24, 22, 20, 18, 16, 15, 14, 13, 12, 10, 8))
+    shape, _ = fit(word, width=side - 2 * inset, styles=sizes, lines=1)
     baseline = y + side * 0.5
     ink.text(x + side / 2, baseline, word, shape, side="centre", white=True)
     top = baseline + 0.11 * side
@@ -125,7 +130,12 @@ def corner(ink: Ink, frame: Frame, top: float) -> float:
     if frame.code is None:
         words = frame.document.words
         draft_block(
-            ink, x=right - CODE_SIDE, y=top, side=CODE_SIDE, words=(words.draft, words.not_issued), small=LABEL
+            ink,
+            x=right - CODE_SIDE,
+            y=top,
+            side=CODE_SIDE,
+            words=(words.draft, words.not_issued),
+            small=LABEL,
         )
     else:
         side = CODE_MODULE * len(frame.code)
@@ -142,7 +152,9 @@ def head(ink: Ink, frame: Frame, section: Section, top: float, *, first: bool) -
     foot = corner(ink, frame, top)
     titles = TITLES if first else SHORT_TITLES
     subject_room = room * 0.42
-    subject_shape, subject = fit_cut(section.subject, width=subject_room, styles=titles, lines=3 if first else 1)
+    subject_shape, subject = fit_cut(
+        section.subject, width=subject_room, styles=titles, lines=3 if first else 1
+    )
     subject_width = max((subject_shape.width(line) for line in subject), default=0.0)
     title_room = room - subject_width - (6 * MM if subject else 0)
     words = frame.document.words
@@ -172,10 +184,12 @@ def draft_word(ink: Ink, x: float, baseline: float, word: str, shape: Style) -> 
     """DRAFT in white on a black ground, from x; returns its right edge."""
     width = shape.width(word)
     pad = 1.4 * MM
-    above, below = ASCENT * shape.size + 1.1 * MM, 1.1 * MM
+    above, below = ASCENT * shape.size + 0.8 * MM, 0.9 * MM
     ink.rect(x, baseline - above, width + 2 * pad, above + below, fill="black")
     ink.text(x + pad, baseline, word, shape, white=True)
-    ink.mark(Mark(kind="draft", key="word", x=x, y=baseline - above, width=width + 2 * pad, height=above + below))
+    ink.mark(
+        Mark(kind="draft", key="word", x=x, y=baseline - above, width=width + 2 * pad, height=above + below)
+    )
     return x + width + 2 * pad
 
 
@@ -197,7 +211,7 @@ def footer(ink: Ink, frame: Frame, *, number: int, total: int) -> None:
     paper, words = frame.paper, frame.document.words
     top = paper.height - MARGIN_BOTTOM - FOOTER_HEIGHT
     ink.line(paper.left, top, paper.right, top, HAIRLINE)
-    first = top + 1.6 * MM + ASCENT * FOOTER_STRONG.size
+    first = top + 1.5 * MM + ASCENT * FOOTER_STRONG.size
     shape, parts = fit_cut(identity(frame), width=50 * MM, styles=(FOOTER_STRONG,), lines=1)
     x = paper.left
     x += max((ink.text(x, first, part, shape) for part in parts), default=0.0) + 3 * MM
@@ -207,11 +221,14 @@ def footer(ink: Ink, frame: Frame, *, number: int, total: int) -> None:
     page_width = ink.text(paper.right, first, page, FOOTER_STRONG, side="right")
     x = max(x + 2 * MM, paper.left + 40 * MM)
     shape, parts = fit_cut(
-        frame.document.title, width=paper.right - page_width - 4 * MM - x, styles=(FOOTER, FOOTER_SMALL), lines=1
+        frame.document.title,
+        width=paper.right - page_width - 4 * MM - x,
+        styles=(FOOTER, FOOTER_SMALL),
+        lines=1,
     )
     for part in parts:
         ink.text(x, first, part, shape)
-    second = top + FOOTER_HEIGHT - 4.6 * MM
+    second = top + FOOTER_HEIGHT - 4.5 * MM
     data = data_line(frame)
     data_width = ink.text(paper.right, second, data, FOOTER_SMALL, side="right")
     parts = wrap(frame.document.footer, FOOTER_SMALL, paper.inner - data_width - 5 * MM)
@@ -219,13 +236,10 @@ def footer(ink: Ink, frame: Frame, *, number: int, total: int) -> None:
         raise InputError(
             Problem(
                 where="line at the foot of each page",
-                what=f"it takes {len(parts)} lines, there is room for {FOOTER_LINES}: {frame.document.footer}",
+                what=f"{len(parts)} lines where {FOOTER_LINES} have room: {frame.document.footer}",
                 fix="shorten what the site file says on how to check that a sheet is current",
             )
         )
     for index, part in enumerate(parts):
         ink.text(paper.left, second + index * FOOTER_SMALL.leading, part, FOOTER_SMALL)
-    ink.mark(
-        Mark(kind="footer", key=page, x=paper.left, y=top, width=paper.inner, height=FOOTER_HEIGHT)
-    )
-
+    ink.mark(Mark(kind="footer", key=page, x=paper.left, y=top, width=paper.inner, height=FOOTER_HEIGHT))

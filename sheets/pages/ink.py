@@ -75,7 +75,9 @@ class Ink:
         """Wrapped text from a top edge down; returns the bottom edge."""
         return self.lines(x, top, wrap(text, shape, width), shape)
 
-    def line(self, x1: float, y1: float, x2: float, y2: float, thickness: float, *, dashed: bool = False) -> None:
+    def line(
+        self, x1: float, y1: float, x2: float, y2: float, thickness: float, *, dashed: bool = False
+    ) -> None:
         self.items.append(Line(x1=x1, y1=y1, x2=x2, y2=y2, thickness=thickness, dashed=dashed))
 
     def rect(
@@ -96,7 +98,9 @@ class Ink:
             Polygon(points=tuple(points), thickness=thickness, fill=fill, closed=closed, white=white)
         )
 
-    def circle(self, x: float, y: float, radius: float, *, thickness: float = 0.0, fill: Fill = "none") -> None:
+    def circle(
+        self, x: float, y: float, radius: float, *, thickness: float = 0.0, fill: Fill = "none"
+    ) -> None:
         self.items.append(Circle(x=x, y=y, radius=radius, thickness=thickness, fill=fill))
 
     def code(self, x: float, y: float, module: float, rows: tuple[tuple[bool, ...], ...]) -> None:

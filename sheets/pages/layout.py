@@ -104,9 +104,9 @@ def place(
 ) -> tuple[PlacedPage, ...]:
     """Place a document on pages.
 
-    `digest` is the content digest, 16 characters of Crockford's base32. Pages are numbered over the whole pack,
-    also where `layout.kinds` asks for some of its documents only. Without an issue the pages are those of a
-    draft: no code, nothing to sign.
+    `digest` is the content digest, 16 characters of Crockford's base32. Pages are numbered over the whole
+    pack, also where `layout.kinds` asks for some of its documents only. Without an issue the pages are those
+    of a draft: no code, nothing to sign.
 
     Raises InputError when something doesn't fit on a page or tag, when a character has no glyph, when a face
     doesn't hold its own numbers, and when the address in the code is too long.

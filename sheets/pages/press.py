@@ -16,7 +16,9 @@ def pdf_bytes(pages: Sequence[PlacedPage], document: Document) -> bytes:
     return finished(raw_pdf(pages, document), document)
 
 
-def print_pack(document: Document, *, layout: Layout, digest: str, issue: IssueContext | None = None) -> bytes:
+def print_pack(
+    document: Document, *, layout: Layout, digest: str, issue: IssueContext | None = None
+) -> bytes:
     """Place and draw a pack, or the documents of it that the layout names.
 
     `digest` is the content digest, 16 characters of Crockford's base32. Raises InputError as `place` does.

@@ -22,6 +22,7 @@ HEIGHT = 53.98 * MM
 CODE_MODULE = 0.5 * MM
 CODE_SIDE = 37 * CODE_MODULE
 INSET = 3 * MM
+CODE_TOP = 2.5 * MM
 HOLE_RADIUS = 2.5 * MM
 DIAL = 26.5 * MM
 TEXT_LEFT = 33.5 * MM
@@ -31,13 +32,13 @@ STRIP = 13 * MM
 
 ADJUSTER = tuple(style(size, Weight.BOLD) for size in (24, 21, 18, 15, 12, 10))
 KIND = tuple(style(size, Weight.SEMIBOLD, size * 1.1) for size in (11, 10, 9, 8))
-VALUE = tuple(style(size, Weight.BOLD) for size in (26, 23, 20, 17, 14, 11))
+VALUE = tuple(style(size, Weight.BOLD) for size in (24, 22, 20, 17, 14, 11))
 WINDOW = tuple(style(size, Weight.SEMIBOLD) for size in (12, 11, 10, 9, 8))
-BASIS = tuple(style(size, leading=size * 1.16) for size in (9, 8.5, 8, 7.5))
+BASIS = tuple(style(size, leading=size * 1.16) for size in (8.5, 8, 7.5))
 LEFT = tuple(style(size, Weight.SEMIBOLD) for size in (9.5, 9, 8.5, 8, 7.5))
 FOOT = tuple(style(size) for size in (8.5, 8, 7.5))
-REVISION = style(8.5, Weight.BOLD)
-TITLE = tuple(style(size, Weight.BOLD) for size in (15, 13, 11, 9.5))
+REVISION = tuple(style(size, Weight.BOLD) for size in (9.5, 9, 8.5, 8))
+TITLE = tuple(style(size, Weight.BOLD) for size in (13, 11, 9.5))
 
 
 def refuse(tag: SettingTag, what: str) -> InputError:
@@ -80,19 +81,19 @@ def body(ink: Ink, tag: SettingTag, as_left: str) -> None:
     """Value, window, basis in the right half; as-left and next check across below."""
     right = WIDTH - INSET
     room = right - TEXT_LEFT
-    value_baseline = 31.0 * MM
+    value_baseline = 29.9 * MM
     clear = WIDTH - INSET - CODE_SIDE - 4 * CODE_MODULE - TEXT_LEFT
     shape, lines = fit(tag.value, width=room, styles=VALUE, lines=1)
     if len(lines) > 1:
         raise refuse(tag, f"“{tag.value}”")
-    over = value_baseline - ASCENT * shape.size < INSET + CODE_SIDE + 4 * CODE_MODULE
+    over = value_baseline - ASCENT * shape.size < CODE_TOP + CODE_SIDE + 4 * CODE_MODULE
     if over and shape.width(tag.value) > clear:
-        value_baseline = INSET + CODE_SIDE + 4 * CODE_MODULE + ASCENT * shape.size
+        value_baseline = CODE_TOP + CODE_SIDE + 4 * CODE_MODULE + ASCENT * shape.size
     ink.text(TEXT_LEFT, value_baseline, lines[0], shape)
-    y = value_baseline + 4.6 * MM
+    y = value_baseline + 5.2 * MM
     second = f"   {tag.second_unit}" if tag.second_unit else ""
     one_line(ink, tag, tag.window + second, x=TEXT_LEFT, y=y, width=room, styles=WINDOW)
-    top, most = y + 1.4 * MM, 46.2 * MM - y - 1.4 * MM
+    top, most = y + 1.5 * MM, 46.5 * MM - y - 1.5 * MM
     for shape in BASIS:
         wrapped = [line for text in tag.basis for line in wrap(text, shape, room)]
         if len(wrapped) * shape.leading <= most + 0.1:
@@ -100,7 +101,7 @@ def body(ink: Ink, tag: SettingTag, as_left: str) -> None:
             break
     else:
         raise refuse(tag, "the basis of the setting")
-    line = 48.6 * MM
+    line = 48.75 * MM
     whole = f"{as_left}   ·   {tag.next_check}" if as_left and tag.next_check else as_left or tag.next_check
     one_line(ink, tag, whole, x=INSET, y=line, width=right - INSET, styles=LEFT)
 
@@ -113,30 +114,37 @@ def tag_piece(tag: SettingTag, frame: Frame) -> Piece:
     ink.circle(INSET + HOLE_RADIUS, INSET + HOLE_RADIUS + 0.5 * MM, HOLE_RADIUS, thickness=0.7)
     if frame.code is None:
         draft_block(
-            ink, x=right - CODE_SIDE, y=INSET, side=CODE_SIDE, words=(words.draft, words.not_issued), small=FOOT[0]
+            ink,
+            x=right - CODE_SIDE,
+            y=CODE_TOP,
+            side=CODE_SIDE,
+            words=(words.draft, words.not_issued),
+            small=FOOT[0],
+            inset=2.2 * MM,
         )
     else:
         side = CODE_MODULE * len(frame.code)
-        ink.code(right - side, INSET, CODE_MODULE, frame.code)
-        ink.mark(Mark(kind="code", key=tag.adjuster, x=right - side, y=INSET, width=side, height=side))
+        ink.code(right - side, CODE_TOP, CODE_MODULE, frame.code)
+        ink.mark(Mark(kind="code", key=tag.adjuster, x=right - side, y=CODE_TOP, width=side, height=side))
     name_and_kind(ink, tag, width=right - CODE_SIDE - 4 * CODE_MODULE)
     centre = INSET + DIAL / 2
     if tag.face.digital:
-        number_face(
-            ink, tag.face, x=INSET, y=21 * MM, width=DIAL, height=23 * MM, labels=("", "", "≤")
-        )
+        number_face(ink, tag.face, x=INSET, y=21 * MM, width=DIAL, height=23 * MM, labels=None)
     else:
         dial_face(ink, tag.face, x=centre, y=18.2 * MM + DIAL / 2, diameter=DIAL)
     as_left = tag.as_left
     if frame.issue is not None:
         as_left = dict(frame.issue.as_left).get(tag.adjuster, tag.as_left)
     body(ink, tag, as_left)
-    foot = HEIGHT - 2.3 * MM
+    foot = HEIGHT - 1.9 * MM
+    one_line(ink, tag, tag.footer, x=INSET, y=foot, width=right - INSET, styles=FOOT)
+    known = 20.9 * MM
+    room = right - CODE_SIDE - 4 * CODE_MODULE - TEXT_LEFT
+    draft_width = REVISION[-1].width(words.draft) + 3 * MM + 2 * MM if frame.issue is None else 0.0
+    shape, lines = fit_cut(identity(frame), width=room - draft_width, styles=REVISION, lines=1)
+    end = TEXT_LEFT + max((ink.text(TEXT_LEFT, known, text, shape) for text in lines), default=0.0)
     if frame.issue is None:
-        start = draft_word(ink, INSET, foot, words.draft, REVISION) + 1.5 * MM
-    else:
-        start = INSET + ink.text(INSET, foot, f"{words.revision} {frame.issue.revision}", REVISION) + 2.5 * MM
-    one_line(ink, tag, tag.footer, x=start, y=foot, width=right - start, styles=FOOT)
+        draft_word(ink, end + 2 * MM, known, words.draft, REVISION[-1])
     ink.mark(Mark(kind="tag", key=tag.adjuster, x=0, y=0, width=WIDTH, height=HEIGHT))
     return ink.piece(HEIGHT, name=tag.adjuster)
 
@@ -177,15 +185,17 @@ def cut_lines(ink: Ink, grid: Grid, count: int) -> None:
     for row in range(rows + 1):
         y = grid.top + row * HEIGHT
         short = row == rows and count % grid.columns and rows > 1
-        ink.line(grid.left, y, grid.left + WIDTH if short else right, y, HAIRLINE, dashed=True)
+        end = grid.left + WIDTH if short else right
+        ink.line(grid.left, y, end, y, HAIRLINE, dashed=True)
         ink.line(grid.left - CUT_MARK, y, grid.left, y, 0.8)
-        ink.line(right, y, right + CUT_MARK, y, 0.8)
+        ink.line(end, y, end + CUT_MARK, y, 0.8)
     for column in range(columns + 1):
         x = grid.left + column * WIDTH
         short = column == grid.columns and count % grid.columns and rows > 1
         ink.line(x, grid.top, x, foot - HEIGHT if short else foot, HAIRLINE, dashed=True)
         ink.line(x, grid.top - CUT_MARK, x, grid.top, 0.8)
-        ink.line(x, foot, x, foot + CUT_MARK, 0.8)
+        end = foot - HEIGHT if short else foot
+        ink.line(x, end, x, end + CUT_MARK, 0.8)
 
 
 def strip(ink: Ink, frame: Frame, section: Section, *, number: int, total: int) -> None:
@@ -197,19 +207,19 @@ def strip(ink: Ink, frame: Frame, section: Section, *, number: int, total: int) 
     page = words.page.format(number=number, total=total)
     y = foot
     if frame.issue is None:
-        shape = TITLE[1]
+        shape = TITLE[0]
         width = shape.width(words.draft) + 3 * MM
-        ink.rect(MARGIN_LEAST, y - width, 5.4 * MM, width, fill="black")
-        ink.upward(MARGIN_LEAST + 4.35 * MM, y - 1.5 * MM, words.draft, shape, white=True)
-        ink.mark(Mark(kind="draft", key="strip", x=MARGIN_LEAST, y=y - width, width=5.4 * MM, height=width))
+        ink.rect(MARGIN_LEAST, y - width, 4.7 * MM, width, fill="black")
+        ink.upward(MARGIN_LEAST + 4.0 * MM, y - 1.5 * MM, words.draft, shape, white=True)
+        ink.mark(Mark(kind="draft", key="strip", x=MARGIN_LEAST, y=y - width, width=4.7 * MM, height=width))
         y -= width + 4 * MM
-    page_width = REVISION.width(page)
+    page_width = REVISION[0].width(page)
     title = f"{section.title}   {section.subject}"
     shape, lines = fit_cut(title, width=y - MARGIN_LEAST - page_width - 5 * MM, styles=TITLE, lines=1)
     for text in lines:
         ink.upward(first, y, text, shape)
-    ink.upward(first, MARGIN_LEAST + page_width, page, REVISION)
-    second = first + 4.1 * MM
+    ink.upward(first, MARGIN_LEAST + page_width, page, REVISION[0])
+    second = first + 4.3 * MM
     names = f"{identity(frame)}  ·  {frame.document.title}"
     data = data_line(frame)
     data_width = FOOTER_SMALL.width(data)
@@ -221,7 +231,7 @@ def strip(ink: Ink, frame: Frame, section: Section, *, number: int, total: int) 
     third = " ".join(text for text in (frame.document.footer, *section.lines) if text)
     shape, lines = fit_cut(third, width=length, styles=(FOOTER_SMALL,), lines=1)
     for text in lines:
-        ink.upward(second + 3.6 * MM, foot, text, shape)
+        ink.upward(second + 3.4 * MM, foot, text, shape)
     ink.mark(Mark(kind="footer", key=page, x=MARGIN_LEAST, y=MARGIN_LEAST, width=STRIP, height=length))
 
 
@@ -231,9 +241,7 @@ def tag_pages(tags: Sequence[SettingTag], frame: Frame) -> list[tuple[SettingTag
     return [tuple(tags[start : start + count]) for start in range(0, len(tags), count)]
 
 
-def tag_page(
-    tags: tuple[SettingTag, ...], frame: Frame, section: Section, *, number: int, total: int
-) -> Ink:
+def tag_page(tags: tuple[SettingTag, ...], frame: Frame, section: Section, *, number: int, total: int) -> Ink:
     """One page of tags."""
     ink = Ink()
     grid = grid_of(frame)

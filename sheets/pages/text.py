@@ -28,6 +28,9 @@ def style(size: float, weight: Weight = Weight.REGULAR, leading: float | None = 
     return Style(size=size, weight=weight, leading=round(size * 1.24, 2) if leading is None else leading)
 
 
+SLACK = 1e-6
+"""A text in a room of its own width must not break by a rounding."""
+
 NUMBER = re.compile(r"^[(±≤≥<>−-]*\d[\d.,]*$")
 UNIT = re.compile(
     r"^(bar|psi|MPa|kPa|L/min|gal/min|cm3|cm³|°C|°F|mm|cm|m|in|s|min|h|kW|W|hp|V|A|Hz|kg|lb|kJ|J|N·m|N|rpm|r/min|m/s|%)"
@@ -50,7 +53,7 @@ def chopped(word: str, shape: Style, width: float) -> Iterator[str]:
     """A word cut where it must be, since it is wider than the room."""
     part = ""
     for character in word:
-        if part and shape.width(part + character) > width:
+        if part and shape.width(part + character) > width + SLACK:
             yield part
             part = ""
         part += character
@@ -66,7 +69,7 @@ def wrap(text: str, shape: Style, width: float) -> tuple[str, ...]:
     line = ""
     for word in words(text):
         longer = f"{line} {word}" if line else word
-        if shape.width(longer) <= width:
+        if shape.width(longer) <= width + SLACK:
             line = longer
             continue
         if line:
@@ -79,7 +82,7 @@ def wrap(text: str, shape: Style, width: float) -> tuple[str, ...]:
 
 def shortened(text: str, shape: Style, width: float) -> str:
     """A line that ends in an ellipsis where it doesn't fit."""
-    if shape.width(text) <= width:
+    if shape.width(text) <= width + SLACK:
         return text
     kept = settle(text)
     while kept and shape.width(kept.rstrip() + "…") > width:
@@ -88,16 +91,18 @@ def shortened(text: str, shape: Style, width: float) -> str:
 
 
 def fit(text: str, *, width: float, styles: tuple[Style, ...], lines: int) -> tuple[Style, tuple[str, ...]]:
-    """The largest style in which the text takes no more than the lines; the smallest with all its lines else."""
+    """The largest style in which the text takes no more than the lines; else the smallest, all its lines."""
     for shape in styles:
         broken = wrap(text, shape, width)
-        whole = all(shape.width(word) <= width for word in words(text))
+        whole = all(shape.width(word) <= width + SLACK for word in words(text))
         if len(broken) <= lines and whole:
             return shape, broken
     return styles[-1], wrap(text, styles[-1], width)
 
 
-def fit_cut(text: str, *, width: float, styles: tuple[Style, ...], lines: int) -> tuple[Style, tuple[str, ...]]:
+def fit_cut(
+    text: str, *, width: float, styles: tuple[Style, ...], lines: int
+) -> tuple[Style, tuple[str, ...]]:
     """As `fit`, but never more lines: the last one ends in an ellipsis.
 
     Only where the whole text stands elsewhere in the pack.

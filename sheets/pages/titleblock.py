@@ -17,7 +17,7 @@ STRONG = tuple(style(size, Weight.SEMIBOLD) for size in (12, 11, 10, 9))
 
 
 def title_block(frame: Frame, width: float) -> Piece:
-    """Signers left, revision, state and date right, changes below. A draft says in it that it is not signed."""
+    """Signers left, revision, state and date right, changes below. A draft says that it is not signed."""
     ink = Ink()
     words, issue = frame.document.words, frame.issue
     signers = issue.signers if issue else ()
@@ -52,9 +52,7 @@ def title_block(frame: Frame, width: float) -> Piece:
         ink.lines(PAD, grid + PAD, (words.changes,), LABEL)
         bottom = grid + PAD
         for change in issue.changes:
-            bottom = ink.lines(
-                LABEL_COLUMN, bottom, wrap(change, BODY, width - LABEL_COLUMN - PAD), BODY
-            )
+            bottom = ink.lines(LABEL_COLUMN, bottom, wrap(change, BODY, width - LABEL_COLUMN - PAD), BODY)
         bottom += PAD * 0.6
     ink.rect(FRAME / 2, FRAME / 2, width - FRAME, bottom - FRAME, thickness=FRAME)
     ink.mark(Mark(kind="title block", key="", x=0, y=0, width=width, height=bottom))

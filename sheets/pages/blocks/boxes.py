@@ -11,8 +11,8 @@ from sheets.pages.placed import MM, Mark
 from sheets.pages.text import wrap
 
 TICK = 7.5 * MM
-WIDTHS = {"tick": TICK, "short": 19 * MM, "medium": 28 * MM, "wide": 42 * MM}
-HEIGHT = 10.5 * MM
+WIDTHS = {"tick": TICK, "short": 17.5 * MM, "medium": 26 * MM, "wide": 42 * MM}
+HEIGHT = 10 * MM
 LABEL_MOST = 44 * MM
 GAP = 2 * MM
 PAD = 1.3 * MM
@@ -26,6 +26,12 @@ class Signing:
     not_signed: str
 
 
+def outline(ink: Ink, x: float, width: float, height: float, *, strong: bool) -> None:
+    """The frame of a box, within its own width."""
+    thick = HEAVY if strong else FRAME
+    ink.rect(x + thick / 2, thick / 2, width - thick, height - thick, thickness=thick)
+
+
 def tick(box: Box) -> Piece:
     """A square to tick, its label to the left."""
     ink = Ink()
@@ -34,12 +40,12 @@ def tick(box: Box) -> Piece:
     x = label + PAD if lines else 0.0
     top = (TICK - len(lines) * LABEL.leading) / 2
     ink.lines(x - PAD, top, lines, LABEL, side="right")
-    ink.rect(x, 0, TICK, TICK, thickness=HEAVY if box.strong else FRAME)
+    outline(ink, x, TICK, TICK, strong=box.strong)
     ink.mark(Mark(kind="box", key=box.label, x=x, y=0, width=TICK, height=TICK))
     return ink.piece(max(TICK, len(lines) * LABEL.leading))
 
 
-def unsigned(box: Box, width: float, signing: Signing) -> Piece:
+def unsigned(width: float, signing: Signing) -> Piece:
     """What a draft says where an issued sheet has a box for a name or a sign."""
     ink = Ink()
     lines = wrap(signing.not_signed, LABEL, width)
@@ -47,7 +53,9 @@ def unsigned(box: Box, width: float, signing: Signing) -> Piece:
     return ink.piece(max(HEIGHT, bottom))
 
 
-def boxed(box: Box, signing: Signing, *, width: float | None = None, height: float = HEIGHT) -> tuple[float, Piece]:
+def boxed(
+    box: Box, signing: Signing, *, width: float | None = None, height: float = HEIGHT
+) -> tuple[float, Piece]:
     """A box with its width: its label in the upper left corner, its unit in the lower right."""
     label_lines = wrap(box.label, LABEL, (width or LABEL_MOST) - 2 * PAD)
     label = max((LABEL.width(line) for line in label_lines), default=0.0)
@@ -55,13 +63,13 @@ def boxed(box: Box, signing: Signing, *, width: float | None = None, height: flo
         limit = min(LABEL_STRONG.width(box.never_exceed), LABEL_MOST)
         width = max(WIDTHS[box.size], label + 2 * PAD, limit)
     if box.signed and signing.draft:
-        return width, unsigned(box, width, signing)
+        return width, unsigned(width, signing)
     ink = Ink()
     height = max(height, len(label_lines) * LABEL.leading + 5.5 * MM)
     ink.lines(PAD, PAD * 0.8, label_lines, LABEL)
     if box.unit:
         ink.text(width - PAD, height - PAD - 0.8, box.unit, UNIT, side="right")
-    ink.rect(0, 0, width, height, thickness=HEAVY if box.strong else FRAME)
+    outline(ink, 0, width, height, strong=box.strong)
     ink.mark(Mark(kind="sign" if box.signed else "box", key=box.label, x=0, y=0, width=width, height=height))
     bottom = height
     if box.never_exceed:
@@ -98,5 +106,3 @@ def row_of_boxes(boxes: tuple[Box, ...], signing: Signing, most: float) -> tuple
             x += width + GAP
         y += max(piece.height for _, piece in row)
     return whole, ink.piece(y)
-
-

@@ -20,6 +20,7 @@ DIAL = 57 * MM
 NUMBER_BOX_HEIGHT = 34 * MM
 BOX_HEIGHT = 13.5 * MM
 STRONG_HEIGHT = 17 * MM
+RUN_GAP = 3 * MM
 FEWEST_ROWS = 2
 """A run that can't stand on one page begins on a used page only with so many steps."""
 
@@ -39,7 +40,7 @@ def three_numbers(ink: Ink, panel: SettingPanel, top: float) -> float:
     for index, (text, label, styles) in enumerate(rows):
         room = PANEL_WIDTH - LABEL.width(label) - 5 * MM
         shape, lines = fit(text, width=room, styles=styles, lines=1)
-        tall = max(ASCENT * shape.size * len(lines) + (3.6 if index else 2) * MM, 7 * MM if index else 0)
+        tall = max(ASCENT * shape.size * len(lines) + (3.6 if index else 4) * MM, 7 * MM if index else 0)
         baseline = top + tall / 2 + ASCENT * shape.size / 2 * 0.94
         black = index == len(rows) - 1
         if black:
@@ -97,11 +98,15 @@ def panel_piece(panel: SettingPanel, signing: Signing, *, boxes: bool) -> Piece:
     if not face.digital:
         y = three_numbers(ink, panel, y)
     if face.second_unit_text:
-        y = ink.paragraph(1.5 * MM, y + 1.2 * MM, PANEL_WIDTH - 3 * MM, face.second_unit_text, STEP_LINE)
+        lines = wrap(face.second_unit_text, STEP_LINE, PANEL_WIDTH - 3 * MM)
+        if face.digital:
+            y = ink.lines(PANEL_WIDTH / 2, y, lines, STEP_LINE, side="centre")
+        else:
+            y = ink.lines(1.5 * MM, y + 1.2 * MM, lines, STEP_LINE)
     if boxes and panel.boxes:
         y = box_grid(ink, panel.boxes, signing, y + 2.5 * MM)
-    for note in panel.notes:
-        y = ink.paragraph(1.5 * MM, y + 1.2 * MM, PANEL_WIDTH - 3 * MM, note, STEP_LINE)
+    for index, note in enumerate(panel.notes):
+        y = ink.paragraph(1.5 * MM, y + (1.2 if index else 2) * MM, PANEL_WIDTH - 3 * MM, note, STEP_LINE)
     ink.mark(Mark(kind="panel", key=face.gauge, x=0, y=0, width=PANEL_WIDTH, height=y))
     return ink.piece(y, name=face.caption)
 
@@ -136,7 +141,7 @@ class PanelRun:
         for part in self.after if count == len(self.steps) else ():
             y = ink.add(part, 0, y + 4 * MM)
         name = self.steps[0].name if self.steps else panel.name
-        return ink.piece(y, space_before=4 * MM, name=name)
+        return ink.piece(y, space_before=RUN_GAP, name=name)
 
     def take(self, room: float, whole_page: float) -> tuple[Piece | None, PanelRun | None]:
         """What goes into a room, and what is left. None and the run itself: it wants the next page."""
@@ -153,7 +158,9 @@ class PanelRun:
         return None, self
 
 
-def panel_run(block: Steps, panel: SettingPanel, width: float, signing: Signing, tail: tuple[Piece, ...]) -> PanelRun:
+def panel_run(
+    block: Steps, panel: SettingPanel, width: float, signing: Signing, tail: tuple[Piece, ...]
+) -> PanelRun:
     """Prepare a run. `tail` are holds that stand directly after the block."""
     column = width - PANEL_WIDTH - PANEL_GAP
     last = len(block.steps) - 1
@@ -171,5 +178,3 @@ def panel_run(block: Steps, panel: SettingPanel, width: float, signing: Signing,
         panel_again=panel_piece(panel, signing, boxes=False),
         width=width,
     )
-
-

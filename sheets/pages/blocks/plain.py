@@ -27,7 +27,7 @@ def heading_piece(heading: Heading, width: float) -> Piece:
             bottom = ink.paragraph(0, bottom, width, heading.light, BODY)
     ink.mark(Mark(kind="heading", key=heading.text, x=0, y=0, width=width, height=bottom))
     return ink.piece(
-        bottom + 0.8 * MM,
+        bottom + 0.3 * MM,
         space_before=(6 if heading.level == 1 else 4.5) * MM,
         keep_with_next=True,
         name=heading.text,
@@ -47,7 +47,7 @@ def paragraph_pieces(paragraph: Paragraph, width: float) -> list[Piece]:
         pieces.append(
             ink.piece(
                 shape.leading,
-                space_before=0.0 if index else 2.2 * MM,
+                space_before=0.0 if index else 1.9 * MM,
                 keep_with_next=not last and (index == 0 or index == len(lines) - 2),
                 name=paragraph.text,
             )

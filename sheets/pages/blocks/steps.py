@@ -14,7 +14,7 @@ from sheets.pages.placed import MM, Mark
 from sheets.pages.text import fit, style
 
 NUMBER_COLUMN = 12 * MM
-PAD = 2.1 * MM
+PAD = 1.65 * MM
 BOX_GAP = 3 * MM
 ACT_NAMES = (ACT_NAME, style(12, ACT_NAME.weight), style(10.5, ACT_NAME.weight))
 
@@ -27,7 +27,7 @@ def order_and_boxes(ink: Ink, step: Step, signing: Signing, *, x: float, top: fl
     for line in step.lines:
         bottom = ink.paragraph(x, bottom, room, line, STEP_LINE)
     if step.boxes:
-        bottom = max(bottom, ink.add(boxes, x + width - boxes_width, top - 0.2 * MM))
+        bottom = max(bottom, ink.add(boxes, x + width - boxes_width, top - 0.8 * MM))
     return bottom
 
 
@@ -72,7 +72,9 @@ def holds_of(step: Step, width: float, signing: Signing) -> list[Piece]:
     return [hold_piece(step.hold, width, signing, key=step.number or step.order, space_before=2 * MM)]
 
 
-def step_piece(step: Step, width: float, signing: Signing, *, warnings: bool = True, hold: bool = True) -> Piece:
+def step_piece(
+    step: Step, width: float, signing: Signing, *, warnings: bool = True, hold: bool = True
+) -> Piece:
     """A step with its warnings before it and its hold after it, never cut."""
     before = warnings_of(step, width) if warnings else []
     after = holds_of(step, width, signing) if hold else []
@@ -84,12 +86,12 @@ def step_piece(step: Step, width: float, signing: Signing, *, warnings: bool = T
 
 def act_pieces(act: Act, width: float, signing: Signing) -> list[Piece]:
     """The rows of one act; its number and name stand at the first one, and again where a page begins."""
-    name_column = 38 * MM
+    name_column = 32 * MM
     rows: list[Piece] = []
     for index, step in enumerate(act.rows):
         named = act_row(act, step, width, signing, name_column=name_column, named=True)
         plain = act_row(act, step, width, signing, name_column=name_column, named=False)
-        rows.append(replace(named, space_before=0.0) if index == 0 else replace(plain, fresh=named))
+        rows.append(named if index == 0 else replace(plain, fresh=named))
     if not rows:
         rows.append(act_row(act, None, width, signing, name_column=name_column, named=True))
     return rows
@@ -118,7 +120,12 @@ def act_row(
         low = order_and_boxes(ink, step, signing, x=name_column, top=top, width=room)
         ink.mark(
             Mark(
-                kind="step", key=step.number or step.order, x=name_column, y=top - 2, width=room, height=low - top + 2
+                kind="step",
+                key=step.number or step.order,
+                x=name_column,
+                y=top - 2,
+                width=room,
+                height=low - top + 2,
             )
         )
         bottom = max(bottom, low)

@@ -27,11 +27,14 @@ def edges_of(table: Table, width: float) -> list[float]:
     return edges
 
 
-def cells(ink: Ink, texts: Sequence[str], edges: Sequence[float], top: float, shape: Style) -> float:
-    """Texts in their columns; returns the bottom edge of the longest. The outer columns stand flush."""
+def cells(
+    ink: Ink, texts: Sequence[str], edges: Sequence[float], top: float, shape: Style, *, inset: bool
+) -> float:
+    """Texts in their columns; returns the bottom edge of the longest. Without uprights the first is flush."""
     bottom = top
     for text, left, right in zip(texts, edges, edges[1:], strict=False):
-        bottom = max(bottom, ink.paragraph(left + PAD_X, top, right - left - 2 * PAD_X, text, shape))
+        pad = PAD_X if inset or left > 0 else 0.0
+        bottom = max(bottom, ink.paragraph(left + pad, top, right - left - pad - PAD_X, text, shape))
     return bottom
 
 
@@ -51,7 +54,10 @@ def head_piece(table: Table, edges: Sequence[float], *, title: bool) -> Piece:
                 y = ink.paragraph(0, y, width, table.light, BODY)
         y += 1 * MM
     if any(table.head):
-        y = cells(ink, table.head, edges, y + PAD_Y * 0.5, CELL_HEAD) + PAD_Y * 0.7
+        y = (
+            cells(ink, table.head, edges, y + PAD_Y * 0.5, CELL_HEAD, inset=table.blank_rows > 0)
+            + PAD_Y * 0.7
+        )
     ink.line(0, y, width, y, RULE)
     ink.mark(Mark(kind="table head", key=table.title, x=0, y=0, width=width, height=y))
     return ink.piece(y, name=table.title)
@@ -62,9 +68,11 @@ def row_piece(
 ) -> Piece:
     """One row, with a line below it; with uprights where the table is to be written in."""
     ink = Ink()
-    bottom = cells(ink, texts, edges, PAD_Y, CELL) + PAD_Y * 0.6
+    uprights = table.blank_rows > 0
+    bottom = cells(Ink(), texts, edges, PAD_Y, CELL, inset=uprights) + PAD_Y * 0.6
     height = max(bottom, height)
-    if table.blank_rows:
+    cells(ink, texts, edges, PAD_Y + (height - bottom) / 2, CELL, inset=uprights)
+    if uprights:
         for edge in edges:
             ink.line(edge, 0, edge, height, HAIRLINE)
     ink.line(0, height, edges[-1], height, RULE if last else HAIRLINE)
@@ -96,12 +104,14 @@ def table_pieces(table: Table, width: float, signing: Signing) -> list[Piece]:
         if table.signed and signing.draft:
             rows.append(unsigned_piece(edges, blank, signing) if index == len(table.rows) else hollow(blank))
         else:
-            rows.append(row_piece(table, edges, (), blank, key=f"{table.title} {index}", last=index == total - 1))
+            rows.append(
+                row_piece(table, edges, (), blank, key=f"{table.title} {index}", last=index == total - 1)
+            )
     first = head_piece(table, edges, title=True)
     again = head_piece(table, edges, title=False)
     if not rows:
         return [replace(first, space_before=4 * MM)]
-    pieces = [joined(first, rows[0], space_before=5 * MM)]
+    pieces = [joined(first, rows[0], space_before=4 * MM)]
     pieces.extend(replace(row, fresh=joined(again, row, space_before=0.0)) for row in rows[1:])
     return pieces
 

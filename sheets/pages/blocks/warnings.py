@@ -36,7 +36,6 @@ def triangle(ink: Ink, x: float, y: float, side: float, *, white: bool) -> None:
         ((x + side / 2, y), (x + side, y + height), (x, y + height)), thickness=1.8, white=white, fill="none"
     )
     middle, thick = x + side / 2, side * 0.045
-    colour = "white" if white else "black"
     ink.polygon(
         (
             (middle - thick * 1.15, y + height * 0.36),
@@ -46,7 +45,7 @@ def triangle(ink: Ink, x: float, y: float, side: float, *, white: bool) -> None:
         ),
         fill="white" if white else "black",
     )
-    ink.circle(middle, y + height * 0.81, thick * 1.1, fill="white" if colour == "white" else "black")
+    ink.circle(middle, y + height * 0.81, thick * 1.1, fill="white" if white else "black")
 
 
 def warning_piece(warning: Warning, width: float, *, key: str = "", space_before: float = 3 * MM) -> Piece:
@@ -85,17 +84,19 @@ def warning_piece(warning: Warning, width: float, *, key: str = "", space_before
     return back.piece(height, space_before=space_before, keep_with_next=True, name=warning.hazard)
 
 
-FIELD_SHARES = {"name": 40 * MM, "sign": 30 * MM, "time": 22 * MM}
+FIELD_SHARES = {"name": 34 * MM, "sign": 27 * MM, "time": 18 * MM}
 FIELD_GAP = 3 * MM
-SIGN_HEIGHT = 9 * MM
+SIGN_HEIGHT = 8.5 * MM
 
 
-def hold_piece(hold: Hold, width: float, signing: Signing, *, key: str = "", space_before: float = 3 * MM) -> Piece:
+def hold_piece(
+    hold: Hold, width: float, signing: Signing, *, key: str = "", space_before: float = 3 * MM
+) -> Piece:
     """A hold point in a heavy frame. In a draft its lines are replaced by the word that it is not signed."""
     ink = Ink()
     inset = HEAVY / 2
     word = HOLD_WORD.width(hold.word)
-    left = max(24 * MM, PAD * 1.6 + word + 3 * MM)
+    left = max(22 * MM, PAD * 1.6 + word + 3 * MM)
     room = width - left - PAD * 1.4
     fields = [FIELD_SHARES.get(field, 30 * MM) for field in hold.fields]
     fields_width = sum(fields) + FIELD_GAP * (len(fields) - 1)
@@ -103,10 +104,11 @@ def hold_piece(hold: Hold, width: float, signing: Signing, *, key: str = "", spa
     ink.text(PAD * 1.6, top + ASCENT * HOLD_WORD.size, hold.word, HOLD_WORD)
     lowered = (HOLD_WORD.size - ORDER.size) * ASCENT
     bottom = ink.paragraph(left, top + lowered, room, hold.order, ORDER)
-    beside = room - fields_width - 4 * MM
+    beside = room - fields_width - 3 * MM
     stacked = beside < 42 * MM
-    reason_bottom = ink.paragraph(left, bottom + 1, room if stacked else beside, hold.reason, STEP_LINE)
-    start = (reason_bottom if stacked else bottom) + SIGN_HEIGHT
+    above = stacked or len(wrap(hold.reason, STEP_LINE, beside)) > len(wrap(hold.reason, STEP_LINE, room))
+    reason_bottom = ink.paragraph(left, bottom + 1, room if above else beside, hold.reason, STEP_LINE)
+    start = (reason_bottom - 1.5 * MM if above else bottom) + SIGN_HEIGHT
     end = start + LABEL.leading + 1
     if stacked:
         left, room = PAD * 1.6, width - PAD * 3
@@ -120,7 +122,9 @@ def hold_piece(hold: Hold, width: float, signing: Signing, *, key: str = "", spa
         for name, field in zip(hold.fields, fields, strict=True):
             ink.line(x, start, x + field, start, 0.8)
             ink.text(x, start + 1.5 + ASCENT * LABEL.size, name, LABEL)
-            ink.mark(Mark(kind="sign", key=name, x=x, y=start - SIGN_HEIGHT + 2, width=field, height=SIGN_HEIGHT))
+            ink.mark(
+                Mark(kind="sign", key=name, x=x, y=start - SIGN_HEIGHT + 2, width=field, height=SIGN_HEIGHT)
+            )
             x += field + FIELD_GAP
     height = max(reason_bottom, end) + PAD * 0.7
     ink.rect(inset, inset, width - 2 * inset, height - 2 * inset, thickness=HEAVY)
