@@ -84,7 +84,7 @@ def identifiers(survey: Survey) -> Iterator[Flaw]:
         if other != (section, id):
             yield Flaw(
                 at=(section, id),
-                what=f"The identifier {id} is taken: {other[1]} stands under {other[0]}.",
+                what=f"The identifier {quoted(id)} is taken: {quoted(other[1])} stands under {other[0]}.",
                 fix="Give each part, gauge and energy source an identifier of its own.",
             )
 
@@ -109,7 +109,9 @@ def nets(survey: Survey) -> Iterator[Flaw]:
             at = ("nets", net, place)
             if port in home:
                 again = (
-                    "a second time in this net" if home[port] == net else f"in the net {home[port]} already"
+                    "a second time in this net"
+                    if home[port] == net
+                    else f"in the net {quoted(home[port])} already"
                 )
                 yield Flaw(
                     at=at,

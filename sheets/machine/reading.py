@@ -25,7 +25,7 @@ Plain = dict[str, Any] | list[Any] | str
 
 
 @dataclass(frozen=True, kw_only=True)
-class Text:
+class FileText:
     """A file's content, before anything of it is known to be right."""
 
     data: dict[str, Any]
@@ -59,7 +59,7 @@ class _StopError(Exception):
         self.fix = fix
 
 
-def read_text(source: bytes, name: str) -> Text:
+def read_text(source: bytes, name: str) -> FileText:
     """Read the bytes of a file called ``name``.
 
     Raises InputError where the file as a whole can't be read: too large, empty, not UTF-8, not YAML, more
@@ -120,7 +120,7 @@ class _Builder:
         self.root: Plain | None = None
         self.documents = 0
 
-    def build(self, text: str) -> Text:
+    def build(self, text: str) -> FileText:
         for event in _events(text):
             self._take(event)
         if self.root is None or self.root == "":
@@ -131,7 +131,7 @@ class _Builder:
                 "The file doesn't hold keys with values.",
                 "Begin it with keys, such as format: 1.",
             )
-        return Text(data=self.root, lines=self.lines, flaws=tuple(self.flaws))
+        return FileText(data=self.root, lines=self.lines, flaws=tuple(self.flaws))
 
     def _take(self, event: yaml.Event) -> None:
         line = event.start_mark.line + 1 if event.start_mark else 1

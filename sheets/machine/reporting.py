@@ -65,11 +65,11 @@ def _translated(detail: ErrorDetails, path: Path, model: type[Entry], data: Mapp
                 fix=_choose(given, _words(context["expected"])),
             )
         case "tuple_type":
-            given = detail["input"] if isinstance(detail["input"], str) and detail["input"] else "..."
+            given = quoted(detail["input"])[1:-1] if isinstance(detail["input"], str) else ""
             return Flaw(
                 at=path,
                 what="A list is expected here.",
-                fix=f"Write it in brackets, such as [{given}]; write [] if there is none.",
+                fix=f"Write it in brackets, such as [{given or '...'}]; write [] if there is none.",
             )
         case "dict_type" | "model_type" | "model_attributes_type":
             return Flaw(at=path, what="A group of keys is expected here.", fix=GROUP)

@@ -81,6 +81,29 @@ def test_all_problems_at_once_in_the_order_of_lines(small_text: str) -> None:
     ]
 
 
+ESCAPE = '"\\e[31m"'
+
+
+@pytest.mark.parametrize(
+    ("good", "bad"),
+    [
+        ("absent: [accumulator]", f"absent: {ESCAPE}"),
+        ("kind: test point", f"kind: {ESCAPE}"),
+        ("acting: direct", f"acting: {ESCAPE}"),
+        ("volume: 60 L", f"volume: {ESCAPE}"),
+        ("volume: 60 L", f"{ESCAPE}: 60 L"),
+        ("kind: main switch", f"kind: {ESCAPE}"),
+        ("  TP1:", f"  {ESCAPE}:"),
+        ("  line A: [DV1.A, CY1.A]", f"  {ESCAPE}: [DV1.A, CY1.A, DV1.B]"),
+        ("fitted at: [TP1]", f"fitted at: [{ESCAPE}]"),
+        ("centre: [P to T]", f"centre: [{ESCAPE}]"),
+    ],
+)
+def test_no_control_character_reaches_the_screen(small_text: str, good: str, bad: str) -> None:
+    for problem in problems_in(small_text.replace(good, bad, 1)):
+        assert (problem.where + problem.what + problem.fix).isprintable()
+
+
 def test_a_flood_of_problems_is_cut(small_text: str) -> None:
     flood = "".join(f"x{number}: 1\n" for number in range(3 * MOST_PROBLEMS))
 

@@ -422,7 +422,7 @@ CASES = [
         "DV1.B, CY1.B, DV1.A",
         "DV1.B",
         "nets, line B, item 3",
-        "net line A",
+        "net 'line A'",
         "one net",
     ),
     (
@@ -513,7 +513,7 @@ CASES = [
         "Either",
     ),
     ("identifier twice", "  Q2:\n", "  TP1:\n", "  TP1:", "TP1", "taken", "own"),
-    ("identifier in other letters", "  Q2:\n", "  tp1:\n", "  tp1:", "tp1", "taken: TP1", "own"),
+    ("identifier in other letters", "  Q2:\n", "  tp1:\n", "  tp1:", "tp1", "taken: 'TP1'", "own"),
     (
         "unit twice",
         "dated:",
