@@ -33,6 +33,8 @@ from sheets.pages.text import Style, fit, fit_cut, style, wrap
 BANNER_HEIGHT = 11 * MM
 HEAD_GAP = 6 * MM
 FOOTER_LINES = 2
+IDENTITY_ROOM = 62 * MM
+IDENTITIES = (FOOTER_STRONG, style(9, Weight.BOLD))
 Rows = tuple[tuple[bool, ...], ...]
 
 
@@ -193,11 +195,28 @@ def draft_word(ink: Ink, x: float, baseline: float, word: str, shape: Style) -> 
     return x + width + 2 * pad
 
 
+def revision(frame: Frame) -> str:
+    """The revision of an issued pack; a draft has none."""
+    return f"{frame.document.words.revision} {frame.issue.revision}" if frame.issue else ""
+
+
 def identity(frame: Frame) -> str:
     """Document number, with the revision of an issued pack."""
-    if frame.issue is None:
-        return frame.document.number
-    return f"{frame.document.number}  {frame.document.words.revision} {frame.issue.revision}"
+    return f"{frame.document.number}  {revision(frame)}".rstrip()
+
+
+def whole_identity(frame: Frame, width: float) -> tuple[Style, str]:
+    """Number and revision in a width. Neither is ever cut: InputError when they are too long."""
+    shape, lines = fit(identity(frame), width=width, styles=IDENTITIES, lines=1)
+    if len(lines) > 1:
+        raise InputError(
+            Problem(
+                where="document number",
+                what=f"“{identity(frame)}” doesn't fit at the foot of a page",
+                fix="give a shorter document number in the machine file",
+            )
+        )
+    return shape, lines[0]
 
 
 def data_line(frame: Frame) -> str:
@@ -212,9 +231,8 @@ def footer(ink: Ink, frame: Frame, *, number: int, total: int) -> None:
     top = paper.height - MARGIN_BOTTOM - FOOTER_HEIGHT
     ink.line(paper.left, top, paper.right, top, HAIRLINE)
     first = top + 1.5 * MM + ASCENT * FOOTER_STRONG.size
-    shape, parts = fit_cut(identity(frame), width=50 * MM, styles=(FOOTER_STRONG,), lines=1)
-    x = paper.left
-    x += max((ink.text(x, first, part, shape) for part in parts), default=0.0) + 3 * MM
+    shape, name = whole_identity(frame, IDENTITY_ROOM)
+    x = paper.left + ink.text(paper.left, first, name, shape) + 3 * MM
     if frame.issue is None:
         x = draft_word(ink, x, first, words.draft, FOOTER_STRONG) + 3 * MM
     page = words.page.format(number=number, total=total)

@@ -9,11 +9,11 @@ from sheets.errors import InputError, Problem
 from sheets.pages.document import Section, SettingTag
 from sheets.pages.face import dial_face, number_face
 from sheets.pages.fonts import ASCENT, Weight
-from sheets.pages.frame import Frame, data_line, draft_block, draft_word, identity
+from sheets.pages.frame import Frame, data_line, draft_block, draft_word, identity, revision
 from sheets.pages.ink import Ink, Piece
 from sheets.pages.look import FOOTER, FOOTER_SMALL, HAIRLINE, MARGIN_LEAST
 from sheets.pages.placed import MM, Mark
-from sheets.pages.text import Style, fit, fit_cut, style, wrap
+from sheets.pages.text import Style, fit, fit_cut, shortened, style, wrap
 
 WIDTH = 85.60 * MM
 HEIGHT = 53.98 * MM
@@ -141,8 +141,10 @@ def tag_piece(tag: SettingTag, frame: Frame) -> Piece:
     known = 20.9 * MM
     room = right - CODE_SIDE - 4 * CODE_MODULE - TEXT_LEFT
     draft_width = REVISION[-1].width(words.draft) + 3 * MM + 2 * MM if frame.issue is None else 0.0
-    shape, lines = fit_cut(identity(frame), width=room - draft_width, styles=REVISION, lines=1)
-    end = TEXT_LEFT + max((ink.text(TEXT_LEFT, known, text, shape) for text in lines), default=0.0)
+    kept = f"  {revision(frame)}".rstrip()
+    shape, _ = fit(identity(frame), width=room - draft_width, styles=REVISION, lines=1)
+    number = shortened(frame.document.number, shape, room - draft_width - shape.width(kept))
+    end = TEXT_LEFT + ink.text(TEXT_LEFT, known, number + kept, shape)
     if frame.issue is None:
         draft_word(ink, end + 2 * MM, known, words.draft, REVISION[-1])
     ink.mark(Mark(kind="tag", key=tag.adjuster, x=0, y=0, width=WIDTH, height=HEIGHT))

@@ -220,9 +220,18 @@ def test_what_no_page_holds_is_refused_by_name() -> None:
             placed(of(replace(RELIEF, blocks=(Steps(steps=(step,), panel=panel),))))
 
 
-def test_a_foot_line_is_never_cut() -> None:
-    with pytest.raises(InputError, match="foot"):
+def test_the_foot_line_and_the_document_number_are_never_cut() -> None:
+    with pytest.raises(InputError, match="line at the foot"):
         placed(replace(SAMPLE, footer=LONG_NAME))
+    with pytest.raises(InputError, match="document number"):
+        placed(replace(SAMPLE, number="WI-" + "0147-" * 12), issue=ISSUE)
+
+
+def test_a_long_document_number_leaves_the_revision_on_page_and_tag() -> None:
+    document = replace(SAMPLE, number="BT-MAINTENANCE-WI-0147-03")
+    for page in placed(document, issue=ISSUE):
+        count = sum(run.text.endswith("rev C") for run in page.runs)
+        assert count >= max(1, len(page.marked("tag")))
 
 
 @pytest.mark.parametrize("name", [LONG_NAME, "Wi1" * 100])
@@ -266,7 +275,7 @@ def test_long_names_stay_in_their_room_everywhere(name: str) -> None:
         subject=name,
         blocks=(TagSheet(tags=(replace(sheet.tags[0], adjuster=name, kind=name),)),),
     )
-    document = replace(SAMPLE, number="WI-" + name[:40], title=name, sections=(section, tags))
+    document = replace(SAMPLE, number="WI-" + "0147-" * 6, title=name, sections=(section, tags))
     for issue in CONTEXTS:
         found = broken(placed(document, issue=issue), document, draft=issue is None)
         assert found == []
