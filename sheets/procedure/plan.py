@@ -18,7 +18,14 @@ from sheets.machine.model import Machine
 from sheets.machine.parts import HandValve
 from sheets.machine.site import Policies
 from sheets.procedure.changes import Change, apply
-from sheets.procedure.conditions import Failure, first_failure, over_rating, unestablished
+from sheets.procedure.conditions import (
+    Failure,
+    first_failure,
+    moving,
+    over_rating,
+    starved,
+    unestablished,
+)
 from sheets.procedure.gauges import error_bar
 from sheets.procedure.order import derive_order
 from sheets.procedure.rig import Rig
@@ -28,6 +35,8 @@ from sheets.targets.settings import Targets
 
 _STUCK_FACTOR = 50.0
 """An adjuster stuck shut, as a multiple of the end of its range: it limits nothing."""
+BELOW_SHARE = 0.95
+"""How far below its window a setting is brought, as a share of the window's bottom, before it comes up."""
 SAME_READING_BAR = 0.05
 """A valve that others need may stay in place if it shifts a reading by less than this."""
 
@@ -215,6 +224,7 @@ def _isolate(job: _Job, rig: Rig, kind: StageKind) -> Stage:
     for supply in machine.energy:
         rig.say(StepKind.ISOLATE, supply)
     trapped = find_trapped(machine, job.circuit, rig.state.positions)
+    vents = {relief.valve for relief in trapped.reliefs if relief.stays}
     _relieve(job, rig, trapped)
     for control in machine.controls.start:
         rig.say(StepKind.ATTEMPT_START, control.name, where=control.where)
@@ -233,6 +243,7 @@ def _isolate(job: _Job, rig: Rig, kind: StageKind) -> Stage:
             test_point=test_point,
             hides=bar(error_bar(machine.gauges[gauge])),
             moved="" if first else "yes",
+            vent="yes" if vents else "",
         )
         if residual > job.policies.zero_limit_bar:
             rig.findings.append(
@@ -244,9 +255,10 @@ def _isolate(job: _Job, rig: Rig, kind: StageKind) -> Stage:
                 )
             )
     if not first:
-        _put_back(job, rig, vents={relief.valve for relief in trapped.reliefs if relief.stays})
+        _put_back(job, rig, [valve for valve in job.circuit.positions if valve not in vents])
         for gauge, test_point in rig.fitted.items():
             rig.say(StepKind.REMOVE_GAUGE, gauge, test_point=test_point)
+        _put_back(job, rig, sorted(vents))
     return Stage(kind=kind, powered=False, adjuster="", steps=rig.take_steps())
 
 
@@ -268,17 +280,16 @@ def _relieve(job: _Job, rig: Rig, trapped: Trapped) -> None:
             )
 
 
-def _put_back(job: _Job, rig: Rig, *, vents: set[str]) -> None:
-    """Valves that still stand where the job put them go back to rest; vents stay open to the last."""
-    for valve, positions in job.circuit.positions.items():
-        part = job.machine.parts[valve]
-        standing = rig.state.positions[valve]
-        if isinstance(part, HandValve) and standing != positions[0] and valve not in vents:
+def _put_back(job: _Job, rig: Rig, valves: list[str]) -> None:
+    """Hand valves that still stand where the job put them go back to rest."""
+    for valve in valves:
+        rest = job.circuit.positions[valve][0]
+        if isinstance(job.machine.parts[valve], HandValve) and rig.state.positions[valve] != rest:
             rig.do(
                 StepKind.SET_VALVE,
                 valve,
-                MoveValve(valve=valve, position=positions[0]),
-                data={"position": positions[0], "back": "yes"},
+                MoveValve(valve=valve, position=rest),
+                data={"position": rest, "back": "yes"},
             )
 
 
@@ -297,7 +308,14 @@ def _deadhead(job: _Job, rig: Rig) -> Stage:
         move = MoveValve(valve=valve, position=position)
         if rig.state.positions[valve] != position or valve in wanted:
             reason = reasons.get(valve) or _otherwise(job, base, valve, position)
-            rig.do(StepKind.SET_VALVE, valve, move, reason=reason, data={"position": position, "back": ""})
+            vent = "yes" if valve not in wanted else ""
+            rig.do(
+                StepKind.SET_VALVE,
+                valve,
+                move,
+                reason=reason,
+                data={"position": position, "back": "", "vent": vent},
+            )
             continue
         reason = _otherwise(job, base, valve, position)
         if reason is not None:
@@ -306,15 +324,11 @@ def _deadhead(job: _Job, rig: Rig) -> Stage:
 
 
 def _otherwise(job: _Job, base: PlantState, valve: str, position: str) -> Failure | None:
-    """What happens in some test state if this valve stands elsewhere; the first that fails, in order of setting."""
-    others = [other for other in job.circuit.positions[valve] if other != position]
-    for adjuster in job.sequence:
-        state = job.found[adjuster]
-        lined_up = apply(apply(base, job.line_up), state.changes)
-        for other in others:
-            solution = solve_one(job.circuit, lined_up.moved(valve, other), effects=True)
-            target_bar = job.targets.settings[adjuster].target_bar
-            failure = first_failure(solution, _site(job.circuit, adjuster), target_bar)
+    """What harm a start does with this valve alone elsewhere, everything else at rest."""
+    for other in job.circuit.positions[valve]:
+        if other != position:
+            solution = solve_one(job.circuit, base.moved(valve, other))
+            failure = moving(solution) or starved(solution) or over_rating(solution)
             if failure is not None:
                 return failure
     return None
@@ -410,9 +424,8 @@ def _set(job: _Job, rig: Rig, adjuster: str) -> Stage:
     reasons = dict(state.reasons)
     if to_raise:
         _stop(job, rig)
-        rig.do(
-            StepKind.BACK_OUT, adjuster, Adjust(adjuster=adjuster, setting_bar=site.lowest_bar)
-        )
+        rig.do(StepKind.BACK_OUT, adjuster, Adjust(adjuster=adjuster, setting_bar=site.lowest_bar))
+        rig.backed_out.add(adjuster)
         for change in to_raise:
             rig.do(StepKind.RUN_IN, change.adjuster, change, reason=reasons.get(change))
     elif adjuster in job.shown and rig.state.settings_bar[adjuster] == setting.target_bar:
@@ -420,12 +433,14 @@ def _set(job: _Job, rig: Rig, adjuster: str) -> Stage:
     _start(job, rig)
     _enter(job, rig, state)
     if rig.state.settings_bar[adjuster] >= setting.target_bar:
+        governor = rig.governor()
         rig.do(
             StepKind.TURN_BELOW,
             adjuster,
-            Adjust(adjuster=adjuster, setting_bar=max(site.lowest_bar, setting.low_bar * 0.95)),
-            data={"below": bar(state.gauge.window.low_bar)},
+            Adjust(adjuster=adjuster, setting_bar=max(site.lowest_bar, BELOW_SHARE * setting.low_bar)),
+            data={"held_by": governor if governor != adjuster else ""},
         )
+    rig.backed_out.discard(adjuster)
     rig.do(
         StepKind.COME_UP,
         adjuster,
@@ -453,18 +468,6 @@ def _check(job: _Job, rig: Rig) -> Stage:
 
 def _return(job: _Job, rig: Rig) -> Stage:
     """Area, people, locks, supplies; then a start and a look."""
-    vents = {
-        valve: positions[0]
-        for valve, positions in job.circuit.positions.items()
-        if rig.state.positions[valve] != positions[0]
-    }
-    for valve, position in vents.items():
-        rig.do(
-            StepKind.SET_VALVE,
-            valve,
-            MoveValve(valve=valve, position=position),
-            data={"position": position, "back": "yes"},
-        )
     rig.gauge = None
     rig.say(StepKind.INSPECT)
     rig.say(StepKind.CLEAR_PEOPLE)

@@ -33,6 +33,8 @@ class Rig:
         self.findings: list[Finding] = []
         self.gauge: GaugeChoice | None = None
         """Gauge that the steps read at present."""
+        self.backed_out: set[str] = set()
+        """Adjusters that stand anywhere below their range until they come up to their target."""
         self.fitted: dict[str, str] = {}
         """Gauge to the test point at which it is fitted."""
 
@@ -125,7 +127,8 @@ class Rig:
             low_bar, high_bar, governs = choice.window.low_bar, choice.window.high_bar, window_of
         else:
             governs = _governor(solution, node)
-            low_bar, high_bar = _band(expected_bar, choice.graduation_bar)
+            low_bar, high_bar = self._band(expected_bar, choice.graduation_bar)
+        _, beyond_bar = self._band(expected_bar, choice.graduation_bar)
         return Reading(
             adjuster=governs,
             gauge=choice.gauge,
@@ -134,6 +137,7 @@ class Rig:
             low_bar=low_bar,
             high_bar=high_bar,
             never_exceed_bar=choice.never_exceed_bar,
+            stop_above_bar=min(beyond_bar, choice.never_exceed_bar),
             graduation_bar=choice.graduation_bar,
         )
 
@@ -147,25 +151,32 @@ class Rig:
             node = self.circuit.node_of[f"{test_point}.P"]
             if node != here:
                 graduation = graduation_bar(self.machine.gauges[id_])
-                low_bar, high_bar = _band(solution.pressures_bar[node], graduation)
+                low_bar, high_bar = self._band(solution.pressures_bar[node], graduation)
                 bands.append(
                     Band(gauge=id_, low_bar=low_bar, high_bar=high_bar, graduation_bar=graduation)
                 )
         return tuple(bands)
 
+    def governor(self) -> str:
+        """Adjuster that the gauge's pressure follows at present; empty where none does."""
+        if self.gauge is None:
+            return ""
+        return _governor(self.look(), self.circuit.node_of[f"{self.gauge.test_point}.P"])
+
+    def _band(self, expected_bar: float, graduation: float) -> tuple[float, float]:
+        """What a reading may be before a setting is made: out by the policy share, outward to graduations.
+
+        With an adjuster backed out, anything from zero up is right: its lowest setting isn't a known figure.
+        """
+        half_bar = max(AS_FOUND_SHARE * expected_bar, AS_FOUND_LEAST_BAR)
+        low_bar, high_bar, _ = graduations_within(
+            low_bar=expected_bar - half_bar - graduation,
+            high_bar=expected_bar + half_bar + graduation,
+            graduation_bar=graduation,
+        )
+        return (0.0 if self.backed_out else max(0.0, low_bar)), high_bar
 
 def _governor(solution: Solution, node: int) -> str:
     """Adjuster that the pressure at a node follows; empty where none does."""
     strongest = max(solution.effects, key=lambda id_: solution.effects[id_][node], default="")
     return strongest if strongest and solution.effects[strongest][node] >= OWN_SHARE else ""
-
-
-def _band(expected_bar: float, graduation: float) -> tuple[float, float]:
-    """What a reading may be before a setting is made: out by the policy share, outward to graduations."""
-    half_bar = max(AS_FOUND_SHARE * expected_bar, AS_FOUND_LEAST_BAR)
-    low_bar, high_bar, _ = graduations_within(
-        low_bar=expected_bar - half_bar - graduation,
-        high_bar=expected_bar + half_bar + graduation,
-        graduation_bar=graduation,
-    )
-    return max(0.0, low_bar), high_bar

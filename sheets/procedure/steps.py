@@ -77,6 +77,8 @@ class Reading:
     low_bar: float
     high_bar: float
     never_exceed_bar: float
+    stop_above_bar: float
+    """Past this something is wrong, long before a rating is reached: the work stops there."""
     graduation_bar: float
 
 

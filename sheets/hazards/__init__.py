@@ -1,0 +1,1 @@
+"""From magnitudes to hazards and signal words."""

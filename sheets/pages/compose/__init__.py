@@ -1,0 +1,1 @@
+"""From a procedure in words to the document values of a pack."""

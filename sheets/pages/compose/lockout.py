@@ -1,0 +1,218 @@
+"""The lockout sheet: by act, in order; then people, lines that keep pressure, declared sources."""
+
+from __future__ import annotations
+
+from sheets.amounts import Amount, bar
+from sheets.machine.parts import Cylinder, HydraulicMotor
+from sheets.pages.compose.common import first_aid
+from sheets.pages.compose.matter import Matter, page_step
+from sheets.pages.document import (
+    Act,
+    Banner,
+    Block,
+    Box,
+    Hold,
+    Paragraph,
+    PowerState,
+    Section,
+    SheetKind,
+    Step,
+    Table,
+)
+from sheets.procedure.steps import Stage, StageKind, StepKind
+from sheets.wording.steps import SpokenStep, capital
+
+_ACTS: tuple[tuple[str, frozenset[StepKind]], ...] = (
+    ("stop", frozenset({StepKind.TELL_BEFORE, StepKind.PRESS_STOP})),
+    ("isolate", frozenset({StepKind.ISOLATE})),
+    ("block", frozenset()),
+    ("relieve", frozenset({StepKind.OPEN_VENT, StepKind.WORK_LEVER})),
+    (
+        "verify",
+        frozenset(
+            {StepKind.ATTEMPT_START, StepKind.VERIFY_DEAD, StepKind.FIT_GAUGE, StepKind.VERIFY_ZERO}
+        ),
+    ),
+    ("restore", frozenset({StepKind.SET_VALVE, StepKind.REMOVE_GAUGE})),
+)
+"""The regulation's order (29 CFR 1910.147(d)(2) to (d)(6)): stop, isolate with locks, relieve, verify; a load is
+blocked before its line is relieved. What is put back afterwards stands last."""
+
+
+def lockout(matter: Matter, stage: Stage) -> Section:
+    """The sheet for one locked stage."""
+    again = stage.kind is StageKind.LOCK_AGAIN
+    name = "lockout_again" if again else "lockout"
+    spoken = matter.spoken(stage)
+    acts: list[Block] = []
+    for act, kinds in _ACTS:
+        rows = tuple(_row(step) for step in spoken if step.step.kind in kinds)
+        if act == "block":
+            rows = _blocking(matter)
+        if act == "relieve" and not rows:
+            rows = (Step(number="", order=matter.text("relieve_none"), boxes=(_tick(),)),)
+        if act == "restore" and rows:
+            acts.append(_hold(matter, again=again))
+        if rows:
+            number = sum(isinstance(block, Act) for block in acts) + 1
+            acts.append(Act(number=str(number), name=matter.text(f"act_{act}"), rows=rows))
+    if not any(isinstance(block, Hold) for block in acts):
+        acts.append(_hold(matter, again=again))
+    blocks: list[Block] = [
+        Paragraph(text=matter.text("lockout_first"), weight="strong"),
+        Paragraph(text=matter.text("lockout_absent", items=", ".join(matter.machine.absent) or "–")),
+        *acts,
+        first_aid(matter),
+        _people(matter),
+    ]
+    if not again:
+        blocks += [_trapped(matter), _sources(matter)]
+    return Section(
+        kind=SheetKind.LOCKOUT,
+        bookmark=matter.text(f"{name}_title"),
+        title=matter.text(f"{name}_title"),
+        subject=matter.machine.tag,
+        lines=(matter.text(f"{name}_line"), matter.text("lockout_basis")),
+        banner=Banner(state=PowerState.LOCKED, word=matter.text("locked_word")),
+        blocks=tuple(blocks),
+    )
+
+
+def _tick() -> Box:
+    return Box(label="", size="tick")
+
+
+def _row(spoken: SpokenStep) -> Step:
+    """A row with the boxes that its act asks for."""
+    boxes: tuple[Box, ...]
+    match spoken.step.kind:
+        case StepKind.ISOLATE:
+            boxes = (Box(label="lock no.", size="short"), Box(label="owner", size="medium", signed=True))
+        case StepKind.OPEN_VENT if spoken.step.trace is not None:
+            boxes = (Box(label="lock no.", size="short"), Box(label="owner", size="medium", signed=True))
+        case StepKind.TELL_BEFORE:
+            boxes = (Box(label="time", size="short"), Box(label="by", size="medium", signed=True))
+        case StepKind.PRESS_STOP:
+            boxes = (Box(label="time", size="short"),)
+        case StepKind.ATTEMPT_START | StepKind.VERIFY_DEAD:
+            boxes = (Box(label="time", size="short"), Box(label="by", size="medium", signed=True))
+        case StepKind.VERIFY_ZERO:
+            boxes = (Box(label=spoken.step.subject, size="short"), Box(label="time", size="short"))
+        case _:
+            boxes = (_tick(),)
+    return page_step(spoken, number="", boxes=boxes)
+
+
+def _blocking(matter: Matter) -> tuple[Step, ...]:
+    rows = []
+    for id_, part in matter.machine.parts.items():
+        if isinstance(part, Cylinder) and part.weight_kn > 0.0:
+            amount = Amount(value=part.weight_kn, quantity="force_kn")
+        elif isinstance(part, HydraulicMotor) and part.driving_torque_nm > 0.0:
+            amount = Amount(value=part.driving_torque_nm, quantity="torque_nm")
+        else:
+            continue
+        rows.append(
+            Step(
+                number="",
+                order=matter.text("block_load", moves=part.moves, part=id_),
+                lines=(
+                    f"{capital(part.where)}. "
+                    + matter.text("block_load_line", force=matter.figures.amount(amount)),
+                ),
+                boxes=(Box(label="seen by", size="medium", signed=True),),
+            )
+        )
+    if rows:
+        return tuple(rows)
+    return (
+        Step(
+            number="", order=matter.text("block_none"), lines=(matter.text("block_none_line"),), boxes=(_tick(),)
+        ),
+    )
+
+
+def _hold(matter: Matter, *, again: bool) -> Hold:
+    return Hold(
+        word=matter.text("hold_word"),
+        order=matter.text("lockout_again_hold" if again else "lockout_hold"),
+        reason=matter.text("lockout_hold_reason"),
+    )
+
+
+def _people(matter: Matter) -> Table:
+    return Table(
+        title=matter.text("people_title"),
+        light=matter.text("people_light"),
+        head=("name", "lock no.", "on: date, time", "off: date, time", "taken over by", "read gauge again"),
+        rows=(),
+        shares=(0.24, 0.11, 0.18, 0.18, 0.16, 0.13),
+        blank_rows=5,
+        row_height_mm=8.0,
+        signed=True,
+    )
+
+
+def _trapped(matter: Matter) -> Table:
+    """Every line that can hold pressure, how it is relieved, and where that is verified."""
+    found = matter.procedure.search.found().values()
+    highest = {
+        site.controlled_node: max(
+            (
+                state.gauge.window.high_bar
+                for state in found
+                if _node(matter, state.adjuster) == site.controlled_node
+            ),
+            default=0.0,
+        )
+        for site in matter.circuit.adjusters
+    }
+    top_bar = max(highest.values(), default=0.0)
+    rows = []
+    for volume in matter.procedure.trapped.volumes:
+        node = matter.circuit.nodes[volume.node]
+        if not volume.trapped_at_rest:
+            how = matter.text("drains")
+        elif volume.relieved_by:
+            how = matter.speaker.part(volume.relieved_by)
+        else:
+            how = matter.text("no_relief")
+        most_bar = min(top_bar, node.rating_bar)
+        rows.append(
+            (
+                node.name,
+                matter.figures.amount(bar(most_bar)),
+                how,
+                ", ".join(volume.test_points) or matter.text("no_test_point"),
+            )
+        )
+    return Table(
+        title=matter.text("trapped_title"),
+        light=matter.text("trapped_light"),
+        head=("line", "up to", "relieved by", "verified at"),
+        rows=tuple(rows),
+        shares=(0.32, 0.14, 0.34, 0.20),
+    )
+
+
+def _node(matter: Matter, adjuster: str) -> int:
+    return next(site.controlled_node for site in matter.circuit.adjusters if site.id == adjuster)
+
+
+def _sources(matter: Matter) -> Table:
+    rows = [
+        (
+            id_,
+            supply.kind,
+            matter.figures.amount(Amount(value=supply.voltage_v, quantity="voltage_v")),
+            f"{supply.isolator.plate}, {supply.isolator.where}",
+            supply.verify,
+        )
+        for id_, supply in matter.machine.energy.items()
+    ]
+    return Table(
+        title=matter.text("sources_title"),
+        head=("source", "type", "magnitude", "isolated by", "verified by"),
+        rows=tuple(rows),
+        shares=(0.09, 0.17, 0.11, 0.31, 0.32),
+    )

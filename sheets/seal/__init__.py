@@ -1,0 +1,1 @@
+"""Canonical data and digests; later attachments, signatures and verification."""

@@ -1,0 +1,101 @@
+"""Amounts as printed, in the units that the machine file names first and second."""
+
+from __future__ import annotations
+
+from typing import Final
+
+from sheets.amounts import Amount
+from sheets.machine.model import Units
+from sheets.quantities import from_unit, number, shown, to_unit
+
+_PLAIN: Final[dict[str, tuple[str, int]]] = {
+    "power_kw": ("kW", 1),
+    "speed_m_s": ("m/s", 2),
+    "speed_rpm": ("rev/min", 0),
+    "ratio": ("", 2),
+    "time_s": ("s", 0),
+    "temperature_c": ("°C", 0),
+    "temperature_rise_k": ("K/s", 2),
+    "force_kn": ("kN", 1),
+    "torque_nm": ("N·m", 0),
+    "voltage_v": ("V", 0),
+    "count": ("", 0),
+}
+"""Quantities that have one printed unit only: that unit, and digits after the point."""
+_PRESSURE_DECIMALS: Final = {"bar": 0, "psi": 0, "MPa": 1}
+_SMALL_PRESSURE_BAR: Final = 10.0
+"""Below this a pressure gets one digit more."""
+
+_SMALL_FLOW_LPM: Final = 10.0
+"""Below this a flow gets one digit more."""
+
+
+class Figures:
+    """Prints amounts for one machine."""
+
+    def __init__(self, units: Units) -> None:
+        self.pressure_unit: str = units.pressure[0]
+        self.second_pressure_unit: str = units.pressure[1] if len(units.pressure) > 1 else ""
+        self.flow_unit: str = units.flow[0]
+
+    def amount(self, amount: Amount | str) -> str:
+        """An amount with its unit; text as it stands."""
+        if isinstance(amount, str):
+            return amount
+        if amount.quantity == "pressure_bar":
+            return self.pressure(amount.value)
+        if amount.quantity == "flow_lpm":
+            return self.flow(amount.value)
+        unit, decimals = _PLAIN[amount.quantity]
+        digits = number(amount.value, decimals=decimals)
+        return f"{digits} {unit}" if unit else digits
+
+    def pressure(self, value_bar: float) -> str:
+        """A pressure in the first unit, without regard to a gauge."""
+        decimals = _PRESSURE_DECIMALS[self.pressure_unit]
+        if abs(value_bar) < _SMALL_PRESSURE_BAR and self.pressure_unit != "psi":
+            decimals += 1
+        return shown(value_bar, self.pressure_unit, decimals=decimals)
+
+    def flow(self, value_lpm: float) -> str:
+        """A flow in the first unit."""
+        decimals = 1 if self.flow_unit == "gal/min" or value_lpm < _SMALL_FLOW_LPM else 0
+        return shown(value_lpm, self.flow_unit, decimals=decimals)
+
+    def digits(self, value_bar: float, graduation_bar: float, *, half: bool = False) -> str:
+        """A reading without its unit, as a gauge with that division shows it.
+
+        ``half``: to half a division, for a target that need not stand on a mark.
+        """
+        step = to_unit(graduation_bar, self.pressure_unit) * (0.5 if half else 1.0)
+        return number(to_unit(value_bar, self.pressure_unit), step=float(f"{step:.9g}"))
+
+    def reading(self, value_bar: float, graduation_bar: float, *, half: bool = False) -> str:
+        """The same with its unit."""
+        return f"{self.digits(value_bar, graduation_bar, half=half)} {self.pressure_unit}"
+
+    def second(self, value_bar: float) -> str:
+        """A pressure in the second unit; empty where the machine file names one only."""
+        if not self.second_pressure_unit:
+            return ""
+        decimals = _PRESSURE_DECIMALS[self.second_pressure_unit]
+        return shown(value_bar, self.second_pressure_unit, decimals=decimals)
+
+    def second_inside(self, low_bar: float, high_bar: float) -> str:
+        """A window in the second unit, rounded inward so that it never accepts more than the first."""
+        unit = self.second_pressure_unit
+        if not unit:
+            return ""
+        step = 10.0 ** -_PRESSURE_DECIMALS[unit]
+        low = -(-to_unit(low_bar, unit) // step) * step
+        high = to_unit(high_bar, unit) // step * step
+        decimals = _PRESSURE_DECIMALS[unit]
+        return f"{number(low, decimals=decimals)} to {number(high, decimals=decimals)} {unit}"
+
+    def in_unit(self, value_bar: float) -> float:
+        """A pressure in the first unit, as a number for a drawn scale."""
+        return round(to_unit(value_bar, self.pressure_unit), 6)
+
+    def from_first(self, value: float) -> float:
+        """Back to bar."""
+        return from_unit(value, self.pressure_unit)

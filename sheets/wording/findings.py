@@ -1,0 +1,51 @@
+"""Findings, refusals and what isn't in use, in words."""
+
+from __future__ import annotations
+
+from sheets.amounts import Amount, Finding
+from sheets.procedure.search import NotInUse
+from sheets.procedure.steps import Procedure
+from sheets.wording.sentences import Sentences
+from sheets.wording.steps import Speaker, capital
+
+
+def say_finding(speaker: Speaker, finding: Finding) -> tuple[str, str]:
+    """What is so, and what to do."""
+    sentences = Sentences(speaker.machine.language, "findings.j2")
+    values = {key: speaker.figures.amount(value) for key, value in finding.data.items()}
+    for key in ("other", "governs"):
+        if values.get(key) in speaker.screws:
+            values[key] = speaker.adjuster(values[key])
+    subject = speaker.adjuster(finding.subject) if finding.subject in speaker.screws else finding.subject
+    if "condition" in values:
+        condition = values["condition"]
+        values["range_end"] = "yes" if _at_range_end(speaker, finding) else ""
+        values["why"] = sentences.say(f"why_{condition}", **values)
+        values["advice"] = sentences.say(f"advice_{condition}", **values)
+    what = sentences.say(f"{finding.code}_what", **values, subject=subject)
+    return capital(what), sentences.say(f"{finding.code}_fix", **values)
+
+
+def _at_range_end(speaker: Speaker, finding: Finding) -> bool:
+    """The adjuster that governs stands at the end of its range, to a hundredth of it."""
+    governs, reading = str(finding.data.get("governs", "")), finding.data.get("reading")
+    if governs not in speaker.screws or not isinstance(reading, Amount):
+        return False
+    highest_bar = speaker.screws[governs].adjuster.highest_bar
+    return abs(reading.value - highest_bar) < 0.01 * highest_bar
+
+
+def say_not_in_use(speaker: Speaker, procedure: Procedure) -> tuple[str, ...]:
+    """Adjusters that no state answers to, each with the reason."""
+    sentences = Sentences(speaker.machine.language, "findings.j2")
+    return tuple(
+        capital(
+            sentences.say(
+                "not_in_use_by_law" if answer.by_law else "not_in_use_by_search",
+                subject=speaker.adjuster(answer.adjuster),
+                states=str(answer.states),
+            )
+        )
+        for answer in procedure.search.answers.values()
+        if isinstance(answer, NotInUse)
+    )

@@ -1,0 +1,349 @@
+"""Orders and light lines of every step, in the language of the machine file."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+from sheets.amounts import Amount
+from sheets.circuit.model import Circuit
+from sheets.hazards.assess import HEAT_KW, Hazard, Signal
+from sheets.machine.model import Machine
+from sheets.machine.parts import DialGauge, DirectionalValve, ElectricMotor, HandValve
+from sheets.machine.screws import screws_of
+from sheets.machine.site import Policies
+from sheets.procedure.conditions import Condition, Failure
+from sheets.procedure.search import TestState
+from sheets.procedure.steps import Reading, Stage, StageKind, Step, StepKind
+from sheets.wording.figures import Figures
+from sheets.wording.sentences import Sentences
+
+
+HEATING = frozenset({StepKind.HOLD_VALVE, StepKind.CLOSE_GRADUALLY, StepKind.COME_UP})
+"""Steps that say how long a try may last."""
+
+
+def capital(text: str) -> str:
+    """The text with a capital first letter; the rest as it stands."""
+    return text[:1].upper() + text[1:]
+
+
+@dataclass(frozen=True, kw_only=True)
+class SpokenWarning:
+    """A hazard in words."""
+
+    signal: Signal
+    hazard: str
+    lines: tuple[str, ...]
+
+
+@dataclass(frozen=True, kw_only=True)
+class SpokenStep:
+    """One step in words."""
+
+    step: Step
+    order: str
+    lines: tuple[str, ...]
+    warnings: tuple[SpokenWarning, ...]
+
+
+class Speaker:
+    """Says steps, hazards and failures of one machine."""
+
+    def __init__(
+        self, machine: Machine, circuit: Circuit, policies: Policies, found: Mapping[str, TestState]
+    ) -> None:
+        self.machine = machine
+        self.circuit = circuit
+        self.policies = policies
+        self.found = found
+        self.figures = Figures(machine.units)
+        self.screws = screws_of(machine)
+        self._orders = Sentences(machine.language, "steps.j2")
+        self._lines = Sentences(machine.language, "lines.j2")
+        self._names = Sentences(machine.language, "names.j2")
+        self._hazards = Sentences(machine.language, "hazards.j2")
+
+    # What things are called
+
+    def part(self, id_: str) -> str:
+        """``bleed valve BV1``: what people call it, and its id."""
+        part = self.machine.parts[id_]
+        return f"{part.name or part.kind} {id_}"
+
+    def adjuster(self, id_: str) -> str:
+        """``RV1``, or ``compensator of PU1``."""
+        screw = self.screws[id_]
+        return self._names.say("adjuster", name=screw.name, part=screw.part)
+
+    def set_title(self, id_: str) -> str:
+        screw = self.screws[id_]
+        return self._names.say("set_title", name=screw.name, kind=self.machine.parts[screw.part].kind)
+
+    def tag_kind(self, id_: str) -> str:
+        screw = self.screws[id_]
+        return self._names.say("tag_kind", name=screw.name, kind=self.machine.parts[screw.part].kind)
+
+    def turning(self, id_: str, *, raising: bool) -> str:
+        """Direction in which to turn."""
+        raises = self.screws[id_].adjuster.raises
+        if raises == "not known":
+            return self._names.say("unknown_direction")
+        other = {"clockwise": "counterclockwise", "counterclockwise": "clockwise"}
+        return self._names.say(raises if raising else other[raises])
+
+    @property
+    def stop(self) -> str:
+        """The stop that a second person stays at: the first emergency stop, else the first stop."""
+        places = self.machine.controls.emergency_stop or self.machine.controls.stop
+        return places[0].name
+
+    # Steps
+
+    def stage(self, stage: Stage, hazards: Mapping[int, tuple[Hazard, ...]]) -> tuple[SpokenStep, ...]:
+        """All steps of a stage in words, with the hazards by step number."""
+        return tuple(
+            SpokenStep(
+                step=step,
+                order=self._order(step),
+                lines=self._light(stage, step),
+                warnings=tuple(self.warning(hazard) for hazard in hazards.get(place, ())),
+            )
+            for place, step in enumerate(stage.steps)
+        )
+
+    def warning(self, hazard: Hazard) -> SpokenWarning:
+        values = {key: self.figures.amount(value) for key, value in hazard.data.items()} | {"stop": self.stop}
+        return SpokenWarning(
+            signal=hazard.signal,
+            hazard=capital(self._hazards.say(f"{hazard.kind.value}_hazard", **values)),
+            lines=tuple(self._hazards.say(f"{hazard.kind.value}_lines", **values).splitlines()),
+        )
+
+    def otherwise(self, failure: Failure, adjuster: str = "") -> str:
+        """What happens if a change is left out; ``adjuster`` is the one that is read or set."""
+        setting = self.adjuster(adjuster) if adjuster else ""
+        return self._lines.say(
+            f"else_{failure.condition.value}", **self.failure_values(failure), setting=setting
+        )
+
+    def failure_values(self, failure: Failure) -> dict[str, str]:
+        """Figures and names of a failed condition as text."""
+        values = {key: self.figures.amount(value) for key, value in failure.data.items()}
+        if failure.condition is Condition.STILL:
+            part = self.machine.parts[str(failure.data["part"])]
+            values["moves"] = str(getattr(part, "moves", ""))
+        if values.get("governs"):
+            values["governs"] = self.adjuster(values["governs"])
+        return values
+
+    def window(self, reading: Reading) -> str:
+        """``172 to 180 bar``."""
+        low = self.figures.digits(reading.low_bar, reading.graduation_bar)
+        high = self.figures.digits(reading.high_bar, reading.graduation_bar)
+        return self._names.say("window", low=low, high=high, unit=self.figures.pressure_unit)
+
+    def _values(self, step: Step) -> dict[str, str]:
+        """Everything that a sentence may want to name."""
+        machine, data = self.machine, step.data
+        values = {key: self.figures.amount(value) for key, value in data.items()}
+        values |= {"subject": step.subject, "stop": self.stop, "gauge": step.reading.gauge if step.reading else ""}
+        part = machine.parts.get(step.subject)
+        if part is not None:
+            values |= {"label": self.part(step.subject), "where": part.where}
+        if isinstance(part, HandValve):
+            values["lockable"] = "yes" if part.lockable else ""
+        if isinstance(part, DirectionalValve):
+            values["solenoid"] = self._solenoid(step.subject, part)
+        if isinstance(part, ElectricMotor):
+            controls = machine.controls
+            place = controls.start if step.kind is StepKind.START else controls.stop
+            values["stop" if step.kind is StepKind.PRESS_STOP else "start"] = f"{place[0].name}, {place[0].where}"
+            values["seconds"] = self.figures.amount(Amount(value=part.coasts_for_s, quantity="time_s"))
+        supply = machine.energy.get(step.subject)
+        if supply is not None:
+            values |= {
+                "plate": supply.isolator.plate,
+                "action": supply.isolator.action,
+                "where": supply.isolator.where,
+                "lock": supply.isolator.lock,
+                "voltage": self.figures.amount(Amount(value=supply.voltage_v, quantity="voltage_v")),
+                "feeds": ", ".join(supply.feeds),
+            }
+        screw = self.screws.get(step.subject)
+        if screw is not None:
+            values |= {
+                "adjuster": self.adjuster(step.subject),
+                "key": screw.adjuster.key,
+                "tool": screw.adjuster.lock_nut,
+            }
+        return values
+
+    def _solenoid(self, valve: str, part: DirectionalValve) -> str:
+        position = next(
+            (
+                change.position
+                for state in self.found.values()
+                for change in state.changes
+                if getattr(change, "valve", "") == valve and change.position != part.rest_position  # type: ignore[union-attr]  # only a valve move has a valve
+            ),
+            "",
+        )
+        return part.solenoids.get(position, "")
+
+    def _order(self, step: Step) -> str:
+        values = self._values(step)
+        if step.kind is StepKind.NOT_REACHED:
+            values["adjuster"] = self.adjuster(step.subject)
+        if step.kind is StepKind.WARM_OIL:
+            low, high = self.oil_window()
+            values |= {"low": low, "high": high}
+        if step.kind is StepKind.LEAVE_ALONE:
+            values["window"] = self._accepted(step.subject)
+        if step.kind is StepKind.COME_UP and step.reading:
+            values["target"] = f"{self.target_digits(step.subject)} {self.figures.pressure_unit}"
+        if step.kind is StepKind.TURN_BELOW and step.reading:
+            choice = self.found[step.subject].gauge
+            values["below"] = self.figures.reading(choice.window.low_bar, choice.graduation_bar)
+        return self._orders.say(step.kind.value, **values)
+
+    def target_digits(self, adjuster: str) -> str:
+        """Target reading without unit: to half a division of a dial, to the resolution of a digital gauge."""
+        choice = self.found[adjuster].gauge
+        dial = isinstance(self.machine.gauges[choice.gauge], DialGauge)
+        return self.figures.digits(choice.target_bar, choice.graduation_bar, half=dial)
+
+    def oil_window(self) -> tuple[str, str]:
+        """Oil temperatures between which settings are made."""
+        fluid = self.machine.fluid
+        low = fluid.lowest_setting_temperature_c
+        high = fluid.highest_setting_temperature_c
+        low = self.policies.lowest_setting_temperature_c if low is None else low
+        high = self.policies.highest_setting_temperature_c if high is None else high
+        text = [self.figures.amount(Amount(value=value, quantity="temperature_c")) for value in (low, high)]
+        return text[0], text[1]
+
+    def _accepted(self, adjuster: str) -> str:
+        choice = self.found[adjuster].gauge
+        return self._names.say(
+            "window",
+            low=self.figures.digits(choice.window.low_bar, choice.graduation_bar),
+            high=self.figures.digits(choice.window.high_bar, choice.graduation_bar),
+            unit=self.figures.pressure_unit,
+        )
+
+    # Light lines
+
+    def _light(self, stage: Stage, step: Step) -> tuple[str, ...]:
+        values = self._values(step)
+        lines: list[str] = []
+        say = self._lines.say
+        match step.kind:
+            case StepKind.VERIFY_DEAD:
+                verify = self.machine.energy[step.subject].verify
+                lines.append(f"{capital(verify)}.")
+            case StepKind.SET_VALVE | StepKind.CHECK_VALVE:
+                lines.append(f"{capital(values['where'])}.")
+                if step.data.get("vent"):
+                    lines.append(say("close_vent"))
+            case StepKind.FIT_GAUGE | StepKind.REMOVE_GAUGE:
+                where = self.machine.parts[str(step.data["test_point"])].where
+                lines.append(say(f"{step.kind.value}_line", where=capital(where)))
+            case StepKind.NOT_REACHED:
+                hidden_by = ", ".join(self.adjuster(id_) for id_ in str(step.data["hidden_by"]).split(", "))
+                lines.append(say("not_reached_line", hidden_by=capital(hidden_by)))
+            case StepKind.BACK_OUT | StepKind.RUN_IN:
+                direction = self.turning(step.subject, raising=step.kind is StepKind.RUN_IN)
+                lines.append(say("out_line", direction=direction, key=values["key"]))
+            case StepKind.TURN_BELOW:
+                direction = self.turning(step.subject, raising=False)
+                lines.append(f"{direction}, {values['key']}.")
+                holder = str(step.data["held_by"])
+                if holder:
+                    held_by = self.adjuster(holder)
+                    lines.append(say("held_at_first", gauge=values["gauge"], held_by=held_by))
+                else:
+                    lines.append(say("wrong_screw", gauge=values["gauge"]))
+            case StepKind.COME_UP:
+                lines.extend(self._come_up(step, values))
+            case StepKind.LOCK_NUT:
+                if values["tool"]:
+                    lines.append(say("lock_nut_line", tool=values["tool"]))
+            case StepKind.WARM_OIL:
+                limit = Amount(value=self.machine.fluid.limit_temperature_c, quantity="temperature_c")
+                lines.append(say("warm_oil_line", limit=self.figures.amount(limit)))
+            case StepKind.HOLD_VALVE if values.get("solenoid"):
+                lines.append(say("solenoid_line"))
+            case _:
+                name = f"{step.kind.value}_line"
+                if self._lines.has(name):
+                    lines.append(say(name, **{**values, "where": capital(values.get("where", ""))}))
+        if step.reason is not None:
+            governs = step.reading.adjuster if step.reading else ""
+            lines.append(self.otherwise(step.reason, stage.adjuster or governs))
+        lines.extend(self._expected(stage, step, values))
+        return tuple(line for line in lines if line)
+
+    def _come_up(self, step: Step, values: Mapping[str, str]) -> list[str]:
+        direction = self.turning(step.subject, raising=True)
+        return [
+            self._lines.say("come_up_line", direction=direction, key=values["key"]),
+            self._lines.say("wrong_screw", gauge=values["gauge"]),
+        ]
+
+    def _heat(self, step: Step) -> list[str]:
+        """Longest time of a try, where power turns to heat over a relief."""
+        if step.trace is None or step.trace.relief_kw < HEAT_KW:
+            return []
+        seconds = Amount(value=self.policies.longest_try_s, quantity="time_s")
+        power = Amount(value=step.trace.relief_kw, quantity="power_kw")
+        figures = self.figures
+        return [self._lines.say("at_most", seconds=figures.amount(seconds), power=figures.amount(power))]
+
+    def _expected(self, stage: Stage, step: Step, values: Mapping[str, str]) -> list[str]:
+        """Reading after the step, and when to stop."""
+        reading = step.reading
+        if reading is None:
+            return []
+        say, figures = self._lines.say, self.figures
+        low = figures.digits(reading.low_bar, reading.graduation_bar)
+        high = figures.reading(reading.high_bar, reading.graduation_bar)
+        limit = figures.reading(reading.stop_above_bar, reading.graduation_bar)
+        shows = (
+            say("expect_below", gauge=reading.gauge, high=high)
+            if reading.low_bar <= 0.0
+            else say("expect", gauge=reading.gauge, low=low, high=high)
+        )
+        lines = self._heat(step) if step.kind in HEATING else []
+        match step.kind:
+            case StepKind.READ:
+                pass
+            case StepKind.READ_AGAIN if stage.kind is StageKind.SET:
+                lines.append(say("as_left_window", low=low, high=high))
+            case StepKind.CLOSE_GRADUALLY:
+                lines.append(shows)
+                lines.append(
+                    say("open_if_above", gauge=reading.gauge, limit=limit, label=values["subject"])
+                )
+            case StepKind.COME_UP:
+                lines.append(say("stop_above", gauge=reading.gauge, limit=limit, stop=self.stop))
+            case StepKind.START | StepKind.HOLD_VALVE:
+                lines.append(f"{shows} {say('outside', stop=self.stop)}")
+            case StepKind.LET_GO:
+                label, position = values["label"], values["position"]
+                lines.append(say("returns_to", label=capital(label), position=position))
+                lines.append(shows)
+            case StepKind.LOCK_NUT | StepKind.TURN_BELOW:
+                pass
+            case _:
+                lines.append(shows)
+        for band in step.bands:
+            lines.append(
+                say(
+                    "expect",
+                    gauge=band.gauge,
+                    low=figures.digits(band.low_bar, band.graduation_bar),
+                    high=figures.reading(band.high_bar, band.graduation_bar),
+                )
+            )
+        return lines
