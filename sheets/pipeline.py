@@ -2,26 +2,35 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Literal
 
 from sheets import ENGINE
+from sheets.amounts import Finding
 from sheets.circuit.build import build_circuit
 from sheets.circuit.model import Circuit
-from sheets.errors import InputError, Problem
+from sheets.circuit.verdict import Verdict
+from sheets.errors import ExitStatus, InputError, Problem
 from sheets.hazards.assess import assess
 from sheets.machine.loading import load_machine, load_site
 from sheets.machine.model import Machine
 from sheets.machine.site import Policies, Site
 from sheets.pages.compose.matter import Matter
 from sheets.pages.compose.pack import compose
-from sheets.pages.document import Document, IssueContext, Layout
-from sheets.pages.press import print_pack
+from sheets.pages.document import Document, IssueContext, Layout, SheetKind
+from sheets.pages.layout import place
+from sheets.pages.press import pdf_bytes, print_pack
 from sheets.procedure.plan import make_procedure
+from sheets.procedure.steps import Procedure
 from sheets.seal.canonical import canonical_bytes, digest
 from sheets.targets.compute import compute_targets
 from sheets.targets.settings import Targets
-from sheets.wording.steps import Speaker
+from sheets.wording import as_json
+from sheets.wording.as_json import Json, machine_json
+from sheets.wording.steps import Speaker, SpokenStep
+from sheets.wording.terminal import finding_lines, machine_lines, step_lines, target_lines
 
 SITE_FILE = "site.yaml"
 
@@ -93,6 +102,81 @@ def pack(matter: Matter, layout: Layout, issue: IssueContext | None = None) -> b
     """The pack as PDF bytes; a draft without an issue context."""
     document, printed = content(matter)
     return print_pack(document, layout=layout, digest=printed, issue=issue)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Written:
+    """What a pack command wrote."""
+
+    pages: int
+    digest: str
+
+
+def write_pack(
+    matter: Matter, target: Path, *, paper: Literal["A4", "Letter"], only: tuple[SheetKind, ...]
+) -> Written:
+    """Places and draws a draft and moves it into place. Raises InputError."""
+    document, printed = content(matter)
+    pages = place(document, Layout(paper=paper, kinds=only), digest=printed)
+    write_aside(target, pdf_bytes(pages, document))
+    return Written(pages=len(pages), digest=printed)
+
+
+def status_of(found: Targets, procedure: Procedure | None = None) -> ExitStatus:
+    """Exit status that targets, and a procedure from them, come to."""
+    if found.refusals:
+        return ExitStatus.REFUSED
+    if procedure is None:
+        return ExitStatus.GOOD
+    match procedure.verdict:
+        case Verdict.ESTABLISHED:
+            return ExitStatus.GOOD
+        case Verdict.REFUTED:
+            return ExitStatus.REFUSED
+        case _:
+            return ExitStatus.NOT_ESTABLISHED
+
+
+def check_text(described: Described) -> Iterator[str]:
+    return machine_lines(described.machine)
+
+
+def check_json(described: Described) -> dict[str, Json]:
+    return machine_json(described.machine)
+
+
+def targets_text(described: Described, found: Targets) -> Iterator[str]:
+    return target_lines(_speaker(described), found)
+
+
+def targets_json(described: Described, found: Targets) -> dict[str, Json]:
+    return as_json.targets_json(_speaker(described), found)
+
+
+def steps_text(matter: Matter) -> Iterator[str]:
+    return step_lines(matter.speaker, matter.procedure, _spoken(matter), _findings(matter))
+
+
+def steps_json(matter: Matter) -> dict[str, Json]:
+    return as_json.steps_json(
+        matter.speaker, matter.procedure, _spoken(matter), matter.procedure.verdict, _findings(matter)
+    )
+
+
+def refusal_text(matter: Matter) -> Iterator[str]:
+    return finding_lines(matter.speaker, _findings(matter))
+
+
+def _speaker(described: Described) -> Speaker:
+    return Speaker(described.machine, described.circuit, described.policies, {})
+
+
+def _spoken(matter: Matter) -> dict[int, tuple[SpokenStep, ...]]:
+    return {place: matter.spoken(stage) for place, stage in enumerate(matter.procedure.stages)}
+
+
+def _findings(matter: Matter) -> tuple[Finding, ...]:
+    return (*matter.targets.findings, *matter.procedure.findings)
 
 
 def write_aside(target: Path, data: bytes) -> None:
