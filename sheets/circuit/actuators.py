@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from sheets.circuit.smooth import Bools, Floats, Ints, ramp
-from sheets.circuit.stamp import NONE, Stamp, StateArrays
+from sheets.circuit.stamp import NO_SLOPES, NONE, Stamp, StateArrays
 
 LEAST_FORCE_BEND_BAR = 0.05
 DAMPING_BAR_PER_LPM = 2e-4
@@ -59,7 +60,14 @@ class Actuators:
     cross_leakage: Floats
     has_stops: Bools
 
-    def stamp(self, pressures_bar: Floats, state: StateArrays, *, widening: float) -> Stamp:
+    @cached_property
+    def terminals(self) -> Ints:
+        """[E, 3] nodes at A, at B and at the case."""
+        return np.stack((self.node_a, self.node_b, self.case), axis=-1)
+
+    def stamp(
+        self, pressures_bar: Floats, state: StateArrays, *, widening: float, slopes: bool = True
+    ) -> Stamp:
         """Flows of a batch; ``through`` is the flow into side A that moves it."""
         batch, count = len(pressures_bar), len(self.ids)
         p_a, p_b, p_case = (pressures_bar[:, node] for node in (self.node_a, self.node_b, self.case))
@@ -74,27 +82,26 @@ class Actuators:
         share_a, share_b = self.swept_a / larger, self.swept_b / larger
         to_case_a, to_case_b = self.case_leakage * (p_a - p_case), self.case_leakage * (p_b - p_case)
         across = self.cross_leakage * (p_a - p_b)
-        inflow = np.stack(
-            (
-                -share_a * swept_flow - to_case_a - across,
-                share_b * swept_flow - to_case_b + across,
-                to_case_a + to_case_b,
-            ),
-            axis=-1,
-        )
-        slopes = np.zeros((batch, count, 3, 3))
-        slopes[:, :, A, A] = -share_a * share_a * gain - self.case_leakage - self.cross_leakage
-        slopes[:, :, A, B] = share_a * share_b * gain + self.cross_leakage
-        slopes[:, :, B, A] = share_b * share_a * gain + self.cross_leakage
-        slopes[:, :, B, B] = -share_b * share_b * gain - self.case_leakage - self.cross_leakage
-        slopes[:, :, (A, B), CASE] = self.case_leakage[:, None]
-        slopes[:, :, CASE, (A, B)] = self.case_leakage[:, None]
-        slopes[:, :, CASE, CASE] = -2.0 * self.case_leakage
+        inflow = np.empty((batch, count, 3))
+        inflow[:, :, A] = -share_a * swept_flow - to_case_a - across
+        inflow[:, :, B] = share_b * swept_flow - to_case_b + across
+        inflow[:, :, CASE] = to_case_a + to_case_b
+        by_pressures = NO_SLOPES
+        if slopes:
+            leaks = self.case_leakage + self.cross_leakage
+            by_pressures = np.empty((batch, count, 3, 3))
+            by_pressures[:, :, A, A] = -share_a * share_a * gain - leaks
+            by_pressures[:, :, A, B] = share_a * share_b * gain + self.cross_leakage
+            by_pressures[:, :, B, A] = by_pressures[:, :, A, B]
+            by_pressures[:, :, B, B] = -share_b * share_b * gain - leaks
+            by_pressures[:, :, (A, B), CASE] = self.case_leakage[:, None]
+            by_pressures[:, :, CASE, (A, B)] = self.case_leakage[:, None]
+            by_pressures[:, :, CASE, CASE] = -2.0 * self.case_leakage
         return Stamp(
-            terminals=np.stack((self.node_a, self.node_b, self.case), axis=-1),
+            terminals=self.terminals,
             through_lpm=share_a * swept_flow,
             inflow_lpm=inflow,
-            slopes=slopes,
+            slopes=by_pressures,
             adjusters=np.full((count, 0), NONE, dtype=np.intp),
             setting_slopes=np.zeros((batch, count, 3, 0)),
         )

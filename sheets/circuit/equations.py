@@ -47,13 +47,20 @@ def capacities(circuit: Circuit) -> Floats:
     return CAPACITY_LPM_PER_BAR_L * np.array([node.volume_l for node in circuit.nodes], dtype=np.float64)
 
 
-def balance(circuit: Circuit, state: StateArrays, pressures_bar: Floats, *, widening: float = 1.0) -> Balance:
-    """Evaluate every law and sum up at every node."""
-    ways = circuit.ways.stamp(pressures_bar, state)
-    checks = circuit.checks.stamp(pressures_bar, widening=widening)
-    reliefs = circuit.reliefs.stamp(pressures_bar, state, widening=widening)
-    pumps = circuit.pumps.stamp(pressures_bar, state, widening=widening)
-    actuators = circuit.actuators.stamp(pressures_bar, state, widening=widening)
+def balance(
+    circuit: Circuit,
+    state: StateArrays,
+    pressures_bar: Floats,
+    *,
+    widening: float = 1.0,
+    slopes: bool = True,
+) -> Balance:
+    """Evaluate every law and sum up at every node; without slopes where only the residuals are wanted."""
+    ways = circuit.ways.stamp(pressures_bar, state, slopes=slopes)
+    checks = circuit.checks.stamp(pressures_bar, widening=widening, slopes=slopes)
+    reliefs = circuit.reliefs.stamp(pressures_bar, state, widening=widening, slopes=slopes)
+    pumps = circuit.pumps.stamp(pressures_bar, state, widening=widening, slopes=slopes)
+    actuators = circuit.actuators.stamp(pressures_bar, state, widening=widening, slopes=slopes)
     void, void_slopes = void_flow(pressures_bar=pressures_bar, widening=widening)
     stamps = (ways, checks, reliefs, pumps, actuators)
 

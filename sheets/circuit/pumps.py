@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from sheets.circuit.smooth import Bools, Floats, Ints, orifice_flow, smaller
-from sheets.circuit.stamp import Stamp, StateArrays
+from sheets.circuit.stamp import NO_SLOPES, Stamp, StateArrays
 
 STROKE_BEND = 0.05
 """Share of full flow over which one limit of the stroke hands over to another."""
@@ -80,34 +81,61 @@ class Pumps:
         """[B, pumps] whether its drive runs."""
         return state.running[:, self.drive]
 
-    def stamp(self, pressures_bar: Floats, state: StateArrays, *, widening: float) -> Stamp:
+    @cached_property
+    def terminals(self) -> Ints:
+        """[E, 4] outlet, suction, case and LS node of each pump."""
+        return np.stack((self.outlet, self.suction, self.case, self.signal), axis=-1)
+
+    @cached_property
+    def adjusters(self) -> Ints:
+        """[E, 2] compensator and load-sensing control of each pump."""
+        return np.stack((self.compensator, self.load_sensing), axis=-1)
+
+    def stamp(
+        self, pressures_bar: Floats, state: StateArrays, *, widening: float, slopes: bool = True
+    ) -> Stamp:
         """Net flows of a batch and what they do to the nodes."""
         batch, count = len(pressures_bar), len(self.ids)
         net, by_pressure, by_setting = self._net_flow(pressures_bar, state, widening=widening)
         leakage = self.leakage_per_bar * (pressures_bar[:, self.outlet] - pressures_bar[:, self.case])
         turning = self.turning(state).astype(np.float64)
+        # What seeps inside into the LS node comes from the outlet or from the case.
+        source = np.where(self.bled_from_outlet, self.outlet, self.case)
+        seeps, seep_slope = orifice_flow(
+            drop_bar=pressures_bar[:, source] - pressures_bar[:, self.signal], conductance=self.signal_bleed
+        )
+        from_outlet = self.bled_from_outlet.astype(np.float64)
 
-        inflow = np.zeros((batch, count, 4))
-        slopes = np.zeros((batch, count, 4, 4))
-        setting_slopes = np.zeros((batch, count, 4, 2))
-        inflow[:, :, OUTLET] = net
+        inflow = np.empty((batch, count, 4))
+        inflow[:, :, OUTLET] = net - from_outlet * seeps
         inflow[:, :, SUCTION] = -(net + leakage)
-        inflow[:, :, CASE] = leakage
-        slopes[:, :, OUTLET] = by_pressure
-        slopes[:, :, SUCTION] = -by_pressure
-        setting_slopes[:, :, OUTLET] = by_setting
-        setting_slopes[:, :, SUCTION] = -by_setting
-        for node, sign in ((OUTLET, 1.0), (CASE, -1.0)):
-            slopes[:, :, CASE, node] += sign * self.leakage_per_bar
-            slopes[:, :, SUCTION, node] -= sign * self.leakage_per_bar
-        self._add_bleed(pressures_bar, inflow, slopes)
+        inflow[:, :, CASE] = leakage - (1.0 - from_outlet) * seeps
+        inflow[:, :, SIGNAL] = seeps
+        inflow *= turning[:, :, None]
+        by_pressures = by_settings = NO_SLOPES
+        if slopes:
+            by_pressures = np.zeros((batch, count, 4, 4))
+            by_pressures[:, :, OUTLET] = by_pressure
+            by_pressures[:, :, SUCTION] = -by_pressure
+            for node, sign in ((OUTLET, 1.0), (CASE, -1.0)):
+                by_pressures[:, :, CASE, node] += sign * self.leakage_per_bar
+                by_pressures[:, :, SUCTION, node] -= sign * self.leakage_per_bar
+            for terminal, share in ((OUTLET, from_outlet), (CASE, 1.0 - from_outlet)):
+                by_pressures[:, :, terminal, terminal] -= share * seep_slope
+                by_pressures[:, :, terminal, SIGNAL] += share * seep_slope
+                by_pressures[:, :, SIGNAL, terminal] += share * seep_slope
+            by_pressures[:, :, SIGNAL, SIGNAL] -= seep_slope
+            by_pressures *= turning[:, :, None, None]
+            by_settings = np.zeros((batch, count, 4, 2))
+            by_settings[:, :, OUTLET] = by_setting * turning[:, :, None]
+            by_settings[:, :, SUCTION] = -by_settings[:, :, OUTLET]
         return Stamp(
-            terminals=np.stack((self.outlet, self.suction, self.case, self.signal), axis=-1),
+            terminals=self.terminals,
             through_lpm=net * turning,
-            inflow_lpm=inflow * turning[:, :, None],
-            slopes=slopes * turning[:, :, None, None],
-            adjusters=np.stack((self.compensator, self.load_sensing), axis=-1),
-            setting_slopes=setting_slopes * turning[:, :, None, None],
+            inflow_lpm=inflow,
+            slopes=by_pressures,
+            adjusters=self.adjusters,
+            setting_slopes=by_settings,
         )
 
     def stroke(self, pressures_bar: Floats, net_flow_lpm: Floats, state: StateArrays) -> Floats:
@@ -151,21 +179,10 @@ class Pumps:
         leaks = np.where(controlled, -by_limited * by_full - by_closed, -1.0) * self.leakage_per_bar
         by_over_case = leaks + through * keeps * by_case_rise
         by_over_signal = -through * takes * signal_gain
-        zero = np.zeros_like(by_over_case)
-        by_pressure = np.stack((by_over_case + by_over_signal, zero, -by_over_case, -by_over_signal), axis=-1)
-        by_setting = np.stack((through * keeps * by_compensator, through * takes * signal_gain), axis=-1)
+        by_pressure = np.zeros((*through.shape, 4))
+        by_pressure[:, :, OUTLET] = by_over_case + by_over_signal
+        by_pressure[:, :, CASE], by_pressure[:, :, SIGNAL] = -by_over_case, -by_over_signal
+        by_setting = np.empty((*through.shape, 2))
+        by_setting[:, :, 0] = through * keeps * by_compensator
+        by_setting[:, :, 1] = through * takes * signal_gain
         return np.where(controlled, -negative, full), by_pressure, by_setting
-
-    def _add_bleed(self, pressures_bar: Floats, inflow: Floats, slopes: Floats) -> None:
-        """Add what seeps inside the pump into its LS node."""
-        for source, conducts in (
-            (OUTLET, np.where(self.bled_from_outlet, self.signal_bleed, 0.0)),
-            (CASE, np.where(self.bled_from_outlet, 0.0, self.signal_bleed)),
-        ):
-            node = self.outlet if source == OUTLET else self.case
-            drop_bar = pressures_bar[:, node] - pressures_bar[:, self.signal]
-            flow, slope = orifice_flow(drop_bar=drop_bar, conductance=conducts)
-            for terminal, sign in ((source, -1.0), (SIGNAL, 1.0)):
-                inflow[:, :, terminal] += sign * flow
-                slopes[:, :, terminal, source] += sign * slope
-                slopes[:, :, terminal, SIGNAL] -= sign * slope

@@ -47,7 +47,9 @@ class Reliefs:
     reference_flow_lpm: Floats
     adjuster: Ints
 
-    def stamp(self, pressures_bar: Floats, state: StateArrays, *, widening: float) -> Stamp:
+    def stamp(
+        self, pressures_bar: Floats, state: StateArrays, *, widening: float, slopes: bool = True
+    ) -> Stamp:
         """Flows of a batch and what they do to the nodes."""
         setting_bar = state.setting(self.adjuster)
         drop_bar = pressures_bar[:, self.first] - pressures_bar[:, self.second]
@@ -61,19 +63,17 @@ class Reliefs:
         wide_bar = bend_bar * widening
         beyond_bar = drop_bar - self.opening_ratio * setting_bar
         lift_bar, share = ramp(x=beyond_bar, width=wide_bar)
-        plain = two_ended(
-            first=self.first, second=self.second, flow_lpm=gain * lift_bar, slope=gain * share
-        )
         by_bend = -0.5 * share * share * widening
         by_setting = (
             gain * (by_bend * bend_slope - share * self.opening_ratio)
             - gain * lift_bar * (band_slope - 0.5 * bend_slope) / (band_bar - 0.5 * bend_bar)
         )
-        return Stamp(
-            terminals=plain.terminals,
-            through_lpm=plain.through_lpm,
-            inflow_lpm=plain.inflow_lpm,
-            slopes=plain.slopes,
-            adjusters=self.adjuster[:, None],
-            setting_slopes=np.stack((-by_setting, by_setting), axis=-1)[..., None],
+        return two_ended(
+            first=self.first,
+            second=self.second,
+            flow_lpm=gain * lift_bar,
+            slope=gain * share,
+            slopes=slopes,
+            adjusters=self.adjuster,
+            by_setting=by_setting,
         )

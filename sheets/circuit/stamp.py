@@ -61,15 +61,40 @@ class Stamp:
     """[B, E, T, A] of inflow by each setting, L/min/bar."""
 
 
-def two_ended(*, first: Ints, second: Ints, flow_lpm: Floats, slope: Floats) -> Stamp:
+NO_SLOPES: Floats = np.zeros((0, 0, 0, 0))
+"""Stands where slopes are not wanted."""
+
+
+def two_ended(
+    *,
+    first: Ints,
+    second: Ints,
+    flow_lpm: Floats,
+    slope: Floats,
+    slopes: bool,
+    adjusters: Ints | None = None,
+    by_setting: Floats | None = None,
+) -> Stamp:
     """The stamp of elements that pass a flow from one node to another, by the difference of pressures."""
     batch, count = flow_lpm.shape
-    by_pressure = np.stack((-slope, slope, slope, -slope), axis=-1).reshape(batch, count, 2, 2)
+    inflow = np.empty((batch, count, 2))
+    inflow[:, :, 0], inflow[:, :, 1] = -flow_lpm, flow_lpm
+    by_pressure = by_settings = NO_SLOPES
+    if slopes:
+        by_pressure = np.empty((batch, count, 2, 2))
+        by_pressure[:, :, 0, 0] = by_pressure[:, :, 1, 1] = -slope
+        by_pressure[:, :, 0, 1] = by_pressure[:, :, 1, 0] = slope
+        by_settings = np.zeros((batch, count, 2, 0))
+        if by_setting is not None:
+            by_settings = np.empty((batch, count, 2, 1))
+            by_settings[:, :, 0, 0], by_settings[:, :, 1, 0] = -by_setting, by_setting
+    terminals = np.empty((count, 2), dtype=np.intp)
+    terminals[:, 0], terminals[:, 1] = first, second
     return Stamp(
-        terminals=np.stack((first, second), axis=-1),
+        terminals=terminals,
         through_lpm=flow_lpm,
-        inflow_lpm=np.stack((-flow_lpm, flow_lpm), axis=-1),
+        inflow_lpm=inflow,
         slopes=by_pressure,
-        adjusters=np.full((count, 0), NONE, dtype=np.intp),
-        setting_slopes=np.zeros((batch, count, 2, 0)),
+        adjusters=np.full((count, 0), NONE, dtype=np.intp) if adjusters is None else adjusters[:, None],
+        setting_slopes=by_settings,
     )

@@ -54,12 +54,14 @@ class Ways:
         position = state.positions[:, np.maximum(self.valve, 0)]
         return np.where(self.valve >= 0, self.opens[np.arange(len(self.ids)), position], always)
 
-    def stamp(self, pressures_bar: Floats, state: StateArrays) -> Stamp:
+    def stamp(self, pressures_bar: Floats, state: StateArrays, *, slopes: bool = True) -> Stamp:
         """Flows of a batch and what they do to the nodes."""
         drop_bar = pressures_bar[:, self.first] - pressures_bar[:, self.second]
         conducts = np.where(self.is_open(state), self.conductance, 0.0)
         flow, slope = orifice_flow(drop_bar=drop_bar, conductance=conducts)
-        return two_ended(first=self.first, second=self.second, flow_lpm=flow, slope=slope)
+        return two_ended(
+            first=self.first, second=self.second, flow_lpm=flow, slope=slope, slopes=slopes
+        )
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -90,9 +92,11 @@ class Checks:
     conductance: Floats
     opening_bar: Floats
 
-    def stamp(self, pressures_bar: Floats, *, widening: float) -> Stamp:
+    def stamp(self, pressures_bar: Floats, *, widening: float, slopes: bool = True) -> Stamp:
         """Flows of a batch and what they do to the nodes."""
         drop_bar = pressures_bar[:, self.first] - pressures_bar[:, self.second]
         beyond, share = ramp(x=drop_bar - self.opening_bar, width=CHECK_BEND_BAR * widening)
         flow, slope = orifice_flow(drop_bar=beyond, conductance=self.conductance)
-        return two_ended(first=self.first, second=self.second, flow_lpm=flow, slope=slope * share)
+        return two_ended(
+            first=self.first, second=self.second, flow_lpm=flow, slope=slope * share, slopes=slopes
+        )
