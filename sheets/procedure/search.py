@@ -27,14 +27,14 @@ from sheets.procedure.conditions import (
     unestablished,
 )
 from sheets.procedure.gauges import GaugeChoice, choose_gauge
+from sheets.procedure.in_use import STILL_EFFECT, ever_governs
 from sheets.procedure.load import drive_findings
 from sheets.targets.settings import Setting, Targets
 
 STATE_LIMIT = 20_000
 """Sets of changes that are tried before the answer is 'not found within the limit'."""
 BATCH = 256
-STILL_EFFECT = 1e-6
-"""Effect below which a reading doesn't answer at all."""
+_STAGES = tuple(Condition)
 _REACH_SHARE = 0.9
 """Nodes that stand at this share of the reading, or more, are in reach of the pressure that is set."""
 
@@ -108,8 +108,13 @@ class _Wanted:
     answer: TestState | None = field(default=None)
 
     def note(self, failure: Failure, changes: tuple[Change, ...], distance_bar: float) -> None:
-        """Keeps the failure of the state that came nearest: latest condition, then smallest distance."""
-        rank = (list(Condition).index(failure.condition), -distance_bar)
+        """Keeps the failure of the state that came nearest: latest condition, then smallest distance.
+
+        Up to ALONE the conditions count alike: a state that moves just below the target came nearer than one
+        that stands still far from it.
+        """
+        stage = 0 if failure.condition is Condition.ESTABLISHED else _STAGES.index(failure.condition)
+        rank = (max(stage, _STAGES.index(Condition.ALONE)) if stage else 0, -distance_bar)
         if self.nearest is None or rank > self.nearest[0]:
             self.nearest = (rank, failure, changes)
 
@@ -143,7 +148,7 @@ def find_test_states(machine: Machine, circuit: Circuit, targets: Targets, polic
     for id_, one in wanted.items():
         if one.answer is not None:
             answers[id_] = one.answer
-        elif id_ in by_law or (exhausted and not one.responded):
+        elif id_ in by_law or (exhausted and not one.responded and not ever_governs(circuit, base, id_)):
             answers[id_] = NotInUse(adjuster=id_, by_law=id_ in by_law, states=states)
         else:
             _, failure, changes = one.nearest or ((0, 0.0), Failure(condition=Condition.ESTABLISHED), ())

@@ -1,0 +1,60 @@
+"""Which adjusters can govern a pressure at all: one that can is never called 'not in use'."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from itertools import islice, product
+
+from sheets.circuit.model import AdjusterSite, Circuit
+from sheets.circuit.plant import PlantState
+from sheets.circuit.solver import solve
+
+STILL_EFFECT = 1e-6
+"""Effect below which a reading doesn't answer at all."""
+_BATCH = 256
+
+
+def ever_governs(circuit: Circuit, base: PlantState, adjuster: str) -> bool:
+    """Whether the adjuster's reading answers to it in any state that no opened line makes.
+
+    Valves stand in every combination of their positions, the adjuster at both ends and the middle of its
+    range (at its target in ``base`` it may only be hidden), the others at their targets, all at the highest or
+    all at the lowest end. States that move or aren't fit for setting count too: what governs there is in use.
+    So does a state that isn't established, since nobody knows what governs it.
+    """
+    place = next(index for index, site in enumerate(circuit.adjusters) if site.id == adjuster)
+    site = circuit.adjusters[place]
+    states = _states(circuit, base, site)
+    while batch := list(islice(states, _BATCH)):
+        solved = solve(circuit, batch, effects=True)
+        if solved.effects is None or not solved.established.all():
+            return True
+        if (abs(solved.effects[:, place, site.controlled_node]) > STILL_EFFECT).any():
+            return True
+    return False
+
+
+def _states(circuit: Circuit, base: PlantState, site: AdjusterSite) -> Iterator[PlantState]:
+    valves = list(circuit.positions)
+    own_bar = (site.lowest_bar, (site.lowest_bar + site.highest_bar) / 2.0, site.highest_bar)
+    for positions in product(*circuit.positions.values()):
+        standing = base
+        for valve, position in zip(valves, positions, strict=True):
+            standing = standing.moved(valve, position)
+        for others_bar in _others(circuit, base, site):
+            state = standing
+            for id_, setting_bar in others_bar:
+                state = state.adjusted(id_, setting_bar)
+            for setting_bar in own_bar:
+                yield state.adjusted(site.id, setting_bar)
+
+
+def _others(
+    circuit: Circuit, base: PlantState, site: AdjusterSite
+) -> Sequence[tuple[tuple[str, float], ...]]:
+    others = [other for other in circuit.adjusters if other.id != site.id]
+    return (
+        tuple((other.id, other.highest_bar) for other in others),
+        tuple((other.id, base.settings_bar[other.id]) for other in others),
+        tuple((other.id, other.lowest_bar) for other in others),
+    )
