@@ -208,8 +208,16 @@ def _compensator(
     if screw.setting_bar is None:
         if needed_bar is None:
             return _missing(adjuster)
+        # The window's bottom must still carry the work, so the target stands half a window above it.
+        target_bar = max(needed_bar / (1.0 - policies.window_ratio), needed_bar + policies.window_minimum_bar)
         return _setting(
-            adjuster, screws, needed_bar, Origin.COMPUTED, policies, derivations=derivations, floor_bar=needed_bar
+            adjuster,
+            screws,
+            target_bar,
+            Origin.COMPUTED,
+            policies,
+            derivations=derivations,
+            floor_bar=needed_bar,
         )
     setting = _setting(adjuster, screws, screw.setting_bar, Origin.GIVEN, policies, derivations=derivations)
     if worst is None or needed_bar is None:
