@@ -7,7 +7,7 @@ import sys
 import tempfile
 import traceback
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Literal
 
 import click
 
@@ -26,7 +26,9 @@ SITE = click.option(
     metavar="FILE",
     help="Site file; without it, site.yaml beside the machine file, if there is one.",
 )
-AS_JSON = click.option("--json", "as_json", is_flag=True, help="Print data with stable names instead of text.")
+AS_JSON = click.option(
+    "--json", "as_json", is_flag=True, help="Print data with stable names instead of text."
+)
 KINDS = ("cover", "instruction", "lockout", "record", "tags", "engineer")
 
 
@@ -93,7 +95,13 @@ def steps(machine: Path, site: Path | None, as_json: bool) -> None:
 @main.command()
 @MACHINE
 @SITE
-@click.option("-o", "--output", type=click.Path(path_type=Path), metavar="FILE", help="PDF to write; else TAG-draft.pdf here.")
+@click.option(
+    "-o",
+    "--output",
+    type=click.Path(path_type=Path),
+    metavar="FILE",
+    help="PDF to write; else TAG-draft.pdf here.",
+)
 @click.option("--paper", type=click.Choice(["A4", "Letter"]), default="A4", show_default=True)
 @click.option(
     "--only",
@@ -101,7 +109,13 @@ def steps(machine: Path, site: Path | None, as_json: bool) -> None:
     multiple=True,
     help="Print this document of the pack only; may be named several times.",
 )
-def pack(machine: Path, site: Path | None, output: Path | None, paper: str, only: tuple[str, ...]) -> None:
+def pack(
+    machine: Path,
+    site: Path | None,
+    output: Path | None,
+    paper: Literal["A4", "Letter"],
+    only: tuple[str, ...],
+) -> None:
     """Print a draft pack: cover, lockout sheets, work instruction, record, tags, engineer's page.
 
     Example: jamnut pack sample_machines/clay_mixer.yaml -o clay_mixer.pdf

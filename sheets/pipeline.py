@@ -84,10 +84,8 @@ def steps(described: Described) -> Matter:
         circuit=described.circuit,
         targets=found,
         procedure=procedure,
-        hazards=assess(described.machine, described.circuit, procedure),
-        speaker=Speaker(
-            described.machine, described.circuit, described.policies, procedure.search.found()
-        ),
+        hazards=assess(described.machine, described.circuit, procedure, described.policies),
+        speaker=Speaker(described.machine, described.circuit, described.policies, procedure.search.found()),
         engine=str(ENGINE),
     )
 

@@ -190,7 +190,10 @@ class Emphasis:
 class SettingTag:
     """One setting tag, ISO/IEC 7810 ID-1 size."""
 
+    id: str
+    """Adjuster that it belongs to: two may sit on one part."""
     adjuster: str
+    """As it stands large on the tag: the part."""
     kind: str
     face: GaugeFace
     value: str

@@ -125,7 +125,7 @@ def tag_piece(tag: SettingTag, frame: Frame) -> Piece:
     else:
         side = CODE_MODULE * len(frame.code)
         ink.code(right - side, CODE_TOP, CODE_MODULE, frame.code)
-        ink.mark(Mark(kind="code", key=tag.adjuster, x=right - side, y=CODE_TOP, width=side, height=side))
+        ink.mark(Mark(kind="code", key=tag.id, x=right - side, y=CODE_TOP, width=side, height=side))
     name_and_kind(ink, tag, width=right - CODE_SIDE - 4 * CODE_MODULE)
     centre = INSET + DIAL / 2
     if tag.face.digital:
@@ -134,7 +134,7 @@ def tag_piece(tag: SettingTag, frame: Frame) -> Piece:
         dial_face(ink, tag.face, x=centre, y=18.2 * MM + DIAL / 2, diameter=DIAL)
     as_left = tag.as_left
     if frame.issue is not None:
-        as_left = dict(frame.issue.as_left).get(tag.adjuster, tag.as_left)
+        as_left = dict(frame.issue.as_left).get(tag.id, tag.as_left)
     body(ink, tag, as_left)
     foot = HEIGHT - 1.9 * MM
     one_line(ink, tag, tag.footer, x=INSET, y=foot, width=right - INSET, styles=FOOT)
@@ -147,8 +147,8 @@ def tag_piece(tag: SettingTag, frame: Frame) -> Piece:
     end = TEXT_LEFT + ink.text(TEXT_LEFT, known, number + kept, shape)
     if frame.issue is None:
         draft_word(ink, end + 2 * MM, known, words.draft, REVISION[-1])
-    ink.mark(Mark(kind="tag", key=tag.adjuster, x=0, y=0, width=WIDTH, height=HEIGHT))
-    return ink.piece(HEIGHT, name=tag.adjuster)
+    ink.mark(Mark(kind="tag", key=tag.id, x=0, y=0, width=WIDTH, height=HEIGHT))
+    return ink.piece(HEIGHT, name=tag.id)
 
 
 @dataclass(frozen=True, kw_only=True)

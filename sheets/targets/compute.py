@@ -57,7 +57,9 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
         for relief in line.reliefs:
             if relief not in settings:
                 _settle(
-                    settings, findings, _relief(relief, line, machine, circuit, screws, settings, demands, policies)
+                    settings,
+                    findings,
+                    _relief(relief, line, machine, circuit, screws, settings, demands, policies),
                 )
     for id_ in screws:
         if id_ not in settings and not any(finding.subject == id_ for finding in findings):
@@ -70,9 +72,7 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
     return Targets(settings=_apart(ordered, lines), findings=tuple(findings))
 
 
-def _settle(
-    settings: dict[str, Setting], findings: list[Finding], outcome: Setting | Finding
-) -> None:
+def _settle(settings: dict[str, Setting], findings: list[Finding], outcome: Setting | Finding) -> None:
     if isinstance(outcome, Setting):
         settings[outcome.adjuster] = outcome
         findings.extend(outcome.findings)
@@ -127,9 +127,7 @@ def _missing(adjuster: str) -> Finding:
     return Finding(code="value_not_given", severity=Severity.REFUSED, subject=adjuster)
 
 
-def _given(
-    adjuster: str, screws: Mapping[str, Screw], policies: Policies
-) -> Setting | Finding:
+def _given(adjuster: str, screws: Mapping[str, Screw], policies: Policies) -> Setting | Finding:
     """A setting that only a maker or an owner can give."""
     screw = screws[adjuster].adjuster
     if screw.setting_bar is None:
@@ -189,7 +187,9 @@ def _compensator(
     derivations: tuple[Derivation, ...] = ()
     needed_bar: float | None = None
     if worst is not None and not worst.held_back:
-        needed_bar = compensator_needed_bar(demand_bar=worst.pump_pressure_bar, reserve=policies.reserve_ratio)
+        needed_bar = compensator_needed_bar(
+            demand_bar=worst.pump_pressure_bar, reserve=policies.reserve_ratio
+        )
         derivations = (
             Derivation(
                 result_name="lowest setting for the work",

@@ -10,6 +10,7 @@ from sheets.circuit.solver import solve
 from sheets.machine.model import Machine
 from sheets.machine.parts import DirectionalValve, FixedPump, VariablePump
 
+
 @dataclass(frozen=True, kw_only=True)
 class Demand:
     """One actuator moved by one valve position, at the flow that the circuit gives it."""

@@ -50,9 +50,7 @@ def reading_window(
     never past ``floor_bar`` and ``ceiling_bar`` (neighbours, inequality, ratings). A given window is only
     ever cut inward. Returns bar. Source: rule of this project.
     """
-    first, last, count = graduations_within(
-        low_bar=low_bar, high_bar=high_bar, graduation_bar=graduation_bar
-    )
+    first, last, count = graduations_within(low_bar=low_bar, high_bar=high_bar, graduation_bar=graduation_bar)
     if count < 3 and widen:
         middle_bar = (low_bar + high_bar) / 2.0
         half_bar = high_bar - low_bar  # twice the half width

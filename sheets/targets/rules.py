@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from sheets.amounts import Derivation, Finding, Severity, bar, lpm, ratio
+from sheets.amounts import Amount, Derivation, Finding, Severity, bar, lpm, ratio
 
 
 def compensator_needed_bar(*, demand_bar: float, reserve: float) -> float:
@@ -43,7 +43,7 @@ def relief_over_compensator(
     ratio is policy), and if it isn't above the compensator's window; warned if it may stay open once opened.
     """
     findings: list[Finding] = []
-    data = {
+    data: dict[str, Amount | str] = {
         "setting": bar(setting_bar),
         "other": compensator,
         "other_setting": bar(compensator_bar),
@@ -100,9 +100,7 @@ def working_relief(
     findings: tuple[Finding, ...] = ()
     data = {"bottom": bar(window_bottom_bar), "demand": bar(demand_bar), "needed": bar(needed_bar)}
     if window_bottom_bar <= demand_bar:
-        findings = (
-            Finding(code="limit_under_work", severity=Severity.REFUSED, subject=relief, data=data),
-        )
+        findings = (Finding(code="limit_under_work", severity=Severity.REFUSED, subject=relief, data=data),)
     elif window_bottom_bar < needed_bar:
         findings = (
             Finding(code="limit_close_to_work", severity=Severity.WARNING, subject=relief, data=data),

@@ -116,7 +116,7 @@ def steps_json(
             {"before": edge.before, "after": edge.after, "why": edge.kind.value}
             for edge in procedure.order.edges
         ],
-        "ties": [sorted(tie) for tie in procedure.order.ties],
+        "ties": [list[Json](sorted(tie)) for tie in procedure.order.ties],
         "stages": [
             {
                 "kind": stage.kind.value,

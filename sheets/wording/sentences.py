@@ -13,7 +13,7 @@ from sheets.resources import resource_folder
 @lru_cache(maxsize=8)
 def _environment(language: str) -> Environment:
     # Pages draw text literally, so nothing is escaped: a '<' in a name is a '<' on paper.
-    return Environment(  # noqa: S701 -- no HTML is made from these templates
+    return Environment(
         loader=FileSystemLoader(resource_folder("templates") / language),
         undefined=StrictUndefined,
         autoescape=False,
@@ -49,4 +49,3 @@ class Sentences:
         macro = getattr(self._module, sentence)
         taken = {argument: values.get(argument, "") for argument in macro.arguments}
         return str(macro(**taken)).strip()
-

@@ -7,7 +7,8 @@ from dataclasses import dataclass
 
 from sheets.amounts import Amount
 from sheets.circuit.model import Circuit
-from sheets.hazards.assess import HEAT_KW, Hazard, Signal
+from sheets.circuit.plant import MoveValve
+from sheets.hazards.assess import Hazard, Signal
 from sheets.machine.model import Machine
 from sheets.machine.parts import DialGauge, DirectionalValve, ElectricMotor, HandValve
 from sheets.machine.screws import screws_of
@@ -17,10 +18,6 @@ from sheets.procedure.search import TestState
 from sheets.procedure.steps import Reading, Stage, StageKind, Step, StepKind
 from sheets.wording.figures import Figures
 from sheets.wording.sentences import Sentences
-
-
-HEATING = frozenset({StepKind.HOLD_VALVE, StepKind.CLOSE_GRADUALLY, StepKind.COME_UP})
-"""Steps that say how long a try may last."""
 
 
 def capital(text: str) -> str:
@@ -147,7 +144,8 @@ class Speaker:
         """Everything that a sentence may want to name."""
         machine, data = self.machine, step.data
         values = {key: self.figures.amount(value) for key, value in data.items()}
-        values |= {"subject": step.subject, "stop": self.stop, "gauge": step.reading.gauge if step.reading else ""}
+        gauge = step.reading.gauge if step.reading else ""
+        values |= {"subject": step.subject, "stop": self.stop, "gauge": gauge}
         part = machine.parts.get(step.subject)
         if part is not None:
             values |= {"label": self.part(step.subject), "where": part.where}
@@ -156,9 +154,9 @@ class Speaker:
         if isinstance(part, DirectionalValve):
             values["solenoid"] = self._solenoid(step.subject, part)
         if isinstance(part, ElectricMotor):
-            controls = machine.controls
-            place = controls.start if step.kind is StepKind.START else controls.stop
-            values["stop" if step.kind is StepKind.PRESS_STOP else "start"] = f"{place[0].name}, {place[0].where}"
+            controls, stopping = machine.controls, step.kind is StepKind.PRESS_STOP
+            name, places = ("stop", controls.stop) if stopping else ("start", controls.start)
+            values[name] = f"{places[0].name}, {places[0].where}"
             values["seconds"] = self.figures.amount(Amount(value=part.coasts_for_s, quantity="time_s"))
         supply = machine.energy.get(step.subject)
         if supply is not None:
@@ -180,16 +178,14 @@ class Speaker:
         return values
 
     def _solenoid(self, valve: str, part: DirectionalValve) -> str:
-        position = next(
-            (
-                change.position
-                for state in self.found.values()
-                for change in state.changes
-                if getattr(change, "valve", "") == valve and change.position != part.rest_position  # type: ignore[union-attr]  # only a valve move has a valve
-            ),
-            "",
-        )
-        return part.solenoids.get(position, "")
+        """Solenoid that the test states hold on; empty for a lever."""
+        held = [
+            change.position
+            for state in self.found.values()
+            for change in state.changes
+            if isinstance(change, MoveValve) and change.valve == valve
+        ]
+        return part.solenoids.get(held[0], "") if held else ""
 
     def _order(self, step: Step) -> str:
         values = self._values(step)
@@ -265,7 +261,7 @@ class Speaker:
                 else:
                     lines.append(say("wrong_screw", gauge=values["gauge"]))
             case StepKind.COME_UP:
-                lines.extend(self._come_up(step, values))
+                lines.extend(self._come_up(stage, step, values))
             case StepKind.LOCK_NUT:
                 if values["tool"]:
                     lines.append(say("lock_nut_line", tool=values["tool"]))
@@ -284,21 +280,12 @@ class Speaker:
         lines.extend(self._expected(stage, step, values))
         return tuple(line for line in lines if line)
 
-    def _come_up(self, step: Step, values: Mapping[str, str]) -> list[str]:
+    def _come_up(self, stage: Stage, step: Step, values: Mapping[str, str]) -> list[str]:
         direction = self.turning(step.subject, raising=True)
-        return [
-            self._lines.say("come_up_line", direction=direction, key=values["key"]),
-            self._lines.say("wrong_screw", gauge=values["gauge"]),
-        ]
-
-    def _heat(self, step: Step) -> list[str]:
-        """Longest time of a try, where power turns to heat over a relief."""
-        if step.trace is None or step.trace.relief_kw < HEAT_KW:
-            return []
-        seconds = Amount(value=self.policies.longest_try_s, quantity="time_s")
-        power = Amount(value=step.trace.relief_kw, quantity="power_kw")
-        figures = self.figures
-        return [self._lines.say("at_most", seconds=figures.amount(seconds), power=figures.amount(power))]
+        lines = [self._lines.say("come_up_line", direction=direction, key=values["key"])]
+        if not any(other.kind is StepKind.TURN_BELOW for other in stage.steps):
+            lines.append(self._lines.say("wrong_screw", gauge=values["gauge"]))
+        return lines
 
     def _expected(self, stage: Stage, step: Step, values: Mapping[str, str]) -> list[str]:
         """Reading after the step, and when to stop."""
@@ -314,7 +301,7 @@ class Speaker:
             if reading.low_bar <= 0.0
             else say("expect", gauge=reading.gauge, low=low, high=high)
         )
-        lines = self._heat(step) if step.kind in HEATING else []
+        lines: list[str] = []
         match step.kind:
             case StepKind.READ:
                 pass
@@ -322,9 +309,7 @@ class Speaker:
                 lines.append(say("as_left_window", low=low, high=high))
             case StepKind.CLOSE_GRADUALLY:
                 lines.append(shows)
-                lines.append(
-                    say("open_if_above", gauge=reading.gauge, limit=limit, label=values["subject"])
-                )
+                lines.append(say("open_if_above", gauge=reading.gauge, limit=limit, label=values["subject"]))
             case StepKind.COME_UP:
                 lines.append(say("stop_above", gauge=reading.gauge, limit=limit, stop=self.stop))
             case StepKind.START | StepKind.HOLD_VALVE:

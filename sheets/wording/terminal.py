@@ -72,8 +72,7 @@ def step_lines(
     findings: Iterable[Finding],
 ) -> Iterator[str]:
     """The whole job with warnings before their steps, then findings."""
-    for text in say_not_in_use(speaker, procedure):
-        yield text
+    yield from say_not_in_use(speaker, procedure)
     number = 0
     for place, stage in enumerate(procedure.stages):
         yield ""

@@ -443,6 +443,7 @@ LOCKOUT = Section(
 
 def tag(adjuster: str, kind: str, face: GaugeFace, value: str, window: str, second: str) -> SettingTag:
     return SettingTag(
+        id=adjuster,
         adjuster=adjuster,
         kind=kind,
         face=face,

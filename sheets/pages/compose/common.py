@@ -34,5 +34,7 @@ def emergency(matter: Matter) -> Emphasis:
     return Emphasis(
         lead=matter.text("emergency_lead"),
         lines=(matter.text("emergency_line", stops=stops),),
-        right=matter.text("first_aid_right", telephone=matter.site.emergency_telephone if matter.site else ""),
+        right=matter.text(
+            "first_aid_right", telephone=matter.site.emergency_telephone if matter.site else ""
+        ),
     )

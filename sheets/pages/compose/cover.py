@@ -77,9 +77,7 @@ def _needs(matter: Matter) -> tuple[tuple[str, str], ...]:
         tools[adjuster.key] = None
         if adjuster.lock_nut:
             tools[f"spanner {adjuster.lock_nut}"] = None
-    gauges = {
-        state.gauge.gauge: None for state in matter.procedure.search.found().values()
-    }
+    gauges = {state.gauge.gauge: None for state in matter.procedure.search.found().values()}
     shown = "; ".join(
         f"{id_}: {machine.gauges[id_].kind}, 0 to {matter.figures.pressure(machine.gauges[id_].range_bar)}"
         for id_ in gauges

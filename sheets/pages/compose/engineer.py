@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from sheets.amounts import Derivation
+from sheets.circuit.plant import MoveValve
 from sheets.pages.compose.matter import Matter
 from sheets.pages.document import Block, Heading, Paragraph, Section, SheetKind, Table
 from sheets.procedure.changes import Change
@@ -42,7 +43,7 @@ def engineer(matter: Matter) -> Section:
 
 
 def _change(matter: Matter, change: Change) -> str:
-    if hasattr(change, "valve"):
+    if isinstance(change, MoveValve):
         return matter.text("change_valve", valve=change.valve, position=change.position)
     return matter.text(
         "change_adjuster",
@@ -114,7 +115,12 @@ def _order(matter: Matter) -> list[str]:
 
 def _derivations(matter: Matter, found: dict[str, TestState]) -> Table:
     rows = [
-        (matter.speaker.adjuster(id_), derivation.result_name, _inputs(matter, derivation), matter.figures.amount(derivation.result))
+        (
+            matter.speaker.adjuster(id_),
+            derivation.result_name,
+            _inputs(matter, derivation),
+            matter.figures.amount(derivation.result),
+        )
         for id_ in found
         for derivation in matter.targets.settings[id_].derivations
     ]

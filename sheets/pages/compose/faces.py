@@ -81,9 +81,9 @@ def tags(matter: Matter) -> Section:
 
 def _tag(matter: Matter, state: TestState) -> SettingTag:
     machine, figures, choice = matter.machine, matter.figures, state.gauge
-    screw = matter.speaker.screws[state.adjuster]
     return SettingTag(
-        adjuster=screw.part,
+        id=state.adjuster,
+        adjuster=matter.speaker.screws[state.adjuster].part,
         kind=matter.speaker.tag_kind(state.adjuster),
         face=face(matter, state),
         value=f"{matter.speaker.target_digits(state.adjuster)} {figures.pressure_unit}",
@@ -105,16 +105,15 @@ def _basis(matter: Matter, state: TestState) -> tuple[str, ...]:
         if state.flow_lpm > 0.0
         else matter.text("tag_deadhead")
     )
-    lines = [f"{at}, {matter.text('tag_oil', low=low, high=high)}"]
+    lines = [matter.text("tag_basis", at=at, low=low.removesuffix(" °C"), high=high)]
     below = _next_below(matter, state)
     if below is not None:
         difference = figures.pressure(state.gauge.target_bar - below.gauge.target_bar)
         lines.append(matter.text("tag_above", difference=difference, other=speaker.adjuster(below.adjuster)))
-    direction = speaker.turning(state.adjuster, raising=True).lower()
-    last = matter.text("tag_direction", direction=direction)
     if screw.seal:
-        last += " · " + matter.text("tag_seal", seal=screw.seal)
-    lines += [last, matter.text("tag_force")]
+        lines.append(matter.text("tag_seal", seal=screw.seal))
+    direction = matter.text("tag_direction", raises=screw.raises)
+    lines.append(f"{direction} · {matter.text('tag_force')}")
     return tuple(lines)
 
 

@@ -37,6 +37,10 @@ _OPENING = frozenset(
 )
 
 
+_BEFORE_STATE = frozenset({StepKind.LEAVE_ALONE, StepKind.RUN_IN, StepKind.BACK_OUT, StepKind.START})
+"""Steps of a setting that come before its gauge is watched: they take the whole width."""
+
+
 class Numbering:
     """Step numbers, running through the whole work instruction."""
 
@@ -115,16 +119,17 @@ def _people(matter: Matter) -> Table:
     return Table(
         title=matter.text("window_people_title"),
         head=("place", "name", "from", "to"),
-        rows=((matter.text("role_screw"), "", "", ""), (matter.text("role_stop", stop=matter.speaker.stop), "", "", "")),
+        rows=(
+            (matter.text("role_screw"), "", "", ""),
+            (matter.text("role_stop", stop=matter.speaker.stop), "", "", ""),
+        ),
         shares=(0.30, 0.40, 0.15, 0.15),
         row_height_mm=8.0,
         signed=True,
     )
 
 
-def _groups(
-    matter: Matter, spoken: Sequence[SpokenStep], numbers: Numbering, box: str
-) -> Iterator[Steps]:
+def _groups(matter: Matter, spoken: Sequence[SpokenStep], numbers: Numbering, box: str) -> Iterator[Steps]:
     """Runs of steps, each with the face of the gauge that it reads."""
     run: list[SpokenStep] = []
     for place, step in enumerate(spoken):
@@ -141,9 +146,19 @@ def _run(matter: Matter, run: Sequence[SpokenStep], numbers: Numbering, box: str
     panel = None
     if read:
         gauge = matter.procedure.search.found()[read].gauge.gauge
-        boxes = (Box(label=matter.text(box, gauge=gauge), unit=matter.figures.pressure_unit, strong=True, size="medium"),)
+        boxes = (
+            Box(
+                label=matter.text(box, gauge=gauge),
+                unit=matter.figures.pressure_unit,
+                strong=True,
+                size="medium",
+            ),
+        )
         panel = _panel(matter, read, boxes)
-    return Steps(steps=tuple(page_step(step, number=numbers.next(), boxes=_boxes(matter, step)) for step in run), panel=panel)
+    return Steps(
+        steps=tuple(page_step(step, number=numbers.next(), boxes=_boxes(matter, step)) for step in run),
+        panel=panel,
+    )
 
 
 def _boxes(matter: Matter, spoken: SpokenStep) -> tuple[Box, ...] | None:
@@ -174,13 +189,19 @@ def _setting(matter: Matter, stage: Stage, numbers: Numbering) -> Section:
     state = matter.procedure.search.found()[stage.adjuster]
     gauge = state.gauge.gauge
     boxes = (
-        Box(label=matter.text("box_left", gauge=gauge), unit=matter.figures.pressure_unit, strong=True, size="medium"),
+        Box(
+            label=matter.text("box_left", gauge=gauge),
+            unit=matter.figures.pressure_unit,
+            strong=True,
+            size="medium",
+        ),
         Box(label=matter.text("box_oil"), unit="°C", size="medium"),
     )
-    steps = tuple(
-        page_step(step, number=numbers.next(), boxes=_boxes(matter, step)) for step in matter.spoken(stage)
-    )
-    blocks: list[Block] = [Steps(steps=steps, panel=_panel(matter, stage.adjuster, boxes))]
+    spoken = matter.spoken(stage)
+    begins = max((place + 1 for place, one in enumerate(spoken) if one.step.kind in _BEFORE_STATE), default=0)
+    rows = tuple(page_step(one, number=numbers.next(), boxes=_boxes(matter, one)) for one in spoken)
+    blocks: list[Block] = [Steps(steps=rows[:begins])] if begins else []
+    blocks.append(Steps(steps=rows[begins:], panel=_panel(matter, stage.adjuster, boxes)))
     if _shows_nowhere(matter, stage.adjuster):
         blocks.append(
             Hold(

@@ -29,14 +29,12 @@ _ACTS: tuple[tuple[str, frozenset[StepKind]], ...] = (
     ("relieve", frozenset({StepKind.OPEN_VENT, StepKind.WORK_LEVER})),
     (
         "verify",
-        frozenset(
-            {StepKind.ATTEMPT_START, StepKind.VERIFY_DEAD, StepKind.FIT_GAUGE, StepKind.VERIFY_ZERO}
-        ),
+        frozenset({StepKind.ATTEMPT_START, StepKind.VERIFY_DEAD, StepKind.FIT_GAUGE, StepKind.VERIFY_ZERO}),
     ),
     ("restore", frozenset({StepKind.SET_VALVE, StepKind.REMOVE_GAUGE})),
 )
-"""The regulation's order (29 CFR 1910.147(d)(2) to (d)(6)): stop, isolate with locks, relieve, verify; a load is
-blocked before its line is relieved. What is put back afterwards stands last."""
+"""The regulation's order (29 CFR 1910.147(d)(2) to (d)(6)): stop, isolate with locks, relieve, verify. A load
+is blocked before its line is relieved. What is put back afterwards stands last."""
 
 
 def lockout(matter: Matter, stage: Stage) -> Section:
@@ -127,7 +125,10 @@ def _blocking(matter: Matter) -> tuple[Step, ...]:
         return tuple(rows)
     return (
         Step(
-            number="", order=matter.text("block_none"), lines=(matter.text("block_none_line"),), boxes=(_tick(),)
+            number="",
+            order=matter.text("block_none"),
+            lines=(matter.text("block_none_line"),),
+            boxes=(_tick(),),
         ),
     )
 
