@@ -59,6 +59,7 @@ class Actuators:
     case_leakage: Floats
     cross_leakage: Floats
     has_stops: Bools
+    """Whether its way ends: a cylinder's does, a motor's doesn't."""
 
     @cached_property
     def terminals(self) -> Ints:

@@ -69,6 +69,7 @@ class Pumps:
     full_flow_lpm: Floats
     """V·n·η_v: at the pressure of its rating."""
     overall_efficiency: Floats
+    """Hydraulic power over shaft power: for the load of its drive."""
     compensator: Ints
     compensator_width_bar: Floats
     load_sensing: Ints

@@ -26,8 +26,8 @@ class ReadingWindow:
 def graduations_within(*, low_bar: float, high_bar: float, graduation_bar: float) -> tuple[float, float, int]:
     """Lowest and highest graduation inside an interval, in bar, and how many lie in it.
 
-    ``low_bar`` and ``high_bar`` in bar, ``graduation_bar`` in bar, more than 0. Valid for any dial that starts
-    at 0. Source: definition.
+    ``low_bar`` and ``high_bar`` in bar, ``graduation_bar`` in bar, more than 0. Valid for any dial that
+    starts at 0. Source: definition.
     """
     first = math.ceil(low_bar / graduation_bar - _UNREADABLE)
     last = math.floor(high_bar / graduation_bar + _UNREADABLE)
@@ -45,10 +45,11 @@ def reading_window(
 ) -> ReadingWindow:
     """The window as it can be read.
 
-    ``low_bar`` and ``high_bar``: readings that the setting's window converts to. ``widen``: the window comes
-    from policy, so it may grow by whole graduations until three lie in it, to at most twice its half width and
-    never past ``floor_bar`` and ``ceiling_bar`` (neighbours, inequality, ratings). A given window is only
-    ever cut inward. Returns bar. Source: rule of this project.
+    ``low_bar`` and ``high_bar``: readings that the setting's window converts to; ``graduation_bar``:
+    smallest division or step of the gauge. ``widen``: the window comes from policy, so it may grow by
+    whole graduations until three lie in it, to at most twice its half width and never past ``floor_bar``
+    and ``ceiling_bar`` (neighbours, inequality, ratings). A given window is only ever cut inward. Returns
+    bar. Source: rule of this project.
     """
     first, last, count = graduations_within(low_bar=low_bar, high_bar=high_bar, graduation_bar=graduation_bar)
     if count < 3 and widen:
@@ -68,15 +69,18 @@ def reading_window(
 def never_exceed_bar(*, rating_bar: float, gauge_error_bar: float, graduation_bar: float) -> float:
     """The reading that must never be passed, in bar, on a graduation.
 
-    ``rating_bar``: lowest rating in reach; ``gauge_error_bar``: largest error of the gauge. The true pressure
+    ``rating_bar``: lowest rating in reach; ``gauge_error_bar``: largest error of the gauge;
+    ``graduation_bar``: its smallest division or step. The true pressure
     may stand above the reading by that error. Source: rule of this project.
     """
     return math.floor((rating_bar - gauge_error_bar) / graduation_bar + 1e-6) * graduation_bar
 
 
 def accuracy_ratio(*, half_window_bar: float, gauge_error_bar: float) -> float:
-    """Half of the printed window over the gauge's error; both in bar.
+    """Half of the printed window over the gauge's error.
 
-    An accuracy ratio, not a test uncertainty ratio: it knows the gauge's class only. Source: common practice.
+    ``half_window_bar``: half of the printed window in bar; ``gauge_error_bar``: error of the gauge in
+    bar. An accuracy ratio, not a test uncertainty ratio: it knows the gauge's class only. Source: common
+    practice.
     """
     return half_window_bar / gauge_error_bar

@@ -8,8 +8,9 @@ from sheets.amounts import Amount, Derivation, Finding, Severity, bar, lpm, rati
 def compensator_needed_bar(*, demand_bar: float, reserve: float) -> float:
     """Lowest compensator setting that carries the work.
 
-    ``demand_bar``: pump pressure in bar while the heaviest move runs, margin and losses included; ``reserve`` as a
-    share. Returns bar. Valid where the demand was found with the pump not held back. Source: policy reserve.
+    ``demand_bar``: pump pressure in bar while the heaviest move runs, margin and losses included;
+    ``reserve`` as a share. Returns bar. Valid where the demand was found with the pump not held back.
+    Source: policy reserve.
     """
     return demand_bar * (1.0 + reserve)
 
@@ -17,9 +18,9 @@ def compensator_needed_bar(*, demand_bar: float, reserve: float) -> float:
 def relief_needed_bar(*, compensator_top_bar: float, gap_bar: float, closing_ratio: float) -> float:
     """Lowest bottom of the relief's window that lets it close again over a compensated line.
 
-    ``compensator_top_bar``: top of the compensator's window in bar; ``gap_bar`` in bar; ``closing_ratio``: ρ, closing
-    pressure over setting. Returns bar: ρ·bottom ≥ top + gap. Source: trade article on relief heating (2250 psi
-    and a reset band of 10 % ask for 2600 psi), gap by policy.
+    ``compensator_top_bar``: top of the compensator's window in bar; ``gap_bar`` in bar;
+    ``closing_ratio``: ρ, closing pressure over setting. Returns bar: ρ·bottom ≥ top + gap. Source: trade
+    article on relief heating (2250 psi and a reset band of 10 % ask for 2600 psi), gap by policy.
     """
     return (compensator_top_bar + gap_bar) / closing_ratio
 
@@ -39,8 +40,14 @@ def relief_over_compensator(
 ) -> tuple[tuple[Finding, ...], Derivation]:
     """What is wrong with a given relief setting over a compensator, and the derivation of what is needed.
 
-    Pressures in bar. Refused if the relief opens at or below the deadhead pressure (warned where its opening
-    ratio is policy), and if it isn't above the compensator's window; warned if it may stay open once opened.
+    ``setting_bar`` and ``window_bottom_bar``: the relief's setting and the lower end of its window in
+    bar; ``opening_ratio`` and ``closing_ratio``: the pressures at which it opens and closes again over
+    its setting; ``opening_is_policy``: no plate gives the former. ``compensator_bar`` and
+    ``compensator_top_bar``: the compensator's setting and the upper end of its window in bar;
+    ``gap_bar``: wanted between the two, in bar.
+
+    Refused if the relief opens at or below the deadhead pressure (warned where its opening ratio is policy),
+    and if it isn't above the compensator's window; warned if it may stay open once opened.
     """
     findings: list[Finding] = []
     data: dict[str, Amount | str] = {
@@ -93,8 +100,9 @@ def working_relief(
 ) -> tuple[tuple[Finding, ...], Derivation]:
     """What is wrong with a given setting of a relief that is itself the working limit.
 
-    Pressures in bar. Refused if its window's bottom isn't above the work pressure; warned if it opens before
-    work pressure and reserve are reached.
+    ``window_bottom_bar``: lower end of its window in bar; ``opening_ratio``: opening pressure over setting;
+    ``demand_bar``: pressure in bar that the heaviest move needs; ``reserve`` over it, as a share. Refused if
+    the bottom isn't above the work pressure; warned if it opens before work pressure and reserve are reached.
     """
     needed_bar = demand_bar * (1.0 + reserve) / opening_ratio
     findings: tuple[Finding, ...] = ()
@@ -119,7 +127,11 @@ def working_relief(
 
 
 def relief_capacity(*, relief: str, rated_flow_lpm: float, reaching_flow_lpm: float) -> tuple[Finding, ...]:
-    """Refuses a relief that can't pass every flow that can reach it; flows in L/min."""
+    """Refuses a relief that can't pass every flow that can reach it.
+
+    ``rated_flow_lpm``: from its plate, in L/min; ``reaching_flow_lpm``: sum of the flows that can reach
+    it, in L/min.
+    """
     if rated_flow_lpm >= reaching_flow_lpm:
         return ()
     return (
