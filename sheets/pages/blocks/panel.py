@@ -21,6 +21,8 @@ NUMBER_BOX_HEIGHT = 34 * MM
 BOX_HEIGHT = 13.5 * MM
 STRONG_HEIGHT = 17 * MM
 RUN_GAP = 3 * MM
+BEFORE_GAP = 2.5 * MM
+"""Between the last warning and the steps with their panel."""
 FEWEST_ROWS = 2
 """A run that can't stand on one page begins on a used page only with so many steps."""
 
@@ -132,7 +134,8 @@ class PanelRun:
         panel = self.panel_again if self.begun else self.panel
         y = 0.0
         for part in () if self.begun else self.before:
-            y = ink.add(part, 0, y + (part.space_before if y else 0)) + 3.5 * MM
+            y = ink.add(part, 0, y + (part.space_before if y else 0))
+        y += BEFORE_GAP if y else 0.0
         column = stacked(list(self.steps[:count]), name="")
         ink.add(column, 0, y)
         ink.line(0, y + column.height, self.width - PANEL_WIDTH - PANEL_GAP, y + column.height, HAIRLINE)

@@ -9,7 +9,7 @@ from sheets.pages.document import Emphasis
 def first_aid(matter: Matter) -> Emphasis:
     """What to do when oil goes under the skin."""
     fluid = matter.machine.fluid
-    pressure_bar = max(
+    pressure_bar = min(
         (state.gauge.never_exceed_bar for state in matter.procedure.search.found().values()), default=0.0
     )
     site = matter.site

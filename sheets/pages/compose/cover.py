@@ -2,18 +2,29 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 from sheets.amounts import Finding
-from sheets.pages.compose.common import emergency, first_aid
 from sheets.pages.compose.faces import test_point, window_text
 from sheets.pages.compose.matter import Matter
-from sheets.pages.document import Block, Heading, KeyLines, Paragraph, Section, SheetKind, Table
+from sheets.pages.document import (
+    Act,
+    Block,
+    Heading,
+    KeyLines,
+    Paragraph,
+    Section,
+    SheetKind,
+    Steps,
+    Table,
+)
 from sheets.wording.findings import say_finding, say_not_in_use
 
 
-def cover(matter: Matter) -> Section:
-    """First page of the pack."""
+def cover(matter: Matter, job: Sequence[Section]) -> Section:
+    """First page of the pack; ``job`` are the sheets of the job itself, in order."""
     machine = matter.machine
-    blocks: list[Block] = [_settings(matter)]
+    blocks: list[Block] = [_settings(matter), _job(matter, job)]
     blocks += [Paragraph(text=text) for text in say_not_in_use(matter.speaker, matter.procedure)]
     blocks += [
         Heading(text=matter.text("needs_title"), level=2),
@@ -30,7 +41,6 @@ def cover(matter: Matter) -> Section:
     if warnings:
         blocks.append(Heading(text=matter.text("open_points"), level=2))
         blocks += [Paragraph(text=" ".join(say_finding(matter.speaker, finding))) for finding in warnings]
-    blocks += [first_aid(matter), emergency(matter)]
     return Section(
         kind=SheetKind.COVER,
         bookmark=matter.text("cover_title"),
@@ -65,6 +75,28 @@ def _settings(matter: Matter) -> Table:
         head=("", "adjuster", matter.text("target"), matter.text("accept"), "", "gauge"),
         rows=tuple(rows),
         shares=(0.05, 0.32, 0.14, 0.18, 0.13, 0.18),
+    )
+
+
+def _job(matter: Matter, job: Sequence[Section]) -> Table:
+    """Every sheet of the job with its state of power and its steps."""
+    rows = []
+    for section in job:
+        numbers = [
+            step.number for block in section.blocks if isinstance(block, Steps) for step in block.steps
+        ]
+        acts = [block.number for block in section.blocks if isinstance(block, Act)]
+        if numbers:
+            span = matter.text("steps_span", first=numbers[0], last=numbers[-1])
+        else:
+            span = matter.text("acts_span", first=acts[0], last=acts[-1])
+        subject = "" if section.subject == matter.machine.tag else f" {section.subject}"
+        rows.append((f"{section.title}{subject}", section.banner.word if section.banner else "", span))
+    return Table(
+        title=matter.text("job_title"),
+        head=("sheet", "power", "what to do"),
+        rows=tuple(rows),
+        shares=(0.52, 0.22, 0.26),
     )
 
 

@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
+from dataclasses import replace
 
-from sheets.pages.compose.common import first_aid
+from sheets.pages.compose.common import emergency, first_aid
 from sheets.pages.compose.faces import face
 from sheets.pages.compose.matter import Matter, page_step
 from sheets.pages.document import (
@@ -110,6 +111,8 @@ def _found(matter: Matter, stage: Stage, numbers: Numbering) -> Section:
         Paragraph(text=matter.text("window_text"), weight="strong"),
         Steps(steps=tuple(page_step(step, number=numbers.next()) for step in opening)),
         _people(matter),
+        first_aid(matter),
+        emergency(matter),
     ]
     blocks += _groups(matter, work, numbers, "box_found")
     return _section(matter, "found", _powered(matter), blocks)
@@ -199,17 +202,9 @@ def _setting(matter: Matter, stage: Stage, numbers: Numbering) -> Section:
     )
     spoken = matter.spoken(stage)
     begins = max((place + 1 for place, one in enumerate(spoken) if one.step.kind in _BEFORE_STATE), default=0)
-    rows = tuple(page_step(one, number=numbers.next(), boxes=_boxes(matter, one)) for one in spoken)
+    rows = tuple(_setting_step(matter, stage, one, numbers) for one in spoken)
     blocks: list[Block] = [Steps(steps=rows[:begins])] if begins else []
     blocks.append(Steps(steps=rows[begins:], panel=_panel(matter, stage.adjuster, boxes)))
-    if _shows_nowhere(matter, stage.adjuster):
-        blocks.append(
-            Hold(
-                word=matter.text("hold_word"),
-                order=matter.text("set_hold", gauge=gauge),
-                reason=matter.text("set_hold_hidden"),
-            )
-        )
     return Section(
         kind=SheetKind.WORK_INSTRUCTION,
         bookmark=f"{speaker.set_title(stage.adjuster)} {screw.part}",
@@ -229,20 +224,39 @@ def _setting(matter: Matter, stage: Stage, numbers: Numbering) -> Section:
     )
 
 
+def _setting_step(matter: Matter, stage: Stage, spoken: SpokenStep, numbers: Numbering) -> Step:
+    """A step of a setting; what no later page shows is held for a second reader while it still shows."""
+    step = page_step(spoken, number=numbers.next(), boxes=_boxes(matter, spoken))
+    if spoken.step.kind is not StepKind.READ_AGAIN or not _shows_nowhere(matter, stage.adjuster):
+        return step
+    reading = spoken.step.reading
+    hold = Hold(
+        word=matter.text("hold_word"),
+        order=matter.text("set_hold", gauge=reading.gauge if reading else ""),
+        reason=matter.text("set_hold_hidden"),
+    )
+    return replace(step, hold=hold)
+
+
 def _shows_nowhere(matter: Matter, adjuster: str) -> bool:
     """No later reading tells whether this one is right: another hides it once all are set."""
     return bool(matter.procedure.search.found()[adjuster].raised)
 
 
 def _check(matter: Matter, stage: Stage, numbers: Numbering) -> Section:
-    blocks = list(_groups(matter, matter.spoken(stage), numbers, "box_again"))
+    blocks: list[Block] = list(_groups(matter, matter.spoken(stage), numbers, "box_again"))
+    last = Step(
+        number=numbers.next(),
+        order=matter.text("do_lockout_again"),
+        lines=(matter.text("do_lockout_again_line"),),
+    )
+    blocks.append(Steps(steps=(last,)))
     return _section(matter, "check", _powered(matter), blocks)
 
 
 def _return(matter: Matter, stage: Stage, numbers: Numbering) -> Section:
-    first = Step(number=numbers.next(), order=matter.text("do_lockout_again"))
     rows = tuple(page_step(step, number=numbers.next()) for step in matter.spoken(stage))
     banner = Banner(
         state=PowerState.POWERED, word=matter.text("powered_word"), right=matter.text("return_right")
     )
-    return _section(matter, "return", banner, (Steps(steps=(first, *rows)), first_aid(matter)))
+    return _section(matter, "return", banner, (Steps(steps=rows), first_aid(matter)))

@@ -63,8 +63,6 @@ def lockout(matter: Matter, stage: Stage) -> Section:
         first_aid(matter),
         _people(matter),
     ]
-    if not again:
-        blocks += [_trapped(matter), _sources(matter)]
     return Section(
         kind=SheetKind.LOCKOUT,
         bookmark=matter.text(f"{name}_title"),
@@ -73,6 +71,23 @@ def lockout(matter: Matter, stage: Stage) -> Section:
         lines=(matter.text(f"{name}_line"), matter.text("lockout_basis")),
         banner=Banner(state=PowerState.LOCKED, word=matter.text("locked_word")),
         blocks=tuple(blocks),
+    )
+
+
+def energies(matter: Matter) -> Section:
+    """Declared sources, and lines that can keep pressure: the inventory that the acts answer to."""
+    return Section(
+        kind=SheetKind.LOCKOUT,
+        bookmark=matter.text("energies_title"),
+        title=matter.text("energies_title"),
+        subject=matter.machine.tag,
+        lines=(matter.text("energies_line"),),
+        banner=Banner(state=PowerState.LOCKED, word=matter.text("locked_word")),
+        blocks=(
+            Paragraph(text=matter.text("lockout_first"), weight="strong"),
+            _sources(matter),
+            _trapped(matter),
+        ),
     )
 
 
@@ -148,8 +163,8 @@ def _people(matter: Matter) -> Table:
         head=("name", "lock no.", "on: date, time", "off: date, time", "taken over by", "read gauge again"),
         rows=(),
         shares=(0.24, 0.11, 0.18, 0.18, 0.16, 0.13),
-        blank_rows=5,
-        row_height_mm=8.0,
+        blank_rows=4,
+        row_height_mm=7.5,
         signed=True,
     )
 

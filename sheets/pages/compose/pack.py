@@ -8,7 +8,7 @@ from sheets.pages.compose.cover import cover
 from sheets.pages.compose.engineer import engineer
 from sheets.pages.compose.faces import tags
 from sheets.pages.compose.instruction import Numbering, instruction
-from sheets.pages.compose.lockout import lockout
+from sheets.pages.compose.lockout import energies, lockout
 from sheets.pages.compose.matter import Matter
 from sheets.pages.compose.record import record
 from sheets.pages.document import Document, Section
@@ -33,12 +33,13 @@ def compose(matter: Matter) -> Document:
 
 def _sections(matter: Matter) -> Iterator[Section]:
     numbers = Numbering()
-    yield cover(matter)
-    for stage in matter.procedure.stages:
-        if stage.kind in _LOCKED:
-            yield lockout(matter, stage)
-        else:
-            yield instruction(matter, stage, numbers)
+    job = tuple(
+        lockout(matter, stage) if stage.kind in _LOCKED else instruction(matter, stage, numbers)
+        for stage in matter.procedure.stages
+    )
+    yield cover(matter, job)
+    yield energies(matter)
+    yield from job
     yield record(matter)
     yield tags(matter)
     yield engineer(matter)
