@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from circuit_bench import bench, edge, hydraulic_motor, many_sections, relief
+from circuit_bench import bench, edge, fixed_pump, hydraulic_motor, many_sections, relief
 
 from sheets.circuit.build import build_circuit
 from sheets.circuit.equations import balance, by_settings, jacobian
@@ -75,12 +75,17 @@ def test_relief_passes_its_reference_flow_at_its_setting_and_nothing_at_its_open
 
 def test_motor_leaks_what_its_volumetric_efficiency_leaves_at_its_rating():
     machine = bench(
-        {"HM1": hydraulic_motor(volumetric_efficiency=0.9, load_torque_nm=2000.0)},
-        {"t": "TK1.T HM1.L", "a": "HM1.A", "b": "HM1.B"},
+        {"PU1": fixed_pump(), "HM1": hydraulic_motor(volumetric_efficiency=0.9, load_torque_nm=2000.0)},
+        {"t": "TK1.T PU1.S HM1.L", "p": "PU1.P", "a": "HM1.A", "b": "HM1.B"},
     )
     circuit = build_circuit(machine)
-    leaking = circuit.actuators.case_leakage[0]
-    assert leaking == 0.0  # no pump, no flow to share
+    # A tenth of the pump's full flow of 54 L/min at 350 bar, from each side to the case.
+    assert circuit.actuators.case_leakage[0] == pytest.approx(5.4 / 350.0)
+    assert circuit.actuators.cross_leakage[0] == 0.0
+    pressures = np.zeros((1, len(circuit.nodes)))
+    pressures[0, circuit.node_of["HM1.A"]] = 350.0
+    stamp = circuit.actuators.stamp(pressures, as_arrays(circuit, [circuit.rest_state({})]), widening=1.0)
+    assert stamp.inflow_lpm[0, 0] == pytest.approx([-5.4, 0.0, 5.4])  # held by its load, so it only leaks
     assert circuit.actuators.swept_a[0] == 0.2
     # 2000 N·m on 200 cm³: 2000·20π/200 bar
     assert circuit.actuators.resists_forward_bar[0] == pytest.approx(628.3185, rel=1e-6)

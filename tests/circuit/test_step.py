@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+import numpy as np
 import pytest
 from circuit_bench import bench, compensated, cylinder, edge, fixed_pump, hydraulic_motor, relief, spool
 
@@ -12,7 +13,8 @@ from sheets.circuit import step as module
 from sheets.circuit.build import build_circuit
 from sheets.circuit.model import Circuit
 from sheets.circuit.plant import Adjust, MoveValve, StartDrive, StopDrive
-from sheets.circuit.step import Outcome, take_step
+from sheets.circuit.solver import solve
+from sheets.circuit.step import Outcome, take_step, take_steps
 
 TANK_LINE = "TK1.S TK1.T TK1.L"
 PRESS = {"centre": (), "out": ("P to A", "B to T"), "in": ("P to B", "A to T")}
@@ -114,13 +116,13 @@ def test_two_cylinders_that_drive_each_other_end_in_one_order_each_on_its_stop()
 
 def test_a_cylinder_that_would_run_to_and_fro_is_cycling(monkeypatch: pytest.MonkeyPatch, press: Circuit):
     """No circuit of today's parts does it, so the second solve is told the other way."""
-    solve_one = module.solve_one
     speeds = iter([0.1, -0.1, 0.1, -0.1])
 
-    def to_and_fro(circuit, state):  # type: ignore[no-untyped-def]  # a stand-in for the solver
-        return replace(solve_one(circuit, state), moving=frozenset({"CY1"}), speeds={"CY1": next(speeds)})
+    def to_and_fro(circuit, states):
+        speed = np.array([[next(speeds)]])
+        return replace(solve(circuit, states), moving=np.array([[True]]), speeds=speed)
 
-    monkeypatch.setattr(module, "solve_one", to_and_fro)
+    monkeypatch.setattr(module, "solve", to_and_fro)
     step = take_step(press, press.rest_state({"PU1.compensator": 160.0}), None)
     assert step.outcome is Outcome.CYCLING
 
@@ -135,3 +137,19 @@ def test_no_solution_is_its_own_outcome_and_the_memory_is_not_overwritten(
     assert step.outcome is Outcome.NOT_ESTABLISHED
     assert step.state.pressures_bar == state.pressures_bar
     assert step.state.running == {"M1"}
+
+
+def test_steps_taken_together_are_the_steps_taken_alone(press: Circuit):
+    state = press.rest_state({"PU1.compensator": 160.0}).driven("M1", on=True)
+    steps = [
+        (state, MoveValve(valve="DV1", position="out")),
+        (state, StopDrive(drive="M1")),
+        (state, None),
+        (state, MoveValve(valve="DV1", position="in")),
+    ]
+    together = take_steps(press, steps)
+    for (before, action), outcome in zip(steps, together, strict=True):
+        alone = take_step(press, before, action)
+        assert outcome.state == alone.state
+        assert outcome.outcome is alone.outcome
+        assert [one.pressures_bar for one in outcome.passes] == [one.pressures_bar for one in alone.passes]
