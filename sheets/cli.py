@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import io
 import json
 import sys
 import tempfile
@@ -16,8 +17,6 @@ from sheets.errors import ExitStatus, JamnutError
 
 if TYPE_CHECKING:
     from collections.abc import Iterable
-
-    from sheets.pages.document import SheetKind
 
 MACHINE = click.argument("machine", type=click.Path(path_type=Path), metavar="MACHINE")
 SITE = click.option(
@@ -125,28 +124,18 @@ def pack(
     described = pipeline.check(machine, site)
     _tell("finding the state in which each adjuster can be set")
     matter = pipeline.steps(described)
-    status = pipeline.status_of(matter.targets, matter.procedure)
-    if status is not ExitStatus.GOOD:
-        _print(pipeline.refusal_text(matter), err=True)
-        _leave(status)
     _tell("placing and drawing the pages")
     target = output or Path(f"{described.machine.tag}-draft.pdf")
-    written = pipeline.write_pack(matter, target, paper=paper, only=_kinds(only))
+    written = pipeline.write_pack(matter, target, paper=paper, only=only)
     click.echo(f"{target}: {written.pages} pages, draft, content {written.digest}")
 
 
-def _kinds(names: tuple[str, ...]) -> tuple[SheetKind, ...]:
-    from sheets.pages.document import SheetKind
-
-    return tuple(SheetKind(name) for name in names) or tuple(SheetKind)
-
-
-def _print(shown: Iterable[str] | dict[str, object], *, err: bool = False) -> None:
+def _print(shown: Iterable[str] | dict[str, object]) -> None:
     if isinstance(shown, dict):
-        click.echo(json.dumps(shown, ensure_ascii=False, indent=2), err=err)
+        click.echo(json.dumps(shown, indent=2))
         return
     for line in shown:
-        click.echo(line, err=err)
+        click.echo(line)
 
 
 def _tell(doing: str) -> None:
@@ -162,6 +151,10 @@ def _leave(status: ExitStatus) -> None:
 
 def entry() -> None:
     """The command's gate: every known error becomes its exit status; a bug keeps its traceback in a file."""
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            # A terminal that can't show a sign gets its code; it is no reason to fail.
+            stream.reconfigure(errors="backslashreplace")
     try:
         main.main(standalone_mode=False)
     except JamnutError as error:

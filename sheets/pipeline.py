@@ -8,11 +8,11 @@ from pathlib import Path
 from typing import Literal
 
 from sheets import ENGINE
-from sheets.amounts import Finding
+from sheets.amounts import Finding, Severity
 from sheets.circuit.build import build_circuit
 from sheets.circuit.model import Circuit
 from sheets.circuit.verdict import Verdict
-from sheets.errors import ExitStatus, InputError, Problem
+from sheets.errors import ExitStatus, InputError, NotEstablishedError, Problem, RefusedError
 from sheets.hazards.assess import assess
 from sheets.machine.loading import load_machine, load_site
 from sheets.machine.model import Machine
@@ -29,8 +29,9 @@ from sheets.targets.compute import compute_targets
 from sheets.targets.settings import Targets
 from sheets.wording import as_json
 from sheets.wording.as_json import Json, machine_json
+from sheets.wording.findings import say_finding
 from sheets.wording.steps import Speaker, SpokenStep
-from sheets.wording.terminal import finding_lines, machine_lines, step_lines, target_lines
+from sheets.wording.terminal import machine_lines, step_lines, target_lines
 
 SITE_FILE = "site.yaml"
 
@@ -91,13 +92,17 @@ def steps(described: Described) -> Matter:
 
 
 def content(matter: Matter) -> tuple[Document, str]:
-    """The content of the pack and its printed digest."""
+    """The content of the pack and its printed digest.
+
+    Raises RefusedError or NotEstablishedError, with what stands against it, where the job doesn't hold.
+    """
+    _hold(matter)
     document = compose(matter)
     return document, digest(canonical_bytes(document))
 
 
 def pack(matter: Matter, layout: Layout, issue: IssueContext | None = None) -> bytes:
-    """The pack as PDF bytes; a draft without an issue context."""
+    """The pack as PDF bytes; a draft without an issue context. Raises as `content` and `place` do."""
     document, printed = content(matter)
     return print_pack(document, layout=layout, digest=printed, issue=issue)
 
@@ -111,11 +116,16 @@ class Written:
 
 
 def write_pack(
-    matter: Matter, target: Path, *, paper: Literal["A4", "Letter"], only: tuple[SheetKind, ...]
+    matter: Matter, target: Path, *, paper: Literal["A4", "Letter"], only: tuple[str, ...]
 ) -> Written:
-    """Places and draws a draft and moves it into place. Raises InputError."""
+    """Places and draws a draft and moves it into place.
+
+    ``only``: names of the documents to print; the whole pack if there are none. Raises InputError, and
+    RefusedError or NotEstablishedError where nothing may be printed.
+    """
     document, printed = content(matter)
-    pages = place(document, Layout(paper=paper, kinds=only), digest=printed)
+    kinds = tuple(SheetKind(name) for name in only) or tuple(SheetKind)
+    pages = place(document, Layout(paper=paper, kinds=kinds), digest=printed)
     write_aside(target, pdf_bytes(pages, document))
     return Written(pages=len(pages), digest=printed)
 
@@ -133,6 +143,21 @@ def status_of(found: Targets, procedure: Procedure | None = None) -> ExitStatus:
             return ExitStatus.REFUSED
         case _:
             return ExitStatus.NOT_ESTABLISHED
+
+
+def _hold(matter: Matter) -> None:
+    """Nothing is printed for a job that doesn't hold."""
+    status = status_of(matter.targets, matter.procedure)
+    if status is ExitStatus.GOOD:
+        return
+    against = [
+        one for one in _findings(matter) if one.severity in (Severity.REFUSED, Severity.NOT_ESTABLISHED)
+    ]
+    problems = [
+        Problem(where=matter.machine.tag, what=what, fix=fix)
+        for what, fix in (say_finding(matter.speaker, one) for one in against or _findings(matter))
+    ]
+    raise (RefusedError if status is ExitStatus.REFUSED else NotEstablishedError)(*problems)
 
 
 def check_text(described: Described) -> Iterator[str]:
@@ -161,10 +186,6 @@ def steps_json(matter: Matter) -> dict[str, Json]:
     )
 
 
-def refusal_text(matter: Matter) -> Iterator[str]:
-    return finding_lines(matter.speaker, _findings(matter))
-
-
 def _speaker(described: Described) -> Speaker:
     return Speaker(described.machine, described.circuit, described.policies, {})
 
@@ -178,20 +199,38 @@ def _findings(matter: Matter) -> tuple[Finding, ...]:
 
 
 def write_aside(target: Path, data: bytes) -> None:
-    """Writes a file aside and moves it into place, so that nothing half-written is left.
+    """Writes a PDF aside and moves it into place, so that nothing half-written is left.
 
-    Raises InputError if the folder isn't there or can't be written to.
+    Raises InputError if the folder isn't there or can't be written to, and if another kind of file already
+    stands under that name.
     """
-    aside = target.with_name(f".{target.name}.part")
+    aside = target.parent / f".{target.name}.part"
     try:
+        if target.exists() and not _is_pdf(target):
+            raise InputError(
+                Problem(
+                    where=str(target),
+                    what="Something stands there that isn't a PDF file.",
+                    fix="Name another file with -o; nothing was overwritten.",
+                )
+            )
         aside.write_bytes(data)
         aside.replace(target)
     except OSError as error:
-        aside.unlink(missing_ok=True)
         raise InputError(
             Problem(
                 where=str(target),
                 what=f"The file can't be written: {error.strerror}.",
-                fix="Name a folder that exists and that you may write to.",
+                fix="Name a file with -o, in a folder that exists and that you may write to.",
             )
         ) from None
+    finally:
+        if aside.exists():
+            aside.unlink()
+
+
+def _is_pdf(file: Path) -> bool:
+    if not file.is_file():
+        return False
+    with file.open("rb") as opened:
+        return opened.read(5) in (b"%PDF-", b"")

@@ -80,7 +80,7 @@ def _bytes_of(path: Path) -> bytes:
     except OSError as error:
         raise InputError(
             Problem(
-                where=path.name,
+                where=path.name or str(path),
                 what=f"The file can't be read: {error.strerror or 'no reason is given'}.",
                 fix="Look at the name of the file and whether you may read it.",
             )
