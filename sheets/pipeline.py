@@ -155,7 +155,13 @@ def _hold(matter: Matter) -> None:
     ]
     problems = [
         Problem(where=matter.machine.tag, what=what, fix=fix)
-        for what, fix in (say_finding(matter.speaker, one) for one in against or _findings(matter))
+        for what, fix in (say_finding(matter.speaker, one) for one in against)
+    ] or [
+        Problem(
+            where=matter.machine.tag,
+            what="There is no adjuster that is in use and may be set.",
+            fix="Look for 'may be set: no' in the machine file, and at what jamnut steps says of each.",
+        )
     ]
     raise (RefusedError if status is ExitStatus.REFUSED else NotEstablishedError)(*problems)
 
