@@ -38,8 +38,8 @@ brought back, a forced signal puts a person at a live panel."""
 def possible_options(machine: Machine, circuit: Circuit) -> tuple[Option, ...]:
     """Every single change, cheapest first, ties in the order of the file.
 
-    An adjuster only moves out of the way, to the end of its range: never to a value that flatters another. One
-    that may not be touched, or whose direction nobody knows, stays.
+    An adjuster only moves out of the way, to the end of its range, never to a value that flatters another.
+    One that may not be touched, or whose direction nobody knows, stays.
     """
     options: list[Option] = []
     for id_, part in machine.parts.items():

@@ -127,7 +127,7 @@ def over_rating(solution: Solution) -> Failure | None:
     )
 
 
-def not_following(site: AdjusterSite, seen: Sight, target_bar: float) -> Failure | None:
+def not_following(seen: Sight, target_bar: float) -> Failure | None:
     """The reading doesn't answer to this adjuster, or another has as strong a hand in it."""
     strongest = max(seen.others, key=lambda id_: abs(seen.others[id_]), default="")
     data: dict[str, Amount | str] = {
@@ -150,7 +150,7 @@ def first_failure(solution: Solution, site: AdjusterSite, target_bar: float) -> 
         unestablished(solution)
         or moving(solution)
         or starved(solution)
-        or not_following(site, sight(solution, site), target_bar)
+        or not_following(sight(solution, site), target_bar)
         or over_rating(solution)
     )
 

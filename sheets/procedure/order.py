@@ -67,7 +67,10 @@ def derive_order(found: Mapping[str, TestState], targets: Targets) -> Order:
         ]
         if not free:
             cycle = Finding(
-                code="order_cycle", severity=Severity.REFUSED, subject=waiting[0], data={"members": ", ".join(waiting)}
+                code="order_cycle",
+                severity=Severity.REFUSED,
+                subject=waiting[0],
+                data={"members": ", ".join(waiting)},
             )
             return Order(sequence=(), edges=edges, ties=tuple(ties), findings=(cycle,))
         if len(free) > 1:

@@ -17,7 +17,7 @@ from sheets.energy.trapped import Trapped, find_trapped
 from sheets.machine.model import Machine
 from sheets.machine.parts import HandValve
 from sheets.machine.site import Policies
-from sheets.procedure.changes import Change, apply
+from sheets.procedure.changes import apply
 from sheets.procedure.conditions import (
     Failure,
     first_failure,
@@ -30,7 +30,7 @@ from sheets.procedure.gauges import error_bar
 from sheets.procedure.order import derive_order
 from sheets.procedure.rig import Rig
 from sheets.procedure.search import NotFound, Search, TestState, find_test_states, running_rest
-from sheets.procedure.steps import Procedure, Stage, StageKind, Step, StepKind
+from sheets.procedure.steps import Procedure, Stage, StageKind, StepKind
 from sheets.targets.settings import Targets
 
 _STUCK_FACTOR = 50.0
@@ -145,9 +145,7 @@ def _may_stand_before_start(circuit: Circuit, base: PlantState, moves: tuple[Mov
     If it doesn't, the drive starts unloaded and the valves are closed in increments under the gauge.
     """
     state = apply(base, moves)
-    states = [
-        state.adjusted(site.id, _STUCK_FACTOR * site.highest_bar) for site in circuit.adjusters
-    ]
+    states = [state.adjusted(site.id, _STUCK_FACTOR * site.highest_bar) for site in circuit.adjusters]
     solved = solve(circuit, [state, *states])
     return all(
         unestablished(solution) is None and over_rating(solution) is None
@@ -201,7 +199,9 @@ def _apart(job: _Job, fitted: dict[str, str]) -> dict[str, str]:
     result: dict[str, str] = {}
     for gauge, test_point in fitted.items():
         node = job.circuit.node_of[f"{test_point}.P"]
-        others = [tp for tp in job.machine.gauges[gauge].fitted_at if job.circuit.node_of.get(f"{tp}.P") == node]
+        others = [
+            tp for tp in job.machine.gauges[gauge].fitted_at if job.circuit.node_of.get(f"{tp}.P") == node
+        ]
         chosen = next((tp for tp in (test_point, *others) if tp not in taken), test_point)
         taken.add(chosen)
         result[gauge] = chosen

@@ -110,9 +110,7 @@ class Rig:
             ),
         )
 
-    def _find(
-        self, code: str, severity: Severity, subject: str, data: Mapping[str, Amount | str]
-    ) -> None:
+    def _find(self, code: str, severity: Severity, subject: str, data: Mapping[str, Amount | str]) -> None:
         finding = Finding(code=code, severity=severity, subject=subject, data=data)
         if finding not in self.findings:
             self.findings.append(finding)
@@ -152,9 +150,7 @@ class Rig:
             if node != here:
                 graduation = graduation_bar(self.machine.gauges[id_])
                 low_bar, high_bar = self._band(solution.pressures_bar[node], graduation)
-                bands.append(
-                    Band(gauge=id_, low_bar=low_bar, high_bar=high_bar, graduation_bar=graduation)
-                )
+                bands.append(Band(gauge=id_, low_bar=low_bar, high_bar=high_bar, graduation_bar=graduation))
         return tuple(bands)
 
     def governor(self) -> str:
@@ -175,6 +171,7 @@ class Rig:
             graduation_bar=graduation,
         )
         return (0.0 if self.backed_out else max(0.0, low_bar)), high_bar
+
 
 def _governor(solution: Solution, node: int) -> str:
     """Adjuster that the pressure at a node follows; empty where none does."""

@@ -130,9 +130,7 @@ def find_test_states(machine: Machine, circuit: Circuit, targets: Targets, polic
         for place, site in enumerate(circuit.adjusters)
         if site.id in targets.settings and targets.settings[site.id].screw.may_be_set
     }
-    by_law = {
-        site.id for site in circuit.adjusters if site.controlled_node == site.reference_node
-    }
+    by_law = {site.id for site in circuit.adjusters if site.controlled_node == site.reference_node}
     base = running_rest(circuit, targets)
     stream = candidates(possible_options(machine, circuit))
     states = 0
