@@ -156,7 +156,7 @@ def entry() -> None:
             # A terminal that can't show a sign gets its code; it is no reason to fail.
             stream.reconfigure(errors="backslashreplace")
     try:
-        main.main(standalone_mode=False)
+        main.main(prog_name="jamnut", standalone_mode=False)
     except JamnutError as error:
         click.echo(str(error), err=True)
         sys.exit(int(error.status))
