@@ -55,11 +55,16 @@ def reading_window(
     if count < 3 and widen:
         middle_bar = (low_bar + high_bar) / 2.0
         half_bar = high_bar - low_bar  # twice the half width
-        first, last, count = graduations_within(
-            low_bar=max(middle_bar - half_bar, floor_bar),
-            high_bar=min(middle_bar + half_bar, ceiling_bar),
+        first, last, _ = graduations_within(
+            low_bar=middle_bar - half_bar,
+            high_bar=middle_bar + half_bar,
             graduation_bar=graduation_bar,
         )
+        # Floor and ceiling are neighbours and ratings: no part of a graduation is given away there.
+        first = max(first, math.ceil(floor_bar / graduation_bar - 1e-6) * graduation_bar)
+        if ceiling_bar < last:
+            last = math.floor(ceiling_bar / graduation_bar + 1e-6) * graduation_bar
+        count = max(0, round((last - first) / graduation_bar) + 1)
         nearest = round(middle_bar / graduation_bar) * graduation_bar
         if count > 3 and first <= nearest - graduation_bar and nearest + graduation_bar <= last:
             first, last, count = nearest - graduation_bar, nearest + graduation_bar, 3
