@@ -17,7 +17,7 @@ from sheets.machine.model import Machine
 from sheets.machine.parts import Cylinder, HydraulicMotor
 from sheets.machine.site import Policies
 from sheets.procedure.conditions import Condition
-from sheets.procedure.search import TestState
+from sheets.procedure.answers import TestState
 from sheets.procedure.steps import Procedure, Stage, Step, StepKind
 
 Signal = Literal["DANGER", "WARNING", "CAUTION", "NOTICE"]

@@ -15,6 +15,7 @@ from sheets.machine.fields import (
     Ratio,
     Second,
     Text,
+    YesNo,
 )
 from sheets.machine.flaws import Flaw
 from sheets.machine.words import Name
@@ -62,6 +63,8 @@ class Policies(Entry):
     """Lower end of the oil temperature window for settings; mineral oil only."""
     highest_setting_temperature_c: Celsius = 55.0
     """Upper end of that window."""
+    lockout_always: YesNo = False
+    """Lock out for every task, also where nothing is fitted or opened."""
     zero_limit_bar: PositiveBar = 2.0
     """Smallest pressure that a gauge must still show for a verification of zero."""
 

@@ -32,7 +32,9 @@ class Condition(Enum):
     FILLED = "filled"
     FOLLOWS = "follows"
     ALONE = "alone"
+    AT_FLOW = "at_flow"
     WITHIN = "within"
+    BARRED = "barred"
     POWERED = "powered"
     SEEN = "seen"
 
@@ -77,11 +79,15 @@ def sight(solution: Solution, site: AdjusterSite) -> Sight:
     )
 
 
-def unestablished(solution: Solution) -> Failure | None:
-    """A state whose pressures nobody knows, or depend on where leakage leaves a cut-off LS port."""
-    if solution.established and not solution.loose_ports:
+def unestablished(solution: Solution, trusted_ports: frozenset[str] = frozenset()) -> Failure | None:
+    """A state whose pressures nobody knows, or that hang on where leakage leaves a cut-off LS port.
+
+    ``trusted_ports`` are sealed ports of which the maker's drawing shows no bleed.
+    """
+    loose = solution.loose_ports - trusted_ports
+    if solution.established and not loose:
         return None
-    return Failure(condition=Condition.ESTABLISHED, data={"port": ", ".join(sorted(solution.loose_ports))})
+    return Failure(condition=Condition.ESTABLISHED, data={"port": ", ".join(sorted(loose))})
 
 
 def moving(solution: Solution) -> Failure | None:
@@ -144,10 +150,12 @@ def not_following(seen: Sight, target_bar: float) -> Failure | None:
     return None
 
 
-def first_failure(solution: Solution, site: AdjusterSite, target_bar: float) -> Failure | None:
+def first_failure(
+    solution: Solution, site: AdjusterSite, target_bar: float, trusted_ports: frozenset[str]
+) -> Failure | None:
     """The conditions that one solved state decides, in their order."""
     return (
-        unestablished(solution)
+        unestablished(solution, trusted_ports)
         or moving(solution)
         or starved(solution)
         or not_following(sight(solution, site), target_bar)

@@ -23,6 +23,7 @@ class GaugeChoice:
 
     gauge: str
     test_point: str
+    """Where it is fitted for the job; empty for a gauge that is fixed on a line."""
     window: ReadingWindow
     target_bar: float
     """Reading to come to."""
@@ -31,6 +32,16 @@ class GaugeChoice:
     graduation_bar: float
     accuracy_ratio: float
     findings: tuple[Finding, ...]
+
+    @property
+    def port(self) -> str:
+        """Port at which it reads."""
+        return gauge_port(self.gauge, self.test_point)
+
+
+def gauge_port(gauge: str, test_point: str) -> str:
+    """Port at which a gauge reads: the test point's, or its own where it is fixed."""
+    return f"{test_point}.P" if test_point else f"{gauge}.P"
 
 
 def error_bar(gauge: DialGauge | DigitalGauge) -> float:
@@ -45,50 +56,42 @@ def graduation_bar(gauge: DialGauge | DigitalGauge) -> float:
     return gauge.graduation_bar if isinstance(gauge, DialGauge) else gauge.resolution_bar
 
 
+@dataclass(frozen=True, kw_only=True)
+class Readings:
+    """What a gauge on a node would show in one test state; all in bar."""
+
+    node: int
+    pressures_bar: tuple[float, ...]
+    """Of all nodes at the target."""
+    target_bar: float
+    low_bar: float
+    high_bar: float
+    """What the setting and its window convert to."""
+    worst_bar: tuple[float, ...]
+    """Highest pressure of every node with the screw at its stop, after one slip, with one fault."""
+    rating_bar: float
+    """Lowest rating in reach."""
+    floor_bar: float
+    ceiling_bar: float
+    """Bounds of a widened window."""
+
+
 def choose_gauge(
-    machine: Machine,
-    circuit: Circuit,
-    policies: Policies,
-    setting: Setting,
-    *,
-    node: int,
-    pressures_bar: tuple[float, ...],
-    reading_bar: float,
-    low_bar: float,
-    high_bar: float,
-    highest_bar: float,
-    rating_bar: float,
-    floor_bar: float,
-    ceiling_bar: float,
+    machine: Machine, circuit: Circuit, policies: Policies, setting: Setting, readings: Readings
 ) -> GaugeChoice | Failure:
     """The gauge that shows this reading best, in the order of the file where several do.
 
-    ``node`` is controlled; ``pressures_bar`` of all nodes at the target. ``reading_bar``, ``low_bar`` and ``high_bar`` are what
-    the setting and its window convert to; ``highest_bar`` what the gauge may see with the screw at its stop;
-    ``rating_bar`` the lowest rating in reach; ``floor_bar`` and ``ceiling_bar`` bound a widened window. All in bar.
-    A gauge that would be over-ranged, or whose error is as wide as the window, is refused.
+    A gauge that one slip or one fault would over-range, or whose error is as wide as the window, is refused.
     """
     best: tuple[tuple[int, float], GaugeChoice] | None = None
-    nearest = Failure(condition=Condition.SEEN, data={"line": circuit.nodes[node].name})
+    nearest = Failure(condition=Condition.SEEN, data={"line": circuit.nodes[readings.node].name})
+    controlled_bar = readings.pressures_bar[readings.node]
     for id_, gauge in machine.gauges.items():
-        for test_point in gauge.fitted_at:
-            place = circuit.node_of.get(f"{test_point}.P")
-            if place is None or abs(pressures_bar[place] - pressures_bar[node]) > SAME_PRESSURE_BAR:
+        for test_point in gauge.fitted_at or ("",):
+            place = circuit.node_of.get(gauge_port(id_, test_point))
+            if place is None or abs(readings.pressures_bar[place] - controlled_bar) > SAME_PRESSURE_BAR:
                 continue
-            outcome = _judge(
-                id_,
-                gauge,
-                test_point,
-                policies,
-                setting,
-                reading_bar=reading_bar,
-                low_bar=low_bar,
-                high_bar=high_bar,
-                highest_bar=highest_bar,
-                rating_bar=rating_bar,
-                floor_bar=floor_bar,
-                ceiling_bar=ceiling_bar,
-            )
+            outcome = _judge(id_, gauge, test_point, policies, setting, readings, readings.worst_bar[place])
             if isinstance(outcome, Failure):
                 nearest = outcome
             else:
@@ -105,33 +108,27 @@ def _judge(
     test_point: str,
     policies: Policies,
     setting: Setting,
-    *,
-    reading_bar: float,
-    low_bar: float,
-    high_bar: float,
-    highest_bar: float,
-    rating_bar: float,
-    floor_bar: float,
-    ceiling_bar: float,
+    readings: Readings,
+    worst_bar: float,
 ) -> GaugeChoice | Failure:
     error, graduation = error_bar(gauge), graduation_bar(gauge)
     data: dict[str, Amount | str] = {"gauge": id_, "test_point": test_point}
-    if highest_bar > gauge.rating_bar or high_bar > gauge.range_bar:
-        most = gauge.rating_bar if highest_bar > gauge.rating_bar else gauge.range_bar
-        return Failure(
-            condition=Condition.SEEN,
-            data={**data, "over": bar(max(highest_bar, high_bar)), "most": bar(most)},
-        )
+    if worst_bar > gauge.rating_bar or readings.high_bar > gauge.range_bar:
+        most = gauge.rating_bar if worst_bar > gauge.rating_bar else gauge.range_bar
+        seen_bar = max(worst_bar, readings.high_bar)
+        return Failure(condition=Condition.SEEN, data={**data, "over": bar(seen_bar), "most": bar(most)})
     never = never_exceed_bar(
-        rating_bar=min(rating_bar, gauge.rating_bar), gauge_error_bar=error, graduation_bar=graduation
+        rating_bar=min(readings.rating_bar, gauge.rating_bar),
+        gauge_error_bar=error,
+        graduation_bar=graduation,
     )
     window = reading_window(
-        low_bar=low_bar,
-        high_bar=high_bar,
+        low_bar=readings.low_bar,
+        high_bar=readings.high_bar,
         graduation_bar=graduation,
         widen=setting.window_origin is Origin.POLICY,
-        floor_bar=floor_bar,
-        ceiling_bar=min(ceiling_bar, never - graduation),
+        floor_bar=readings.floor_bar,
+        ceiling_bar=min(readings.ceiling_bar, never - graduation),
     )
     if window.too_coarse:
         return Failure(condition=Condition.SEEN, data={**data, "graduation": bar(graduation)})
@@ -153,7 +150,7 @@ def _judge(
                 data={**data, "accuracy_ratio": ratio(achieved), "wanted": ratio(policies.accuracy_ratio)},
             )
         )
-    share = reading_bar / gauge.range_bar
+    share = readings.target_bar / gauge.range_bar
     if isinstance(gauge, DialGauge) and not WORKING_SHARE[0] <= share <= WORKING_SHARE[1]:
         findings.append(
             Finding(
@@ -167,7 +164,7 @@ def _judge(
         gauge=id_,
         test_point=test_point,
         window=window,
-        target_bar=_on_graduation(reading_bar, graduation, setting.origin),
+        target_bar=_on_graduation(readings.target_bar, graduation, setting.origin),
         never_exceed_bar=never,
         error_bar=error,
         graduation_bar=graduation,

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from enum import Enum
 
 from sheets.amounts import Finding, Severity
-from sheets.procedure.search import TestState
+from sheets.procedure.answers import TestState
 from sheets.targets.settings import Targets
 
 

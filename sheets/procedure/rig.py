@@ -70,6 +70,7 @@ class Rig:
                 subject=subject,
                 data=data or {},
                 reason=reason,
+                actions=actions,
                 reading=self._reading(solution, window_of),
                 bands=self._bands(solution),
                 trace=self._trace(solution),
@@ -119,7 +120,7 @@ class Rig:
         choice = self.gauge
         if choice is None or not self.state.running or not solution.established:
             return None
-        node = self.circuit.node_of[f"{choice.test_point}.P"]
+        node = self.circuit.node_of[choice.port]
         expected_bar = solution.pressures_bar[node]
         if window_of:
             low_bar, high_bar, governs = choice.window.low_bar, choice.window.high_bar, window_of
@@ -143,7 +144,7 @@ class Rig:
         """Other fitted gauges, where they stand on another line than the governing one."""
         if self.gauge is None or not self.state.running or not solution.established:
             return ()
-        here = self.circuit.node_of[f"{self.gauge.test_point}.P"]
+        here = self.circuit.node_of[self.gauge.port]
         bands = []
         for id_, test_point in self.fitted.items():
             node = self.circuit.node_of[f"{test_point}.P"]
@@ -157,7 +158,7 @@ class Rig:
         """Adjuster that the gauge's pressure follows at present; empty where none does."""
         if self.gauge is None:
             return ""
-        return _governor(self.look(), self.circuit.node_of[f"{self.gauge.test_point}.P"])
+        return _governor(self.look(), self.circuit.node_of[self.gauge.port])
 
     def _band(self, expected_bar: float, graduation: float) -> tuple[float, float]:
         """What a reading may be before a setting is made: out by the policy share, outward to graduations.

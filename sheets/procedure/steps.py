@@ -7,11 +7,13 @@ from dataclasses import dataclass, field
 from enum import Enum
 
 from sheets.amounts import Amount, Finding
+from sheets.circuit.plant import PlantAction
 from sheets.circuit.verdict import Verdict
 from sheets.energy.trapped import Trapped
 from sheets.procedure.conditions import Failure
 from sheets.procedure.order import Order
-from sheets.procedure.search import Search
+from sheets.procedure.task import Task
+from sheets.procedure.answers import Search
 
 
 class StepKind(Enum):
@@ -45,6 +47,7 @@ class StepKind(Enum):
     LEAVE_ALONE = "leave_alone"
     BACK_OUT = "back_out"
     RUN_IN = "run_in"
+    RUN_AHEAD = "run_ahead"
     TURN_BELOW = "turn_below"
     COME_UP = "come_up"
     LOCK_NUT = "lock_nut"
@@ -115,6 +118,8 @@ class Step:
     data: Mapping[str, Amount | str] = field(default_factory=dict)
     reason: Failure | None = None
     """What fails if it is left out."""
+    actions: tuple[PlantAction, ...] = ()
+    """What it does to the plant, in order."""
     reading: Reading | None = None
     bands: tuple[Band, ...] = ()
     trace: Trace | None = None
@@ -136,6 +141,7 @@ class Stage:
 class Procedure:
     """The job for one machine, found and ordered, every step simulated."""
 
+    task: Task
     verdict: Verdict
     stages: tuple[Stage, ...]
     search: Search

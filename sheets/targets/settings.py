@@ -36,6 +36,8 @@ class Setting:
     derivations: tuple[Derivation, ...]
     findings: tuple[Finding, ...]
     screw: Adjuster
+    at_flow_lpm: float | None = None
+    """Flow of the pump at which the value is read, where its maker gives it at a flow only."""
 
 
 @dataclass(frozen=True, kw_only=True)

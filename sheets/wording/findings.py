@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from sheets.amounts import Amount, Finding
-from sheets.procedure.search import NotInUse
+from sheets.procedure.answers import NotInUse
 from sheets.procedure.steps import Procedure
 from sheets.wording.sentences import Sentences
 from sheets.wording.steps import Speaker, capital

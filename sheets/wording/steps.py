@@ -14,7 +14,7 @@ from sheets.machine.parts import DialGauge, DirectionalValve, ElectricMotor, Han
 from sheets.machine.screws import screws_of
 from sheets.machine.site import Policies
 from sheets.procedure.conditions import Condition, Failure
-from sheets.procedure.search import TestState
+from sheets.procedure.answers import TestState
 from sheets.procedure.steps import Reading, Stage, StageKind, Step, StepKind
 from sheets.wording.figures import Figures
 from sheets.wording.sentences import Sentences

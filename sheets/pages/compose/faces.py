@@ -6,7 +6,7 @@ from sheets.machine.parts import DialGauge
 from sheets.pages.compose.matter import Matter
 from sheets.pages.document import GaugeFace, Section, SettingTag, SheetKind, TagSheet
 from sheets.procedure.gauges import GaugeChoice
-from sheets.procedure.search import TestState
+from sheets.procedure.answers import TestState
 
 
 def face(matter: Matter, state: TestState) -> GaugeFace:

@@ -1,0 +1,251 @@
+"""Judges one state for one adjuster: all conditions, with single faults, and the reason of each change."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+from sheets.amounts import Amount, Finding
+from sheets.circuit.faults import CAN_MOVE, CAN_RAISE, Fault, FaultKind, faults_of, solve_faults
+from sheets.circuit.plant import Adjust, PlantState
+from sheets.circuit.solution import Solution
+from sheets.circuit.solver import solve
+from sheets.procedure.answers import TestState
+from sheets.procedure.case import Case
+from sheets.procedure.changes import Candidate, Change, apply
+from sheets.procedure.conditions import (
+    Condition,
+    Failure,
+    earlier_ones,
+    first_failure,
+    moving,
+    over_rating,
+    sight,
+    starved,
+    unestablished,
+)
+from sheets.procedure.gauges import GaugeChoice, Readings, choose_gauge
+from sheets.procedure.load import drive_findings
+from sheets.targets.settings import Setting
+
+_REACH_SHARE = 0.9
+"""Nodes that stand at this share of the reading, or more, are in reach of the pressure that is set."""
+FLOW_SHARE = 0.10
+"""Policy: a reading that belongs to a stated flow is taken within this share of it."""
+
+
+def judge(case: Case, candidate: Candidate, adjuster: str) -> TestState | Failure:
+    """The test state that a candidate is for an adjuster, or the first condition that fails.
+
+    With the adjuster at the bottom of its window, at its target, at the top and at its stop; then with single
+    faults. Where only the stop fails, the adjuster that stands out of the way may instead stand just ahead.
+    """
+    outcome = _judge(case, candidate, adjuster)
+    if isinstance(outcome, Failure) and outcome.condition is Condition.WITHIN:
+        for ahead in _just_ahead(case, candidate, adjuster):
+            other = _judge(case, ahead, adjuster)
+            if isinstance(other, TestState):
+                return other
+    return outcome
+
+
+def _just_ahead(case: Case, candidate: Candidate, adjuster: str) -> list[Candidate]:
+    """The candidate with one adjuster just ahead of the window instead of at its stop.
+
+    It limits the pressure itself when the screw that is set runs to its stop. How far it stands ahead must be
+    counted in turns, so its change per turn must be known.
+    """
+    setting = case.targets.settings[adjuster]
+    half_bar = (setting.high_bar - setting.low_bar) / 2.0
+    found = []
+    for change in candidate.changes:
+        if not isinstance(change, Adjust):
+            continue
+        site = case.site(change.adjuster)
+        ahead_bar = setting.high_bar + half_bar + site.width_bar
+        rating_bar = case.circuit.nodes[site.controlled_node].rating_bar
+        per_turn = case.targets.settings[change.adjuster].screw.per_turn_bar
+        if per_turn is not None and ahead_bar < min(site.highest_bar, rating_bar):
+            nearer = replace(change, setting_bar=ahead_bar)
+            changes = tuple(nearer if one is change else one for one in candidate.changes)
+            found.append(replace(candidate, changes=changes))
+    return found
+
+
+def _judge(case: Case, candidate: Candidate, adjuster: str) -> TestState | Failure:
+    site, setting = case.site(adjuster), case.targets.settings[adjuster]
+    state = apply(case.base, candidate.changes)
+    levels = (setting.low_bar, setting.target_bar, setting.high_bar)
+    solved = solve(
+        case.circuit, [state.adjusted(adjuster, level) for level in (*levels, site.highest_bar)], effects=True
+    )
+    low, target, top, stop = (solved.one(index) for index in range(4))
+    for solution, level in zip((low, target, top), levels, strict=True):
+        failure = first_failure(solution, site, level, case.trusted_ports)
+        if failure is not None:
+            return failure
+    failure = (
+        _at_another_flow(case, setting, target)
+        or unestablished(stop, case.trusted_ports)
+        or moving(stop)
+        or starved(stop)
+        or over_rating(stop)
+        or moved_by_fault(case, state)
+    )
+    if failure is not None:
+        return failure
+    load = drive_findings(case.machine, at_target=target, at_top=top, adjuster=adjuster)
+    if isinstance(load, Failure):
+        return load
+    gauge = _gauge(case, state, setting, low=low, target=target, top=top, stop=stop)
+    if isinstance(gauge, Failure):
+        return gauge
+    return _found(case, candidate, adjuster, target, gauge, load)
+
+
+def _found(
+    case: Case,
+    candidate: Candidate,
+    adjuster: str,
+    target: Solution,
+    gauge: GaugeChoice,
+    load: tuple[Finding, ...],
+) -> TestState:
+    site = case.site(adjuster)
+    seen = sight(target, site)
+    return TestState(
+        adjuster=adjuster,
+        changes=candidate.changes,
+        cost=candidate.cost,
+        gauge=gauge,
+        reading_bar=seen.reading_bar,
+        flow_lpm=seen.flow_lpm,
+        earlier=earlier_ones(seen),
+        reasons=reasons_of(case, candidate, adjuster),
+        near_misses=(),
+        findings=(*load, *gauge.findings),
+    )
+
+
+def _at_another_flow(case: Case, setting: Setting, target: Solution) -> Failure | None:
+    """A value that its maker gives at a flow is read at that flow only."""
+    wanted_lpm = setting.at_flow_lpm
+    if wanted_lpm is None:
+        return None
+    flow_lpm = target.flows_lpm[setting.part]
+    if abs(flow_lpm - wanted_lpm) <= FLOW_SHARE * wanted_lpm:
+        return None
+    return Failure(
+        condition=Condition.AT_FLOW,
+        data={
+            "flow": Amount(value=flow_lpm, quantity="flow_lpm"),
+            "wanted": Amount(value=wanted_lpm, quantity="flow_lpm"),
+        },
+    )
+
+
+def moved_by_fault(case: Case, state: PlantState) -> Failure | None:
+    """What moves when one spool sticks or leaks, or one coil is dead."""
+    faults = faults_of(case.machine, case.circuit, state, kinds=CAN_MOVE)
+    for fault, solution in zip(faults, solve_faults(case.circuit, state, faults), strict=True):
+        if not solution.established:
+            return Failure(condition=Condition.BARRED, data={"fault": fault.kind.value, "valve": fault.part})
+        failure = moving(solution)
+        if failure is not None:
+            return Failure(condition=Condition.BARRED, data={**failure.data, **fault_data(fault)})
+    return None
+
+
+def fault_data(fault: Fault) -> dict[str, Amount | str]:
+    """A fault as data of a failure."""
+    return {"fault": fault.kind.value, "valve": fault.part, "position": fault.position}
+
+
+def _gauge(
+    case: Case,
+    state: PlantState,
+    setting: Setting,
+    *,
+    low: Solution,
+    target: Solution,
+    top: Solution,
+    stop: Solution,
+) -> GaugeChoice | Failure:
+    node = case.site(setting.adjuster).controlled_node
+    reading_bar = target.pressures_bar[node]
+    return choose_gauge(
+        case.machine,
+        case.circuit,
+        case.policies,
+        setting,
+        Readings(
+            node=node,
+            pressures_bar=target.pressures_bar,
+            target_bar=reading_bar,
+            low_bar=low.pressures_bar[node],
+            high_bar=top.pressures_bar[node],
+            worst_bar=_worst(case, state, stop, setting.part),
+            rating_bar=min(
+                here.rating_bar
+                for here, pressure_bar in zip(case.circuit.nodes, target.pressures_bar, strict=True)
+                if pressure_bar >= _REACH_SHARE * reading_bar
+            ),
+            floor_bar=low.pressures_bar[node] - setting.low_bar + setting.floor_bar,
+            ceiling_bar=top.pressures_bar[node] - setting.high_bar + setting.ceiling_bar,
+        ),
+    )
+
+
+def _worst(case: Case, state: PlantState, stop: Solution, part: str) -> tuple[float, ...]:
+    """Highest pressure at every node with the screw at its stop, after one slip, or with one fault.
+
+    Slips: one valve elsewhere, one screw at the end of its range. A valve of ``part``, the one that is set,
+    stuck shut isn't counted: its pressure is approached slowly, with a stop rule. States that aren't
+    established count as beyond every gauge.
+    """
+    slips = [
+        state.moved(valve, other)
+        for valve, positions in case.circuit.positions.items()
+        for other in positions
+        if other != state.positions[valve]
+    ]
+    slips += [state.adjusted(site.id, site.highest_bar) for site in case.circuit.adjusters]
+    solved = solve(case.circuit, slips)
+    faults = [
+        fault
+        for fault in faults_of(case.machine, case.circuit, state, kinds=CAN_RAISE)
+        if not (fault.kind is FaultKind.RELIEF_STUCK_SHUT and fault.part == part)
+    ]
+    solutions = [
+        stop,
+        *(solved.one(index) for index in range(len(slips))),
+        *solve_faults(case.circuit, state, faults),
+    ]
+    return tuple(
+        max(
+            solution.pressures_bar[node] if solution.established else float("inf") for solution in solutions
+        )
+        for node in range(len(case.circuit.nodes))
+    )
+
+
+def reasons_of(
+    case: Case, candidate: Candidate, adjuster: str
+) -> tuple[tuple[Change, Failure], ...]:
+    """Takes each change away alone and names what then fails, also with one fault."""
+    if not candidate.changes:
+        return ()
+    site = case.site(adjuster)
+    target_bar = case.targets.settings[adjuster].target_bar
+    lesser = [
+        apply(case.base, tuple(change for change in candidate.changes if change is not left_out))
+        for left_out in candidate.changes
+    ]
+    solved = solve(case.circuit, lesser, effects=True)
+    reasons: list[tuple[Change, Failure]] = []
+    for index, left_out in enumerate(candidate.changes):
+        failure = first_failure(
+            solved.one(index), site, target_bar, case.trusted_ports
+        ) or moved_by_fault(case, lesser[index])
+        if failure is not None:
+            reasons.append((left_out, failure))
+    return tuple(reasons)

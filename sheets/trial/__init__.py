@@ -1,0 +1,1 @@
+"""Replays a procedure: it shares the model with the search, never the search itself."""

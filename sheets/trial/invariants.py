@@ -1,0 +1,160 @@
+"""What must hold at the start and after every step of a run, as data."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field
+from enum import Enum
+
+from sheets.amounts import Amount, bar, kw
+from sheets.circuit.drive_load import drive_loads
+from sheets.circuit.model import TANK, Circuit
+from sheets.circuit.solution import Solution
+from sheets.machine.model import Machine
+from sheets.machine.parts import ElectricMotor
+from sheets.machine.site import Policies
+from sheets.procedure.gauges import gauge_port
+from sheets.procedure.steps import Step, StepKind
+
+_DUST_BAR = 1e-6
+
+
+class Invariant(Enum):
+    """What a violation is about; the value names its sentence."""
+
+    ESTABLISHED = "run_not_established"
+    WITHIN_RATING = "run_over_rating"
+    STILL = "run_moves"
+    FILLED = "run_void"
+    DRIVE_CARRIES = "run_drive_over"
+    NOT_OPENED_UNDER_PRESSURE = "run_opened_under_pressure"
+    ZERO = "run_not_zero"
+    LOCKED = "run_runs_while_locked"
+    GAUGE_WITHIN = "run_gauge_over"
+    READS_RIGHT = "run_reads_wrong"
+    ON_TARGET = "run_off_target"
+
+
+@dataclass(frozen=True, kw_only=True)
+class Violation:
+    """One invariant that doesn't hold after one step."""
+
+    invariant: Invariant
+    stage: int
+    step: int
+    """Number within the stage, from 0; −1 for the start state."""
+    subject: str
+    data: Mapping[str, Amount | str] = field(default_factory=dict)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Moment:
+    """The plant right after a step, with all that an invariant may ask about."""
+
+    machine: Machine
+    circuit: Circuit
+    policies: Policies
+    step: Step | None
+    """None for the start state."""
+    powered: bool
+    """The stage that the step belongs to."""
+    trusted_ports: frozenset[str]
+    solution: Solution
+    fitted: Mapping[str, str]
+    """Gauge to the test point at which it is fitted at present."""
+    running: frozenset[str]
+    moved: frozenset[str]
+    """Actuators that moved on the way."""
+
+
+Check = Callable[[Moment], tuple[str, dict[str, Amount | str]] | None]
+
+
+def established(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
+    if moment.solution.established and not moment.solution.loose_ports - moment.trusted_ports:
+        return None
+    return moment.step.subject if moment.step else "", {}
+
+
+def within_rating(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
+    for node, pressure_bar in zip(moment.circuit.nodes, moment.solution.pressures_bar, strict=True):
+        if pressure_bar > node.rating_bar + _DUST_BAR:
+            return node.rated_by, {
+                "line": node.name,
+                "pressure": bar(pressure_bar),
+                "rating": bar(node.rating_bar),
+            }
+    return None
+
+
+def still(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
+    """Nothing moves with a drive on. A lever that is worked to relieve a line may let a cylinder settle."""
+    if not moment.running or not moment.moved:
+        return None
+    return min(moment.moved), {}
+
+
+def filled(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
+    if not moment.solution.voids:
+        return None
+    return moment.circuit.nodes[min(moment.solution.voids)].name, {}
+
+
+def drive_carries(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
+    for drive, load in drive_loads(moment.circuit, moment.solution).items():
+        motor = moment.machine.parts[drive]
+        if isinstance(motor, ElectricMotor) and load.shaft_kw > motor.power_kw * motor.service_factor:
+            return drive, {"asked": kw(load.shaft_kw), "carries": kw(motor.power_kw * motor.service_factor)}
+    return None
+
+
+def not_opened_under_pressure(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
+    """Gauges come on and off only where the line stands at zero."""
+    step = moment.step
+    if step is None or step.kind not in (StepKind.FIT_GAUGE, StepKind.REMOVE_GAUGE):
+        return None
+    return _pressure_at(moment, str(step.data["test_point"]))
+
+
+def zero(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
+    step = moment.step
+    if step is None or step.kind is not StepKind.VERIFY_ZERO:
+        return None
+    return _pressure_at(moment, str(step.data["test_point"]))
+
+
+def _pressure_at(moment: Moment, test_point: str) -> tuple[str, dict[str, Amount | str]] | None:
+    pressure_bar = moment.solution.pressure_at(f"{test_point}.P")
+    if pressure_bar <= moment.policies.zero_limit_bar:
+        return None
+    return test_point, {"pressure": bar(pressure_bar)}
+
+
+def locked(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
+    """No drive runs in a locked stage once it is stopped."""
+    step = moment.step
+    if moment.powered or step is None or step.kind is StepKind.TELL_BEFORE or not moment.running:
+        return None
+    return min(moment.running), {}
+
+
+def gauge_within(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
+    for id_, gauge in moment.machine.gauges.items():
+        node = moment.circuit.node_of.get(gauge_port(id_, moment.fitted.get(id_, "")), TANK)
+        pressure_bar = moment.solution.pressures_bar[node]
+        if pressure_bar > gauge.rating_bar + _DUST_BAR:
+            return id_, {"pressure": bar(pressure_bar), "rating": bar(gauge.rating_bar)}
+    return None
+
+
+CHECKS: Mapping[Invariant, Check] = {
+    Invariant.WITHIN_RATING: within_rating,
+    Invariant.STILL: still,
+    Invariant.FILLED: filled,
+    Invariant.DRIVE_CARRIES: drive_carries,
+    Invariant.NOT_OPENED_UNDER_PRESSURE: not_opened_under_pressure,
+    Invariant.ZERO: zero,
+    Invariant.LOCKED: locked,
+    Invariant.GAUGE_WITHIN: gauge_within,
+}
+"""Held on the start state and after every step, once its pressures are established."""
