@@ -127,15 +127,17 @@ def pack(
     _tell("placing and drawing the pages")
     target = output or Path(f"{described.machine.tag}-draft.pdf")
     written = pipeline.write_pack(matter, target, paper=paper, only=only)
-    click.echo(f"{target}: {written.pages} pages, draft, content {written.digest}")
+    _print([f"{target}: {written.pages} pages, draft, content {written.digest}"])
 
 
 def _print(shown: Iterable[str] | dict[str, object]) -> None:
-    if isinstance(shown, dict):
-        click.echo(json.dumps(shown, indent=2))
-        return
-    for line in shown:
-        click.echo(line)
+    """Prints lines or data. A reader that leaves early changes nothing about the exit status."""
+    lines = [json.dumps(shown, indent=2)] if isinstance(shown, dict) else shown
+    try:
+        for line in lines:
+            click.echo(line)
+    except BrokenPipeError:
+        sys.stdout = io.StringIO()
 
 
 def _tell(doing: str) -> None:
@@ -168,9 +170,6 @@ def entry() -> None:
     except (click.Abort, KeyboardInterrupt):
         click.echo("stopped; nothing was written", err=True)
         sys.exit(130)
-    except BrokenPipeError:
-        sys.stderr.close()
-        sys.exit(int(ExitStatus.GOOD))
     except Exception:  # noqa: BLE001 -- the last gate: whatever reaches it is a bug, and its traceback is kept
         with tempfile.NamedTemporaryFile(
             "w", prefix="jamnut-bug-", suffix=".txt", delete=False, encoding="utf-8"

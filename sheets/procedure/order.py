@@ -66,6 +66,11 @@ def derive_order(found: Mapping[str, TestState], targets: Targets) -> Order:
             id_ for id_ in waiting if not any(edge.after == id_ and edge.before in waiting for edge in edges)
         ]
         if not free:
+            # What only comes after the cycle isn't in it.
+            while followers := [
+                id_ for id_ in waiting if not any(e.before == id_ and e.after in waiting for e in edges)
+            ]:
+                waiting = [id_ for id_ in waiting if id_ not in followers]
             cycle = Finding(
                 code="order_cycle",
                 severity=Severity.REFUSED,

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import Final
 
 from sheets.amounts import Amount
@@ -26,6 +27,8 @@ _PRESSURE_DECIMALS: Final = {"bar": 0, "psi": 0, "MPa": 1}
 _SMALL_PRESSURE_BAR: Final = 10.0
 """Below this a pressure gets one digit more."""
 
+_DUST: Final = 1e-6
+"""Of a last digit: what a conversion of units leaves."""
 _SMALL_FLOW_LPM: Final = 10.0
 """Below this a flow gets one digit more."""
 
@@ -82,15 +85,22 @@ class Figures:
         return shown(value_bar, self.second_pressure_unit, decimals=decimals)
 
     def second_inside(self, low_bar: float, high_bar: float) -> str:
-        """A window in the second unit, rounded inward so that it never accepts more than the first."""
+        """A window in the second unit, rounded inward so that it never accepts more than the first.
+
+        A narrow one gets digits more, so that rounding leaves something of it.
+        """
         unit = self.second_pressure_unit
         if not unit:
             return ""
-        step = 10.0 ** -_PRESSURE_DECIMALS[unit]
-        low = -(-to_unit(low_bar, unit) // step) * step
-        high = to_unit(high_bar, unit) // step * step
-        decimals = _PRESSURE_DECIMALS[unit]
-        return f"{number(low, decimals=decimals)} to {number(high, decimals=decimals)} {unit}"
+        low_digits, high_digits = "", ""
+        for decimals in range(_PRESSURE_DECIMALS[unit], _PRESSURE_DECIMALS[unit] + 3):
+            scale = 10.0**decimals
+            low = math.ceil(to_unit(low_bar, unit) * scale - _DUST) / scale
+            high = math.floor(to_unit(high_bar, unit) * scale + _DUST) / scale
+            low_digits, high_digits = number(low, decimals=decimals), number(high, decimals=decimals)
+            if low < high:
+                break
+        return f"{low_digits} to {high_digits} {unit}"
 
     def in_unit(self, value_bar: float) -> float:
         """A pressure in the first unit, as a number for a drawn scale."""

@@ -1,4 +1,4 @@
-"""What a person gets who writes a file or a command wrong: what, where, what to do, and no half-made paper."""
+"""A file or a command that is wrong: what is said of it, and that no half-made paper is left."""
 
 from __future__ import annotations
 
@@ -94,7 +94,9 @@ def test_all_that_is_wrong_is_said_at_once(variant: Callable[..., Path], refused
     assert said.index("TK1, volume") < said.index("CY1, bore")
 
 
-def test_rating_below_setting(variant: Callable[..., Path], run: Callable[..., object], tmp_path: Path) -> None:
+def test_rating_below_setting(
+    variant: Callable[..., Path], run: Callable[..., object], tmp_path: Path
+) -> None:
     """A plate value of a valve on the pump line: the file is good, the machine can't be set."""
     beyond = "    where: after the pump manifold, beyond RV1 and TP1\n"
     file = variant((f"{beyond}    rating: 315 bar", f"{beyond}    rating: 100 bar"))
@@ -149,7 +151,9 @@ def test_no_file(refused: Callable[..., str], name: str) -> None:
 
 def test_wrong_site_file(variant: Callable[..., Path], refused: Callable[..., str], tmp_path: Path) -> None:
     machine = variant()
-    assert refused("pack", machine, "--site", "nowhere.yaml").startswith("nowhere.yaml: The file can't be read")
+    assert refused("pack", machine, "--site", "nowhere.yaml").startswith(
+        "nowhere.yaml: The file can't be read"
+    )
     (tmp_path / "site.yaml").write_text("format: 1\nplantt: Brackwater Tileworks\n", encoding="utf-8")
     said = refused("pack", machine)
     assert re.search(r"site\.yaml, line 2, plantt: .*\n +Did you mean plant\?", said)

@@ -1,0 +1,65 @@
+"""'Not in use' is said of an adjuster only that governs nowhere, anywhere in the ranges."""
+
+from collections.abc import Callable
+
+from sheets.circuit.verdict import Verdict
+from sheets.pages.compose.matter import Matter
+from sheets.pipeline import Described, steps, targets
+from sheets.procedure.in_use import ever_governs
+from sheets.procedure.search import NotInUse, running_rest
+from sheets.wording.findings import say_not_in_use
+
+RETURN_RELIEF = """  RV2:
+    kind: relief valve
+    where: return line
+    rating: 25 bar
+    acting: direct
+    rated flow: 100 L/min
+    adjuster:
+      setting: 12 bar
+      given by: plate
+      lowest: {lowest} bar
+      highest: 20 bar
+      raises: clockwise
+      where: end of RV2
+      key: hex 5 mm
+
+  FR1:
+"""
+
+
+def with_return_relief(changed: Callable[..., Described], lowest: str) -> Described:
+    return changed(
+        "kiln_pusher",
+        ("  FR1:\n", RETURN_RELIEF.format(lowest=lowest)),
+        ("  return: [DV1.T, FR1.A]", "  return: [DV1.T, FR1.A, RV2.P]"),
+        ("HV1.A, RV1.T, FR1.B]", "HV1.A, RV1.T, RV2.T, FR1.B]"),
+    )
+
+
+def test_relief_of_a_line_that_never_rises(changed: Callable[..., Described]) -> None:
+    # The return line carries at most 0.5·(67.8/100)² = 0.23 bar, also on the way back (the cap end gives 67.8 L/min).
+    # Lowest 5 bar, opening at 4 bar: it never opens, wherever its screw stands.
+    matter = steps(with_return_relief(changed, "5"))
+    answer = matter.procedure.search.answers["RV2"]
+
+    assert isinstance(answer, NotInUse)
+    assert not answer.by_law
+    assert matter.procedure.verdict is Verdict.ESTABLISHED
+    assert matter.procedure.order.sequence == ("RV1",)
+    (sentence,) = say_not_in_use(matter.speaker, matter.procedure)
+    assert "RV2" in sentence
+    assert str(answer.states) in sentence
+
+
+def test_relief_that_governs_only_with_its_screw_out(changed: Callable[..., Described]) -> None:
+    # Lowest 0.1 bar: it does open on that line, so it is in use, and can't be set at 12 bar.
+    described = with_return_relief(changed, "0.1")
+    base = running_rest(described.circuit, targets(described))
+    assert ever_governs(described.circuit, base, "RV2")
+
+
+def test_every_adjuster_that_is_set_governs_somewhere(any_sample: Matter) -> None:
+    base = running_rest(any_sample.circuit, any_sample.targets)
+    for adjuster in any_sample.procedure.order.sequence:
+        assert ever_governs(any_sample.circuit, base, adjuster)
