@@ -22,11 +22,14 @@ from sheets.pages.compose.pack import compose
 from sheets.pages.document import Document, IssueContext, Layout, SheetKind
 from sheets.pages.layout import place
 from sheets.pages.press import pdf_bytes, print_pack
+from sheets.procedure.case import Case
 from sheets.procedure.plan import make_procedure
 from sheets.procedure.steps import Procedure
+from sheets.procedure.task import Task
 from sheets.seal.canonical import canonical_bytes, digest
 from sheets.targets.compute import compute_targets
 from sheets.targets.settings import Targets
+from sheets.trial.replay import Replay, findings_of, replay
 from sheets.wording import as_json
 from sheets.wording.as_json import Json, machine_json
 from sheets.wording.findings import say_finding
@@ -75,11 +78,20 @@ def targets(described: Described) -> Targets:
     return compute_targets(described.machine, described.circuit, described.policies)
 
 
-def steps(described: Described) -> Matter:
-    """The procedure in words, with hazards; refusals are findings of its targets and procedure."""
+def steps(described: Described, task: Task = Task()) -> Matter:  # noqa: B008 -- a frozen value
+    """The procedure in words, with hazards; refusals are findings of its targets, procedure and replay."""
     found = targets(described)
-    procedure = make_procedure(described.machine, described.circuit, found, described.policies)
+    case = Case(described.machine, described.circuit, found, described.policies)
+    procedure = make_procedure(case, task)
     return Matter(
+        replay=replay(
+            described.machine,
+            described.circuit,
+            found,
+            described.policies,
+            procedure,
+            trusted_ports=case.trusted_ports,
+        ),
         machine=described.machine,
         site=described.site,
         circuit=described.circuit,
@@ -130,24 +142,20 @@ def write_pack(
     return Written(pages=len(pages), digest=printed)
 
 
-def status_of(found: Targets, procedure: Procedure | None = None) -> ExitStatus:
-    """Exit status that targets, and a procedure from them, come to."""
+def status_of(found: Targets, procedure: Procedure | None = None, run: Replay | None = None) -> ExitStatus:
+    """Exit status that targets, a procedure from them and its replay come to."""
     if found.refusals:
         return ExitStatus.REFUSED
-    if procedure is None:
-        return ExitStatus.GOOD
-    match procedure.verdict:
-        case Verdict.ESTABLISHED:
-            return ExitStatus.GOOD
-        case Verdict.REFUTED:
-            return ExitStatus.REFUSED
-        case _:
-            return ExitStatus.NOT_ESTABLISHED
+    for judged in (procedure, run):
+        if judged is None or judged.verdict is Verdict.ESTABLISHED:
+            continue
+        return ExitStatus.REFUSED if judged.verdict is Verdict.REFUTED else ExitStatus.NOT_ESTABLISHED
+    return ExitStatus.GOOD
 
 
 def _hold(matter: Matter) -> None:
     """Nothing is printed for a job that doesn't hold."""
-    status = status_of(matter.targets, matter.procedure)
+    status = status_of(matter.targets, matter.procedure, matter.replay)
     if status is ExitStatus.GOOD:
         return
     against = [
@@ -201,7 +209,8 @@ def _spoken(matter: Matter) -> dict[int, tuple[SpokenStep, ...]]:
 
 
 def _findings(matter: Matter) -> tuple[Finding, ...]:
-    return (*matter.targets.findings, *matter.procedure.findings)
+    run = findings_of(matter.replay) if matter.procedure.stages else ()
+    return (*matter.targets.findings, *matter.procedure.findings, *run)
 
 
 def write_aside(target: Path, data: bytes) -> None:

@@ -64,10 +64,9 @@ class Reliefs:
         beyond_bar = drop_bar - self.opening_ratio * setting_bar
         lift_bar, share = ramp(x=beyond_bar, width=wide_bar)
         by_bend = -0.5 * share * share * widening
-        by_setting = (
-            gain * (by_bend * bend_slope - share * self.opening_ratio)
-            - gain * lift_bar * (band_slope - 0.5 * bend_slope) / (band_bar - 0.5 * bend_bar)
-        )
+        by_setting = gain * (by_bend * bend_slope - share * self.opening_ratio) - gain * lift_bar * (
+            band_slope - 0.5 * bend_slope
+        ) / (band_bar - 0.5 * bend_bar)
         return two_ended(
             first=self.first,
             second=self.second,

@@ -96,9 +96,7 @@ def _scope(
             return tuple(id_ for id_ in order if id_ in own | moved), frozenset(own)
 
 
-def _line_up(
-    case: Case, found: dict[str, TestState], order: tuple[str, ...]
-) -> tuple[MoveValve, ...]:
+def _line_up(case: Case, found: dict[str, TestState], order: tuple[str, ...]) -> tuple[MoveValve, ...]:
     """Hand valves of all states together, if a start with them is right and every state still shows."""
     wished = tuple(
         dict.fromkeys(
@@ -140,9 +138,7 @@ def _still_serves(case: Case, line_up: tuple[MoveValve, ...], state: TestState) 
     )
 
 
-def _gauges(
-    case: Case, found: dict[str, TestState], order: tuple[str, ...]
-) -> tuple[tuple[str, str], ...]:
+def _gauges(case: Case, found: dict[str, TestState], order: tuple[str, ...]) -> tuple[tuple[str, str], ...]:
     """Gauges to fit, as the states ask for them; a later one takes another test point on the same line."""
     taken: dict[str, str] = {}
     for id_ in order:

@@ -221,16 +221,12 @@ def _worst(case: Case, state: PlantState, stop: Solution, part: str) -> tuple[fl
         *solve_faults(case.circuit, state, faults),
     ]
     return tuple(
-        max(
-            solution.pressures_bar[node] if solution.established else float("inf") for solution in solutions
-        )
+        max(solution.pressures_bar[node] if solution.established else float("inf") for solution in solutions)
         for node in range(len(case.circuit.nodes))
     )
 
 
-def reasons_of(
-    case: Case, candidate: Candidate, adjuster: str
-) -> tuple[tuple[Change, Failure], ...]:
+def reasons_of(case: Case, candidate: Candidate, adjuster: str) -> tuple[tuple[Change, Failure], ...]:
     """Takes each change away alone and names what then fails, also with one fault."""
     if not candidate.changes:
         return ()
@@ -243,9 +239,9 @@ def reasons_of(
     solved = solve(case.circuit, lesser, effects=True)
     reasons: list[tuple[Change, Failure]] = []
     for index, left_out in enumerate(candidate.changes):
-        failure = first_failure(
-            solved.one(index), site, target_bar, case.trusted_ports
-        ) or moved_by_fault(case, lesser[index])
+        failure = first_failure(solved.one(index), site, target_bar, case.trusted_ports) or moved_by_fault(
+            case, lesser[index]
+        )
         if failure is not None:
             reasons.append((left_out, failure))
     return tuple(reasons)

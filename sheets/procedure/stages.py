@@ -330,13 +330,16 @@ def _raise(
         _back_out(job, rig, adjuster)
     for change in to_raise:
         at_stop = change.setting_bar >= job.case.site(change.adjuster).highest_bar
+        by_bar = change.setting_bar - rig.state.settings_bar[change.adjuster]
         rig.backed_out.discard(change.adjuster)
         rig.do(
             StepKind.RUN_IN if at_stop else StepKind.RUN_AHEAD,
             change.adjuster,
             change,
             reason=reasons.get(change),
-            data={} if at_stop else {"setting": bar(change.setting_bar), "of": adjuster},
+            data={}
+            if at_stop
+            else {"setting": bar(change.setting_bar), "change": bar(by_bar), "of": adjuster},
         )
 
 

@@ -151,9 +151,7 @@ class _Runner:
     def _step(self, stage: Stage, step: Step, at: int, place: int) -> None:
         moved: list[frozenset[str]] = [frozenset()] * len(self.starts)
         for action in step.actions:
-            outcomes = take_steps(
-                self.circuit, [(state, action) for state in self.states], to_stops=False
-            )
+            outcomes = take_steps(self.circuit, [(state, action) for state in self.states], to_stops=False)
             self.states = [outcome.state for outcome in outcomes]
             self.solutions = [outcome.solution for outcome in outcomes]
             moved = [before | outcome.moved for before, outcome in zip(moved, outcomes, strict=True)]

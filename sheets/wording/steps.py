@@ -16,6 +16,7 @@ from sheets.machine.site import Policies
 from sheets.procedure.conditions import Condition, Failure
 from sheets.procedure.answers import TestState
 from sheets.procedure.steps import Reading, Stage, StageKind, Step, StepKind
+from sheets.quantities import number
 from sheets.wording.figures import Figures
 from sheets.wording.sentences import Sentences
 
@@ -127,7 +128,7 @@ class Speaker:
     def failure_values(self, failure: Failure) -> dict[str, str]:
         """Figures and names of a failed condition as text."""
         values = {key: self.figures.amount(value) for key, value in failure.data.items()}
-        if failure.condition is Condition.STILL:
+        if failure.condition in (Condition.STILL, Condition.BARRED) and "part" in failure.data:
             part = self.machine.parts[str(failure.data["part"])]
             values["moves"] = str(getattr(part, "moves", ""))
         if values.get("governs"):
@@ -194,6 +195,8 @@ class Speaker:
         if step.kind is StepKind.WARM_OIL:
             low, high = self.oil_window()
             values |= {"low": low, "high": high}
+        if step.kind is StepKind.RUN_AHEAD:
+            values["turns"] = self._turns(step)
         if step.kind is StepKind.LEAVE_ALONE:
             values["window"] = self._accepted(step.subject)
         if step.kind is StepKind.COME_UP and step.reading:
@@ -218,6 +221,13 @@ class Speaker:
         high = self.policies.highest_setting_temperature_c if high is None else high
         text = [self.figures.amount(Amount(value=value, quantity="temperature_c")) for value in (low, high)]
         return text[0], text[1]
+
+    def _turns(self, step: Step) -> str:
+        """Turns that bring an adjuster from where it stands to just ahead, in eighths."""
+        per_turn_bar, change = self.screws[step.subject].adjuster.per_turn_bar, step.data["change"]
+        if per_turn_bar is None or isinstance(change, str):
+            raise ValueError(f"{step.subject}: its change per turn isn't known")
+        return number(change.value / per_turn_bar, step=0.125)
 
     def _accepted(self, adjuster: str) -> str:
         choice = self.found[adjuster].gauge
@@ -251,6 +261,11 @@ class Speaker:
             case StepKind.BACK_OUT | StepKind.RUN_IN:
                 direction = self.turning(step.subject, raising=step.kind is StepKind.RUN_IN)
                 lines.append(say("out_line", direction=direction, key=values["key"]))
+            case StepKind.RUN_AHEAD:
+                direction = self.turning(step.subject, raising=True)
+                lines.append(say("out_line", direction=direction, key=values["key"]))
+                of = self.adjuster(str(step.data["of"]))
+                lines.append(say("ahead_line", setting=values["setting"], of=of))
             case StepKind.TURN_BELOW:
                 direction = self.turning(step.subject, raising=False)
                 lines.append(f"{direction}, {values['key']}.")

@@ -48,7 +48,12 @@ def cover(matter: Matter, job: Sequence[Section]) -> Section:
         subject=machine.tag,
         lines=(
             matter.text("cover_line", name=machine.name, area=machine.area),
-            matter.text("task_line", dated=machine.dated.isoformat()),
+            matter.text(
+                "task_line",
+                task=matter.procedure.task.kind.value,
+                part=matter.procedure.task.part,
+                dated=machine.dated.isoformat(),
+            ),
         ),
         banner=None,
         blocks=tuple(blocks),

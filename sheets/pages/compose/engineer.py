@@ -24,10 +24,11 @@ def engineer(matter: Matter) -> Section:
         blocks.append(Heading(text=matter.text("not_in_use_title"), level=2))
         blocks += [Paragraph(text=text) for text in unused]
     blocks += [_derivations(matter, found)]
-    acting = sum(step.trace is not None for stage in procedure.stages for step in stage.steps)
+    acting = sum(bool(step.actions) for stage in procedure.stages for step in stage.steps)
     blocks += [
         Heading(text=matter.text("account_title"), level=2),
-        Paragraph(text=matter.text("account_tried", steps=str(acting))),
+        Paragraph(text=matter.text("account_tried", steps=str(acting), starts=str(len(matter.replay.runs)))),
+        Paragraph(text=matter.text("account_faults")),
         Paragraph(text=matter.text("account_not")),
         Paragraph(text=matter.text("account_policy")),
     ]

@@ -38,7 +38,16 @@ _OPENING = frozenset(
 )
 
 
-_BEFORE_STATE = frozenset({StepKind.LEAVE_ALONE, StepKind.RUN_IN, StepKind.BACK_OUT, StepKind.START})
+_BEFORE_STATE = frozenset(
+    {
+        StepKind.LEAVE_ALONE,
+        StepKind.RUN_IN,
+        StepKind.RUN_AHEAD,
+        StepKind.BACK_OUT,
+        StepKind.START,
+        StepKind.WARM_OIL,
+    }
+)
 """Steps of a setting that come before its gauge is watched: they take the whole width."""
 
 
@@ -96,26 +105,54 @@ def _section(
 
 
 def _before(matter: Matter, stage: Stage, numbers: Numbering) -> Section:
+    """Valves before power. Where nothing is fitted or opened there is no lockout to begin with."""
+    if stage.powered:
+        rows = _rows(matter, matter.spoken(stage), numbers)
+        blocks = (Paragraph(text=matter.text("no_lockout"), weight="strong"), Steps(steps=rows))
+        return _section(matter, "before_open", _powered(matter), blocks)
     first = Step(
         number=numbers.next(), order=matter.text("do_lockout"), lines=(matter.text("do_lockout_line"),)
     )
-    rows = tuple(page_step(step, number=numbers.next()) for step in matter.spoken(stage))
-    return _section(matter, "before", _locked(matter), (Steps(steps=(first, *rows)),))
+    rows = (first, *_rows(matter, matter.spoken(stage), numbers))
+    return _section(matter, "before", _locked(matter), (Steps(steps=rows),))
+
+
+def _rows(matter: Matter, spoken: Sequence[SpokenStep], numbers: Numbering) -> tuple[Step, ...]:
+    return tuple(page_step(one, number=numbers.next(), boxes=_boxes(matter, one)) for one in spoken)
+
+
+def _opening(matter: Matter, spoken: Sequence[SpokenStep], numbers: Numbering) -> list[Block]:
+    """The ticks that open a powered window, who stays in it, first aid and stops."""
+    return [
+        Paragraph(text=matter.text("window_text"), weight="strong"),
+        Steps(steps=_rows(matter, spoken, numbers)),
+        _people(matter),
+        first_aid(matter),
+        emergency(matter),
+    ]
 
 
 def _found(matter: Matter, stage: Stage, numbers: Numbering) -> Section:
     spoken = matter.spoken(stage)
     opening = [step for step in spoken if step.step.kind in _OPENING]
     work = [step for step in spoken if step.step.kind not in _OPENING]
-    blocks: list[Block] = [
-        Paragraph(text=matter.text("window_text"), weight="strong"),
-        Steps(steps=tuple(page_step(step, number=numbers.next()) for step in opening)),
-        _people(matter),
-        first_aid(matter),
-        emergency(matter),
-    ]
+    blocks = _opening(matter, opening, numbers)
     blocks += _groups(matter, work, numbers, "box_found")
+    if not any(one.kind is StageKind.CHECK for one in matter.procedure.stages):
+        blocks += _closing(matter, numbers)
     return _section(matter, "found", _powered(matter), blocks)
+
+
+def _closing(matter: Matter, numbers: Numbering) -> list[Block]:
+    """The step that ends a window, where a lockout follows it."""
+    if not any(stage.kind is StageKind.LOCK_AGAIN for stage in matter.procedure.stages):
+        return []
+    last = Step(
+        number=numbers.next(),
+        order=matter.text("do_lockout_again"),
+        lines=(matter.text("do_lockout_again_line"),),
+    )
+    return [Steps(steps=(last,))]
 
 
 def _people(matter: Matter) -> Table:
@@ -169,7 +206,7 @@ def _boxes(matter: Matter, spoken: SpokenStep) -> tuple[Box, ...] | None:
     match spoken.step.kind:
         case StepKind.WARM_OIL:
             return (Box(label=matter.text("box_oil"), unit="°C", size="short"),)
-        case StepKind.BACK_OUT | StepKind.RUN_IN:
+        case StepKind.BACK_OUT | StepKind.RUN_IN | StepKind.RUN_AHEAD:
             return (Box(label=matter.text("box_turns"), size="short"),)
         case _:
             return None
@@ -200,10 +237,14 @@ def _setting(matter: Matter, stage: Stage, numbers: Numbering) -> Section:
         ),
         Box(label=matter.text("box_oil"), unit="°C", size="medium"),
     )
-    spoken = matter.spoken(stage)
+    everything = matter.spoken(stage)
+    opening = [one for one in everything if one.step.kind in _OPENING]
+    spoken = [one for one in everything if one.step.kind not in _OPENING]
     begins = max((place + 1 for place, one in enumerate(spoken) if one.step.kind in _BEFORE_STATE), default=0)
+    blocks = _opening(matter, opening, numbers) if opening else []
     rows = tuple(_setting_step(matter, stage, one, numbers) for one in spoken)
-    blocks: list[Block] = [Steps(steps=rows[:begins])] if begins else []
+    if begins:
+        blocks.append(Steps(steps=rows[:begins]))
     blocks.append(Steps(steps=rows[begins:], panel=_panel(matter, stage.adjuster, boxes)))
     return Section(
         kind=SheetKind.WORK_INSTRUCTION,
@@ -245,12 +286,7 @@ def _shows_nowhere(matter: Matter, adjuster: str) -> bool:
 
 def _check(matter: Matter, stage: Stage, numbers: Numbering) -> Section:
     blocks: list[Block] = list(_groups(matter, matter.spoken(stage), numbers, "box_again"))
-    last = Step(
-        number=numbers.next(),
-        order=matter.text("do_lockout_again"),
-        lines=(matter.text("do_lockout_again_line"),),
-    )
-    blocks.append(Steps(steps=(last,)))
+    blocks += _closing(matter, numbers)
     return _section(matter, "check", _powered(matter), blocks)
 
 

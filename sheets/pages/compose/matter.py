@@ -12,6 +12,7 @@ from sheets.machine.site import Site
 from sheets.pages.document import Box, Step, Warning
 from sheets.procedure.steps import Procedure, Stage
 from sheets.targets.settings import Targets
+from sheets.trial.replay import Replay
 from sheets.wording.figures import Figures
 from sheets.wording.sentences import Sentences
 from sheets.wording.steps import Speaker, SpokenStep, SpokenWarning
@@ -26,6 +27,7 @@ class Matter:
     circuit: Circuit
     targets: Targets
     procedure: Procedure
+    replay: Replay
     hazards: Mapping[tuple[int, int], tuple[Hazard, ...]]
     speaker: Speaker
     engine: str
