@@ -59,9 +59,7 @@ class Ways:
         drop_bar = pressures_bar[:, self.first] - pressures_bar[:, self.second]
         conducts = np.where(self.is_open(state), self.conductance, 0.0)
         flow, slope = orifice_flow(drop_bar=drop_bar, conductance=conducts)
-        return two_ended(
-            first=self.first, second=self.second, flow_lpm=flow, slope=slope, slopes=slopes
-        )
+        return two_ended(first=self.first, second=self.second, flow_lpm=flow, slope=slope, slopes=slopes)
 
 
 @dataclass(frozen=True, kw_only=True)
