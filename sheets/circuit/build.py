@@ -115,6 +115,7 @@ def _reliefs(machine: Machine, book: NodeBook, *, adjusters: AdjusterBook, full_
         first=rows.index("first"),
         second=rows.index("second"),
         opening_ratio=rows.floats("ratio"),
+        band_ratio=1.0 - rows.floats("ratio"),
         reference_flow_lpm=rows.floats("flow"),
         adjuster=rows.index("adjuster"),
     )

@@ -24,6 +24,8 @@ class Reliefs:
         Pressure port and tank port; the pressure at the tank port adds to the reading.
     opening_ratio : 1
         κ, opening pressure over setting.
+    band_ratio : 1
+        1 − κ, rise from opening to reference flow over setting; apart from κ for one that is stuck open.
     reference_flow_lpm : L/min
         Flow at which the setting is read.
     adjuster : index
@@ -44,6 +46,7 @@ class Reliefs:
     first: Ints
     second: Ints
     opening_ratio: Floats
+    band_ratio: Floats
     reference_flow_lpm: Floats
     adjuster: Ints
 
@@ -53,9 +56,8 @@ class Reliefs:
         """Flows of a batch and what they do to the nodes."""
         setting_bar = state.setting(self.adjuster)
         drop_bar = pressures_bar[:, self.first] - pressures_bar[:, self.second]
-        closed_share = 1.0 - self.opening_ratio
-        band_bar = np.maximum(closed_share * setting_bar, LEAST_BAND_BAR)
-        band_slope = np.where(band_bar > LEAST_BAND_BAR, closed_share, 0.0)
+        band_bar = np.maximum(self.band_ratio * setting_bar, LEAST_BAND_BAR)
+        band_slope = np.where(band_bar > LEAST_BAND_BAR, self.band_ratio, 0.0)
         bend_bar = np.minimum(WIDEST_BEND_BAR, band_bar / 10.0)
         bend_slope = np.where(bend_bar < WIDEST_BEND_BAR, band_slope / 10.0, 0.0)
         gain = self.reference_flow_lpm / (band_bar - 0.5 * bend_bar)

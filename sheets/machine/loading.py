@@ -1,9 +1,10 @@
-"""Machine and site files into values, or one error with everything that is wrong in them, line by line."""
+"""Files into values, or one error with everything that is wrong in them, line by line."""
 
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass
+from datetime import date
 from functools import lru_cache
 from pathlib import Path
 from typing import Any, Final, TypeVar
@@ -12,6 +13,7 @@ from pydantic import TypeAdapter, ValidationError
 
 from sheets.errors import InputError, Problem, quoted
 from sheets.machine import flaws, reading
+from sheets.machine.blanks import find_blanks
 from sheets.machine.checks import Survey, cross_check
 from sheets.machine.fields import Entry, Identifier, PortRef
 from sheets.machine.flaws import Flaw
@@ -19,9 +21,12 @@ from sheets.machine.model import Machine, Supply
 from sheets.machine.parts import AnyGauge, Part
 from sheets.machine.reporting import flaws_of
 from sheets.machine.site import Site
+from sheets.machine.walkdown import Walkdown
 
 MOST_PROBLEMS: Final = 50
 """So many are told of one file; the rest shows when these are corrected."""
+MOST_BLANKS: Final = 500
+"""So many blanks of a starter are asked for at once: they are a list to work through, not faults."""
 
 _SECTIONS: Final = ("parts", "gauges", "energy")
 """Their names are left out where an entry's identifier says enough."""
@@ -73,6 +78,26 @@ def parse_site(text: bytes, name: str) -> Site:
     return _parsed(text, name, Site, lambda _: (), lambda _: None)
 
 
+def load_walkdown(path: Path, *, machine: Machine, today: date | None) -> Walkdown:
+    """Read a walk-down file. Raises InputError with every problem in it.
+
+    ``machine`` is the one that it has to be about. ``today`` comes from the clock; where it is given, answers
+    from the future are refused.
+    """
+
+    def check(walkdown: Walkdown) -> Iterator[Flaw]:
+        if walkdown.machine != machine.tag:
+            yield Flaw(
+                at=("machine",),
+                what=f"This is the walk-down of {walkdown.machine}; the machine file is of {machine.tag}.",
+                fix="Look which file belongs here; after a copy, begin a new walk-down.",
+            )
+        if today is not None:
+            yield from walkdown.dates_after(today)
+
+    return _parsed(_bytes_of(path), path.name, Walkdown, check, lambda _: None)
+
+
 def _bytes_of(path: Path) -> bytes:
     try:
         with path.open("rb") as file:
@@ -103,21 +128,24 @@ def _parsed(
         survey = survey_with_holes(text.data)
         found += cross_check(survey) if survey else ()
         value = None
-    placed = [(_line(flaw.at, text.lines), flaw) for flaw in found] + list(text.flaws)
+    blanks = find_blanks(text, source, model)
+    blank = {flaw.at for flaw in blanks}
+    placed = [(_line(flaw.at, text.lines), flaw) for flaw in found if flaw.at not in blank]
+    placed += [*text.flaws, *((_line(flaw.at, text.lines), flaw) for flaw in blanks)]
     if placed or value is None:
         placed.sort(key=lambda each: each[0])
-        raise InputError(*_problems(placed, name))
+        raise InputError(*_problems(placed, name, MOST_BLANKS if blanks else MOST_PROBLEMS))
     return value
 
 
-def _problems(placed: list[tuple[int, Flaw]], name: str) -> Iterator[Problem]:
-    for line, flaw in placed[:MOST_PROBLEMS]:
+def _problems(placed: list[tuple[int, Flaw]], name: str, most: int) -> Iterator[Problem]:
+    for line, flaw in placed[:most]:
         where = ", ".join([f"{name}, line {line}", *_steps(flaw.at)])
         yield Problem(where=where, what=flaw.what, fix=flaw.fix)
-    if len(placed) > MOST_PROBLEMS:
+    if len(placed) > most:
         yield Problem(
             where=name,
-            what=f"There are {len(placed) - MOST_PROBLEMS} more problems.",
+            what=f"There are {len(placed) - most} more problems.",
             fix="Correct these first, then read the file again.",
         )
 

@@ -36,6 +36,12 @@ def flaws_of(error: ValidationError, *, model: type[Entry], data: Mapping[str, A
             yield _translated(detail, path, model, data)
 
 
+def example_at(model: type[Entry], data: Mapping[str, Any], path: Path) -> str:
+    """How the value at that place may be written; empty for a place that isn't known."""
+    shape = _shape(model, data, path)
+    return shape.example() if shape else ""
+
+
 def _translated(detail: ErrorDetails, path: Path, model: type[Entry], data: Mapping[str, Any]) -> Flaw:
     context = detail.get("ctx", {})
     match detail["type"]:

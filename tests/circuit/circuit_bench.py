@@ -13,6 +13,7 @@ from sheets.machine.parts import (
     Cylinder,
     DirectionalValve,
     ElectricMotor,
+    Filter,
     FixedPump,
     HandValve,
     HydraulicMotor,
@@ -111,6 +112,8 @@ def edge(kind: str, flow_lpm: float, drop_bar: float, **changes: Any) -> Any:
     }
     if kind == "check valve":
         return CheckValve(kind="check valve", **{"opening_bar": 0.5, **values})
+    if kind == "filter":
+        return Filter(kind="filter", **values)
     if kind == "hand valve":
         return HandValve(kind="hand valve", **{"rest": "open", "lockable": True, **values})
     return Orifice(kind="orifice", **values)

@@ -171,9 +171,7 @@ def test_order_of_parts_and_nets_changes_nothing():
         rng.shuffle(parts)
         rng.shuffle(nets)
         nets = [(name, tuple(rng.sample(ports, len(ports)))) for name, ports in nets]
-        circuit = build_circuit(
-            Machine.model_construct(parts=dict(parts), nets=dict(nets), gauges={})
-        )
+        circuit = build_circuit(Machine.model_construct(parts=dict(parts), nets=dict(nets), gauges={}))
         settings = {site.id: 0.6 * site.highest_bar for site in circuit.adjusters}
         state = circuit.rest_state(settings).driven("M1", on=True).moved("DV1", "out")
         solution = solve_one(circuit, state)

@@ -186,7 +186,9 @@ def test_cylinder_extends_and_retracts_in_the_ratio_of_its_areas():
     state = running(circuit)
     out, back = (solved(circuit, state.moved("DV1", position)) for position in ("out", "in"))
     assert out.speeds["CY1"] == pytest.approx(60.0 / 6.0 / (math.pi * 25.0), rel=1e-6)
-    assert back.speeds["CY1"] / out.speeds["CY1"] == pytest.approx(-100.0**2 / (100.0**2 - 70.0**2), rel=1e-5)
+    assert back.speeds["CY1"] / out.speeds["CY1"] == pytest.approx(
+        -(100.0**2) / (100.0**2 - 70.0**2), rel=1e-5
+    )
     # What the rod side gives back is less than what the cap side takes, by the ratio of areas.
     assert out.flows_lpm["DV1 B to T"] == pytest.approx(60.0 * 0.51, rel=1e-6)
 

@@ -94,9 +94,7 @@ def test_relief_lets_a_trapped_group_down_to_its_opening_and_no_further():
 
 
 def test_pump_whose_drive_stands_passes_exactly_nothing():
-    circuit = build_circuit(
-        bench({"PU1": fixed_pump()}, {"tank": f"{TANK_LINE} PU1.S", "line": "PU1.P"})
-    )
+    circuit = build_circuit(bench({"PU1": fixed_pump()}, {"tank": f"{TANK_LINE} PU1.S", "line": "PU1.P"}))
     state = replace(circuit.rest_state({}), pressures_bar=(0.0, 150.0))
     solution = solve_one(circuit, state)
     assert solution.flows_lpm["PU1"] == 0.0
