@@ -16,8 +16,8 @@ from sheets.circuit.plant import MoveValve
 from sheets.machine.model import Machine
 from sheets.machine.parts import Cylinder, HydraulicMotor
 from sheets.machine.site import Policies
-from sheets.procedure.conditions import Condition
 from sheets.procedure.answers import TestState
+from sheets.procedure.conditions import Condition
 from sheets.procedure.steps import Procedure, Stage, Step, StepKind
 
 Signal = Literal["DANGER", "WARNING", "CAUTION", "NOTICE"]

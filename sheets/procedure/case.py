@@ -24,7 +24,7 @@ class Case:
 
     @cached_property
     def base(self) -> PlantState:
-        """Valves at rest, all drives on, every adjuster at its target (at the end of its range without one)."""
+        """Valves at rest, all drives on, every adjuster at its target or, without one, at its stop."""
         settings_bar = {site.id: site.highest_bar for site in self.circuit.adjusters}
         state = self.circuit.rest_state(settings_bar | self.targets.settings_bar())
         for drive in self.circuit.drives:
@@ -39,7 +39,7 @@ class Case:
             for id_, part in self.machine.parts.items()
             if isinstance(part, VariablePump)
             and part.load_sensing is not None
-            and part.load_sensing.sealed_without_bleed
+            and getattr(part.load_sensing, "sealed_without_bleed", False)
         )
 
     def site(self, adjuster: str) -> AdjusterSite:

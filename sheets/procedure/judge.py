@@ -84,7 +84,7 @@ def _judge(case: Case, candidate: Candidate, adjuster: str) -> TestState | Failu
         if failure is not None:
             return failure
     failure = (
-        _at_another_flow(case, setting, target)
+        _at_another_flow(setting, target)
         or unestablished(stop, case.trusted_ports)
         or moving(stop)
         or starved(stop)
@@ -126,7 +126,7 @@ def _found(
     )
 
 
-def _at_another_flow(case: Case, setting: Setting, target: Solution) -> Failure | None:
+def _at_another_flow(setting: Setting, target: Solution) -> Failure | None:
     """A value that its maker gives at a flow is read at that flow only."""
     wanted_lpm = setting.at_flow_lpm
     if wanted_lpm is None:

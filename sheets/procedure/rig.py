@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 
 from sheets.amounts import Amount, Finding, Severity
@@ -33,6 +34,8 @@ class Rig:
         self.findings: list[Finding] = []
         self.gauge: GaugeChoice | None = None
         """Gauge that the steps read at present."""
+        self.unknown: set[str] = set()
+        """Adjusters of which nobody knows how they stand until they are set."""
         self.backed_out: set[str] = set()
         """Adjusters that stand anywhere below their range until they come up to their target."""
         self.fitted: dict[str, str] = {}
@@ -58,8 +61,8 @@ class Rig:
     ) -> None:
         """A step that acts on the plant; its readings are those after the last action.
 
-        ``window_of`` names the adjuster whose window the reading must lie in; without it the reading is a band
-        around what is expected.
+        ``window_of`` names the adjuster whose window the reading must lie in; without it the reading is a
+        band around what is expected.
         """
         for action in actions:
             self._act(kind, subject, action)
@@ -122,12 +125,13 @@ class Rig:
             return None
         node = self.circuit.node_of[choice.port]
         expected_bar = solution.pressures_bar[node]
+        governs = window_of or _governor(solution, node)
+        low_bar, high_bar = self._band(expected_bar, choice.graduation_bar)
+        if governs in self.unknown:
+            high_bar = max(high_bar, self._at_stop(solution, governs, node, choice.graduation_bar))
+        beyond_bar = high_bar
         if window_of:
-            low_bar, high_bar, governs = choice.window.low_bar, choice.window.high_bar, window_of
-        else:
-            governs = _governor(solution, node)
-            low_bar, high_bar = self._band(expected_bar, choice.graduation_bar)
-        _, beyond_bar = self._band(expected_bar, choice.graduation_bar)
+            low_bar, high_bar = choice.window.low_bar, choice.window.high_bar
         return Reading(
             adjuster=governs,
             gauge=choice.gauge,
@@ -159,6 +163,13 @@ class Rig:
         if self.gauge is None:
             return ""
         return _governor(self.look(), self.circuit.node_of[self.gauge.port])
+
+    def _at_stop(self, solution: Solution, adjuster: str, node: int, graduation: float) -> float:
+        """What a node may show, up to a graduation, if an unknown adjuster stands at the end of its range."""
+        site = next(site for site in self.circuit.adjusters if site.id == adjuster)
+        more_bar = site.highest_bar - self.state.settings_bar[adjuster]
+        highest_bar = solution.pressures_bar[node] + solution.effects[adjuster][node] * more_bar
+        return math.ceil(highest_bar / graduation - 1e-6) * graduation
 
     def _band(self, expected_bar: float, graduation: float) -> tuple[float, float]:
         """What a reading may be before a setting is made: out by the policy share, outward to graduations.

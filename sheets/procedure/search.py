@@ -111,11 +111,11 @@ def _try_batch(case: Case, batch: Sequence[Candidate], open_ones: Sequence[_Want
                 continue
             if _responds(solution, one.site):
                 one.responded = True
-            outcome: TestState | Failure | None = first_failure(
-                solution, one.site, one.setting.target_bar, case.trusted_ports
-            )
-            if outcome is None or outcome.condition is Condition.WITHIN:
-                outcome = judge(case, candidate, one.site.id)
+            failure = first_failure(solution, one.site, one.setting.target_bar, case.trusted_ports)
+            if failure is not None and failure.condition is not Condition.WITHIN:
+                one.note(failure, candidate.changes, _distance(solution, one))
+                continue
+            outcome = judge(case, candidate, one.site.id)
             if isinstance(outcome, TestState):
                 one.answer = outcome
             else:

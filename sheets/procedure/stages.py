@@ -30,6 +30,7 @@ def write_stages(job: Job) -> tuple[tuple[Stage, ...], tuple[Finding, ...]]:
     """All stages of the task in order, and what the simulation of their steps found."""
     case = job.case
     rig = Rig(case.machine, case.circuit, case.circuit.rest_state(case.base.settings_bar))
+    rig.unknown = set(job.unknown)
     stages: list[Stage] = []
     if job.locked:
         stages.append(_isolate(job, rig, StageKind.ISOLATE))
@@ -309,6 +310,7 @@ def _set(job: Job, rig: Rig, adjuster: str, *, first: bool) -> Stage:
             data={"held_by": governor if governor != adjuster else ""},
         )
     rig.backed_out.discard(adjuster)
+    rig.unknown.discard(adjuster)
     rig.do(
         StepKind.COME_UP,
         adjuster,

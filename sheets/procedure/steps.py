@@ -10,10 +10,10 @@ from sheets.amounts import Amount, Finding
 from sheets.circuit.plant import PlantAction
 from sheets.circuit.verdict import Verdict
 from sheets.energy.trapped import Trapped
+from sheets.procedure.answers import Search
 from sheets.procedure.conditions import Failure
 from sheets.procedure.order import Order
 from sheets.procedure.task import Task
-from sheets.procedure.answers import Search
 
 
 class StepKind(Enum):

@@ -8,8 +8,8 @@ from sheets.amounts import Amount, Derivation, Finding
 from sheets.circuit.plant import Adjust
 from sheets.circuit.verdict import Verdict
 from sheets.machine.model import Machine
-from sheets.procedure.changes import Change
 from sheets.procedure.answers import NotFound, NotInUse, TestState
+from sheets.procedure.changes import Change
 from sheets.procedure.steps import Procedure, Reading
 from sheets.targets.settings import Targets
 from sheets.wording.findings import say_finding

@@ -13,8 +13,8 @@ from sheets.machine.model import Machine
 from sheets.machine.parts import DialGauge, DirectionalValve, ElectricMotor, HandValve
 from sheets.machine.screws import screws_of
 from sheets.machine.site import Policies
-from sheets.procedure.conditions import Condition, Failure
 from sheets.procedure.answers import TestState
+from sheets.procedure.conditions import Condition, Failure
 from sheets.procedure.steps import Reading, Stage, StageKind, Step, StepKind
 from sheets.quantities import number
 from sheets.wording.figures import Figures

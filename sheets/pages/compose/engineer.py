@@ -6,9 +6,9 @@ from sheets.amounts import Derivation
 from sheets.circuit.plant import MoveValve
 from sheets.pages.compose.matter import Matter
 from sheets.pages.document import Block, Heading, Paragraph, Section, SheetKind, Table
+from sheets.procedure.answers import TestState
 from sheets.procedure.changes import Change
 from sheets.procedure.order import EdgeKind
-from sheets.procedure.answers import TestState
 from sheets.wording.findings import say_not_in_use
 
 

@@ -5,8 +5,8 @@ from __future__ import annotations
 from sheets.machine.parts import DialGauge
 from sheets.pages.compose.matter import Matter
 from sheets.pages.document import GaugeFace, Section, SettingTag, SheetKind, TagSheet
-from sheets.procedure.gauges import GaugeChoice
 from sheets.procedure.answers import TestState
+from sheets.procedure.gauges import GaugeChoice
 
 
 def face(matter: Matter, state: TestState) -> GaugeFace:
