@@ -63,10 +63,11 @@ def choose_gauge(
 ) -> GaugeChoice | Failure:
     """The gauge that shows this reading best, in the order of the file where several do.
 
-    ``node`` is controlled; ``pressures_bar`` of all nodes at the target. ``reading_bar``, ``low_bar`` and ``high_bar`` are what
-    the setting and its window convert to; ``highest_bar`` what the gauge may see with the screw at its stop;
-    ``rating_bar`` the lowest rating in reach; ``floor_bar`` and ``ceiling_bar`` bound a widened window. All in bar.
-    A gauge that would be over-ranged, or whose error is as wide as the window, is refused.
+    ``node`` is controlled; ``pressures_bar`` of all nodes at the target. ``reading_bar``, ``low_bar`` and
+    ``high_bar`` are what the setting and its window convert to; ``highest_bar`` what the gauge may see with
+    the screw at its stop; ``rating_bar`` the lowest rating in reach; ``floor_bar`` and ``ceiling_bar``
+    bound a widened window. All in bar. A gauge that would be over-ranged, or whose error is as wide as the
+    window, is refused.
     """
     best: tuple[tuple[int, float], GaugeChoice] | None = None
     nearest = Failure(condition=Condition.SEEN, data={"line": circuit.nodes[node].name})

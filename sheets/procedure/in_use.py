@@ -18,9 +18,9 @@ def ever_governs(circuit: Circuit, base: PlantState, adjuster: str) -> bool:
     """Whether the adjuster's reading answers to it in any state that no opened line makes.
 
     Valves stand in every combination of their positions, the adjuster at both ends and the middle of its
-    range (at its target in ``base`` it may only be hidden), the others at their targets, all at the highest or
-    all at the lowest end. States that move or aren't fit for setting count too: what governs there is in use.
-    So does a state that isn't established, since nobody knows what governs it.
+    range (at its target in ``base`` it may only be hidden), the others at their targets, all at the highest
+    or all at the lowest end. States that move or aren't fit for setting count too: what governs there is in
+    use. So does a state that isn't established, since nobody knows what governs it.
     """
     place = next(index for index, site in enumerate(circuit.adjusters) if site.id == adjuster)
     site = circuit.adjusters[place]

@@ -58,8 +58,8 @@ class Rig:
     ) -> None:
         """A step that acts on the plant; its readings are those after the last action.
 
-        ``window_of`` names the adjuster whose window the reading must lie in; without it the reading is a band
-        around what is expected.
+        ``window_of`` names the adjuster whose window the reading must lie in; without it the reading is a
+        band around what is expected.
         """
         for action in actions:
             self._act(kind, subject, action)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
+from itertools import pairwise
 
 from sheets.amounts import Derivation, Finding, Severity, bar, ratio
 from sheets.circuit.model import AdjusterSite, Circuit
@@ -366,7 +367,7 @@ def _apart(settings: Mapping[str, Setting], lines: tuple[_Line, ...]) -> dict[st
             (cut[id_] for id_ in (line.difference, line.limit, *line.reliefs) if id_ in cut),
             key=lambda setting: setting.target_bar,
         )
-        for lower, upper in zip(ladder, ladder[1:], strict=False):
+        for lower, upper in pairwise(ladder):
             middle_bar = (lower.target_bar + upper.target_bar) / 2.0
             below, above = cut[lower.adjuster], cut[upper.adjuster]
             if below.window_origin is Origin.POLICY and below.high_bar >= above.low_bar:

@@ -29,9 +29,9 @@ def work_demands(
 ) -> tuple[Demand, ...]:
     """Pump pressure for every move of every actuator, from the solver, highest first.
 
-    ``settings_bar`` holds every adjuster: ``limits`` at the end of their range, the others at their targets. So
-    losses and the margin of a load-sensing control are in the figures. States that don't converge are left
-    out; where a value would have to come from here, that is then said.
+    ``settings_bar`` holds every adjuster: ``limits`` at the end of their range, the others at their
+    targets. So losses and the margin of a load-sensing control are in the figures. States that don't
+    converge are left out; where a value would have to come from here, that is then said.
     """
     running = circuit.rest_state(settings_bar)
     for drive in circuit.drives:

@@ -61,9 +61,9 @@ def window_of(
 ) -> tuple[float, float, Origin, Derivation]:
     """Accepted settings around a target.
 
-    ``target_bar``, ``tolerance_bar`` (given half width or None) and ``least_bar`` in bar; ``share`` of the target.
-    Returns low and high in bar, where the width comes from, and its derivation. Policy: the larger of a share
-    of the target and a least half width. Source: policy of this project unless given.
+    ``target_bar``, ``tolerance_bar`` (given half width or None) and ``least_bar`` in bar; ``share`` of the
+    target. Returns low and high in bar, where the width comes from, and its derivation. Policy: the larger
+    of a share of the target and a least half width. Source: policy of this project unless given.
     """
     if tolerance_bar is not None:
         half_bar, origin = tolerance_bar, Origin.GIVEN

@@ -55,7 +55,7 @@ def not_found(matter: Matter, adjuster: str) -> NotFound:
 
 
 def no_valve(valve: str, before: str, name: str = "") -> tuple[tuple[str, str], ...]:
-    """A hand valve that becomes an open throttle; ``before`` stands between its kind and its rest position."""
+    """A hand valve made an open throttle; ``before`` stands between its kind and its rest position."""
     head = f"  {valve}:\n    kind: hand valve\n{name}{before}"
     rest = "    rest: open\n    lockable: yes\n"
     return ((head + rest, head.replace("hand valve", "orifice")),)
