@@ -5,7 +5,7 @@ from __future__ import annotations
 import pytest
 from outside_bench import Published, circuit_of, fixed_pump, running, screw, solved
 
-from sheets.circuit.build_actuators import swept_by_area
+from sheets.circuit.ratings import swept_by_area
 from sheets.machine.parts import Cylinder
 from sheets.pages.compose.matter import Matter
 
