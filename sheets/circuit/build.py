@@ -78,6 +78,48 @@ def build_circuit(
     )
 
 
+def both_ends(
+    machine: Machine,
+    *,
+    opening_ratio_direct: float = 0.80,
+    opening_ratio_pilot: float = 0.93,
+    control_width_bar: float = 4.0,
+) -> tuple[Circuit, ...]:
+    """Give the circuits between which leakage leaves a machine: one, or two where an LS port may be cut off.
+
+    Parameters
+    ----------
+    machine : Machine
+        The machine file as read.
+    opening_ratio_direct, opening_ratio_pilot : 1
+        As for ``build_circuit``.
+    control_width_bar : bar
+        As for ``build_circuit``.
+
+    Returns
+    -------
+    tuple of Circuit
+        The standby end first. States of one are states of the other; whatever is judged must hold in both,
+        and the worse is carried.
+
+    Raises InputError as ``build_circuit`` does.
+    Valid as ``build_circuit``; several pumps with such ports are all taken at the same end.
+    Source: nothing published tells where leakage leaves a sealed port, hence both ends.
+    """
+    ends: tuple[SealedEnd, ...] = ("standby end", "compensator end")
+    first, second = (
+        build_circuit(
+            machine,
+            opening_ratio_direct=opening_ratio_direct,
+            opening_ratio_pilot=opening_ratio_pilot,
+            control_width_bar=control_width_bar,
+            sealed_ls=end,
+        )
+        for end in ends
+    )
+    return (first, second) if first.sealed_ports else (first,)
+
+
 def _positions(machine: Machine) -> dict[str, tuple[str, ...]]:
     """Positions of every valve, the rest position first."""
     found: dict[str, tuple[str, ...]] = {}

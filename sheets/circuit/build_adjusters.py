@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from sheets.circuit.model import AdjusterSite
 from sheets.errors import InputError, Problem
@@ -91,7 +91,9 @@ class AdjusterBook:
     ) -> AdjusterSite:
         """The site of a compensator."""
         width_bar, policy = self._width(control.width_bar)
-        return self._add_control(part_id, COMPENSATOR, control, controlled, reference, width_bar, policy)
+        return self._add(
+            self._control(part_id, COMPENSATOR, control, controlled, reference, width_bar, policy)
+        )
 
     def add_load_sensing(
         self,
@@ -100,6 +102,7 @@ class AdjusterBook:
         *,
         controlled: int,
         reference: int,
+        signal_node: int | None,
         full_flow_lpm: float,
     ) -> AdjusterSite:
         """The site of a load-sensing control; standby and differential, where given, give its width."""
@@ -116,14 +119,15 @@ class AdjusterBook:
                     )
                 )
         width_bar, policy = self._width(given)
-        return self._add_control(part_id, LOAD_SENSING, control, controlled, reference, width_bar, policy)
+        site = self._control(part_id, LOAD_SENSING, control, controlled, reference, width_bar, policy)
+        return self._add(replace(site, signal_node=signal_node, width_flow_lpm=full_flow_lpm))
 
     def _width(self, given_bar: float | None) -> tuple[float, frozenset[str]]:
         if given_bar is None:
             return self._policies.control_width_bar, frozenset({"width"})
         return given_bar, frozenset()
 
-    def _add_control(
+    def _control(
         self,
         part_id: str,
         name: str,
@@ -133,19 +137,17 @@ class AdjusterBook:
         width_bar: float,
         policy: frozenset[str],
     ) -> AdjusterSite:
-        return self._add(
-            AdjusterSite(
-                id=self._ids[part_id, name],
-                part=part_id,
-                controlled_node=controlled,
-                reference_node=reference,
-                lowest_bar=control.lowest_bar,
-                highest_bar=control.highest_bar,
-                flow_slope=1.0,
-                reference_flow_lpm=0.0,
-                width_bar=width_bar,
-                policy=policy,
-            )
+        return AdjusterSite(
+            id=self._ids[part_id, name],
+            part=part_id,
+            controlled_node=controlled,
+            reference_node=reference,
+            lowest_bar=control.lowest_bar,
+            highest_bar=control.highest_bar,
+            flow_slope=1.0,
+            reference_flow_lpm=0.0,
+            width_bar=width_bar,
+            policy=policy,
         )
 
     def _add(self, site: AdjusterSite) -> AdjusterSite:

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 from sheets.circuit.build_adjusters import AdjusterBook
 from sheets.circuit.model import SealedEnd
 from sheets.circuit.nodes import NodeBook
 from sheets.circuit.pumps import CLOSED_BEND_AT_LEAST, STROKE_BEND, Pumps
+from sheets.circuit.ratings import pressure_of_torque
 from sheets.circuit.rows import Rows
 from sheets.circuit.stamp import NONE
 from sheets.errors import InputError, Problem
@@ -20,18 +22,63 @@ LEAST_SETTING_BAR = 1.0
 
 
 def full_flow(machine: Machine, part_id: str, pump: Pump) -> float:
-    """Flow of a pump at the pressure of its rating, V·n·η_v, in L/min.
+    """Greatest flow of a pump at the pressure of its rating, in L/min: with its stroke at its stop.
 
+    A torque limit isn't counted, since it fails as controls do: this is what a relief must pass.
+    Raises InputError where nothing of that name drives it.
+    """
+    lost_to_stop_lpm = displaced_flow(machine, part_id, pump) - stopped_flow(machine, part_id, pump)
+    return control_flow(machine, part_id, pump) - lost_to_stop_lpm
+
+
+def control_flow(machine: Machine, part_id: str, pump: Pump) -> float:
+    """Flow of a pump at whole stroke and at the pressure of its rating, V·n·η_v, in L/min.
+
+    The width of a control is the rise over this flow: a stop ends the stroke, and leaves the gain as it was.
     Raises InputError where nothing of that name drives it.
     """
     return displaced_flow(machine, part_id, pump) * pump.volumetric_efficiency
 
 
-def displaced_flow(machine: Machine, part_id: str, pump: Pump) -> float:
-    """Theoretical flow of a pump at full stroke, V·n, in L/min.
+def stopped_flow(machine: Machine, part_id: str, pump: Pump) -> float:
+    """Theoretical flow of a pump with its stroke at its stop, in L/min; V·n where it has none.
 
     Raises InputError where nothing of that name drives it.
     """
+    stop_cm3 = pump.displacement_stop_cm3 if isinstance(pump, VariablePump) else None
+    speed_rpm = _drive(machine, part_id, pump).speed_rpm
+    return (pump.displacement_cm3 if stop_cm3 is None else stop_cm3) * speed_rpm / 1000.0
+
+
+def displaced_flow(machine: Machine, part_id: str, pump: Pump) -> float:
+    """Theoretical flow of a pump at whole stroke, V·n, in L/min.
+
+    Raises InputError where nothing of that name drives it.
+    """
+    return pump.displacement_cm3 * _drive(machine, part_id, pump).speed_rpm / 1000.0
+
+
+def torque_power(*, torque_nm: float, speed_rpm: float) -> float:
+    """Give pressure times displaced flow at a hydraulic torque.
+
+    Parameters
+    ----------
+    torque_nm : N·m
+        p·V(s)/20π with p in bar and V(s) in cm³: mechanical losses are not counted.
+    speed_rpm : rev/min
+        Of the shaft.
+
+    Returns
+    -------
+    float : bar·L/min
+        20π·T·n/1000; 600 of them are 1 kW.
+
+    Valid for any stroke. Source: torque times angle is pressure times volume, over one revolution.
+    """
+    return pressure_of_torque(torque_nm=torque_nm, displacement_cm3=1000.0) * speed_rpm
+
+
+def _drive(machine: Machine, part_id: str, pump: Pump) -> ElectricMotor:
     drive = machine.parts.get(pump.driven_by)
     if not isinstance(drive, ElectricMotor):
         raise InputError(
@@ -41,7 +88,7 @@ def displaced_flow(machine: Machine, part_id: str, pump: Pump) -> float:
                 fix="Name the electric motor that turns the pump.",
             )
         )
-    return pump.displacement_cm3 * drive.speed_rpm / 1000.0
+    return drive
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -81,11 +128,15 @@ def build_pumps(
             case = suction  # leakage stays inside
         compensator = load_sensing = NONE
         width = signal_width = 1.0
+        torque_power_bar_lpm = math.inf
         lowest_bar = LEAST_SETTING_BAR
         signal = _Signal(node=case, bleed=0.0, from_outlet=False, open_question=False)
         if isinstance(part, VariablePump):
             site = adjusters.add_compensator(part_id, part.compensator, controlled=outlet, reference=case)
             compensator, width = adjusters.index(site.id), site.width_bar
+            if part.torque_limit_nm is not None:
+                speed_rpm = _drive(machine, part_id, part).speed_rpm
+                torque_power_bar_lpm = torque_power(torque_nm=part.torque_limit_nm, speed_rpm=speed_rpm)
             lowest_bar = site.lowest_bar
             if part.load_sensing is not None:
                 signal = _signal(part_id, part, book, outlet=outlet, case=case, sealed_ls=sealed_ls)
@@ -94,13 +145,15 @@ def build_pumps(
                     part.load_sensing,
                     controlled=outlet,
                     reference=signal.node,
-                    full_flow_lpm=full_flow(machine, part_id, part),
+                    signal_node=book.at(f"{part_id}.X"),
+                    full_flow_lpm=control_flow(machine, part_id, part),
                 )
                 load_sensing, signal_width = adjusters.index(site.id), site.width_bar
                 lowest_bar = min(lowest_bar, site.lowest_bar)
         if signal.open_question:
             open_ports.append(f"{part_id}.X")
-        closed_bend = min(STROKE_BEND * displaced_lpm, leakage * max(lowest_bar, LEAST_SETTING_BAR))
+        stopped_lpm = stopped_flow(machine, part_id, part)
+        closed_bend = min(STROKE_BEND * stopped_lpm, leakage * max(lowest_bar, LEAST_SETTING_BAR))
         rows.add(
             id=part_id,
             outlet=outlet,
@@ -109,8 +162,10 @@ def build_pumps(
             signal=signal.node,
             drive=drives.index(part.driven_by),
             displaced=displaced_lpm,
+            stopped=stopped_lpm,
+            torque=torque_power_bar_lpm,
             leakage=leakage,
-            full=full_flow(machine, part_id, part),
+            full=control_flow(machine, part_id, part),
             overall=part.overall_efficiency,
             compensator=compensator,
             width=width,
@@ -128,6 +183,8 @@ def build_pumps(
         signal=rows.index("signal"),
         drive=rows.index("drive"),
         displaced_lpm=rows.floats("displaced"),
+        stopped_lpm=rows.floats("stopped"),
+        torque_power_bar_lpm=rows.floats("torque"),
         leakage_per_bar=rows.floats("leakage"),
         full_flow_lpm=rows.floats("full"),
         overall_efficiency=rows.floats("overall"),
@@ -161,6 +218,6 @@ def _signal(
             )
         )
     if open_question:
-        node = book.closed_port(f"{part_id}.X", rating_bar=part.rating_bar)
+        node = book.closed_port(part_id, part, "X")
         return _Signal(node=node, bleed=SIGNAL_BLEED, from_outlet=at_outlet, open_question=True)
     return _Signal(node=outlet if at_outlet else case, bleed=0.0, from_outlet=at_outlet, open_question=False)

@@ -152,7 +152,8 @@ def stuck_control(pumps: Pumps, part: str) -> Pumps:
     Returns
     -------
     Pumps
-        The same pumps; this one behaves as a fixed pump, V·n less its leakage.
+        The same pumps; this one gives V·n less its leakage as a fixed pump does, or the flow of its
+        displacement stop. Its torque limiter takes nothing away: it acts through the same piston.
 
     Valid at any pressure. Source: law of the fixed pump.
     """
@@ -161,6 +162,7 @@ def stuck_control(pumps: Pumps, part: str) -> Pumps:
         pumps,
         compensator=_without(pumps.compensator, row),
         load_sensing=_without(pumps.load_sensing, row),
+        torque_power_bar_lpm=np.where(np.arange(len(pumps.ids)) == row, np.inf, pumps.torque_power_bar_lpm),
     )
 
 

@@ -49,11 +49,17 @@ class AdjusterSite:
     flow_slope: float
     """κ for a relief (reading at flow q is S·(κ + (1 − κ)·q/q_ref)); 1 for the controls of a pump."""
     reference_flow_lpm: float
-    """q_ref of a relief, else 0."""
+    """q_ref of a relief, else 0. By default the greatest flow of all pumps, each with its stroke at its stop,
+    so that a relief reads its setting when all that can come passes it."""
     width_bar: float
     """From full stroke to none for the controls of a pump; (1 − κ)·highest for a relief."""
     policy: frozenset[str] = frozenset()
     """Figures that no plate gives, so policy does: ``opening ratio``, ``reference flow``, ``width``."""
+    signal_node: int | None = None
+    """LS node of a load-sensing control whose port X is in a net; None where it isn't, and for all others."""
+    width_flow_lpm: float = 0.0
+    """Flow over which the width of a load-sensing control acts, else 0: outlet less LS at a flow q is
+    S − width·q/width_flow."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -75,7 +81,7 @@ class Circuit:
     pumps: Pumps
     actuators: Actuators
     reference_flow_lpm: float
-    """Sum of the full flows of all pumps; the scale of residuals."""
+    """Sum of the greatest flows of all pumps, each with its stroke at its stop; the scale of residuals."""
     sealed_end: SealedEnd = "standby end"
     """The end at which LS ports in ``sealed_ports`` are taken when nothing else decides their pressure."""
     sealed_ports: tuple[str, ...] = ()

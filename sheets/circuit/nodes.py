@@ -7,6 +7,7 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
 from sheets.circuit.model import Node
+from sheets.circuit.ratings import port_rating_bar
 from sheets.errors import InputError, Problem
 from sheets.machine.model import Machine
 from sheets.machine.parts import Line, RatedPart, Reservoir
@@ -60,18 +61,19 @@ class NodeBook:
             )
         return node
 
-    def closed_port(self, port: str, *, rating_bar: float) -> int:
+    def closed_port(self, part_id: str, part: RatedPart, name: str) -> int:
         """Node of a port, one of its own if it is in no net: a dead end that keeps its oil."""
+        port = f"{part_id}.{name}"
         node = self.node_of.get(port, self.closed.get(port))
         if node is None:
             node = self.closed[port] = len(self.nodes)
-            part = port.split(".", 1)[0]
+            rating_bar = port_rating_bar(part, name)
             self.nodes.append(
                 Node(
                     name=port,
                     ports=(port,),
-                    rating_bar=rating_bar,
-                    rated_by=part if math.isfinite(rating_bar) else "",
+                    rating_bar=math.inf if rating_bar is None else rating_bar,
+                    rated_by="" if rating_bar is None else part_id,
                     volume_l=VOLUME_OF_A_CLOSED_PORT_L,
                 )
             )
@@ -134,14 +136,13 @@ def read_nodes(machine: Machine) -> NodeBook:
 
 
 def _ratings(machine: Machine) -> Iterable[tuple[str, float]]:
-    """Each rated port with its rating; low-pressure ports only where the maker rates them."""
+    """Each rated port with its rating."""
     for part_id, part in machine.parts.items():
         if not isinstance(part, RatedPart):
             continue
         for port in part.ports:
-            if port not in part.LOW_PRESSURE_PORTS:
-                yield f"{part_id}.{port}", part.rating_bar
-            elif part.tank_rating_bar is not None:
-                yield f"{part_id}.{port}", part.tank_rating_bar
+            rating_bar = port_rating_bar(part, port)
+            if rating_bar is not None:
+                yield f"{part_id}.{port}", rating_bar
     for gauge_id, gauge in machine.gauges.items():
         yield f"{gauge_id}.P", gauge.rating_bar

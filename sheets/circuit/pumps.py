@@ -31,6 +31,10 @@ class Pumps:
         Drive that turns it.
     displaced_lpm : L/min
         V·n, theoretical flow at full stroke.
+    stopped_lpm : L/min
+        Theoretical flow with the stroke at the displacement stop; V·n where it has none.
+    torque_power_bar_lpm : bar·L/min
+        20π·T·n/1000 of a torque limiter; infinite where it has none.
     leakage_per_bar : L/min/bar
         (1 − η_v)·V·n / rating.
     compensator, load_sensing : index
@@ -48,14 +52,18 @@ class Pumps:
     Returns
     -------
     net flow : L/min
-        The smallest of full stroke (V·n − leakage), compensator: full flow·(S − (p − p_case))/width, and
+        The smallest of full stroke (the stop's V·n, or 20π·T·n/1000 over p − p_case where that is less, each
+        less leakage), compensator: full flow·(S − (p − p_case))/width, and
         load sensing: full flow·(S − (p − p_LS))/width; never below −leakage (no stroke).
         A setting is thus the reading at no net flow. Full flow is V·n less the leakage at (S − width) for
         the compensator, V·n·η_v for load sensing: there width = (standby − differential)·full flow/flow.
+        A stop or a torque limit changes no gain: both only end the stroke.
 
     Valid for steady states at the drive's speed; suction is assumed filled (a void is reported apart).
-    Limits that meet within 5 % of full flow are rounded by at most 0.6 % of it.
-    Source: definition of deadhead and standby readings; leakage linear in pressure by volumetric efficiency.
+    Limits that meet within 5 % of full flow are rounded by at most 0.6 % of it. The torque is the hydraulic
+    one, p·V(s)/20π: mechanical losses are not in it.
+    Source: definition of deadhead and standby readings; leakage linear in pressure by volumetric efficiency;
+    torque times angle is pressure times volume.
     """
 
     ids: tuple[str, ...]
@@ -65,6 +73,8 @@ class Pumps:
     signal: Ints
     drive: Ints
     displaced_lpm: Floats
+    stopped_lpm: Floats
+    torque_power_bar_lpm: Floats
     leakage_per_bar: Floats
     full_flow_lpm: Floats
     """V·n·η_v: at the pressure of its rating."""
@@ -151,8 +161,9 @@ class Pumps:
         over_case = pressures_bar[:, self.outlet] - pressures_bar[:, self.case]
         over_signal = pressures_bar[:, self.outlet] - pressures_bar[:, self.signal]
         leakage = self.leakage_per_bar * over_case
-        full = self.displaced_lpm - leakage
-        bend = min(STROKE_BEND * widening, 1.0) * self.displaced_lpm
+        bend = min(STROKE_BEND * widening, 1.0) * self.stopped_lpm
+        longest, by_torque = self._longest_stroke(over_case, bend)
+        full = longest - leakage
 
         compensator_bar = state.setting(self.compensator)
         full_at_limit = self.displaced_lpm - self.leakage_per_bar * (
@@ -172,12 +183,13 @@ class Pumps:
         signal_gain = self.full_flow_lpm / self.load_sensing_width_bar
         limited, by_full, by_asked = smaller(a=full, b=asked, width=bend)
         # The larger of two is the smaller of their negatives.
-        closed_bend = np.minimum(self.closed_bend_lpm * widening, self.displaced_lpm)
+        closed_bend = np.minimum(self.closed_bend_lpm * widening, self.stopped_lpm)
         negative, by_limited, by_closed = smaller(a=-limited, b=leakage, width=closed_bend)
 
         controlled = self.compensator >= 0
         through = np.where(controlled, by_limited * by_asked, 0.0)
         leaks = np.where(controlled, -by_limited * by_full - by_closed, -1.0) * self.leakage_per_bar
+        leaks = leaks + np.where(controlled, by_limited * by_full, 1.0) * by_torque
         by_over_case = leaks + through * keeps * by_case_rise
         by_over_signal = -through * takes * signal_gain
         by_pressure = np.zeros((*through.shape, 4))
@@ -187,3 +199,20 @@ class Pumps:
         by_setting[:, :, 0] = through * keeps * by_compensator
         by_setting[:, :, 1] = through * takes * signal_gain
         return np.where(controlled, -negative, full), by_pressure, by_setting
+
+    def _longest_stroke(self, over_case: Floats, bend: Floats) -> tuple[Floats, Floats]:
+        """Theoretical flow at the longest stroke that stop and torque limit allow, and its slope by pressure.
+
+        At half the pressure where the limit begins it stands at twice the stop, where it decides nothing; so
+        it need not be followed further down, where it would grow without end.
+        """
+        limited = np.isfinite(self.torque_power_bar_lpm)
+        power = np.where(limited, self.torque_power_bar_lpm, 0.0)
+        begins_bar = np.where(limited, power / self.stopped_lpm, 1.0)
+        pressure_bar = np.maximum(over_case, 0.5 * begins_bar)
+        by_limit = power / pressure_bar
+        longest, _, share = smaller(a=self.stopped_lpm, b=by_limit, width=bend)
+        return (
+            np.where(limited, longest, self.stopped_lpm),
+            np.where(limited, -share * by_limit / pressure_bar, 0.0),
+        )

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 from sheets.circuit.model import TANK, Circuit
 from sheets.machine.model import Machine
-from sheets.machine.parts import CheckValve, DirectionalValve, FlowPath, HandValve
+from sheets.machine.parts import CheckValve, DirectionalValve, FlowPath, HandValve, ReliefValve
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -55,6 +55,49 @@ def joined_at_rest(machine: Machine, circuit: Circuit, node: int) -> frozenset[i
         for way in ways:
             for start, end in ((way.start, way.end), (way.end, way.start)):
                 if start == here and end not in reached and end != TANK:
+                    reached.add(end)
+                    front.append(end)
+    return frozenset(reached)
+
+
+def loaded_with(machine: Machine, circuit: Circuit, node: int) -> frozenset[int]:
+    """Nodes that can come to stand at the pressure of a node, itself included, while the machine works.
+
+    Line valves at rest, filters, orifices and checks in their own direction lead on, and so does a spool in
+    each of its positions, between any two ports but T. The node of another relief valve ends the way: from
+    there on, that relief's own setting is what must suit the ratings.
+    """
+    rest = {valve: positions[0] for valve, positions in circuit.positions.items()}
+    relieved = {
+        circuit.node_of[f"{id_}.P"] for id_, part in machine.parts.items() if isinstance(part, ReliefValve)
+    }
+    ways = [
+        way
+        for way in open_ways(machine, circuit, rest)
+        if not isinstance(machine.parts[way.part], DirectionalValve)
+    ]
+    for id_, part in machine.parts.items():
+        if isinstance(part, DirectionalValve):
+            ways += [
+                OpenWay(
+                    part=id_,
+                    start=circuit.node_of[f"{id_}.{one}"],
+                    end=circuit.node_of[f"{id_}.{other}"],
+                    one_way=False,
+                )
+                for position in part.positions
+                for one, other in part.paths(position)
+                if "T" not in (one, other) and {f"{id_}.{one}", f"{id_}.{other}"} <= circuit.node_of.keys()
+            ]
+    reached, front = {node}, [node]
+    while front:
+        here = front.pop()
+        for way in ways:
+            ends = [way.end] if way.start == here else []
+            if way.end == here and not way.one_way:
+                ends.append(way.start)
+            for end in ends:
+                if end not in reached | relieved | {TANK}:
                     reached.add(end)
                     front.append(end)
     return frozenset(reached)

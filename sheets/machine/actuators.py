@@ -5,7 +5,18 @@ from __future__ import annotations
 from collections.abc import Iterator
 from typing import ClassVar, Literal
 
-from sheets.machine.fields import Cm3, Kilonewton, Millimetre, NewtonMetre, Ratio, Text, YesNo
+from sheets.machine.fields import (
+    Cm3,
+    Kilonewton,
+    Lpm,
+    Millimetre,
+    NewtonMetre,
+    PositiveKilonewton,
+    PositiveNewtonMetre,
+    Ratio,
+    Text,
+    YesNo,
+)
 from sheets.machine.flaws import Flaw
 from sheets.machine.part_base import RatedPart
 
@@ -31,6 +42,8 @@ class Cylinder(RatedPart):
     """The way in which the weight drives it."""
     force_efficiency: Ratio = 0.95
     """Force at the rod over pressure times area."""
+    structure_force_limit_kn: PositiveKilonewton | None = None
+    """Highest force, either way, that the structure it works on stands."""
     moves: Text = "cylinder rod"
     """What people see move."""
 
@@ -53,8 +66,13 @@ class HydraulicMotor(RatedPart):
     """Geometric displacement a revolution."""
     volumetric_efficiency: Ratio
     """At the pressure of its rating; leakage is linear in pressure."""
+    leakage_at_rating_lpm: Lpm | None = None
+    """What leaks from its high side at the pressure of its rating, where the maker gives it. Left out, it is
+    taken as what the volumetric efficiency leaves of the full flow of all pumps: policy."""
     mechanical_efficiency: Ratio = 0.9
     """Torque at the shaft over pressure times displacement."""
+    structure_torque_limit_nm: PositiveNewtonMetre | None = None
+    """Highest torque, either way, that the structure it works on stands."""
     load_torque_nm: NewtonMetre = 0.0
     """Resists in both directions."""
     driving_torque_nm: NewtonMetre = 0.0

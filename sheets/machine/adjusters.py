@@ -40,6 +40,11 @@ class Adjuster(Entry):
     may_be_set: YesNo = True
     """No for a sealed or type-approved adjuster: it is never touched."""
 
+    @property
+    def has_value(self) -> bool:
+        """Whether a maker or an owner gives what its setting follows from."""
+        return self.setting_bar is not None
+
     def contradictions(self) -> Iterator[Flaw]:
         yield from super().contradictions()
         reach = f"from {number(self.lowest_bar, decimals=1)} to {number(self.highest_bar, decimals=1)} bar"
@@ -62,13 +67,13 @@ class Adjuster(Entry):
                 what="The setting has no source.",
                 fix="Say who requires it, such as given by: maker's data sheet; or leave the setting out.",
             )
-        if self.setting_bar is None and self.given_by:
+        if not self.has_value and self.given_by:
             yield Flaw(
                 at=("given by",),
                 what="A source is named, but no setting is given.",
                 fix="Write the setting, or leave given by out.",
             )
-        if self.setting_bar is None and not self.may_be_set:
+        if not self.has_value and not self.may_be_set:
             yield Flaw(
                 at=("may be set",),
                 what="The adjuster may not be set, and its setting isn't given.",
@@ -84,7 +89,11 @@ class CompensatorControl(Adjuster):
 
 
 class LoadSensingControl(Adjuster):
-    """Load-sensing control. Its setting is the standby reading (LS at tank, no flow)."""
+    """Load-sensing control. Its setting is the standby reading (LS at tank, no flow).
+
+    Where the maker gives the differential at a flow instead, setting is left out, and the standby follows
+    from differential, differential flow and width; without the width nobody knows it.
+    """
 
     width_bar: PositiveBar | None = None
     """From full stroke to none; found from standby and differential where both are given."""
@@ -94,6 +103,14 @@ class LoadSensingControl(Adjuster):
     """Flow at which that differential was read."""
     port_not_connected: Literal["drained", "fed", "sealed"] | None = None
     """Where port X is in no net: drained inside, fed from the outlet, or sealed. No default."""
+    sealed_without_bleed: YesNo = False
+    """Yes where the maker's drawing shows no bleed into the LS port, so that a port which is sealed or cut
+    off keeps its pressure. Left out: nobody has looked."""
+
+    @property
+    def has_value(self) -> bool:
+        """Whether a maker or an owner gives its standby, or a differential."""
+        return super().has_value or self.differential_bar is not None
 
     def contradictions(self) -> Iterator[Flaw]:
         yield from super().contradictions()
@@ -108,6 +125,19 @@ class LoadSensingControl(Adjuster):
                 at=("differential",),
                 what="A differential flow is given without the differential.",
                 fix="Write the differential, such as differential: 20 bar, or leave the flow out.",
+            )
+        gives_standby = self.differential_bar is not None and self.width_bar is not None
+        if self.setting_bar is None and gives_standby and not self.given_by:
+            yield Flaw(
+                at=("given by",),
+                what="The differential has no source, and the standby follows from it.",
+                fix="Say who requires it, such as given by: maker's data sheet.",
+            )
+        if self.sealed_without_bleed and self.port_not_connected in ("drained", "fed"):
+            yield Flaw(
+                at=("sealed without bleed",),
+                what=f"The port is called {self.port_not_connected} inside, hence is not without bleed.",
+                fix="Look the port up in the pump maker's drawing, and correct one of the two.",
             )
         both = self.setting_bar is not None and self.differential_bar is not None
         if both and (self.differential_bar or 0.0) >= (self.setting_bar or 0.0):

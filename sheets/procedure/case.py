@@ -39,7 +39,7 @@ class Case:
             for id_, part in self.machine.parts.items()
             if isinstance(part, VariablePump)
             and part.load_sensing is not None
-            and getattr(part.load_sensing, "sealed_without_bleed", False)
+            and part.load_sensing.sealed_without_bleed
         )
 
     def site(self, adjuster: str) -> AdjusterSite:

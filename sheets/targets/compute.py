@@ -8,7 +8,7 @@ from itertools import pairwise
 
 from sheets.amounts import Derivation, Finding, Severity, bar, ratio
 from sheets.circuit.model import AdjusterSite, Circuit
-from sheets.circuit.reach import joined_at_rest
+from sheets.circuit.reach import joined_at_rest, loaded_with
 from sheets.machine.model import Machine
 from sheets.machine.parts import FixedPump, LoadSensingControl, ReliefValve, VariablePump
 from sheets.machine.screws import Screw, screws_of
@@ -66,7 +66,7 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
         if id_ not in settings and not any(finding.subject == id_ for finding in findings):
             _settle(settings, findings, _given(id_, screws, policies))
     for id_, setting in list(settings.items()):
-        checked = _within_rating(setting, sites[id_], circuit)
+        checked = _within_rating(setting, sites[id_], machine, circuit)
         settings[id_] = replace(setting, findings=setting.findings + checked)
         findings.extend(checked)
     ordered = {id_: settings[id_] for id_ in screws if id_ in settings}
@@ -336,9 +336,12 @@ def _ratio(plate: float | None, policy: float) -> tuple[float, bool]:
     return (policy, True) if plate is None else (plate, False)
 
 
-def _within_rating(setting: Setting, site: AdjusterSite, circuit: Circuit) -> tuple[Finding, ...]:
-    """A setting must lie under the lowest rating on its line, window and all."""
-    node = circuit.nodes[site.controlled_node]
+def _within_rating(
+    setting: Setting, site: AdjusterSite, machine: Machine, circuit: Circuit
+) -> tuple[Finding, ...]:
+    """A setting must lie under every rating that its pressure comes to, window and all."""
+    loaded = sorted(loaded_with(machine, circuit, site.controlled_node))
+    node = min((circuit.nodes[index] for index in loaded), key=lambda each: each.rating_bar)
     if setting.high_bar <= node.rating_bar:
         return ()
     return (

@@ -94,22 +94,37 @@ def test_all_that_is_wrong_is_said_at_once(variant: Callable[..., Path], refused
     assert said.index("TK1, volume") < said.index("CY1, bore")
 
 
+@pytest.mark.parametrize(
+    ("part", "before"),
+    [
+        ("HV2", "    where: after the pump manifold, beyond RV1 and TP1\n    rating: 315 bar"),
+        ("H1", "    where: from HV2 to the lever valve\n    rating: 250 bar"),
+        ("DV1", "    where: pusher platform\n    rating: 315 bar"),
+        ("TP3", "    where: line B, at the cylinder\n    rating: 400 bar"),
+        ("CY1", "    where: beside the track, level\n    rating: 250 bar"),
+    ],
+)
 def test_rating_below_setting(
-    variant: Callable[..., Path], run: Callable[..., object], tmp_path: Path
+    variant: Callable[..., Path], run: Callable[..., object], tmp_path: Path, part: str, before: str
 ) -> None:
-    """A plate value of a valve on the pump line: the file is good, the machine can't be set."""
-    beyond = "    where: after the pump manifold, beyond RV1 and TP1\n"
-    file = variant((f"{beyond}    rating: 315 bar", f"{beyond}    rating: 100 bar"))
+    """A plate value anywhere that the relief's pressure comes to: the file is good, the machine can't be set.
+
+    RV1 is set to 180 bar; its window by policy is 2 % of that wide on each side, so it reaches 183.6 bar.
+    """
+    where, _ = before.split("    rating")
+    just = variant((before, f"{where}    rating: 184 bar"))
+    assert run("targets", just).status == 0
+    file = variant((before, f"{where}    rating: 183 bar"))
     assert run("check", file).status == 0
     done = run("pack", file, "-o", "pack.pdf")
     assert done.status == 1
     assert done.out == ""
-    assert re.search(r"PU-03: .*HV2 carries 100 bar\.\n +\S", done.err)
+    assert re.search(rf"PU-03: .*{part} carries 183 bar\.\n +\S", done.err)
     assert list(tmp_path.iterdir()) == [file]
     for command in ("targets", "steps"):
         told = run(command, file)
         assert told.status == 1
-        assert "HV2 carries 100 bar" in told.out
+        assert f"{part} carries 183 bar" in told.out
 
 
 def test_nothing_that_may_be_set(variant: Callable[..., Path], refused: Callable[..., str]) -> None:

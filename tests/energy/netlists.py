@@ -73,7 +73,10 @@ CONTROL_SUPPLY = """\
 def unit(parts: dict[str, dict[str, object]], nets: dict[str, str]) -> tuple[Machine, Circuit]:
     """A machine of these parts and nets, by way of the text of a machine file."""
     merged = {id_: {**KINDS[str(given["kind"])], **given} for id_, given in parts.items()}
-    lines = [HEAD + CONTROL_SUPPLY if any("solenoids" in part for part in merged.values()) else HEAD, "parts:"]
+    lines = [
+        HEAD + CONTROL_SUPPLY if any("solenoids" in part for part in merged.values()) else HEAD,
+        "parts:",
+    ]
     for id_, part in merged.items():
         lines.append(f"  {id_}:\n    where: manifold")
         lines += [f"    {key}: {_flow(value)}" for key, value in part.items()]

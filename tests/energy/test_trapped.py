@@ -86,7 +86,8 @@ def test_pump_in_its_case_drain_valve() -> None:
 def test_where_zero_can_be_verified() -> None:
     machine, circuit = blocked_centre_unit()
     points = {
-        circuit.nodes[volume.node].name: volume.test_points for volume in find_trapped(machine, circuit).volumes
+        circuit.nodes[volume.node].name: volume.test_points
+        for volume in find_trapped(machine, circuit).volumes
     }
     assert points["PMP"] == ("TP1",)
     assert points["HDR"] == ("TP2",)

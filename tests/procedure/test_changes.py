@@ -38,9 +38,7 @@ def test_each_set_once_cheapest_first(shape: list[list[int]]) -> None:
             one.cost for one in choice if one is not None
         )
         for choice in product(
-            *(
-                [None, *(one for one in options if one.touches == f"V{thing}")] for thing in range(len(shape))
-            )
+            *([None, *(one for one in options if one.touches == f"V{thing}")] for thing in range(len(shape)))
         )
     }
     assert len(sets) == len(set(sets)) == count_candidates(options)
@@ -99,8 +97,6 @@ def test_sealed_screws_and_unknown_directions_stay(changed: Callable[..., Descri
 
 def test_changes_are_applied_to_the_state(clay_mixer: Matter) -> None:
     rest = clay_mixer.circuit.rest_state({"RV1": 1.0})
-    state = apply(
-        rest, (MoveValve(valve="HV1", position="closed"), Adjust(adjuster="RV1", setting_bar=7.0))
-    )
+    state = apply(rest, (MoveValve(valve="HV1", position="closed"), Adjust(adjuster="RV1", setting_bar=7.0)))
     assert (state.positions["HV1"], state.settings_bar["RV1"]) == ("closed", 7.0)
     assert (rest.positions["HV1"], rest.settings_bar["RV1"]) == ("open", 1.0)

@@ -38,8 +38,8 @@ def with_return_relief(changed: Callable[..., Described], lowest: str) -> Descri
 
 
 def test_relief_of_a_line_that_never_rises(changed: Callable[..., Described]) -> None:
-    # The return line carries at most 0.5·(67.8/100)² = 0.23 bar, also on the way back (the cap end gives 67.8 L/min).
-    # Lowest 5 bar, opening at 4 bar: it never opens, wherever its screw stands.
+    # The return line carries at most 0.5·(67.8/100)² = 0.23 bar, also on the way back (the cap end gives
+    # 67.8 L/min). Lowest 5 bar, opening at 4 bar: it never opens, wherever its screw stands.
     matter = steps(with_return_relief(changed, "5"))
     answer = matter.procedure.search.answers["RV2"]
 

@@ -4,27 +4,28 @@ Pump: V·n = 71 cm³ · 1475 /min = 104.725 L/min. η_v = 0.95 at its rating of 
 0.05 · 104.725 / 280 = 0.018701 L/min for each bar, and gives 99.489 L/min at 280 bar.
 
 RV1 can only be read with the compensator out of the way (at its stop, 230 bar; full stroke up to 226 bar) and
-the line shut: a hand valve in a working line closed, the lever held so that the load signal sees the line. Then
-all of the pump's flow passes RV1. RV1 reads S at its reference flow, the pump's full flow 99.489 L/min:
-p = 206 · (0.95 + 0.05 · q / 99.489), q = 104.725 − 0.018701 · p, so p = 206.14 bar and q = 100.87 L/min.
-Shaft power 206.14 · 100.87 / 600 / 0.88 = 39.4 kW, under the 45 kW of the drive.
+the line shut: a hand valve in a working line closed, the lever held so that the load signal sees the line.
+Then all of the pump's flow passes RV1. RV1 reads S at its reference flow, the pump's full flow 99.489
+L/min: p = 206 · (0.95 + 0.05 · q / 99.489), q = 104.725 − 0.018701 · p, so p = 206.14 bar and q = 100.87
+L/min. Shaft power 206.14 · 100.87 / 600 / 0.88 = 39.4 kW, under the 45 kW of the drive.
 
 In that state the compensator stands at its stop, away from its target: RV1 comes first. The compensator's own
-state is the same without that change; its setting is the deadhead reading. Standby needs no change at all: the
-lever's centre drains the load signal. No state of the load-sensing control asks for anything, nor does it shift
-a shut line: it is tied with both.
+state is the same without that change; its setting is the deadhead reading. Standby needs no change at all:
+the lever's centre drains the load signal. No state of the load-sensing control asks for anything, nor does
+it shift a shut line: it is tied with both.
 
-Gauges: G1 has 0.25 % of 400 bar = 1 bar error on divisions of 2 bar, G2 0.2 bar on 0.1 bar. Lowest rating in reach:
-250 bar (lever valve, motor). Never exceed: 250 − 1 = 249, down to a division: 248 bar on G1; 249.8 bar on G2.
+Gauges: G1 has 0.25 % of 400 bar = 1 bar error on divisions of 2 bar, G2 0.2 bar on 0.1 bar. Lowest rating
+in reach: 250 bar (lever valve, motor). Never exceed: 250 − 1 = 249, down to a division: 248 bar on G1;
+249.8 bar on G2.
 """
 
 import pytest
 
 from sheets.circuit.plant import Adjust, MoveValve
 from sheets.circuit.verdict import Verdict
+from sheets.errors import ExitStatus
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline import status_of
-from sheets.errors import ExitStatus
 from sheets.procedure import search
 from sheets.procedure.steps import StageKind, StepKind
 
@@ -59,7 +60,7 @@ def test_changes_that_each_setting_needs(clay_mixer: Matter) -> None:
 
 
 def test_every_change_has_its_reason(clay_mixer: Matter) -> None:
-    reasons = {change: failure for change, failure in state(clay_mixer, "RV1").reasons}
+    reasons = dict(state(clay_mixer, "RV1").reasons)
 
     # Without the valve the mixer turns; without the lever standby governs; without the third, deadhead does.
     assert reasons[MoveValve(valve="HV1", position="closed")].data["part"] == "HM1"

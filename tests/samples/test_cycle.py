@@ -75,7 +75,8 @@ def test_pump_follows_the_load(changed: Changed, torque_nm: int) -> None:
     motor_bar = moving.pressure_at("HM1.A") - moving.pressure_at("HM1.B")
     assert motor_bar == pytest.approx(load_bar, abs=0.1)  # 0.1 bar is what the model leaves over to move
     assert moving.pressure_at("PU1.X") == pytest.approx(moving.pressure_at("DV1.A"), abs=0.01)
-    # Differential = standby − width · q/Q; just as much falls over the lever valve's edge, 60 L/min at 24 bar.
+    # Differential = standby − width · q/Q; just as much falls over the lever valve's edge, 60 L/min at 24
+    # bar.
     differential_bar = moving.pressure_at("PU1.P") - moving.pressure_at("PU1.X")
     assert differential_bar == pytest.approx(27.0 - WIDTH_BAR * flow_lpm / FULL_LPM, abs=0.01)
     assert differential_bar == pytest.approx(24.0 * (flow_lpm / 60) ** 2, abs=0.05)
@@ -113,7 +114,8 @@ def test_heat_saved_at_rest(clay_mixer: Matter) -> None:
 
 
 def test_heat_saved_while_moving(changed: Changed) -> None:
-    # At the same speed a compensator alone would hold near 176 bar, and the spool would turn the rest to heat.
+    # At the same speed a compensator alone would hold near 176 bar, and the spool would turn the rest to
+    # heat.
     light = mixer(changed, 200)
     flow_lpm = light.flows_lpm["PU1"]
     load_bar = 200 / 0.9 * 20 * math.pi / 400
@@ -169,7 +171,9 @@ def test_press_moves_with_the_whole_flow(glaze_press: Matter, position: str) -> 
 
     assert solution.moving == {"CY1"}
     assert has == pytest.approx(asked, abs=0.2)
-    assert solution.flows_lpm["PU1"] == pytest.approx(displaced - leak * solution.pressure_at("PU1.P"), rel=1e-3)
+    assert solution.flows_lpm["PU1"] == pytest.approx(
+        displaced - leak * solution.pressure_at("PU1.P"), rel=1e-3
+    )
     area = math.pi * 10.0**2 / 4
     side = area if position == "press" else area - math.pi * 5.6**2 / 4
     assert abs(solution.speeds["CY1"]) == pytest.approx(solution.flows_lpm["PU1"] / (6 * side), rel=1e-3)

@@ -2,7 +2,8 @@
 
 Pump: V·n = 45 cm³ · 1760 /min = 79.2 L/min. η_v = 0.95 at 4600 psi, so it gives 75.24 L/min there and leaks
 3.96 L/min / 4600 psi for each psi. The valve's centre blocks all ports: the line is shut at rest, so the
-compensator reads its setting as soon as the drive runs, and RV1 once the compensator is at its stop (3800 psi).
+compensator reads its setting as soon as the drive runs, and RV1 once the compensator is at its stop (3800
+psi).
 
 RV1 there: p = 3300 · (0.95 + 0.05 · q/75.24), q = 79.2 − 3.96 · p/4600, so p = 3302.4 psi, q = 76.36 L/min;
 shaft power 227.7 bar · 76.36 / 600 / 0.88 = 32.9 kW, under 40 hp · 1.15 = 34.3 kW.
@@ -10,8 +11,8 @@ shaft power 227.7 bar · 76.36 / 600 / 0.88 = 32.9 kW, under 40 hp · 1.15 = 34.
 The LS port is fed from the outlet inside the pump: that control sees the same pressure on both of its sides
 and never asks for anything, whatever the screw.
 
-G1: 0.25 % of 5000 psi = 12.5 psi on divisions of 20 psi. Lowest rating in reach 4000 psi (hose); never exceed:
-3987.5, down to a division: 3980 psi. Accuracy ratio 60 / 12.5 = 4.8.
+G1: 0.25 % of 5000 psi = 12.5 psi on divisions of 20 psi. Lowest rating in reach 4000 psi (hose); never
+exceed: 3987.5, down to a division: 3980 psi. Accuracy ratio 60 / 12.5 = 4.8.
 """
 
 import pytest
@@ -91,7 +92,7 @@ def test_windows_stand_on_divisions_in_psi(glaze_press: Matter) -> None:
 
 def test_relief_closes_again_over_the_compensator(glaze_press: Matter) -> None:
     # 0.92 · 3240 = 2980.8 psi; the compensator's top 2860 psi and 5 bar (72.5 psi) ask for 2932.5 psi.
-    assert 0.92 * 3240 > 2860 + 5 / PSI
+    assert 2860 + 5 / PSI < 0.92 * 3240
     needed = glaze_press.targets.settings["RV1"].derivations[0].result.value
     assert needed / PSI == pytest.approx((2860 + 5 / PSI) / 0.92)
 

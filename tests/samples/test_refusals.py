@@ -1,6 +1,6 @@
 """Changed copies of the samples: each is refused, and for the reason that was built into it."""
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable
 
 import pytest
 
@@ -8,24 +8,33 @@ from sheets.amounts import Amount, Finding, Severity
 from sheets.circuit.verdict import Verdict
 from sheets.errors import ExitStatus
 from sheets.pages.compose.matter import Matter
-from sheets.pipeline import status_of
+from sheets.pipeline import Described, status_of, targets
 from sheets.procedure.conditions import Condition
 from sheets.procedure.search import NotFound, NotInUse
-from sheets.targets.settings import Origin
+from sheets.targets.settings import Origin, Targets
 from sheets.wording.findings import say_finding
 
 Refused = Callable[..., Matter]
 
-COMPENSATOR_GIVEN = "      setting: 176 bar\n      given by: machine manual, sheet 4\n      tolerance: 4 bar\n"
+COMPENSATOR_GIVEN = (
+    "      setting: 176 bar\n      given by: machine manual, sheet 4\n      tolerance: 4 bar\n"
+)
 
 
-def finding(matter: Matter, code: str) -> Finding:
-    found = [one for one in all_findings(matter) if one.code == code]
-    assert len(found) == 1, [one.code for one in all_findings(matter)]
+def finding(matter: Matter | Targets, code: str) -> Finding:
+    among = matter.findings if isinstance(matter, Targets) else all_findings(matter)
+    found = [one for one in among if one.code == code]
+    assert len(found) == 1, [one.code for one in among]
     return found[0]
 
 
-def all_findings(matter: Matter) -> Iterable[Finding]:
+@pytest.fixture
+def settled(changed: Callable[..., Described]) -> Callable[..., Targets]:
+    """The settings of a changed sample, without a search."""
+    return lambda name, *replacements: targets(changed(name, *replacements))
+
+
+def all_findings(matter: Matter) -> tuple[Finding, ...]:
     return (*matter.targets.findings, *matter.procedure.findings)
 
 
@@ -46,14 +55,15 @@ def not_found(matter: Matter, adjuster: str) -> NotFound:
 
 
 def no_valve(valve: str, before: str, name: str = "") -> tuple[tuple[str, str], ...]:
-    """A hand valve that becomes an open throttle; ``before`` is the text from its kind to its rest position."""
+    """A hand valve made an open throttle; ``before`` stands between its kind and its rest position."""
     head = f"  {valve}:\n    kind: hand valve\n{name}{before}"
     rest = "    rest: open\n    lockable: yes\n"
     return ((head + rest, head.replace("hand valve", "orifice")),)
 
 
 def test_compensator_whose_range_ends_under_the_relief(refused: Refused) -> None:
-    # RV1 opens at 0.95 · 206 = 195.7 bar. With its compensator at the end of its range the pump holds 190 bar.
+    # RV1 opens at 0.95 · 206 = 195.7 bar. With its compensator at the end of its range the pump holds 190
+    # bar.
     matter = refused(
         "clay_mixer",
         (
@@ -86,14 +96,14 @@ def test_relief_rated_below_its_setting(refused: Refused) -> None:
     assert not_found(matter, "RV1").failure.condition is Condition.WITHIN
 
 
-def test_relief_smaller_than_the_pump(refused: Refused) -> None:
-    matter = refused("clay_mixer", ("rated flow: 200 L/min", "rated flow: 90 L/min"))
-    refusal = finding(matter, "relief_too_small")
+def test_relief_smaller_than_the_pump(settled: Callable[..., Targets]) -> None:
+    found = settled("clay_mixer", ("rated flow: 200 L/min", "rated flow: 90 L/min"))
+    refusal = finding(found, "relief_too_small")
 
     assert refusal.subject == "RV1"
     assert refusal.severity is Severity.REFUSED
     assert amount(refusal, "reaching") == pytest.approx(71 * 1475 / 1000 * 0.95)
-    assert status_of(matter.targets, matter.procedure) is ExitStatus.REFUSED
+    assert status_of(found) is ExitStatus.REFUSED
 
 
 def test_motor_too_small(refused: Refused) -> None:
@@ -118,7 +128,8 @@ def test_motor_that_is_just_large_enough_is_not_refused(refused: Refused) -> Non
 
 
 def test_gauge_too_coarse(refused: Refused) -> None:
-    # Twice the half width of 3.6 bar around 180.3 bar: 173 … 187.5 holds one division of 10 bar, three of 5 bar.
+    # Twice the half width of 3.6 bar around 180.3 bar: 173 … 187.5 holds one division of 10 bar, three of
+    # 5 bar.
     matter = refused("kiln_pusher", ("graduation: 2 bar", "graduation: 10 bar"))
     answer = not_found(matter, "RV1")
 
@@ -150,7 +161,9 @@ def test_gauge_under_three_to_one_warns(refused: Refused) -> None:
 
 def test_gauge_that_the_screw_at_its_stop_over_ranges(refused: Refused) -> None:
     # RV1 at its stop, 210 bar, reads 210.2 bar; the gauge carries 205 bar.
-    matter = refused("kiln_pusher", ("range: 250 bar\n    rating: 300 bar", "range: 205 bar\n    rating: 205 bar"))
+    matter = refused(
+        "kiln_pusher", ("range: 250 bar\n    rating: 300 bar", "range: 205 bar\n    rating: 205 bar")
+    )
     assert not_found(matter, "RV1").failure.condition is Condition.SEEN
     refusal = finding(matter, "cannot_be_set")
     assert amount(refusal, "over") == pytest.approx(210.2, abs=0.2)
@@ -174,7 +187,9 @@ def test_no_hand_valve_in_the_working_lines(refused: Refused) -> None:
         for valve, number, line in (("HV1", "2", "line A"), ("HV2", "3", "line B"))
         for replacement in no_valve(
             valve,
-            f"    designation: 1-H3.{number}\n    where: {line}, at the operator's platform\n    rating: 315 bar\n",
+            f"    designation: 1-H3.{number}\n"
+            f"    where: {line}, at the operator's platform\n"
+            "    rating: 315 bar\n",
         )
     ]
     matter = refused("clay_mixer", *replacements)
@@ -191,7 +206,9 @@ def test_no_hand_valve_in_the_working_lines(refused: Refused) -> None:
 
 def test_no_hand_valve_after_a_fixed_pump(refused: Refused) -> None:
     before = (
-        "    designation: 1-H1.4\n    where: after the pump manifold, beyond RV1 and TP1\n    rating: 315 bar\n"
+        "    designation: 1-H1.4\n"
+        "    where: after the pump manifold, beyond RV1 and TP1\n"
+        "    rating: 315 bar\n"
     )
     matter = refused("kiln_pusher", *no_valve("HV2", before, "    name: pressure line valve\n"))
     answer = not_found(matter, "RV1")
@@ -208,26 +225,24 @@ def test_what_a_search_cannot_reach_is_never_called_not_in_use(refused: Refused)
             "      highest: 190 bar\n      raises: clockwise\n      where: the upper",
         ),
     )
-    assert not any(
-        isinstance(answer, NotInUse) for answer in matter.procedure.search.answers.values()
-    )
+    assert not any(isinstance(answer, NotInUse) for answer in matter.procedure.search.answers.values())
 
 
-def test_compensator_under_the_work_pressure(refused: Refused) -> None:
-    matter = refused("clay_mixer", ("      setting: 176 bar\n", "      setting: 120 bar\n"))
-    refusal = finding(matter, "limit_under_work")
+def test_compensator_under_the_work_pressure(settled: Callable[..., Targets]) -> None:
+    found = settled("clay_mixer", ("      setting: 176 bar\n", "      setting: 120 bar\n"))
+    refusal = finding(found, "limit_under_work")
 
     assert refusal.severity is Severity.REFUSED
     assert refusal.subject == "PU1.compensator"
     assert amount(refusal, "bottom") == 116.0
     assert amount(refusal, "demand") == pytest.approx(mixer_demand_bar(), abs=0.3)
-    assert status_of(matter.targets, matter.procedure) is ExitStatus.REFUSED
+    assert status_of(found) is ExitStatus.REFUSED
 
 
-def test_compensator_close_to_the_work_pressure_warns(refused: Refused) -> None:
+def test_compensator_close_to_the_work_pressure_warns(settled: Callable[..., Targets]) -> None:
     # 165 − 4 = 161 bar carries the work (157 bar), but not with the reserve of 5 % (165 bar).
-    matter = refused("clay_mixer", ("      setting: 176 bar\n", "      setting: 165 bar\n"))
-    warning = finding(matter, "limit_close_to_work")
+    found = settled("clay_mixer", ("      setting: 176 bar\n", "      setting: 165 bar\n"))
+    warning = finding(found, "limit_close_to_work")
     assert warning.severity is Severity.WARNING
     assert amount(warning, "needed") == pytest.approx(mixer_demand_bar() * 1.05, abs=0.3)
 
@@ -235,9 +250,9 @@ def test_compensator_close_to_the_work_pressure_warns(refused: Refused) -> None:
 def mixer_demand_bar() -> float:
     """Pump pressure while the mixer turns under its load.
 
-    Standby 27 bar, 24 bar at 60 L/min: the lever's edge, 60 L/min at 24 bar, passes just 60 L/min. The motor asks for
-    640 N·m / 0.9 · 2π / 400 cm³ = 111.7 bar. Half of its leakage, 0.06 · 99.489 L/min over 250 bar a side, leaves
-    at A; what leaves at A doesn't come back over the second edge.
+    Standby 27 bar, 24 bar at 60 L/min: the lever's edge, 60 L/min at 24 bar, passes just 60 L/min. The
+    motor asks for 640 N·m / 0.9 · 2π / 400 cm³ = 111.7 bar. Half of its leakage, 0.06 · 99.489 L/min over
+    250 bar a side, leaves at A; what leaves at A doesn't come back over the second edge.
     """
     motor_bar = 640 / 0.9 * 20 * 3.141592653589793 / 400
     leak = 0.06 * 71 * 1475 / 1000 * 0.95 / 250
@@ -250,28 +265,28 @@ def mixer_demand_bar() -> float:
     return 24.0 + (0.5 / 150**2) * flow_lpm**2 + motor_bar + back_bar
 
 
-def test_relief_under_the_compensator(refused: Refused) -> None:
+def test_relief_under_the_compensator(settled: Callable[..., Targets]) -> None:
     # The compensator's window reaches 180 bar.
-    matter = refused("clay_mixer", ("      setting: 206 bar\n", "      setting: 178 bar\n"))
-    refusal = finding(matter, "relief_under_compensator")
+    found = settled("clay_mixer", ("      setting: 206 bar\n", "      setting: 178 bar\n"))
+    refusal = finding(found, "relief_under_compensator")
 
     assert refusal.severity is Severity.REFUSED
     assert amount(refusal, "other_top") == 180.0
-    assert status_of(matter.targets, matter.procedure) is ExitStatus.REFUSED
+    assert status_of(found) is ExitStatus.REFUSED
 
 
-def test_relief_that_opens_at_deadhead(refused: Refused) -> None:
+def test_relief_that_opens_at_deadhead(settled: Callable[..., Targets]) -> None:
     # 0.95 · 185 = 175.75 bar is under 176 bar, and the opening ratio stands on the plate: refused.
-    matter = refused("clay_mixer", ("      setting: 206 bar\n", "      setting: 185 bar\n"))
-    refusal = finding(matter, "relief_passes_at_deadhead")
+    found = settled("clay_mixer", ("      setting: 206 bar\n", "      setting: 185 bar\n"))
+    refusal = finding(found, "relief_passes_at_deadhead")
     assert refusal.severity is Severity.REFUSED
     assert amount(refusal, "opens") == pytest.approx(0.95 * 185)
 
 
-def test_relief_that_may_stay_open_warns(refused: Refused) -> None:
+def test_relief_that_may_stay_open_warns(settled: Callable[..., Targets]) -> None:
     # 0.92 · (200 − 4) = 180.3 bar; 185 bar are needed.
-    matter = refused("clay_mixer", ("      setting: 206 bar\n", "      setting: 200 bar\n"))
-    warning = finding(matter, "relief_may_stay_open")
+    found = settled("clay_mixer", ("      setting: 206 bar\n", "      setting: 200 bar\n"))
+    warning = finding(found, "relief_may_stay_open")
     assert warning.severity is Severity.WARNING
     assert amount(warning, "needed") == pytest.approx(185 / 0.92)
 

@@ -97,7 +97,8 @@ def test_zero_is_found_at_every_gauge(any_sample: Matter, kind: StageKind) -> No
 
 
 def test_zero_that_is_not_reached_refuses(changed: Callable[..., Described]) -> None:
-    # Without the bleed valve nothing relieves the pump line of the press: its valve's centre blocks all ports.
+    # Without the bleed valve nothing relieves the pump line of the press: its valve's centre blocks all
+    # ports.
     plug = (
         "    name: bleed valve\n    designation: 1-H1.3\n",
         "    name: bleed valve\n    plugged: [A]\n    designation: 1-H1.3\n",
@@ -170,7 +171,8 @@ def test_turned_below_really_is_below_the_window(any_sample: Matter) -> None:
             reading = stage.steps[place].reading
             assert reading is not None
             assert (
-                reading.expected_bar < any_sample.procedure.search.found()[stage.adjuster].gauge.window.low_bar
+                reading.expected_bar
+                < any_sample.procedure.search.found()[stage.adjuster].gauge.window.low_bar
             )
 
 
@@ -242,9 +244,7 @@ def test_vents_stay_open_until_every_gauge_is_off(any_sample: Matter) -> None:
 
     assert sorted(again.steps[place].subject for place in off) == sorted(fitted)
     for vent in vents:
-        closed = [
-            place for place in places(again, StepKind.SET_VALVE) if again.steps[place].subject == vent
-        ]
+        closed = [place for place in places(again, StepKind.SET_VALVE) if again.steps[place].subject == vent]
         assert closed
         assert min(closed) > max(off)
 
@@ -271,7 +271,8 @@ def test_valves_that_are_held_never_stay_held_over_a_stage(any_sample: Matter) -
 
 
 def test_windows_lie_in_what_was_given(any_sample: Matter) -> None:
-    # A given window is cut inward, save what nobody reads: a fifth of a division. Readings convert by the flow.
+    # A given window is cut inward, save what nobody reads: a fifth of a division. Readings convert by the
+    # flow.
     for adjuster, state in any_sample.procedure.search.found().items():
         setting = any_sample.targets.settings[adjuster]
         if screws_of(any_sample.machine)[adjuster].adjuster.tolerance_bar is None:

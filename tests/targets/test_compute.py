@@ -21,7 +21,8 @@ def test_given_settings_are_taken_as_given(any_sample: Matter) -> None:
 
 
 def test_relief_over_a_compensator_is_computed(changed: Callable[..., Described]) -> None:
-    # Bottom (180 + 5)/0.92 = 201.09 bar; half of its window is the larger of 3 bar and 2 %: 201.09/0.98 = 205.19.
+    # Bottom (180 + 5)/0.92 = 201.09 bar; half of its window is the larger of 3 bar and 2 %: 201.09/0.98 =
+    # 205.19.
     setting = targets(changed("clay_mixer", (RELIEF, ""))).settings["RV1"]
 
     assert setting.origin is Origin.COMPUTED

@@ -1,0 +1,58 @@
+"""Amounts in the two units of a machine file."""
+
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
+from sheets.machine.model import Units
+from sheets.wording.figures import Figures
+
+BAR = {"bar": 1.0, "psi": 0.45359237 * 9.80665 / 0.0254**2 / 1e5, "MPa": 10.0}
+PAIRS = [(first, second) for first in BAR for second in BAR if first != second]
+
+
+def second(low_bar: float, high_bar: float, *, unit: str = "psi", first: str = "bar") -> str:
+    return Figures(Units(pressure=(first, unit))).second_inside(low_bar, high_bar)
+
+
+def test_window_in_the_second_unit_by_hand() -> None:
+    # 172 bar = 2494.65 psi, 180 bar = 2610.68 psi; 2740 psi = 188.92 bar, 2860 psi = 197.19 bar.
+    assert second(172.0, 180.0) == "2495 to 2610 psi"
+    assert second(2740 * BAR["psi"], 2860 * BAR["psi"], unit="bar", first="psi") == "189 to 197 bar"
+
+
+def test_whole_figures_stay_whole() -> None:
+    assert second(100.0, 180.0, unit="MPa") == "10.0 to 18.0 MPa"
+    assert second(26.0, 28.0, unit="MPa") == "2.6 to 2.8 MPa"
+    assert second(1000 * BAR["psi"], 1200 * BAR["psi"], first="MPa") == "1000 to 1200 psi"
+
+
+def test_narrow_window_gets_digits_more() -> None:
+    assert second(26.2, 26.8, unit="MPa") == "2.62 to 2.68 MPa"
+    assert second(26.25, 26.75, unit="MPa") == "2.63 to 2.67 MPa"
+
+
+@pytest.mark.parametrize(("first", "unit"), PAIRS)
+@given(low=st.floats(1.0, 600.0), width=st.floats(0.2, 60.0))
+def test_second_unit_never_accepts_more(first: str, unit: str, low: float, width: float) -> None:
+    text = second(low, low + width, unit=unit, first=first)
+    shown_low, shown_high = text.removesuffix(f" {unit}").split(" to ")
+    dust = 1e-5  # of a unit: what printing rounds through
+
+    assert float(shown_low) >= low / BAR[unit] - dust
+    assert float(shown_high) <= (low + width) / BAR[unit] + dust
+    assert float(shown_low) < float(shown_high)
+
+
+def test_no_second_unit_no_text() -> None:
+    assert Figures(Units(pressure=("bar",))).second_inside(1.0, 2.0) == ""
+
+
+def test_target_stands_to_half_a_division() -> None:
+    figures = Figures(Units(pressure=("bar",)))
+    assert figures.reading(206.14, 2.0, half=True) == "206 bar"
+    assert figures.reading(206.6, 2.0, half=True) == "207 bar"
+    assert figures.reading(206.6, 2.0) == "206 bar"
+    assert figures.reading(27.04, 0.1) == "27.0 bar"
+    psi = Figures(Units(pressure=("psi",)))
+    assert psi.reading(3302.4 * BAR["psi"], 20 * BAR["psi"], half=True) == "3300 psi"
