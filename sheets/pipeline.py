@@ -9,7 +9,7 @@ from typing import Literal
 
 from sheets import ENGINE
 from sheets.amounts import Finding, Severity
-from sheets.circuit.build import build_circuit
+from sheets.circuit.build import both_ends
 from sheets.circuit.model import Circuit
 from sheets.circuit.verdict import Verdict
 from sheets.errors import ExitStatus, InputError, NotEstablishedError, Problem, RefusedError
@@ -57,12 +57,15 @@ def check(machine_file: Path, site_file: Path | None = None) -> Described:
     machine = load_machine(machine_file).machine
     site = _site(machine_file, site_file)
     policies = site.policies if site else Policies()
-    circuit = build_circuit(
+    ends = both_ends(
         machine,
         opening_ratio_direct=policies.direct_opening_ratio,
         opening_ratio_pilot=policies.pilot_opening_ratio,
         control_width_bar=policies.compensator_width_bar,
     )
+    # Where the maker's drawing shows no bleed, outlet pressure reaches a port that is cut off: the last end.
+    # Where nobody has looked, the search refuses every state in which the end matters.
+    circuit = ends[-1]
     return Described(machine=machine, site=site, circuit=circuit)
 
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from sheets.circuit.model import TANK, AdjusterSite
+from sheets.circuit.model import AdjusterSite
 from sheets.circuit.plant import Adjust, MoveValve, PlantState
 from sheets.circuit.solver import solve, solve_one
 from sheets.machine.parts import HandValve
@@ -54,10 +54,7 @@ class Job:
 
 def limits(case: Case, adjuster: str) -> bool:
     """Whether an adjuster limits a pressure against tank or case, rather than a difference of two lines."""
-    site = case.site(adjuster)
-    if site.reference_node in (TANK, site.controlled_node):
-        return site.reference_node == TANK
-    return case.circuit.node_of.get(f"{site.part}.L") == site.reference_node
+    return case.site(adjuster).width_flow_lpm == 0.0
 
 
 def prepare(case: Case, task: Task, found: dict[str, TestState], order: tuple[str, ...]) -> Job:

@@ -6,7 +6,8 @@ from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from itertools import pairwise
 
-from sheets.amounts import Derivation, Finding, Severity, bar, ratio
+from sheets.amounts import Derivation, Finding, Severity, bar, lpm, ratio
+from sheets.circuit.load_sensing import standby_from_differential
 from sheets.circuit.model import AdjusterSite, Circuit
 from sheets.circuit.reach import joined_at_rest, loaded_with
 from sheets.machine.model import Machine
@@ -52,7 +53,8 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
 
     for line in lines:
         if line.difference is not None:
-            _settle(settings, findings, _given(line.difference, screws, policies))
+            site = sites[line.difference]
+            _settle(settings, findings, _difference(line.difference, site, screws, policies))
         if line.limit is not None:
             _settle(settings, findings, _compensator(line, screws, demands, policies))
         for relief in line.reliefs:
@@ -134,6 +136,40 @@ def _given(adjuster: str, screws: Mapping[str, Screw], policies: Policies) -> Se
     if screw.setting_bar is None:
         return _missing(adjuster)
     return _setting(adjuster, screws, screw.setting_bar, Origin.GIVEN, policies)
+
+
+def _difference(
+    adjuster: str, site: AdjusterSite, screws: Mapping[str, Screw], policies: Policies
+) -> Setting | Finding:
+    """The standby of a load-sensing control: given, or found from a differential at a flow.
+
+    Without the control's width the standby isn't known: then the differential is read at its own flow.
+    """
+    screw = screws[adjuster].adjuster
+    if not isinstance(screw, LoadSensingControl) or screw.setting_bar is not None:
+        return _given(adjuster, screws, policies)
+    if screw.differential_bar is None or screw.differential_flow_lpm is None:
+        return _missing(adjuster)
+    standby_bar = standby_from_differential(
+        differential_bar=screw.differential_bar,
+        flow_lpm=screw.differential_flow_lpm,
+        width_bar=site.width_bar,
+        full_flow_lpm=site.width_flow_lpm,
+    )
+    on_plate = screw.width_bar is not None
+    derivation = Derivation(
+        result_name="standby",
+        formula="differential + width × flow / full flow",
+        inputs=(
+            ("differential", bar(screw.differential_bar), screw.given_by or "given"),
+            ("width", bar(site.width_bar), "plate" if on_plate else "policy"),
+            ("flow", lpm(screw.differential_flow_lpm), "given with the differential"),
+            ("full flow", lpm(site.width_flow_lpm), "plate"),
+        ),
+        result=bar(standby_bar),
+    )
+    setting = _setting(adjuster, screws, standby_bar, Origin.GIVEN, policies, derivations=(derivation,))
+    return setting if on_plate else replace(setting, at_flow_lpm=screw.differential_flow_lpm)
 
 
 def _setting(
