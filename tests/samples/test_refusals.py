@@ -170,6 +170,34 @@ def test_gauge_that_the_screw_at_its_stop_over_ranges(refused: Refused) -> None:
     assert amount(refusal, "most") == 205.0
 
 
+def test_screw_that_passes_a_rating_at_its_stop(refused: Refused) -> None:
+    # Turned in to its stop RV1 holds 260 bar, over the 250 bar of pump and hose; nothing else limits them.
+    matter = refused(
+        "kiln_pusher",
+        (
+            "      highest: 210 bar                 # ends below the lowest rating, 250 bar\n",
+            "      highest: 260 bar\n",
+        ),
+    )
+    answer = not_found(matter, "RV1")
+    assert answer.failure.condition is Condition.WITHIN
+    assert amount(finding(matter, "cannot_be_set"), "rating") == 250.0
+
+
+def test_another_device_that_limits_the_screw_at_its_stop(refused: Refused) -> None:
+    # The compensator alone would pass 250 bar at its stop of 260 bar; RV1, set before it, holds 206 bar.
+    matter = refused(
+        "clay_mixer",
+        (
+            "      highest: 230 bar\n      raises: clockwise\n      where: the upper",
+            "      highest: 260 bar\n      raises: clockwise\n      where: the upper",
+        ),
+    )
+    assert matter.procedure.verdict is Verdict.ESTABLISHED
+    place = matter.procedure.order.sequence.index
+    assert place("RV1") < place("PU1.compensator")
+
+
 def test_no_gauge_on_the_line(refused: Refused) -> None:
     matter = refused("kiln_pusher", ("fitted at: [TP1]", "fitted at: [TP2]"))
     answer = not_found(matter, "RV1")
