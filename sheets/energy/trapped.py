@@ -62,18 +62,22 @@ def find_trapped(machine: Machine, circuit: Circuit, positions: Mapping[str, str
     relieved_by: dict[int, str] = {}
     reliefs: list[Relief] = []
     for stays in (True, False):
-        for valve in sorted(circuit.positions):
-            for position in _other_positions(machine, circuit, valve, standing, stays=stays):
-                gained = drained_nodes(machine, circuit, {**standing, valve: position}) - drained
-                if not gained:
-                    continue
-                drained |= gained
-                relieved_by.update(dict.fromkeys(gained, valve))
-                reliefs.append(
-                    Relief(valve=valve, position=position, stays=stays, nodes=tuple(sorted(gained)))
-                )
-                if stays:
-                    standing[valve] = position
+        again = True
+        while again:  # a way may only open once another valve gives it somewhere to go
+            again = False
+            for valve in sorted(circuit.positions):
+                for position in _other_positions(machine, circuit, valve, standing, stays=stays):
+                    gained = drained_nodes(machine, circuit, {**standing, valve: position}) - drained
+                    if not gained:
+                        continue
+                    again = stays
+                    drained |= gained
+                    relieved_by.update(dict.fromkeys(gained, valve))
+                    reliefs.append(
+                        Relief(valve=valve, position=position, stays=stays, nodes=tuple(sorted(gained)))
+                    )
+                    if stays:
+                        standing[valve] = position
     volumes = tuple(
         Volume(
             node=index,

@@ -31,8 +31,10 @@ HAND_VALVE_COST = 2.0
 LEVER_COST = 3.0
 ADJUSTER_COST = 4.0
 SOLENOID_COST = 6.0
+OPENED_COST = 8.0
 """Policy, by reach and exposure: a hand valve stays where it is put, a lever must be held, a screw must be
-brought back, a forced signal puts a person at a live panel."""
+brought back, a forced signal puts a person at a live panel, a way that is shut in service lets oil where none
+is meant to go."""
 
 
 def possible_options(machine: Machine, circuit: Circuit) -> tuple[Option, ...]:
@@ -45,7 +47,7 @@ def possible_options(machine: Machine, circuit: Circuit) -> tuple[Option, ...]:
     for id_, part in machine.parts.items():
         positions = circuit.positions.get(id_, ())
         if isinstance(part, HandValve):
-            cost = HAND_VALVE_COST
+            cost = HAND_VALVE_COST if part.rest == "open" else OPENED_COST
         elif getattr(part, "operated_by", None) == "lever":
             cost = LEVER_COST
         else:

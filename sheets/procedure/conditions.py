@@ -33,6 +33,7 @@ class Condition(Enum):
     FOLLOWS = "follows"
     ALONE = "alone"
     AT_FLOW = "at_flow"
+    THROUGH = "through"
     WITHIN = "within"
     BARRED = "barred"
     POWERED = "powered"

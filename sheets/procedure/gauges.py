@@ -10,7 +10,13 @@ from sheets.machine.model import Machine
 from sheets.machine.parts import DialGauge, DigitalGauge
 from sheets.machine.site import Policies
 from sheets.procedure.conditions import SAME_PRESSURE_BAR, Condition, Failure
-from sheets.targets.reading import ReadingWindow, accuracy_ratio, never_exceed_bar, reading_window
+from sheets.targets.reading import (
+    ReadingWindow,
+    accuracy_ratio,
+    as_set_bar,
+    never_exceed_bar,
+    reading_window,
+)
 from sheets.targets.settings import Origin, Setting
 
 WORKING_SHARE = (0.25, 0.75)
@@ -122,9 +128,17 @@ def _judge(
         gauge_error_bar=error,
         graduation_bar=graduation,
     )
+    target_bar, low_bar, high_bar = (
+        as_set_bar(reading_bar=reading, setting_bar=level, graduation_bar=graduation)
+        for reading, level in (
+            (readings.target_bar, setting.target_bar),
+            (readings.low_bar, setting.low_bar),
+            (readings.high_bar, setting.high_bar),
+        )
+    )
     window = reading_window(
-        low_bar=readings.low_bar,
-        high_bar=readings.high_bar,
+        low_bar=low_bar,
+        high_bar=high_bar,
         graduation_bar=graduation,
         widen=setting.window_origin is Origin.POLICY,
         floor_bar=readings.floor_bar,
@@ -150,7 +164,7 @@ def _judge(
                 data={**data, "accuracy_ratio": ratio(achieved), "wanted": ratio(policies.accuracy_ratio)},
             )
         )
-    share = readings.target_bar / gauge.range_bar
+    share = target_bar / gauge.range_bar
     if isinstance(gauge, DialGauge) and not WORKING_SHARE[0] <= share <= WORKING_SHARE[1]:
         findings.append(
             Finding(
@@ -164,7 +178,7 @@ def _judge(
         gauge=id_,
         test_point=test_point,
         window=window,
-        target_bar=_on_graduation(readings.target_bar, graduation, setting.origin),
+        target_bar=_on_graduation(target_bar, graduation, setting.origin),
         never_exceed_bar=never,
         error_bar=error,
         graduation_bar=graduation,

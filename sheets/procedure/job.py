@@ -15,7 +15,7 @@ from sheets.procedure.conditions import first_failure, over_rating, unestablishe
 from sheets.procedure.judge import moved_by_fault
 from sheets.procedure.task import Task, TaskKind
 
-_STUCK_FACTOR = 50.0
+_STUCK_FACTOR = 5.0
 """An adjuster stuck shut, as a multiple of the end of its range: it limits nothing."""
 SAME_READING_BAR = 0.05
 """A valve that others need may stay in place if it shifts a reading by less than this."""

@@ -6,9 +6,10 @@ from dataclasses import replace
 
 from sheets.amounts import Amount, Finding
 from sheets.circuit.faults import CAN_MOVE, CAN_RAISE, Fault, FaultKind, faults_of, solve_faults
-from sheets.circuit.plant import Adjust, PlantState
+from sheets.circuit.plant import Adjust, MoveValve, PlantState
 from sheets.circuit.solution import Solution
 from sheets.circuit.solver import solve
+from sheets.machine.parts import HandValve
 from sheets.procedure.answers import TestState
 from sheets.procedure.case import Case
 from sheets.procedure.changes import Candidate, Change, apply
@@ -85,6 +86,7 @@ def _judge(case: Case, candidate: Candidate, adjuster: str) -> TestState | Failu
             return failure
     failure = (
         _at_another_flow(setting, target)
+        or _too_much_through(case, candidate, target)
         or unestablished(stop, case.trusted_ports)
         or moving(stop)
         or starved(stop)
@@ -141,6 +143,25 @@ def _at_another_flow(setting: Setting, target: Solution) -> Failure | None:
             "wanted": Amount(value=wanted_lpm, quantity="flow_lpm"),
         },
     )
+
+
+def _too_much_through(case: Case, candidate: Candidate, target: Solution) -> Failure | None:
+    """A valve that is shut in service passes no more than its rated flow when a state opens it."""
+    for change in candidate.changes:
+        if not isinstance(change, MoveValve) or change.position != "open":
+            continue
+        part = case.machine.parts[change.valve]
+        flow_lpm = abs(target.flows_lpm[change.valve])
+        if isinstance(part, HandValve) and flow_lpm > part.rated_flow_lpm:
+            return Failure(
+                condition=Condition.THROUGH,
+                data={
+                    "valve": change.valve,
+                    "flow": Amount(value=flow_lpm, quantity="flow_lpm"),
+                    "rated": Amount(value=part.rated_flow_lpm, quantity="flow_lpm"),
+                },
+            )
+    return None
 
 
 def moved_by_fault(case: Case, state: PlantState) -> Failure | None:

@@ -25,12 +25,13 @@ def make_procedure(case: Case, task: Task) -> Procedure:
     findings += [_cannot_set(answer) for answer in lost]
     findings += _nothing_to_set(case, task, order.sequence)
     stages: tuple[Stage, ...] = ()
-    if order.sequence and not lost and not any(f.severity is Severity.REFUSED for f in findings):
+    against = [f for f in (*case.targets.findings, *findings) if f.severity is not Severity.WARNING]
+    if order.sequence and not lost and not against:
         stages, simulated = write_stages(prepare(case, task, found, order.sequence))
         findings += simulated
     return Procedure(
         task=task,
-        verdict=_verdict(findings, lost, stages),
+        verdict=_verdict([*case.targets.refusals, *findings], lost, stages),
         stages=stages,
         search=search,
         order=order,

@@ -129,7 +129,7 @@ class Rig:
         low_bar, high_bar = self._band(expected_bar, choice.graduation_bar)
         if governs in self.unknown:
             high_bar = max(high_bar, self._at_stop(solution, governs, node, choice.graduation_bar))
-        beyond_bar = high_bar
+        band_low_bar, beyond_bar = low_bar, high_bar
         if window_of:
             low_bar, high_bar = choice.window.low_bar, choice.window.high_bar
         return Reading(
@@ -140,6 +140,7 @@ class Rig:
             low_bar=low_bar,
             high_bar=high_bar,
             never_exceed_bar=choice.never_exceed_bar,
+            band_low_bar=band_low_bar,
             stop_above_bar=min(beyond_bar, choice.never_exceed_bar),
             graduation_bar=choice.graduation_bar,
         )

@@ -79,6 +79,8 @@ def _isolate(job: Job, rig: Rig, kind: StageKind) -> Stage:
     _verify_zero(job, rig, first=first, vented=bool(vents))
     if not first:
         _put_back(job, rig, [valve for valve in circuit.positions if valve not in vents])
+        relieved = {node for relief in trapped.reliefs for node in relief.nodes}
+        _relieve(job, rig, _beyond(find_trapped(machine, circuit, rig.state.positions), relieved))
         for gauge, test_point in rig.fitted.items():
             rig.say(StepKind.REMOVE_GAUGE, gauge, test_point=test_point)
         _put_back(job, rig, sorted(vents))
@@ -106,6 +108,12 @@ def _verify_zero(job: Job, rig: Rig, *, first: bool, vented: bool) -> None:
                     data={"pressure": bar(residual_bar)},
                 )
             )
+
+
+def _beyond(trapped: Trapped, relieved: set[int]) -> Trapped:
+    """Only the acts that reach lines which an earlier relieving didn't: valves stand otherwise now."""
+    reliefs = tuple(relief for relief in trapped.reliefs if not relieved.issuperset(relief.nodes))
+    return replace(trapped, reliefs=reliefs)
 
 
 def _relieve(job: Job, rig: Rig, trapped: Trapped) -> None:

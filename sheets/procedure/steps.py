@@ -80,6 +80,8 @@ class Reading:
     low_bar: float
     high_bar: float
     never_exceed_bar: float
+    band_low_bar: float
+    """Below this, or past the next, a setting as found has a cause that comes before any adjusting."""
     stop_above_bar: float
     """Past this something is wrong, long before a rating is reached: the work stops there."""
     graduation_bar: float

@@ -5,8 +5,10 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-_UNREADABLE = 0.2
-"""Of a graduation: nobody reads less, so a window's end that misses a graduation by less counts as on it."""
+UNREADABLE = 0.2
+"""Of a graduation: nobody reads less, so a reading that differs from its setting by less stands as the setting."""
+_DUST = 1e-6
+"""Of a graduation: keeps 210/2 from falling just under 105."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -29,9 +31,19 @@ def graduations_within(*, low_bar: float, high_bar: float, graduation_bar: float
     ``low_bar`` and ``high_bar`` in bar, ``graduation_bar`` in bar, more than 0. Valid for any dial that
     starts at 0. Source: definition.
     """
-    first = math.ceil(low_bar / graduation_bar - _UNREADABLE)
-    last = math.floor(high_bar / graduation_bar + _UNREADABLE)
+    first = math.ceil(low_bar / graduation_bar - _DUST)
+    last = math.floor(high_bar / graduation_bar + _DUST)
     return first * graduation_bar, last * graduation_bar, max(0, last - first + 1)
+
+
+def as_set_bar(*, reading_bar: float, setting_bar: float, graduation_bar: float) -> float:
+    """The reading of a setting, or the setting itself where nobody could read the difference.
+
+    ``reading_bar`` and ``setting_bar`` in bar, ``graduation_bar`` of the gauge in bar. Returns bar. Source: common
+    practice that a fifth of a division is the least that is read off a dial.
+    """
+    near = abs(reading_bar - setting_bar) < UNREADABLE * graduation_bar
+    return setting_bar if near else reading_bar
 
 
 def reading_window(

@@ -319,7 +319,8 @@ class Speaker:
         lines: list[str] = []
         match step.kind:
             case StepKind.READ:
-                pass
+                least = figures.digits(reading.band_low_bar, reading.graduation_bar)
+                lines.append(say("find_cause", low=least, high=limit))
             case StepKind.READ_AGAIN if stage.kind is StageKind.SET:
                 lines.append(say("as_left_window", low=low, high=high))
             case StepKind.CLOSE_GRADUALLY:
