@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass
 
 UNREADABLE = 0.2
-"""Of a graduation: nobody reads less, so a reading that differs from its setting by less stands as the setting."""
+"""Of a graduation: nobody reads less, so a reading that is nearer to its setting stands as the setting."""
 _DUST = 1e-6
 """Of a graduation: keeps 210/2 from falling just under 105."""
 
@@ -39,8 +39,8 @@ def graduations_within(*, low_bar: float, high_bar: float, graduation_bar: float
 def as_set_bar(*, reading_bar: float, setting_bar: float, graduation_bar: float) -> float:
     """The reading of a setting, or the setting itself where nobody could read the difference.
 
-    ``reading_bar`` and ``setting_bar`` in bar, ``graduation_bar`` of the gauge in bar. Returns bar. Source: common
-    practice that a fifth of a division is the least that is read off a dial.
+    ``reading_bar`` and ``setting_bar`` in bar, ``graduation_bar`` of the gauge in bar. Returns bar. Source:
+    common practice that a fifth of a division is the least that is read off a dial.
     """
     near = abs(reading_bar - setting_bar) < UNREADABLE * graduation_bar
     return setting_bar if near else reading_bar
