@@ -6,7 +6,9 @@ from sheets.circuit.verdict import Verdict
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline import Described, steps, targets
 from sheets.procedure.in_use import ever_governs
-from sheets.procedure.search import NotInUse, running_rest
+from sheets.machine.site import Policies
+from sheets.procedure.answers import NotInUse
+from sheets.procedure.case import Case
 from sheets.wording.findings import say_not_in_use
 
 RETURN_RELIEF = """  RV2:
@@ -55,11 +57,11 @@ def test_relief_of_a_line_that_never_rises(changed: Callable[..., Described]) ->
 def test_relief_that_governs_only_with_its_screw_out(changed: Callable[..., Described]) -> None:
     # Lowest 0.1 bar: it does open on that line, so it is in use, and can't be set at 12 bar.
     described = with_return_relief(changed, "0.1")
-    base = running_rest(described.circuit, targets(described))
+    base = Case(described.machine, described.circuit, targets(described), described.policies).base
     assert ever_governs(described.circuit, base, "RV2")
 
 
 def test_every_adjuster_that_is_set_governs_somewhere(any_sample: Matter) -> None:
-    base = running_rest(any_sample.circuit, any_sample.targets)
+    base = Case(any_sample.machine, any_sample.circuit, any_sample.targets, Policies()).base
     for adjuster in any_sample.procedure.order.sequence:
         assert ever_governs(any_sample.circuit, base, adjuster)

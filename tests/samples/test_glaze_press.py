@@ -20,7 +20,7 @@ import pytest
 from sheets.circuit.plant import Adjust
 from sheets.circuit.verdict import Verdict
 from sheets.pages.compose.matter import Matter
-from sheets.procedure.search import NotInUse
+from sheets.procedure.answers import NotInUse
 from sheets.wording.findings import say_not_in_use
 
 PSI = 0.45359237 * 9.80665 / 0.0254**2 / 1e5  # one pound force on one square inch, in bar

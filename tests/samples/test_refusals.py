@@ -10,7 +10,7 @@ from sheets.errors import ExitStatus
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline import Described, status_of, targets
 from sheets.procedure.conditions import Condition
-from sheets.procedure.search import NotFound, NotInUse
+from sheets.procedure.answers import NotFound, NotInUse
 from sheets.targets.settings import Origin, Targets
 from sheets.wording.findings import say_finding
 
