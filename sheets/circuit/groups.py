@@ -6,7 +6,7 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from sheets.circuit.equations import Balance, capacities
+from sheets.circuit.equations import Balance
 from sheets.circuit.model import TANK, Circuit
 from sheets.circuit.smooth import Bools, Floats, Ints
 from sheets.circuit.stamp import StateArrays
@@ -64,7 +64,7 @@ def volume_kept(circuit: Circuit, state: StateArrays, at: Balance, pressures_bar
     """
     batch, count = pressures_bar.shape
     labels = _labels([*_edges(circuit, state, at), *_pump_edges(circuit, state)], batch=batch, count=count)
-    capacity = np.broadcast_to(capacities(circuit), (batch, count))
+    capacity = np.broadcast_to(circuit.capacities, (batch, count))
     surplus = capacity * (pressures_bar - state.held_bar) - at.void_lpm
     yields = -at.void_slopes
     moved = circuit.actuators.moves_volume(at.actuators)
