@@ -116,6 +116,21 @@ class Circuit:
         count = len(self.nodes)
         return np.concatenate([(t[:, :, None] * count + t[:, None, :]).ravel() for t in self.terminals])
 
+    @cached_property
+    def oil_paths(self) -> tuple[Ints, Ints]:
+        """Both ends of every path along which oil can pass: ways, checks, reliefs, what leaks in motors from
+        A to B, A to case and B to case; last, of the pumps, outlet to suction, outlet to case, and what
+        seeps into the LS node."""
+        motors, pumps = self.actuators, self.pumps
+        two_ended = (self.ways, self.checks, self.reliefs)
+        bled_from = np.where(pumps.bled_from_outlet, pumps.outlet, pumps.case)
+        first = (motors.node_a, motors.node_a, motors.node_b, pumps.outlet, pumps.outlet, bled_from)
+        second = (motors.node_b, motors.case, motors.case, pumps.suction, pumps.case, pumps.signal)
+        return (
+            np.concatenate([*(family.first for family in two_ended), *first]),
+            np.concatenate([*(family.second for family in two_ended), *second]),
+        )
+
     def rest_state(self, settings_bar: Mapping[str, float]) -> PlantState:
         """Valves at rest, drives off, no pressure anywhere."""
         return PlantState(

@@ -65,8 +65,8 @@ def solve_each(matrices: Floats, right: Floats) -> Floats:
 
 def rounding(slopes: Floats, pressures_bar: Floats, throughput_lpm: Floats) -> Floats:
     """[B, N − 1] what a flow may be off because pressures are stored in 53 bits."""
-    highest = np.max(np.abs(pressures_bar), axis=1, initial=0.0)[:, None]
-    return np.asarray(4.0 * EPSILON * (np.sum(np.abs(slopes), axis=2) * highest + throughput_lpm))
+    highest = np.abs(pressures_bar).max(axis=1, initial=0.0)[:, None]
+    return np.asarray(4.0 * EPSILON * (np.abs(slopes).sum(axis=2) * highest + throughput_lpm))
 
 
 def newton_step(slopes: Floats, at: Balance) -> Floats:
@@ -78,7 +78,7 @@ def balanced(circuit: Circuit, at: Balance, slopes: Floats, pressures_bar: Float
     """[B] whether the residual is small: half of what ``acceptable`` asks for."""
     left = np.abs(at.residual_lpm)
     stored = STEP_BAR * circuit.capacities[1:] + rounding(slopes, pressures_bar, at.throughput_lpm)
-    return np.asarray(np.all((left <= tolerance(circuit, at)) & (left <= stored), axis=1))
+    return np.asarray(((left <= tolerance(circuit, at)) & (left <= stored)).all(axis=1))
 
 
 def acceptable(
@@ -91,7 +91,7 @@ def acceptable(
     be what 1e-6 bar stores, or else what rounding leaves.
     """
     small = balanced(circuit, at, slopes, pressures_bar)
-    return np.asarray(small & np.all(np.abs(step_bar) <= STEP_BAR, axis=1))
+    return np.asarray(small & (np.abs(step_bar) <= STEP_BAR).all(axis=1))
 
 
 def find(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Found:
@@ -133,12 +133,12 @@ def _by_narrowing(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Fo
 
 
 def _norm(at: Balance) -> Floats:
-    return np.asarray(np.sqrt(np.sum(at.residual_lpm * at.residual_lpm, axis=1)))
+    return np.asarray(np.sqrt((at.residual_lpm * at.residual_lpm).sum(axis=1)))
 
 
 def _moved(pressures_bar: Floats, step_bar: Floats, share: Floats) -> Floats:
     """Pressures after a share of a step; the tank stays where it is."""
-    longest = np.max(np.abs(step_bar), axis=1, initial=0.0)
+    longest = np.abs(step_bar).max(axis=1, initial=0.0)
     bounded = share * np.minimum(1.0, LONGEST_STEP_BAR / np.maximum(longest, LONGEST_STEP_BAR))
     moved = pressures_bar.copy()
     moved[:, 1:] += bounded[:, None] * step_bar
@@ -159,14 +159,14 @@ def _damped(circuit: Circuit, state: StateArrays, start_bar: Floats, *, widening
         step_bar = newton_step(slopes, at)
         done = acceptable(circuit, at, slopes, here, step_bar)
         accepted[active[done]] = True
-        if np.all(done) and len(active) == len(pressures_bar):
+        if done.all() and len(active) == len(pressures_bar):
             return Found(pressures_bar=pressures_bar, accepted=accepted, last=at)
-        going = ~done & np.all(np.isfinite(step_bar), axis=1)
-        if not np.any(going):
+        going = ~done & np.isfinite(step_bar).all(axis=1)
+        if not going.any():
             break
         rows = np.flatnonzero(going)
         # At the floor of rounding no step lowers the residual, yet a cut-off group may still have far to go.
-        floor = np.sqrt(np.sum(np.square(tolerance(circuit, at)), axis=1))
+        floor = np.sqrt(np.square(tolerance(circuit, at)).sum(axis=1))
         better, moved, known = _searched(
             circuit, part.take(rows), here[rows], step_bar[rows], _norm(at)[rows], floor[rows], widening
         )
@@ -210,7 +210,7 @@ def _searched(
         found = good[np.arange(len(left)), first]
         moved[left[found]] = trial.reshape(len(left), together, -1)[np.flatnonzero(found), first[found]]
         better[left[found]] = True
-        if few and np.all(found):
+        if few and found.all():
             return better, moved, at
         left = left[~found]
         tried += together
@@ -231,12 +231,12 @@ def _pseudo_time(circuit: Circuit, state: StateArrays, start_bar: Floats, *, wid
         at = known or balance(circuit, part, here, widening=widening)
         slopes = jacobian(circuit, at)
         done = balanced(circuit, at, slopes, here)
-        if np.any(done):
+        if done.any():
             done &= np.all(np.abs(newton_step(slopes, at)) <= STEP_BAR, axis=1)
         accepted[active[done]] = True
         slopes[:, diagonal, diagonal] += 1.0 / time_step[active][:, None]
         step_bar = newton_step(slopes, at)
-        rows = np.flatnonzero(~done & np.all(np.isfinite(step_bar), axis=1))
+        rows = np.flatnonzero(~done & np.isfinite(step_bar).all(axis=1))
         if not rows.size:
             break
         active, here, step_bar = active[rows], here[rows], step_bar[rows]
