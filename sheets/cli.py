@@ -7,18 +7,24 @@ import json
 import sys
 import tempfile
 import traceback
+from datetime import date
 from pathlib import Path
 from typing import TYPE_CHECKING, Literal
 
 import click
 
 from sheets import __version__
-from sheets.errors import ExitStatus, JamnutError
+from sheets.errors import ExitStatus, InputError, JamnutError, Problem, gravest
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable
+    from collections.abc import Callable, Iterable
+
+    from sheets.pipeline import Described, Json, Outcome, WalkdownState
 
 MACHINE = click.argument("machine", type=click.Path(path_type=Path), metavar="MACHINE")
+MACHINES = click.argument(
+    "machines", type=click.Path(path_type=Path), metavar="MACHINE...", nargs=-1, required=True
+)
 SITE = click.option(
     "--site",
     type=click.Path(path_type=Path),
@@ -42,49 +48,58 @@ def main() -> None:
 
 
 @main.command()
-@MACHINE
+@MACHINES
 @SITE
 @AS_JSON
-def check(machine: Path, site: Path | None, as_json: bool) -> None:
-    """Read a machine file and say what is wrong in it.
+def check(machines: tuple[Path, ...], site: Path | None, as_json: bool) -> None:
+    """Read machine files and say what is wrong in them. A folder stands for all its machine files.
 
     Example: jamnut check sample_machines/clay_mixer.yaml
     """
     from sheets import pipeline
 
-    described = pipeline.check(machine, site)
+    if _many(machines):
+        _leave(_each(machines, lambda file: pipeline.outcome("check", file, site, _today())[0], as_json))
+        return
+    described = pipeline.check(machines[0], site, _today())
     _print(pipeline.check_json(described) if as_json else pipeline.check_text(described))
 
 
 @main.command()
-@MACHINE
+@MACHINES
 @SITE
 @AS_JSON
-def targets(machine: Path, site: Path | None, as_json: bool) -> None:
+def targets(machines: tuple[Path, ...], site: Path | None, as_json: bool) -> None:
     """Compute every setting, with its window and where each figure comes from.
 
     Example: jamnut targets sample_machines/clay_mixer.yaml
     """
     from sheets import pipeline
 
-    described = pipeline.check(machine, site)
+    if _many(machines):
+        _leave(_each(machines, lambda file: pipeline.outcome("targets", file, site, _today())[0], as_json))
+        return
+    described = pipeline.check(machines[0], site, _today())
     found = pipeline.targets(described)
     _print(pipeline.targets_json(described, found) if as_json else pipeline.targets_text(described, found))
     _leave(pipeline.status_of(found))
 
 
 @main.command()
-@MACHINE
+@MACHINES
 @SITE
 @AS_JSON
-def steps(machine: Path, site: Path | None, as_json: bool) -> None:
+def steps(machines: tuple[Path, ...], site: Path | None, as_json: bool) -> None:
     """Find the states, derive the order and print every step.
 
     Example: jamnut steps sample_machines/clay_mixer.yaml
     """
     from sheets import pipeline
 
-    described = pipeline.check(machine, site)
+    if _many(machines):
+        _leave(_each(machines, lambda file: pipeline.outcome("steps", file, site, _today())[0], as_json))
+        return
+    described = pipeline.check(machines[0], site, _today())
     _tell("finding the state in which each adjuster can be set")
     matter = pipeline.steps(described)
     _print(pipeline.steps_json(matter) if as_json else pipeline.steps_text(matter))
@@ -92,14 +107,14 @@ def steps(machine: Path, site: Path | None, as_json: bool) -> None:
 
 
 @main.command()
-@MACHINE
+@MACHINES
 @SITE
 @click.option(
     "-o",
     "--output",
     type=click.Path(path_type=Path),
     metavar="FILE",
-    help="PDF to write; else TAG-draft.pdf here.",
+    help="PDF to write; else TAG-draft.pdf here. With several machines: the folder to write into.",
 )
 @click.option("--paper", type=click.Choice(["A4", "Letter"]), default="A4", show_default=True)
 @click.option(
@@ -109,7 +124,7 @@ def steps(machine: Path, site: Path | None, as_json: bool) -> None:
     help="Print this document of the pack only; may be named several times.",
 )
 def pack(
-    machine: Path,
+    machines: tuple[Path, ...],
     site: Path | None,
     output: Path | None,
     paper: Literal["A4", "Letter"],
@@ -121,16 +136,177 @@ def pack(
     """
     from sheets import pipeline
 
-    described = pipeline.check(machine, site)
+    if _many(machines):
+        folder, taken = output or Path(), set[Path]()
+        _leave(
+            _each(
+                machines,
+                lambda file: pipeline.outcome_of_pack(
+                    file, site, _today(), folder, paper=paper, only=only, taken=taken
+                ),
+                as_json=False,
+            )
+        )
+        return
+    described = pipeline.check(machines[0], site, _today())
     _tell("finding the state in which each adjuster can be set")
     matter = pipeline.steps(described)
     _tell("placing and drawing the pages")
-    target = output or Path(f"{described.machine.tag}-draft.pdf")
+    target = output or Path(pipeline.draft_name(described.machine))
     written = pipeline.write_pack(matter, target, paper=paper, only=only)
     _print([f"{target}: {written.pages} pages, draft, content {written.digest}"])
+    for line in pipeline.issuable_text(matter):
+        click.echo(line, err=True)
 
 
-def _print(shown: Iterable[str] | dict[str, object]) -> None:
+@main.command()
+@MACHINE
+@SITE
+@AS_JSON
+@click.option("--by", metavar="NAME", help="Who compared: asks entry by entry, and writes the answers.")
+@click.option("--on", "on", metavar="DATE", help="Day of the comparison, year first; today without it.")
+@click.option("--agree", multiple=True, metavar="ID", help="This entry agrees with the machine.")
+@click.option("--differ", multiple=True, metavar="ID", help="This entry differs; needs its --note.")
+@click.option("--note", multiple=True, metavar="TEXT", help="What is at the machine, for each --differ.")
+@click.option("--all", "rest_agrees", is_flag=True, help="Every entry not named under --differ agrees.")
+@click.option("--accept", multiple=True, metavar="ADJUSTER", help="Take on this computed setting.")
+def walkdown(
+    machine: Path,
+    site: Path | None,
+    as_json: bool,
+    by: str | None,
+    on: str | None,
+    agree: tuple[str, ...],
+    differ: tuple[str, ...],
+    note: tuple[str, ...],
+    rest_agrees: bool,
+    accept: tuple[str, ...],
+) -> None:
+    """Print the list for comparing a machine file with its machine, and take the answers.
+
+    Answers stand in NAME.walkdown.yaml beside the machine file.
+
+    Example: jamnut walkdown sample_machines/clay_mixer.yaml
+    """
+    from sheets import pipeline
+
+    described = pipeline.check(machine, site, _today())
+    state = pipeline.walkdown(described)
+    given = bool(agree or differ or rest_agrees or accept)
+    if len(note) != len(differ):
+        raise _wrong("--note", "Each --differ needs one --note, in the same order.", "Say what is there.")
+    if len(set(differ)) != len(differ):
+        raise _wrong("--differ", "An entry is named twice.", "Name it once, with one note.")
+    if by is None:
+        if given or on:
+            raise _wrong("--by", "Nobody is named who compared or accepted.", "Add --by NAME.")
+        shown = pipeline.walkdown_json(described, state)
+        _print(shown if as_json else pipeline.walkdown_text_lines(described, state))
+        return
+    said = dict(zip(differ, note, strict=True))
+    if not given:
+        agree, said = _ask(described, state)
+    answers = pipeline.Answers(
+        by=by, on=on or "", today=_today(), agree=agree, differ=said, rest_agrees=rest_agrees, accept=accept
+    )
+    state = pipeline.write_walkdown(machine, described, answers)
+    _print(
+        pipeline.walkdown_json(described, state)
+        if as_json
+        else [pipeline.walkdown_standing(described, state)]
+    )
+
+
+def _ask(described: Described, state: WalkdownState) -> tuple[tuple[str, ...], dict[str, str]]:
+    """Asks about every entry that doesn't agree yet: which agree, and which differ with their notes."""
+    from sheets import pipeline
+
+    agree: list[str] = []
+    differ: dict[str, str] = {}
+    for named, lines in pipeline.walkdown_questions(described, state):
+        click.echo("\n".join(lines), err=True)
+        word = click.prompt(
+            "Is it so? y(es), n(o), skip, stop", type=click.Choice(["y", "n", "skip", "stop"]), err=True
+        )
+        if word == "stop":
+            break
+        if word == "y":
+            agree.append(named)
+        elif word == "n":
+            differ[named] = click.prompt("What is there", err=True)
+    return tuple(agree), differ
+
+
+@main.command()
+@click.argument("kind", required=False)
+@click.argument("file", type=click.Path(path_type=Path), required=False)
+def new(kind: str | None, file: Path | None) -> None:
+    """Write a machine file to begin with; without arguments, list the circuit families.
+
+    Example: jamnut new fixed-pump pusher.yaml
+    """
+    from sheets import pipeline
+
+    if kind is None:
+        _print(pipeline.starter_kinds())
+        return
+    if file is None:
+        raise _wrong("FILE", "No file is named to write to.", f"Write jamnut new {kind} FILE.")
+    pipeline.new(kind, file)
+    click.echo(f"{file}: written; fill it in, and ask jamnut check what is still blank")
+
+
+@main.command()
+@click.argument("old", type=click.Path(path_type=Path))
+@click.argument("new_file", type=click.Path(path_type=Path), metavar="NEW")
+@SITE
+@AS_JSON
+def diff(old: Path, new_file: Path, site: Path | None, as_json: bool) -> None:
+    """Say what changes between two machine files, from plate values to steps and readings.
+
+    Example: jamnut diff sample_machines/clay_mixer.yaml sample_machines/clay_mixer.yaml
+    """
+    from sheets import pipeline
+
+    differing = pipeline.diff(old, new_file, site)
+    _print(pipeline.diff_json(differing) if as_json else pipeline.diff_text(differing))
+    _leave(differing.status)
+
+
+def _today() -> date:
+    """The only look at a calendar; it refuses answers from the future and dates new ones."""
+    return date.today()
+
+
+def _wrong(where: str, what: str, fix: str) -> InputError:
+    return InputError(Problem(where=where, what=what, fix=fix))
+
+
+def _many(machines: tuple[Path, ...]) -> bool:
+    """Whether a table is wanted: for several arguments, and for a folder whatever it holds."""
+    return len(machines) > 1 or machines[0].is_dir()
+
+
+def _each(machines: tuple[Path, ...], doing: Callable[[Path], Outcome], as_json: bool) -> ExitStatus:
+    """Does it for every file, prints the table, and gives the gravest status."""
+    from sheets import pipeline
+
+    files = pipeline.machine_files(machines)
+    outcomes: list[Outcome] = []
+    for number, file in enumerate(files, start=1):
+        _tell(f"{number} of {len(files)}: {file}")
+        try:
+            outcomes.append(doing(file))
+        except Exception:  # noqa: BLE001 -- a bug at one file is told in its row; the others get theirs
+            outcomes.append(pipeline.broken(str(file), f"please report it with {_keep_traceback()}"))
+    if as_json:
+        _print([json.dumps(pipeline.summary_json(outcomes), indent=2)])
+    else:
+        _print(pipeline.summary_lines(outcomes))
+    return gravest(outcome.status for outcome in outcomes)
+
+
+def _print(shown: Iterable[str] | dict[str, Json]) -> None:
     """Prints lines or data. A reader that leaves early changes nothing about the exit status."""
     lines = [json.dumps(shown, indent=2)] if isinstance(shown, dict) else shown
     try:
@@ -149,6 +325,15 @@ def _tell(doing: str) -> None:
 def _leave(status: ExitStatus) -> None:
     if status is not ExitStatus.GOOD:
         raise SystemExit(int(status))
+
+
+def _keep_traceback() -> str:
+    """Writes the traceback of the exception at hand into a file, and gives its name."""
+    with tempfile.NamedTemporaryFile(
+        "w", prefix="jamnut-bug-", suffix=".txt", delete=False, encoding="utf-8"
+    ) as kept:
+        traceback.print_exc(file=kept)
+    return kept.name
 
 
 def entry() -> None:
@@ -171,9 +356,6 @@ def entry() -> None:
         click.echo("stopped; nothing was written", err=True)
         sys.exit(130)
     except Exception:  # noqa: BLE001 -- the last gate: whatever reaches it is a bug, and its traceback is kept
-        with tempfile.NamedTemporaryFile(
-            "w", prefix="jamnut-bug-", suffix=".txt", delete=False, encoding="utf-8"
-        ) as kept:
-            traceback.print_exc(file=kept)
-        click.echo(f"This is a bug in jamnut, not in your file. Please report it with {kept.name}", err=True)
+        kept = _keep_traceback()
+        click.echo(f"This is a bug in jamnut, not in your file. Please report it with {kept}", err=True)
         sys.exit(int(ExitStatus.BUG))

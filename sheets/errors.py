@@ -22,6 +22,12 @@ GRAVITY = (ExitStatus.BUG, ExitStatus.WRONG_INPUT, ExitStatus.REFUSED, ExitStatu
 """Of many files, the gravest status is handed back: this order, first found."""
 
 
+def gravest(statuses: Iterable[ExitStatus]) -> ExitStatus:
+    """The status that many files come to together."""
+    kept = set(statuses)
+    return next((status for status in GRAVITY if status in kept), ExitStatus.GOOD)
+
+
 @dataclass(frozen=True, kw_only=True)
 class Problem:
     """One thing that is wrong: where it stands, what it is, what to do."""

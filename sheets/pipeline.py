@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from datetime import date
 from pathlib import Path
 from typing import Literal
 
@@ -12,11 +13,35 @@ from sheets.amounts import Finding, Severity
 from sheets.circuit.build import both_ends
 from sheets.circuit.model import Circuit
 from sheets.circuit.verdict import Verdict
-from sheets.errors import ExitStatus, InputError, NotEstablishedError, Problem, RefusedError
+from sheets.errors import (
+    ExitStatus,
+    InputError,
+    JamnutError,
+    NotEstablishedError,
+    Problem,
+    RefusedError,
+    gravest,
+)
 from sheets.hazards.assess import assess
-from sheets.machine.loading import load_machine, load_site
-from sheets.machine.model import Machine
+from sheets.machine.answering import Answers as Answers
+from sheets.machine.answering import answered
+from sheets.machine.files import SITE_FILE, move_into_place, walkdown_file, write_pdf
+from sheets.machine.files import machine_files as machine_files
+from sheets.machine.loading import load_machine, load_site, load_walkdown
+from sheets.machine.model import Machine, Units
+from sheets.machine.screws import screws_of
 from sheets.machine.site import Policies, Site
+from sheets.machine.starters import Starter, starters, write_starter
+from sheets.machine.walkdown import Walkdown, walkdown_text
+from sheets.machine.walking import (
+    EntryState,
+    Place,
+    computing_contents,
+    walk_contents,
+    walkdown_state,
+    with_answers,
+)
+from sheets.machine.walking import WalkdownState as WalkdownState
 from sheets.pages.compose.matter import Matter
 from sheets.pages.compose.pack import compose
 from sheets.pages.document import Document, IssueContext, Layout, SheetKind
@@ -27,16 +52,31 @@ from sheets.procedure.plan import make_procedure
 from sheets.procedure.steps import Procedure
 from sheets.procedure.task import Task
 from sheets.seal.canonical import canonical_bytes, digest
+from sheets.targets.accepting import accept, computed_settings
 from sheets.targets.compute import compute_targets
 from sheets.targets.settings import Targets
 from sheets.trial.replay import Replay, findings_of, replay
 from sheets.wording import as_json
-from sheets.wording.as_json import Json, machine_json
+from sheets.wording.as_json import Json as Json
+from sheets.wording.as_json import machine_json
+from sheets.wording.difference import (
+    Change,
+    Side,
+    difference_json,
+    difference_lines,
+    differences,
+    refusal_lines,
+)
 from sheets.wording.findings import say_finding
+from sheets.wording.obstacles import obstacles
 from sheets.wording.steps import Speaker, SpokenStep
-from sheets.wording.terminal import machine_lines, step_lines, target_lines
-
-SITE_FILE = "site.yaml"
+from sheets.wording.summary import Outcome as Outcome
+from sheets.wording.summary import broken as broken
+from sheets.wording.summary import failed, known, worst_finding
+from sheets.wording.summary import summary_json as summary_json
+from sheets.wording.summary import summary_lines as summary_lines
+from sheets.wording.terminal import columns, machine_lines, note_lines, step_lines, target_lines
+from sheets.wording.walk_list import entry_lines, proposal_words, standing, walk_json, walk_lines
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -46,14 +86,18 @@ class Described:
     machine: Machine
     site: Site | None
     circuit: Circuit
+    walkdown: Walkdown | None = None
 
     @property
     def policies(self) -> Policies:
         return self.site.policies if self.site else Policies()
 
 
-def check(machine_file: Path, site_file: Path | None = None) -> Described:
-    """Reads a machine file, its site file where there is one, and builds the circuit. Raises InputError."""
+def check(machine_file: Path, site_file: Path | None = None, today: date | None = None) -> Described:
+    """Reads a machine file, its site and walk-down files where there are, and builds the circuit.
+
+    ``today`` only refuses walk-down answers from the future. Raises InputError.
+    """
     machine = load_machine(machine_file).machine
     site = _site(machine_file, site_file)
     policies = site.policies if site else Policies()
@@ -65,8 +109,8 @@ def check(machine_file: Path, site_file: Path | None = None) -> Described:
     )
     # Where the maker's drawing shows no bleed, outlet pressure reaches a port that is cut off: the last end.
     # Where nobody has looked, the search refuses every state in which the end matters.
-    circuit = ends[-1]
-    return Described(machine=machine, site=site, circuit=circuit)
+    walked = _walkdown(machine_file, machine, today)
+    return Described(machine=machine, site=site, circuit=ends[-1], walkdown=walked)
 
 
 def _site(machine_file: Path, site_file: Path | None) -> Site | None:
@@ -74,6 +118,11 @@ def _site(machine_file: Path, site_file: Path | None) -> Site | None:
         return load_site(site_file).site
     beside = machine_file.parent / SITE_FILE
     return load_site(beside).site if beside.is_file() else None
+
+
+def _walkdown(machine_file: Path, machine: Machine, today: date | None) -> Walkdown | None:
+    beside = walkdown_file(machine_file)
+    return load_walkdown(beside, machine=machine, today=today) if beside.is_file() else None
 
 
 def targets(described: Described) -> Targets:
@@ -103,7 +152,181 @@ def steps(described: Described, task: Task = Task()) -> Matter:  # noqa: B008 --
         hazards=assess(described.machine, described.circuit, procedure, described.policies),
         speaker=Speaker(described.machine, described.circuit, described.policies, procedure.search.found()),
         engine=str(ENGINE),
+        walkdown=_walked(described, found),
     )
+
+
+def walkdown(described: Described) -> WalkdownState:
+    """How far the machine file was compared with the machine, and which computed settings were accepted."""
+    return _walked(described, targets(described))
+
+
+def _walked(described: Described, found: Targets) -> WalkdownState:
+    return walkdown_state(
+        described.walkdown,
+        digests=_entry_digests(described),
+        computed_bar=computed_settings(found),
+        computed_from=_computing_digest(described),
+    )
+
+
+def _entry_digests(described: Described) -> dict[Place, str]:
+    return {place: digest(canonical_bytes(said)) for place, said in walk_contents(described.machine).items()}
+
+
+def _computing_digest(described: Described) -> str:
+    return digest(canonical_bytes(computing_contents(described.machine, described.policies)))
+
+
+def write_walkdown(machine_file: Path, described: Described, answers: Answers) -> WalkdownState:
+    """Adds answers to the walk-down beside the machine file, and says how it stands then.
+
+    Raises InputError for unknown entries, wrong dates, and what can't be accepted, and writes nothing.
+    """
+    by, on = answers.signed(dated=described.machine.dated)
+    found = targets(described)
+    now = replace(described, walkdown=_walkdown(machine_file, described.machine, answers.today))
+    computed_from = _computing_digest(now)
+    changed = with_answers(
+        now.walkdown,
+        now.machine,
+        answered(answers, now.walkdown, _entry_digests(now), by=by, on=on),
+        {
+            id_: accept(now.machine, found, id_, by=by, on=on, computed_from=computed_from)
+            for id_ in answers.accept
+        },
+    )
+    move_into_place(
+        walkdown_file(machine_file),
+        walkdown_text(changed).encode(),
+        fix="Look whether you may write into the folder of the machine file.",
+    )
+    return _walked(replace(now, walkdown=changed), found)
+
+
+def issuable(matter: Matter) -> tuple[Problem, ...]:
+    """What stands against issuing a pack; empty where nothing does. A draft is printed all the same."""
+    state = matter.walkdown or walkdown_state(None, digests={}, computed_bar={}, computed_from="")
+    good = status_of(matter.targets, matter.procedure, matter.replay) is ExitStatus.GOOD
+    return obstacles(matter.speaker, state, established=good)
+
+
+def issuable_text(matter: Matter) -> Iterator[str]:
+    return note_lines(issuable(matter))
+
+
+def walkdown_text_lines(described: Described, state: WalkdownState) -> Iterator[str]:
+    return walk_lines(_speaker(described), state)
+
+
+def walkdown_json(described: Described, state: WalkdownState) -> dict[str, Json]:
+    return walk_json(_speaker(described), state)
+
+
+def walkdown_questions(described: Described, state: WalkdownState) -> Iterator[tuple[str, tuple[str, ...]]]:
+    """Every entry that doesn't agree yet, as ``section/id`` with its lines of the list."""
+    speaker = _speaker(described)
+    for one in state.entries:
+        if one.state is not EntryState.AGREES:
+            yield f"{one.section}/{one.id}", tuple(entry_lines(speaker, one))
+
+
+def walkdown_standing(described: Described, state: WalkdownState) -> str:
+    return standing(described.machine, state)
+
+
+def new(kind: str, target: Path) -> Starter:
+    """Writes the starter of a circuit family to a file that isn't there yet. Raises InputError."""
+    return write_starter(kind, target)
+
+
+def starter_kinds() -> Iterator[str]:
+    """One line a starter."""
+    return columns([(one.kind, one.sentence) for one in starters()])
+
+
+@dataclass(frozen=True, kw_only=True)
+class Differing:
+    """Two machine files, and what isn't the same in them."""
+
+    old: Side
+    new: Side
+    changes: tuple[Change, ...]
+
+    @property
+    def status(self) -> ExitStatus:
+        """The gravest that either file comes to; a difference alone is good."""
+        return gravest((ExitStatus(self.old.status), ExitStatus(self.new.status)))
+
+
+def diff(old_file: Path, new_file: Path, site_file: Path | None = None) -> Differing:
+    """What changes from one machine file to another, from plate values to readings.
+
+    Raises InputError with the problems of both where either can't be read.
+    """
+    described: list[Described] = []
+    problems: list[Problem] = []
+    for name, file in (("OLD", old_file), ("NEW", new_file)):
+        try:
+            described.append(check(file, site_file))
+        except InputError as error:
+            problems += [replace(one, where=f"{name} {one.where}") for one in error.problems]
+    if problems:
+        raise InputError(*problems)
+    units = described[1].machine.units
+    before, after = (_side(one, units) for one in described)
+    return Differing(old=before, new=after, changes=differences(before, after))
+
+
+def _side(described: Described, units: Units) -> Side:
+    matter = steps(described)
+    shown = described.machine.model_copy(update={"units": units})
+    speaker = Speaker(shown, described.circuit, described.policies, matter.procedure.search.found())
+    return Side(
+        machine=described.machine,
+        targets=matter.targets,
+        procedure=matter.procedure,
+        speaker=speaker,
+        spoken=_spoken(replace(matter, speaker=speaker)),
+        status=int(status_of(matter.targets, matter.procedure, matter.replay)),
+    )
+
+
+def diff_text(differing: Differing) -> Iterator[str]:
+    yield from difference_lines(differing.changes)
+    yield from refusal_lines(differing.old, differing.new)
+
+
+def diff_json(differing: Differing) -> dict[str, Json]:
+    return difference_json(differing.old, differing.new, differing.changes)
+
+
+Depth = Literal["check", "targets", "steps"]
+
+
+def outcome(depth: Depth, file: Path, site_file: Path | None, today: date) -> tuple[Outcome, Matter | None]:
+    """What comes of one file among many, computed as far as a command goes; its matter where there is one.
+
+    A known error is an outcome, so that the other files get theirs.
+    """
+    try:
+        described = check(file, site_file, today)
+        if depth == "check":
+            return known(str(file), described.machine, ExitStatus.GOOD, "", "", check_json(described)), None
+        screws = len(screws_of(described.machine))
+        if depth == "targets":
+            found = targets(described)
+            words = worst_finding(_speaker(described), found.findings)
+            data = targets_json(described, found)
+            count = f"{len(found.settings)} of {screws}"
+            return known(str(file), described.machine, status_of(found), count, words, data), None
+        matter = steps(described)
+    except JamnutError as error:
+        return failed(str(file), error), None
+    words = worst_finding(matter.speaker, _findings(matter))
+    status = status_of(matter.targets, matter.procedure, matter.replay)
+    count = f"{len(matter.procedure.search.found())} of {screws}"
+    return known(str(file), described.machine, status, count, words, steps_json(matter)), matter
 
 
 def content(matter: Matter) -> tuple[Document, str]:
@@ -113,13 +336,55 @@ def content(matter: Matter) -> tuple[Document, str]:
     """
     _hold(matter)
     document = compose(matter)
-    return document, digest(canonical_bytes(document))
+    if matter.walkdown is None or not matter.walkdown.touched:
+        return document, digest(canonical_bytes(document))
+    # Names and dates are no part of the content: the digest is that of the sheets before any walk-down.
+    return document, digest(canonical_bytes(compose(replace(matter, walkdown=None))))
 
 
 def pack(matter: Matter, layout: Layout, issue: IssueContext | None = None) -> bytes:
     """The pack as PDF bytes; a draft without an issue context. Raises as `content` and `place` do."""
     document, printed = content(matter)
     return print_pack(document, layout=layout, digest=printed, issue=issue)
+
+
+def outcome_of_pack(
+    file: Path,
+    site_file: Path | None,
+    today: date,
+    folder: Path,
+    *,
+    paper: Literal["A4", "Letter"],
+    only: tuple[str, ...],
+    taken: set[Path],
+) -> Outcome:
+    """What comes of one file among many, with its draft written into a folder where the job holds.
+
+    ``only`` as in `write_pack`. ``taken``: files that were written for others before; it grows.
+    """
+    found, matter = outcome("steps", file, site_file, today)
+    if matter is None or found.status is not ExitStatus.GOOD:
+        return found
+    target = folder / draft_name(matter.machine)
+    try:
+        if target in taken:
+            raise InputError(
+                Problem(
+                    where=str(file),
+                    what=f"Another of these machine files has the tag {matter.machine.tag} too.",
+                    fix="Give each machine a tag of its own, or write this pack by itself with -o.",
+                )
+            )
+        taken.add(target)
+        written = write_pack(matter, target, paper=paper, only=only)
+    except JamnutError as error:
+        return failed(str(file), error)
+    return replace(found, data={"file": str(target), "pages": written.pages, "digest": written.digest})
+
+
+def draft_name(machine: Machine) -> str:
+    """Name of a draft's file where none is given."""
+    return f"{machine.tag}-draft.pdf"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -141,7 +406,7 @@ def write_pack(
     document, printed = content(matter)
     kinds = tuple(SheetKind(name) for name in only) or tuple(SheetKind)
     pages = place(document, Layout(paper=paper, kinds=kinds), digest=printed)
-    write_aside(target, pdf_bytes(pages, document))
+    write_pdf(target, pdf_bytes(pages, document))
     return Written(pages=len(pages), digest=printed)
 
 
@@ -186,20 +451,25 @@ def check_json(described: Described) -> dict[str, Json]:
 
 
 def targets_text(described: Described, found: Targets) -> Iterator[str]:
-    return target_lines(_speaker(described), found)
+    return target_lines(_speaker(described), found, proposal_words(_walked(described, found)))
 
 
 def targets_json(described: Described, found: Targets) -> dict[str, Json]:
-    return as_json.targets_json(_speaker(described), found)
+    return as_json.targets_json(_speaker(described), found, proposal_words(_walked(described, found)))
 
 
 def steps_text(matter: Matter) -> Iterator[str]:
-    return step_lines(matter.speaker, matter.procedure, _spoken(matter), _findings(matter))
+    return step_lines(matter.speaker, matter.procedure, _spoken(matter), _findings(matter), issuable(matter))
 
 
 def steps_json(matter: Matter) -> dict[str, Json]:
     return as_json.steps_json(
-        matter.speaker, matter.procedure, _spoken(matter), matter.procedure.verdict, _findings(matter)
+        matter.speaker,
+        matter.procedure,
+        _spoken(matter),
+        matter.procedure.verdict,
+        _findings(matter),
+        issuable(matter),
     )
 
 
@@ -214,41 +484,3 @@ def _spoken(matter: Matter) -> dict[int, tuple[SpokenStep, ...]]:
 def _findings(matter: Matter) -> tuple[Finding, ...]:
     run = findings_of(matter.replay) if matter.procedure.stages else ()
     return (*matter.targets.findings, *matter.procedure.findings, *run)
-
-
-def write_aside(target: Path, data: bytes) -> None:
-    """Writes a PDF aside and moves it into place, so that nothing half-written is left.
-
-    Raises InputError if the folder isn't there or can't be written to, and if another kind of file already
-    stands under that name.
-    """
-    aside = target.parent / f".{target.name}.part"
-    try:
-        if target.exists() and not _is_pdf(target):
-            raise InputError(
-                Problem(
-                    where=str(target),
-                    what="Something stands there that isn't a PDF file.",
-                    fix="Name another file with -o; nothing was overwritten.",
-                )
-            )
-        aside.write_bytes(data)
-        aside.replace(target)
-    except OSError as error:
-        raise InputError(
-            Problem(
-                where=str(target),
-                what=f"The file can't be written: {error.strerror}.",
-                fix="Name a file with -o, in a folder that exists and that you may write to.",
-            )
-        ) from None
-    finally:
-        if aside.exists():
-            aside.unlink()
-
-
-def _is_pdf(file: Path) -> bool:
-    if not file.is_file():
-        return False
-    with file.open("rb") as opened:
-        return opened.read(5) in (b"%PDF-", b"")

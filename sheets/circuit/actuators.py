@@ -8,13 +8,29 @@ from functools import cached_property
 import numpy as np
 
 from sheets.circuit.smooth import Bools, Floats, Ints, ramp
-from sheets.circuit.stamp import NO_SLOPES, NONE, Stamp, StateArrays
+from sheets.circuit.stamp import NO_ADJUSTERS, NO_SLOPES, Stamp, StateArrays
 
 LEAST_FORCE_BEND_BAR = 0.05
 DAMPING_BAR_PER_LPM = 2e-4
 """Pressure that is left over to move: small against every reading, large enough to decide a speed."""
 
 A, B, CASE = range(3)
+
+
+@dataclass(frozen=True, kw_only=True)
+class _Fixed:
+    """What neither pressures nor states change."""
+
+    larger: Floats
+    """Swept flow of the larger side."""
+    share_a: Floats
+    moves: Floats
+    """[E, 3] flow into each node for 1 L/min that the larger side takes."""
+    by_gain: Floats
+    """[E, 3, 3] slopes for a gain of 1 L/min/bar."""
+    by_leakage: Floats
+    """[E, 3, 3]"""
+    leaks: bool
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -70,41 +86,60 @@ class Actuators:
         self, pressures_bar: Floats, state: StateArrays, *, widening: float, slopes: bool = True
     ) -> Stamp:
         """Flows of a batch; ``through`` is the flow into side A that moves it."""
-        batch, count = len(pressures_bar), len(self.ids)
-        p_a, p_b, p_case = (pressures_bar[:, node] for node in (self.node_a, self.node_b, self.case))
-        larger = np.maximum(self.swept_a, self.swept_b)
-        surplus = (p_a * self.swept_a - p_b * self.swept_b) / larger + self.drives_bar
+        fixed = self._fixed
+        p_a, p_b = pressures_bar[:, self.node_a], pressures_bar[:, self.node_b]
+        surplus = (p_a * self.swept_a - p_b * self.swept_b) / fixed.larger + self.drives_bar
         bend = LEAST_FORCE_BEND_BAR * widening
         forward, by_forward = ramp(x=surplus - self.resists_forward_bar, width=bend)
         backward, by_backward = ramp(x=-surplus - self.resists_backward_bar, width=bend)
         swept_flow = (forward * state.may_extend - backward * state.may_retract) / DAMPING_BAR_PER_LPM
-        gain = (by_forward * state.may_extend + by_backward * state.may_retract) / DAMPING_BAR_PER_LPM
 
-        share_a, share_b = self.swept_a / larger, self.swept_b / larger
-        to_case_a, to_case_b = self.case_leakage * (p_a - p_case), self.case_leakage * (p_b - p_case)
-        across = self.cross_leakage * (p_a - p_b)
-        inflow = np.empty((batch, count, 3))
-        inflow[:, :, A] = -share_a * swept_flow - to_case_a - across
-        inflow[:, :, B] = share_b * swept_flow - to_case_b + across
-        inflow[:, :, CASE] = to_case_a + to_case_b
+        inflow = fixed.moves * swept_flow[:, :, None]
+        if fixed.leaks:
+            p_case = pressures_bar[:, self.case]
+            to_case_a, to_case_b = self.case_leakage * (p_a - p_case), self.case_leakage * (p_b - p_case)
+            across = self.cross_leakage * (p_a - p_b)
+            inflow[:, :, A] -= to_case_a
+            inflow[:, :, A] -= across
+            inflow[:, :, B] -= to_case_b
+            inflow[:, :, B] += across
+            inflow[:, :, CASE] = to_case_a + to_case_b
         by_pressures = NO_SLOPES
         if slopes:
-            leaks = self.case_leakage + self.cross_leakage
-            by_pressures = np.empty((batch, count, 3, 3))
-            by_pressures[:, :, A, A] = -share_a * share_a * gain - leaks
-            by_pressures[:, :, A, B] = share_a * share_b * gain + self.cross_leakage
-            by_pressures[:, :, B, A] = by_pressures[:, :, A, B]
-            by_pressures[:, :, B, B] = -share_b * share_b * gain - leaks
-            by_pressures[:, :, (A, B), CASE] = self.case_leakage[:, None]
-            by_pressures[:, :, CASE, (A, B)] = self.case_leakage[:, None]
-            by_pressures[:, :, CASE, CASE] = -2.0 * self.case_leakage
+            gain = (by_forward * state.may_extend + by_backward * state.may_retract) / DAMPING_BAR_PER_LPM
+            by_pressures = fixed.by_gain * gain[:, :, None, None]
+            if fixed.leaks:
+                by_pressures += fixed.by_leakage
         return Stamp(
             terminals=self.terminals,
-            through_lpm=share_a * swept_flow,
+            through_lpm=fixed.share_a * swept_flow,
             inflow_lpm=inflow,
             slopes=by_pressures,
-            adjusters=np.full((count, 0), NONE, dtype=np.intp),
-            setting_slopes=np.zeros((batch, count, 3, 0)),
+            adjusters=NO_ADJUSTERS,
+            setting_slopes=NO_SLOPES,
+        )
+
+    @cached_property
+    def _fixed(self) -> _Fixed:
+        larger = np.maximum(self.swept_a, self.swept_b)
+        share_a, share_b = self.swept_a / larger, self.swept_b / larger
+        count = len(self.ids)
+        moves = np.zeros((count, 3))
+        moves[:, A], moves[:, B] = -share_a, share_b
+        by_gain, by_leakage = np.zeros((2, count, 3, 3))
+        by_gain[:, A, A], by_gain[:, B, B] = -share_a * share_a, -share_b * share_b
+        by_gain[:, A, B] = by_gain[:, B, A] = share_a * share_b
+        by_leakage[:, A, A] = by_leakage[:, B, B] = -(self.case_leakage + self.cross_leakage)
+        by_leakage[:, A, B] = by_leakage[:, B, A] = self.cross_leakage
+        by_leakage[:, (A, B), CASE] = by_leakage[:, CASE, (A, B)] = self.case_leakage[:, None]
+        by_leakage[:, CASE, CASE] = -2.0 * self.case_leakage
+        return _Fixed(
+            larger=larger,
+            share_a=share_a,
+            moves=moves,
+            by_gain=by_gain,
+            by_leakage=by_leakage,
+            leaks=bool(np.any(by_leakage)),
         )
 
     def speeds(self, stamp: Stamp) -> Floats:

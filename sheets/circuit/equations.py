@@ -15,8 +15,8 @@ from sheets.circuit.model import Circuit
 from sheets.circuit.smooth import Floats, Ints
 from sheets.circuit.stamp import Stamp, StateArrays
 
-CAPACITY_LPM_PER_BAR_L = 1e-6
-"""L/min for each bar and each litre of a node."""
+NOTHING: Floats = np.zeros((0, 1))
+"""Stands where the amounts of flows are not wanted."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -34,17 +34,12 @@ class Balance:
     residual_lpm: Floats
     """[B, N − 1] stored less what flows in; 0 at the solution."""
     throughput_lpm: Floats
-    """[B, N − 1] sum of the amounts of all flows at the node."""
+    """[B, N − 1] sum of the amounts of all flows at the node; nothing where slopes were not wanted."""
 
     @property
     def stamps(self) -> tuple[Stamp, ...]:
         """The stamps of all families."""
         return self.ways, self.checks, self.reliefs, self.pumps, self.actuators
-
-
-def capacities(circuit: Circuit) -> Floats:
-    """[N] L/min/bar that a node takes up."""
-    return CAPACITY_LPM_PER_BAR_L * np.array([node.volume_l for node in circuit.nodes], dtype=np.float64)
 
 
 def balance(
@@ -66,10 +61,9 @@ def balance(
 
     batch, count = pressures_bar.shape
     flows = np.concatenate([stamp.inflow_lpm.reshape(batch, -1) for stamp in stamps], axis=1)
-    places = np.concatenate([stamp.terminals.ravel() for stamp in stamps])
-    into = _sum_at(flows, places, count) + void
-    amounts = _sum_at(np.abs(flows), places, count) + void
-    stored = capacities(circuit) * (pressures_bar - state.held_bar)
+    into = _sum_at(flows, circuit.places, count) + void
+    amounts = _sum_at(np.abs(flows), circuit.places, count) + void if slopes else NOTHING
+    stored = circuit.capacities * (pressures_bar - state.held_bar)
     return Balance(
         ways=ways,
         checks=checks,
@@ -87,12 +81,9 @@ def jacobian(circuit: Circuit, at: Balance) -> Floats:
     """[B, N − 1, N − 1] slopes of the residuals by the pressures."""
     batch, count = at.void_lpm.shape
     slopes = np.concatenate([stamp.slopes.reshape(batch, -1) for stamp in at.stamps], axis=1)
-    places = np.concatenate(
-        [(s.terminals[:, :, None] * count + s.terminals[:, None, :]).ravel() for s in at.stamps]
-    )
-    into = _sum_at(slopes, places, count * count).reshape(batch, count, count)
+    into = _sum_at(slopes, circuit.pairs, count * count).reshape(batch, count, count)
     node = np.arange(count)
-    into[:, node, node] += at.void_slopes - capacities(circuit)
+    into[:, node, node] += at.void_slopes - circuit.capacities
     return -into[:, 1:, 1:]
 
 
@@ -117,6 +108,6 @@ def _sum_at(values: Floats, places: Ints, count: int) -> Floats:
     batch = len(values)
     if not places.size or not count:
         return np.zeros((batch, count))
-    index = (np.arange(batch)[:, None] * count + places[None, :]).ravel()
+    index = places if batch == 1 else (np.arange(batch)[:, None] * count + places[None, :]).ravel()
     sums = np.bincount(index, weights=values.ravel(), minlength=batch * count)
     return sums.astype(np.float64, copy=False).reshape(batch, count)

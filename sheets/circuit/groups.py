@@ -2,11 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-
 import numpy as np
 
-from sheets.circuit.equations import Balance, capacities
+from sheets.circuit.equations import Balance
 from sheets.circuit.model import TANK, Circuit
 from sheets.circuit.smooth import Bools, Floats, Ints
 from sheets.circuit.stamp import StateArrays
@@ -15,46 +13,42 @@ VOLUME_BAR = 2e-6
 """Drift of a group that is accepted, as a pressure over its whole capacity."""
 
 
-def _edges(circuit: Circuit, state: StateArrays, at: Balance) -> Iterator[tuple[int, int, Bools]]:
-    """Pairs of nodes and in which states oil passes between them, pumps left out."""
-    ways_open = circuit.ways.is_open(state) & (circuit.ways.conductance > 0.0)
-    yield from _pairs(circuit.ways.first, circuit.ways.second, ways_open)
-    yield from _pairs(circuit.checks.first, circuit.checks.second, at.checks.through_lpm != 0.0)
-    yield from _pairs(circuit.reliefs.first, circuit.reliefs.second, at.reliefs.through_lpm != 0.0)
-    motors = circuit.actuators
-    always = np.ones((len(at.void_lpm), len(motors.ids)), dtype=np.bool_)
-    yield from _pairs(motors.node_a, motors.node_b, always & (motors.cross_leakage > 0.0))
-    yield from _pairs(motors.node_a, motors.case, always & (motors.case_leakage > 0.0))
-    yield from _pairs(motors.node_b, motors.case, always & (motors.case_leakage > 0.0))
-
-
-def _pump_edges(circuit: Circuit, state: StateArrays) -> Iterator[tuple[int, int, Bools]]:
-    """Pairs of nodes that a turning pump joins, by what it moves or by what seeps inside it."""
-    pumps = circuit.pumps
+def _joined(circuit: Circuit, state: StateArrays, at: Balance) -> Bools:
+    """[B, paths] in which states oil passes along each path of ``Circuit.oil_paths``."""
+    batch = len(at.void_lpm)
+    ways, motors, pumps = circuit.ways, circuit.actuators, circuit.pumps
+    leaks = np.concatenate((motors.cross_leakage, motors.case_leakage, motors.case_leakage)) > 0.0
     turning = pumps.turning(state)
-    for other in (pumps.suction, pumps.case):
-        yield from _pairs(pumps.outlet, other, turning)
-    source = np.where(pumps.bled_from_outlet, pumps.outlet, pumps.case)
-    yield from _pairs(source, pumps.signal, turning & (pumps.signal_bleed > 0.0))
+    return np.concatenate(
+        (
+            ways.is_open(state) & (ways.conductance > 0.0),
+            at.checks.through_lpm != 0.0,
+            at.reliefs.through_lpm != 0.0,
+            np.broadcast_to(leaks, (batch, len(leaks))),
+            turning,
+            turning,
+            turning & (pumps.signal_bleed > 0.0),
+        ),
+        axis=1,
+    )
 
 
-def _pairs(first: Ints, second: Ints, active: Bools) -> Iterator[tuple[int, int, Bools]]:
-    for column in np.flatnonzero(np.any(active, axis=0)):
-        yield int(first[column]), int(second[column]), active[:, column]
-
-
-def _labels(edges: list[tuple[int, int, Bools]], *, batch: int, count: int) -> Ints:
-    """[B, N] lowest node of the group that each node belongs to."""
-    labels = np.broadcast_to(np.arange(count), (batch, count)).copy()
-    changed = True
-    while changed:
-        before = labels.copy()
-        for one, other, active in edges:
-            lower = np.minimum(labels[:, one], labels[:, other])
-            labels[:, one] = np.where(active, lower, labels[:, one])
-            labels[:, other] = np.where(active, lower, labels[:, other])
-        changed = not np.array_equal(before, labels)
-    return labels
+def _labels(circuit: Circuit, joined: Bools) -> Ints:
+    """[B, N] lowest node of the group that each node belongs to, along the first so many paths."""
+    batch, paths = joined.shape
+    first, second = (ends[:paths] for ends in circuit.oil_paths)
+    count = len(circuit.nodes)
+    labels: Ints = np.tile(np.arange(count, dtype=np.intp), (batch, 1))
+    row, path = np.nonzero(joined)
+    one, other = row * count + first[path], row * count + second[path]
+    flat = labels.reshape(-1)
+    while True:
+        ends = flat[one], flat[other]
+        if np.array_equal(*ends):
+            return labels
+        lower = np.minimum(*ends)
+        np.minimum.at(flat, one, lower)
+        np.minimum.at(flat, other, lower)
 
 
 def volume_kept(circuit: Circuit, state: StateArrays, at: Balance, pressures_bar: Floats) -> Bools:
@@ -63,8 +57,8 @@ def volume_kept(circuit: Circuit, state: StateArrays, at: Balance, pressures_bar
     What came in is the oil that a moving piston shifts and the void that stands for missing oil.
     """
     batch, count = pressures_bar.shape
-    labels = _labels([*_edges(circuit, state, at), *_pump_edges(circuit, state)], batch=batch, count=count)
-    capacity = np.broadcast_to(capacities(circuit), (batch, count))
+    labels = _labels(circuit, _joined(circuit, state, at))
+    capacity = np.broadcast_to(circuit.capacities, (batch, count))
     surplus = capacity * (pressures_bar - state.held_bar) - at.void_lpm
     yields = -at.void_slopes
     moved = circuit.actuators.moves_volume(at.actuators)
@@ -86,11 +80,15 @@ def volume_kept(circuit: Circuit, state: StateArrays, at: Balance, pressures_bar
 
 def loose_signals(circuit: Circuit, state: StateArrays, at: Balance) -> Bools:
     """[B, pumps] whether leakage alone decides the LS port of a turning pump in this state."""
-    batch, count = at.void_lpm.shape
-    labels = _labels(list(_edges(circuit, state, at)), batch=batch, count=count)
     pumps = circuit.pumps
-    row = np.arange(batch)[:, None]
+    asked = pumps.turning(state) & (pumps.signal_bleed > 0.0)
+    if not asked.any():
+        return asked
+    by_pumps = 3 * len(pumps.ids)  # what a pump moves or seeps decides nothing here
+    joined = _joined(circuit, state, at)
+    labels = _labels(circuit, joined[:, : joined.shape[1] - by_pumps])
+    row = np.arange(len(labels))[:, None]
     held = labels[:, [TANK, *pumps.outlet]]
     of_signal = labels[row, pumps.signal[None, :]]
     decided = np.any(of_signal[:, :, None] == held[:, None, :], axis=2)
-    return np.asarray(pumps.turning(state) & (pumps.signal_bleed > 0.0) & ~decided)
+    return np.asarray(asked & ~decided)

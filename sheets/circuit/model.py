@@ -7,12 +7,18 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import cached_property
 from typing import Literal
+
+import numpy as np
 
 from sheets.circuit.laws import Actuators, Checks, Pumps, Reliefs, Ways
 from sheets.circuit.plant import PlantState
+from sheets.circuit.smooth import Floats, Ints
 
 TANK = 0
+CAPACITY_LPM_PER_BAR_L = 1e-6
+"""L/min for each bar and each litre of a node."""
 
 SealedEnd = Literal["standby end", "compensator end"]
 """Where leakage leaves an LS port that is sealed or cut off: at case pressure, or at outlet pressure."""
@@ -86,6 +92,44 @@ class Circuit:
     """The end at which LS ports in ``sealed_ports`` are taken when nothing else decides their pressure."""
     sealed_ports: tuple[str, ...] = ()
     """LS ports whose pressure leakage decides once they are cut off: solve both ends, carry the worse."""
+
+    @cached_property
+    def capacities(self) -> Floats:
+        """[N] L/min/bar that each node takes up."""
+        volumes_l = np.array([node.volume_l for node in self.nodes], dtype=np.float64)
+        return CAPACITY_LPM_PER_BAR_L * volumes_l
+
+    @cached_property
+    def terminals(self) -> tuple[Ints, ...]:
+        """Nodes at the terminals of ways, checks, reliefs, pumps and actuators: [E, T] each."""
+        families = (self.ways, self.checks, self.reliefs, self.pumps, self.actuators)
+        return tuple(family.terminals for family in families)
+
+    @cached_property
+    def places(self) -> Ints:
+        """Node of every terminal, all families in a row."""
+        return np.concatenate([terminals.ravel() for terminals in self.terminals])
+
+    @cached_property
+    def pairs(self) -> Ints:
+        """Place in a matrix of nodes by nodes of every pair of terminals of an element, in the same order."""
+        count = len(self.nodes)
+        return np.concatenate([(t[:, :, None] * count + t[:, None, :]).ravel() for t in self.terminals])
+
+    @cached_property
+    def oil_paths(self) -> tuple[Ints, Ints]:
+        """Both ends of every path along which oil can pass: ways, checks, reliefs, what leaks in motors from
+        A to B, A to case and B to case; last, of the pumps, outlet to suction, outlet to case, and what
+        seeps into the LS node."""
+        motors, pumps = self.actuators, self.pumps
+        two_ended = (self.ways, self.checks, self.reliefs)
+        bled_from = np.where(pumps.bled_from_outlet, pumps.outlet, pumps.case)
+        first = (motors.node_a, motors.node_a, motors.node_b, pumps.outlet, pumps.outlet, bled_from)
+        second = (motors.node_b, motors.case, motors.case, pumps.suction, pumps.case, pumps.signal)
+        return (
+            np.concatenate([*(family.first for family in two_ended), *first]),
+            np.concatenate([*(family.second for family in two_ended), *second]),
+        )
 
     def rest_state(self, settings_bar: Mapping[str, float]) -> PlantState:
         """Valves at rest, drives off, no pressure anywhere."""

@@ -10,7 +10,7 @@ from typing import Final
 
 import numpy as np
 
-from sheets.circuit.equations import Balance, balance, capacities, jacobian
+from sheets.circuit.equations import Balance, balance, jacobian
 from sheets.circuit.model import Circuit
 from sheets.circuit.smooth import Bools, Floats, Ints
 from sheets.circuit.stamp import StateArrays
@@ -21,6 +21,8 @@ EPSILON: Final = float(np.finfo(np.float64).eps)
 LONGEST_STEP_BAR: Final = 1e4
 HALVINGS: Final = 41
 TRIALS_TOGETHER: Final = 64
+FEW: Final = 4
+"""So few states cost the same with slopes as without, so what a trial gave is kept for the next step."""
 ARMIJO: Final = 1e-4
 NEWTON_STEPS: Final = 80
 TIME_STEPS: Final = 400
@@ -38,6 +40,8 @@ class Found:
 
     pressures_bar: Floats
     accepted: Bools
+    last: Balance | None = None
+    """At these pressures, with slopes, where all were accepted in one go."""
 
 
 def tolerance(circuit: Circuit, at: Balance) -> Floats:
@@ -61,13 +65,20 @@ def solve_each(matrices: Floats, right: Floats) -> Floats:
 
 def rounding(slopes: Floats, pressures_bar: Floats, throughput_lpm: Floats) -> Floats:
     """[B, N − 1] what a flow may be off because pressures are stored in 53 bits."""
-    highest = np.max(np.abs(pressures_bar), axis=1, initial=0.0)[:, None]
-    return np.asarray(4.0 * EPSILON * (np.sum(np.abs(slopes), axis=2) * highest + throughput_lpm))
+    highest = np.abs(pressures_bar).max(axis=1, initial=0.0)[:, None]
+    return np.asarray(4.0 * EPSILON * (np.abs(slopes).sum(axis=2) * highest + throughput_lpm))
 
 
 def newton_step(slopes: Floats, at: Balance) -> Floats:
     """[B, N − 1] the undamped step."""
     return solve_each(slopes, -at.residual_lpm[:, :, None])[:, :, 0]
+
+
+def balanced(circuit: Circuit, at: Balance, slopes: Floats, pressures_bar: Floats) -> Bools:
+    """[B] whether the residual is small: half of what ``acceptable`` asks for."""
+    left = np.abs(at.residual_lpm)
+    stored = STEP_BAR * circuit.capacities[1:] + rounding(slopes, pressures_bar, at.throughput_lpm)
+    return np.asarray(((left <= tolerance(circuit, at)) & (left <= stored)).all(axis=1))
 
 
 def acceptable(
@@ -79,23 +90,21 @@ def acceptable(
     as a parabola: there it halves what is left, while next to nothing flows. So the residual must also
     be what 1e-6 bar stores, or else what rounding leaves.
     """
-    left = np.abs(at.residual_lpm)
-    stored = STEP_BAR * capacities(circuit)[1:] + rounding(slopes, pressures_bar, at.throughput_lpm)
-    small = np.all((left <= tolerance(circuit, at)) & (left <= stored), axis=1)
-    return np.asarray(small & np.all(np.abs(step_bar) <= STEP_BAR, axis=1))
+    small = balanced(circuit, at, slopes, pressures_bar)
+    return np.asarray(small & (np.abs(step_bar) <= STEP_BAR).all(axis=1))
 
 
 def find(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Found:
     """Pressures of a batch, from a start: [B, N]."""
-    pressures_bar = start_bar.copy()
-    accepted = np.zeros(len(pressures_bar), dtype=np.bool_)
+    first = _damped(circuit, state, start_bar, widening=1.0)
+    if np.all(first.accepted):
+        return first
+    pressures_bar, accepted = first.pressures_bar, first.accepted
 
     def put(rows: Ints, found: Found) -> None:
         pressures_bar[rows] = found.pressures_bar
         accepted[rows] = found.accepted
 
-    everyone = np.arange(len(pressures_bar))
-    put(everyone, _damped(circuit, state, start_bar, widening=1.0))
     for attempt in (_by_pseudo_time, _by_narrowing):
         left = np.flatnonzero(~accepted)
         if left.size:
@@ -124,12 +133,12 @@ def _by_narrowing(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Fo
 
 
 def _norm(at: Balance) -> Floats:
-    return np.asarray(np.sqrt(np.sum(at.residual_lpm * at.residual_lpm, axis=1)))
+    return np.asarray(np.sqrt((at.residual_lpm * at.residual_lpm).sum(axis=1)))
 
 
 def _moved(pressures_bar: Floats, step_bar: Floats, share: Floats) -> Floats:
     """Pressures after a share of a step; the tank stays where it is."""
-    longest = np.max(np.abs(step_bar), axis=1, initial=0.0)
+    longest = np.abs(step_bar).max(axis=1, initial=0.0)
     bounded = share * np.minimum(1.0, LONGEST_STEP_BAR / np.maximum(longest, LONGEST_STEP_BAR))
     moved = pressures_bar.copy()
     moved[:, 1:] += bounded[:, None] * step_bar
@@ -141,21 +150,24 @@ def _damped(circuit: Circuit, state: StateArrays, start_bar: Floats, *, widening
     pressures_bar = start_bar.copy()
     accepted = np.zeros(len(pressures_bar), dtype=np.bool_)
     active = np.arange(len(pressures_bar))
+    known: Balance | None = None
     for _ in range(NEWTON_STEPS):
         part = state.take(active)
         here = pressures_bar[active]
-        at = balance(circuit, part, here, widening=widening)
+        at = known or balance(circuit, part, here, widening=widening)
         slopes = jacobian(circuit, at)
         step_bar = newton_step(slopes, at)
         done = acceptable(circuit, at, slopes, here, step_bar)
         accepted[active[done]] = True
-        going = ~done & np.all(np.isfinite(step_bar), axis=1)
-        if not np.any(going):
+        if done.all() and len(active) == len(pressures_bar):
+            return Found(pressures_bar=pressures_bar, accepted=accepted, last=at)
+        going = ~done & np.isfinite(step_bar).all(axis=1)
+        if not going.any():
             break
         rows = np.flatnonzero(going)
         # At the floor of rounding no step lowers the residual, yet a cut-off group may still have far to go.
-        floor = np.sqrt(np.sum(np.square(tolerance(circuit, at)), axis=1))
-        better, moved = _searched(
+        floor = np.sqrt(np.square(tolerance(circuit, at)).sum(axis=1))
+        better, moved, known = _searched(
             circuit, part.take(rows), here[rows], step_bar[rows], _norm(at)[rows], floor[rows], widening
         )
         active = active[rows][better]
@@ -173,8 +185,10 @@ def _searched(
     norm: Floats,
     floor: Floats,
     widening: float,
-) -> tuple[Bools, Floats]:
+) -> tuple[Bools, Floats, Balance | None]:
     """Whether a share of each step lowers the residual enough, and the pressures after it.
+
+    The balance there comes with them where a few states all took their whole step.
 
     The longest good share is taken. The whole step is tried alone, as it mostly serves. Then, where few
     states are left, several halvings are tried in one call, which costs less than a call for each.
@@ -188,16 +202,19 @@ def _searched(
         shares = 0.5 ** np.arange(tried, tried + together)
         rows = np.repeat(left, together)
         trial = _moved(here[rows], step_bar[rows], np.tile(shares, len(left)))
-        at = balance(circuit, state.take(rows), trial, widening=widening, slopes=False)
+        few = not tried and len(here) <= FEW
+        at = balance(circuit, state.take(rows), trial, widening=widening, slopes=few)
         new = _norm(at).reshape(-1, together)
         good = (new <= (1.0 - ARMIJO * shares) * norm[left, None]) | (new <= floor[left, None])
         first = np.argmax(good, axis=1)
         found = good[np.arange(len(left)), first]
         moved[left[found]] = trial.reshape(len(left), together, -1)[np.flatnonzero(found), first[found]]
         better[left[found]] = True
+        if few and found.all():
+            return better, moved, at
         left = left[~found]
         tried += together
-    return better, moved
+    return better, moved, None
 
 
 def _pseudo_time(circuit: Circuit, state: StateArrays, start_bar: Floats, *, widening: float) -> Found:
@@ -207,23 +224,29 @@ def _pseudo_time(circuit: Circuit, state: StateArrays, start_bar: Floats, *, wid
     time_step = np.full(len(pressures_bar), FIRST_TIME_STEP)
     active = np.arange(len(pressures_bar))
     diagonal = np.arange(pressures_bar.shape[1] - 1)
+    known: Balance | None = None
     for _ in range(TIME_STEPS):
         part = state.take(active)
         here = pressures_bar[active]
-        at = balance(circuit, part, here, widening=widening)
+        at = known or balance(circuit, part, here, widening=widening)
         slopes = jacobian(circuit, at)
-        done = acceptable(circuit, at, slopes, here, newton_step(slopes, at))
+        done = balanced(circuit, at, slopes, here)
+        if done.any():
+            done &= np.all(np.abs(newton_step(slopes, at)) <= STEP_BAR, axis=1)
         accepted[active[done]] = True
         slopes[:, diagonal, diagonal] += 1.0 / time_step[active][:, None]
         step_bar = newton_step(slopes, at)
-        rows = np.flatnonzero(~done & np.all(np.isfinite(step_bar), axis=1))
+        rows = np.flatnonzero(~done & np.isfinite(step_bar).all(axis=1))
         if not rows.size:
             break
         active, here, step_bar = active[rows], here[rows], step_bar[rows]
         moved = _moved(here, step_bar, np.ones(len(rows)))
         old = _norm(at)[rows]
-        new = _norm(balance(circuit, state.take(active), moved, widening=widening, slopes=False))
+        few = len(active) <= FEW
+        ahead = balance(circuit, state.take(active), moved, widening=widening, slopes=few)
+        new = _norm(ahead)
         good = new <= WORSE_BY * old
+        known = ahead if few and np.all(good) else None
         growth = np.clip(old / np.maximum(new, 1e-300), 2.0, 1000.0)
         longer = np.minimum(time_step[active] * growth, LONGEST_TIME_STEP)
         time_step[active] = np.where(good, longer, time_step[active] / 4.0)

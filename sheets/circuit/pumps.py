@@ -19,6 +19,42 @@ OUTLET, SUCTION, CASE, SIGNAL = range(4)
 
 
 @dataclass(frozen=True, kw_only=True)
+class _Asks:
+    """What states decide whatever the pressures: [B, pumps] each."""
+
+    turning: Floats
+    """1 where the drive runs, else 0."""
+    compensator_bar: Floats
+    full_at_limit: Floats
+    """Net flow at whole stroke, a width below the compensator's setting."""
+    load_sensing_bar: Floats
+
+
+@dataclass(frozen=True, kw_only=True)
+class _Fixed:
+    """What neither pressures nor states change."""
+
+    bled_from: Ints
+    seeps_into: Floats
+    """[E, 4] flow into each node for 1 L/min that seeps."""
+    by_seep: Floats
+    """[E, 4, 4] slopes for a slope of 1 L/min/bar of what seeps."""
+    by_leakage: Floats
+    """[E, 4, 4] at suction and case."""
+    by_fixed_pump: Floats
+    """[E, 4] slopes of the net flow without controls."""
+    controlled: Bools
+    has_signal: Bools
+    signal_gain: Floats
+    variable: bool
+    """Whether any pump is controlled."""
+    senses: bool
+    """Whether any pump has a load-sensing control."""
+    torque: bool
+    """Whether any pump has a torque limit."""
+
+
+@dataclass(frozen=True, kw_only=True)
 class Pumps:
     """Pumps on a shaft of constant speed; with the drive off every flow is exactly zero.
 
@@ -106,43 +142,35 @@ class Pumps:
         self, pressures_bar: Floats, state: StateArrays, *, widening: float, slopes: bool = True
     ) -> Stamp:
         """Net flows of a batch and what they do to the nodes."""
-        batch, count = len(pressures_bar), len(self.ids)
-        net, by_pressure, by_setting = self._net_flow(pressures_bar, state, widening=widening)
-        leakage = self.leakage_per_bar * (pressures_bar[:, self.outlet] - pressures_bar[:, self.case])
-        turning = self.turning(state).astype(np.float64)
+        fixed = self._fixed
+        asks = state.once(self, "asks", lambda: self._asks(state))
+        at_bar = pressures_bar[:, self.terminals]
+        over_case = at_bar[:, :, OUTLET] - at_bar[:, :, CASE]
+        leakage = self.leakage_per_bar * over_case
+        net, by_pressure, by_setting = self._net_flow(at_bar, over_case, leakage, asks, widening, slopes)
         # What seeps inside into the LS node comes from the outlet or from the case.
-        source = np.where(self.bled_from_outlet, self.outlet, self.case)
         seeps, seep_slope = orifice_flow(
-            drop_bar=pressures_bar[:, source] - pressures_bar[:, self.signal], conductance=self.signal_bleed
+            drop_bar=pressures_bar[:, fixed.bled_from] - at_bar[:, :, SIGNAL], conductance=self.signal_bleed
         )
-        from_outlet = self.bled_from_outlet.astype(np.float64)
 
-        inflow = np.empty((batch, count, 4))
-        inflow[:, :, OUTLET] = net - from_outlet * seeps
-        inflow[:, :, SUCTION] = -(net + leakage)
-        inflow[:, :, CASE] = leakage - (1.0 - from_outlet) * seeps
-        inflow[:, :, SIGNAL] = seeps
-        inflow *= turning[:, :, None]
+        inflow = fixed.seeps_into * seeps[:, :, None]
+        inflow[:, :, OUTLET] += net
+        inflow[:, :, SUCTION] -= net + leakage
+        inflow[:, :, CASE] += leakage
+        inflow *= asks.turning[:, :, None]
         by_pressures = by_settings = NO_SLOPES
         if slopes:
-            by_pressures = np.zeros((batch, count, 4, 4))
-            by_pressures[:, :, OUTLET] = by_pressure
-            by_pressures[:, :, SUCTION] = -by_pressure
-            for node, sign in ((OUTLET, 1.0), (CASE, -1.0)):
-                by_pressures[:, :, CASE, node] += sign * self.leakage_per_bar
-                by_pressures[:, :, SUCTION, node] -= sign * self.leakage_per_bar
-            for terminal, share in ((OUTLET, from_outlet), (CASE, 1.0 - from_outlet)):
-                by_pressures[:, :, terminal, terminal] -= share * seep_slope
-                by_pressures[:, :, terminal, SIGNAL] += share * seep_slope
-                by_pressures[:, :, SIGNAL, terminal] += share * seep_slope
-            by_pressures[:, :, SIGNAL, SIGNAL] -= seep_slope
-            by_pressures *= turning[:, :, None, None]
-            by_settings = np.zeros((batch, count, 4, 2))
-            by_settings[:, :, OUTLET] = by_setting * turning[:, :, None]
+            by_pressures = fixed.by_seep * seep_slope[:, :, None, None]
+            by_pressures += fixed.by_leakage
+            by_pressures[:, :, OUTLET] += by_pressure
+            by_pressures[:, :, SUCTION] -= by_pressure
+            by_pressures *= asks.turning[:, :, None, None]
+            by_settings = np.zeros((*net.shape, 4, 2))
+            by_settings[:, :, OUTLET] = by_setting * asks.turning[:, :, None]
             by_settings[:, :, SUCTION] = -by_settings[:, :, OUTLET]
         return Stamp(
             terminals=self.terminals,
-            through_lpm=net * turning,
+            through_lpm=net * asks.turning,
             inflow_lpm=inflow,
             slopes=by_pressures,
             adjusters=self.adjusters,
@@ -155,50 +183,104 @@ class Pumps:
         return np.where(self.turning(state), (net_flow_lpm + leakage) / self.displaced_lpm, 0.0)
 
     def _net_flow(
-        self, pressures_bar: Floats, state: StateArrays, *, widening: float
+        self,
+        at_bar: Floats,
+        over_case: Floats,
+        leakage: Floats,
+        asks: _Asks,
+        widening: float,
+        slopes: bool,
     ) -> tuple[Floats, Floats, Floats]:
         """Net flow, [B, E, 4] slopes by the terminals' pressures and [B, E, 2] by the two settings."""
-        over_case = pressures_bar[:, self.outlet] - pressures_bar[:, self.case]
-        over_signal = pressures_bar[:, self.outlet] - pressures_bar[:, self.signal]
-        leakage = self.leakage_per_bar * over_case
+        fixed = self._fixed
         bend = min(STROKE_BEND * widening, 1.0) * self.stopped_lpm
-        longest, by_torque = self._longest_stroke(over_case, bend)
+        longest, by_torque = (
+            self._longest_stroke(over_case, bend) if fixed.torque else (self.stopped_lpm, 0.0)
+        )
         full = longest - leakage
+        if not fixed.variable:
+            return full, fixed.by_fixed_pump + np.zeros((*full.shape, 4)), np.zeros((*full.shape, 2))
 
-        compensator_bar = state.setting(self.compensator)
-        full_at_limit = self.displaced_lpm - self.leakage_per_bar * (
-            compensator_bar - self.compensator_width_bar
-        )
-        opening = (compensator_bar - over_case) / self.compensator_width_bar
-        by_case_rise = -full_at_limit / self.compensator_width_bar
-        by_compensator = -by_case_rise - self.leakage_per_bar * opening
+        opening = (asks.compensator_bar - over_case) / self.compensator_width_bar
+        asked = asks.full_at_limit * opening
         # One more control joins at a time; `keeps` is the share by which the earlier ones still decide.
-        has = self.load_sensing >= 0
-        signal_opening = (state.setting(self.load_sensing) - over_signal) / self.load_sensing_width_bar
-        asked, keeps, takes = smaller(
-            a=full_at_limit * opening, b=self.full_flow_lpm * signal_opening, width=bend
-        )
-        asked = np.where(has, asked, full_at_limit * opening)
-        keeps, takes = np.where(has, keeps, 1.0), np.where(has, takes, 0.0)
-        signal_gain = self.full_flow_lpm / self.load_sensing_width_bar
+        keeps: Floats | float = 1.0
+        takes: Floats | float = 0.0
+        if fixed.senses:
+            over_signal = at_bar[:, :, OUTLET] - at_bar[:, :, SIGNAL]
+            signal_opening = (asks.load_sensing_bar - over_signal) / self.load_sensing_width_bar
+            both, keeps, takes = smaller(a=asked, b=self.full_flow_lpm * signal_opening, width=bend)
+            asked = np.where(fixed.has_signal, both, asked)
         limited, by_full, by_asked = smaller(a=full, b=asked, width=bend)
         # The larger of two is the smaller of their negatives.
         closed_bend = np.minimum(self.closed_bend_lpm * widening, self.stopped_lpm)
         negative, by_limited, by_closed = smaller(a=-limited, b=leakage, width=closed_bend)
+        net = np.where(fixed.controlled, -negative, full)
+        if not slopes:
+            return net, NO_SLOPES, NO_SLOPES
 
-        controlled = self.compensator >= 0
-        through = np.where(controlled, by_limited * by_asked, 0.0)
-        leaks = np.where(controlled, -by_limited * by_full - by_closed, -1.0) * self.leakage_per_bar
-        leaks = leaks + np.where(controlled, by_limited * by_full, 1.0) * by_torque
+        if fixed.senses:
+            keeps, takes = np.where(fixed.has_signal, keeps, 1.0), np.where(fixed.has_signal, takes, 0.0)
+        by_case_rise = -asks.full_at_limit / self.compensator_width_bar
+        by_compensator = -by_case_rise - self.leakage_per_bar * opening
+        through = np.where(fixed.controlled, by_limited * by_asked, 0.0)
+        leaks = np.where(fixed.controlled, -by_limited * by_full - by_closed, -1.0) * self.leakage_per_bar
+        if fixed.torque:
+            leaks = leaks + np.where(fixed.controlled, by_limited * by_full, 1.0) * by_torque
         by_over_case = leaks + through * keeps * by_case_rise
-        by_over_signal = -through * takes * signal_gain
+        by_over_signal = -through * takes * fixed.signal_gain
         by_pressure = np.zeros((*through.shape, 4))
         by_pressure[:, :, OUTLET] = by_over_case + by_over_signal
         by_pressure[:, :, CASE], by_pressure[:, :, SIGNAL] = -by_over_case, -by_over_signal
         by_setting = np.empty((*through.shape, 2))
         by_setting[:, :, 0] = through * keeps * by_compensator
-        by_setting[:, :, 1] = through * takes * signal_gain
-        return np.where(controlled, -negative, full), by_pressure, by_setting
+        by_setting[:, :, 1] = through * takes * fixed.signal_gain
+        return net, by_pressure, by_setting
+
+    def _asks(self, state: StateArrays) -> _Asks:
+        compensator_bar = state.setting(self.compensator)
+        at_limit_bar = compensator_bar - self.compensator_width_bar
+        return _Asks(
+            turning=self.turning(state).astype(np.float64),
+            compensator_bar=compensator_bar,
+            full_at_limit=self.displaced_lpm - self.leakage_per_bar * at_limit_bar,
+            load_sensing_bar=state.setting(self.load_sensing),
+        )
+
+    @cached_property
+    def _fixed(self) -> _Fixed:
+        count = len(self.ids)
+        from_outlet = self.bled_from_outlet.astype(np.float64)
+        seeps_into, by_seep = np.zeros((count, 4)), np.zeros((count, 4, 4))
+        seeps_into[:, OUTLET], seeps_into[:, CASE], seeps_into[:, SIGNAL] = (
+            -from_outlet,
+            from_outlet - 1.0,
+            1.0,
+        )
+        for terminal, share in ((OUTLET, from_outlet), (CASE, 1.0 - from_outlet)):
+            by_seep[:, terminal, terminal] -= share
+            by_seep[:, terminal, SIGNAL] += share
+            by_seep[:, SIGNAL, terminal] += share
+        by_seep[:, SIGNAL, SIGNAL] -= 1.0
+        by_leakage, by_fixed_pump = np.zeros((count, 4, 4)), np.zeros((count, 4))
+        for node, sign in ((OUTLET, 1.0), (CASE, -1.0)):
+            by_leakage[:, CASE, node] += sign * self.leakage_per_bar
+            by_leakage[:, SUCTION, node] -= sign * self.leakage_per_bar
+            by_fixed_pump[:, node] = -sign * self.leakage_per_bar
+        controlled, has_signal = self.compensator >= 0, self.load_sensing >= 0
+        return _Fixed(
+            bled_from=np.where(self.bled_from_outlet, self.outlet, self.case),
+            seeps_into=seeps_into,
+            by_seep=by_seep,
+            by_leakage=by_leakage,
+            by_fixed_pump=by_fixed_pump,
+            controlled=controlled,
+            has_signal=has_signal,
+            signal_gain=self.full_flow_lpm / self.load_sensing_width_bar,
+            variable=bool(np.any(controlled)),
+            senses=bool(np.any(has_signal)),
+            torque=bool(np.any(np.isfinite(self.torque_power_bar_lpm))),
+        )
 
     def _longest_stroke(self, over_case: Floats, bend: Floats) -> tuple[Floats, Floats]:
         """Theoretical flow at the longest stroke that stop and torque limit allow, and its slope by pressure.

@@ -3,15 +3,30 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from sheets.circuit.smooth import Floats, Ints, ramp
-from sheets.circuit.stamp import Stamp, StateArrays, two_ended
+from sheets.circuit.stamp import Stamp, StateArrays, two_ended, two_terminals
 
 WIDEST_BEND_BAR = 0.2
 LEAST_BAND_BAR = 0.2
 """Least rise from opening to reference flow: a screw that is all out leaves the valve its own flow forces."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class _Bands:
+    """What the settings alone decide: [B, reliefs] each, slopes by the setting."""
+
+    opening_bar: Floats
+    bend_bar: Floats
+    bend_slope: Floats
+    straight_bar: Floats
+    """Rise that the straight line would take from nothing to the reference flow."""
+    straight_slope: Floats
+    gain: Floats
+    """L/min/bar"""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -50,31 +65,47 @@ class Reliefs:
     reference_flow_lpm: Floats
     adjuster: Ints
 
+    @cached_property
+    def terminals(self) -> Ints:
+        """[E, 2] nodes of the ends."""
+        return two_terminals(self.first, self.second)
+
     def stamp(
         self, pressures_bar: Floats, state: StateArrays, *, widening: float, slopes: bool = True
     ) -> Stamp:
         """Flows of a batch and what they do to the nodes."""
-        setting_bar = state.setting(self.adjuster)
+        bands = state.once(self, "bands", lambda: self._bands(state))
         drop_bar = pressures_bar[:, self.first] - pressures_bar[:, self.second]
+        # In the continuation the bend grows and the gain stays, so a wide one never passes more than it will.
+        lift_bar, share = ramp(x=drop_bar - bands.opening_bar, width=bands.bend_bar * widening)
+        by_setting = None
+        if slopes:
+            by_bend = -0.5 * share * share * widening
+            by_setting = (
+                bands.gain * (by_bend * bands.bend_slope - share * self.opening_ratio)
+                - bands.gain * lift_bar * bands.straight_slope / bands.straight_bar
+            )
+        return two_ended(
+            terminals=self.terminals,
+            flow_lpm=bands.gain * lift_bar,
+            slope=bands.gain * share,
+            slopes=slopes,
+            adjusters=self.adjuster,
+            by_setting=by_setting,
+        )
+
+    def _bands(self, state: StateArrays) -> _Bands:
+        setting_bar = state.setting(self.adjuster)
         band_bar = np.maximum(self.band_ratio * setting_bar, LEAST_BAND_BAR)
         band_slope = np.where(band_bar > LEAST_BAND_BAR, self.band_ratio, 0.0)
         bend_bar = np.minimum(WIDEST_BEND_BAR, band_bar / 10.0)
         bend_slope = np.where(bend_bar < WIDEST_BEND_BAR, band_slope / 10.0, 0.0)
-        gain = self.reference_flow_lpm / (band_bar - 0.5 * bend_bar)
-        # In the continuation the bend grows and the gain stays, so a wide one never passes more than it will.
-        wide_bar = bend_bar * widening
-        beyond_bar = drop_bar - self.opening_ratio * setting_bar
-        lift_bar, share = ramp(x=beyond_bar, width=wide_bar)
-        by_bend = -0.5 * share * share * widening
-        by_setting = gain * (by_bend * bend_slope - share * self.opening_ratio) - gain * lift_bar * (
-            band_slope - 0.5 * bend_slope
-        ) / (band_bar - 0.5 * bend_bar)
-        return two_ended(
-            first=self.first,
-            second=self.second,
-            flow_lpm=gain * lift_bar,
-            slope=gain * share,
-            slopes=slopes,
-            adjusters=self.adjuster,
-            by_setting=by_setting,
+        straight_bar = band_bar - 0.5 * bend_bar
+        return _Bands(
+            opening_bar=self.opening_ratio * setting_bar,
+            bend_bar=bend_bar,
+            bend_slope=bend_slope,
+            straight_bar=straight_bar,
+            straight_slope=band_slope - 0.5 * bend_slope,
+            gain=self.reference_flow_lpm / straight_bar,
         )

@@ -35,7 +35,7 @@ def ramp(*, x: Floats, width: Floats | float) -> tuple[Floats, Floats]:
     Valid for any finite argument.
     Source: own derivation; the once continuously differentiable curve of least degree with these two ends.
     """
-    inside = np.clip(x, 0.0, width)
+    inside = np.minimum(np.maximum(x, 0.0), width)
     return inside * inside / (2.0 * width) + np.maximum(x - width, 0.0), inside / width
 
 

@@ -56,8 +56,8 @@ def solve(
     start_bar = start_bar.copy()
     start_bar[:, TANK] = 0.0
     found = find(circuit, arrays, start_bar)
-    established = _polished(circuit, arrays, found)
-    at = balance(circuit, arrays, found.pressures_bar)
+    established, settled = _polished(circuit, arrays, found)
+    at = settled or balance(circuit, arrays, found.pressures_bar)
     speeds = circuit.actuators.speeds(at.actuators)
     larger = np.maximum(circuit.actuators.swept_a, circuit.actuators.swept_b)
     pump_flows = at.pumps.through_lpm
@@ -115,27 +115,34 @@ def as_arrays(circuit: Circuit, states: Sequence[PlantState]) -> StateArrays:
     )
 
 
-def _polished(circuit: Circuit, state: StateArrays, found: Found) -> Bools:
+def _polished(circuit: Circuit, state: StateArrays, found: Found) -> tuple[Bools, Balance | None]:
     """[B] whether a state is established, after undamped steps where a group does not yet hold its volume.
+
+    The balance comes with it where no state needed such a step.
 
     Inside a group the flows round coarser than what the group stores, so its nodes may pass one by one
     while their sum does not.
     """
     established = np.zeros(len(found.accepted), dtype=np.bool_)
     left = np.flatnonzero(found.accepted)
+    moved = False
     for _ in range(POLISHING_STEPS):
         if not left.size:
             break
         part, here = state.take(left), found.pressures_bar[left]
-        at = balance(circuit, part, here)
+        whole = len(left) == len(established)
+        at = (found.last if whole and not moved else None) or balance(circuit, part, here)
         slopes = jacobian(circuit, at)
         step_bar = newton_step(slopes, at)
         settled = acceptable(circuit, at, slopes, here, step_bar) & volume_kept(circuit, part, at, here)
         established[left[settled]] = True
+        if whole and np.all(settled):
+            return established, at
+        moved = True
         here[:, 1:] += np.clip(step_bar, -STEP_BAR, STEP_BAR)
         left = left[~settled]
         found.pressures_bar[left] = here[~settled]
-    return established
+    return established, None
 
 
 def _shown(values: Floats, established: Bools) -> Floats:

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from sheets.circuit.smooth import Bools, Floats, Ints, orifice_flow, ramp
-from sheets.circuit.stamp import Stamp, StateArrays, two_ended
+from sheets.circuit.stamp import Stamp, StateArrays, two_ended, two_terminals
 
 CHECK_BEND_BAR = 0.05
 """A check goes from closed to open over this pressure."""
@@ -46,6 +47,11 @@ class Ways:
     valve: Ints
     opens: Bools
 
+    @cached_property
+    def terminals(self) -> Ints:
+        """[E, 2] nodes of the ends."""
+        return two_terminals(self.first, self.second)
+
     def is_open(self, state: StateArrays) -> Bools:
         """[B, E] whether each way is open."""
         always = np.ones((len(state.positions), len(self.ids)), dtype=np.bool_)
@@ -57,9 +63,9 @@ class Ways:
     def stamp(self, pressures_bar: Floats, state: StateArrays, *, slopes: bool = True) -> Stamp:
         """Flows of a batch and what they do to the nodes."""
         drop_bar = pressures_bar[:, self.first] - pressures_bar[:, self.second]
-        conducts = np.where(self.is_open(state), self.conductance, 0.0)
+        conducts = state.once(self, "conducts", lambda: np.where(self.is_open(state), self.conductance, 0.0))
         flow, slope = orifice_flow(drop_bar=drop_bar, conductance=conducts)
-        return two_ended(first=self.first, second=self.second, flow_lpm=flow, slope=slope, slopes=slopes)
+        return two_ended(terminals=self.terminals, flow_lpm=flow, slope=slope, slopes=slopes)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -90,11 +96,14 @@ class Checks:
     conductance: Floats
     opening_bar: Floats
 
+    @cached_property
+    def terminals(self) -> Ints:
+        """[E, 2] nodes of the ends."""
+        return two_terminals(self.first, self.second)
+
     def stamp(self, pressures_bar: Floats, *, widening: float, slopes: bool = True) -> Stamp:
         """Flows of a batch and what they do to the nodes."""
         drop_bar = pressures_bar[:, self.first] - pressures_bar[:, self.second]
         beyond, share = ramp(x=drop_bar - self.opening_bar, width=CHECK_BEND_BAR * widening)
         flow, slope = orifice_flow(drop_bar=beyond, conductance=self.conductance)
-        return two_ended(
-            first=self.first, second=self.second, flow_lpm=flow, slope=slope * share, slopes=slopes
-        )
+        return two_ended(terminals=self.terminals, flow_lpm=flow, slope=slope * share, slopes=slopes)

@@ -126,6 +126,11 @@ class WalkdownState:
         return any(one.by for one in self.entries)
 
     @property
+    def touched(self) -> bool:
+        """Whether anything was compared or accepted at all."""
+        return self.begun or any(one.by for one in self.acceptances)
+
+    @property
     def complete(self) -> bool:
         """Whether every entry was compared as it now stands, and agrees."""
         return all(one.state is EntryState.AGREES for one in self.entries)

@@ -7,6 +7,7 @@ from collections.abc import Iterable, Mapping
 from sheets.amounts import Amount, Derivation, Finding
 from sheets.circuit.plant import Adjust
 from sheets.circuit.verdict import Verdict
+from sheets.errors import Problem
 from sheets.machine.model import Machine
 from sheets.procedure.answers import NotFound, NotInUse, TestState
 from sheets.procedure.changes import Change
@@ -39,8 +40,11 @@ def machine_json(machine: Machine) -> dict[str, Json]:
     }
 
 
-def targets_json(speaker: Speaker, targets: Targets) -> dict[str, Json]:
-    """Settings with windows, derivations and findings."""
+def targets_json(speaker: Speaker, targets: Targets, proposals: Mapping[str, str]) -> dict[str, Json]:
+    """Settings with windows, derivations and findings.
+
+    ``proposals``: for each computed setting, whether somebody accepted it.
+    """
     return {
         "format": FORMAT,
         "tag": speaker.machine.tag,
@@ -52,6 +56,7 @@ def targets_json(speaker: Speaker, targets: Targets) -> dict[str, Json]:
                 "high_bar": rounded(setting.high_bar),
                 "origin": setting.origin.value,
                 "given_by": setting.given_by,
+                "acceptance": proposals.get(id_),
                 "window_origin": setting.window_origin.value,
                 "derivations": [_derivation(one) for one in setting.derivations],
             }
@@ -103,8 +108,9 @@ def steps_json(
     spoken: Mapping[int, tuple[SpokenStep, ...]],
     verdict: Verdict,
     findings: Iterable[Finding],
+    obstacles: Iterable[Problem],
 ) -> dict[str, Json]:
-    """The procedure: answers of the search, the order, and every step with its readings."""
+    """The procedure: answers of the search, order, steps with readings, and what stands against issuing."""
     return {
         "format": FORMAT,
         "tag": speaker.machine.tag,
@@ -127,6 +133,7 @@ def steps_json(
             for place, stage in enumerate(procedure.stages)
         ],
         "findings": findings_json(speaker, findings),
+        "before_issue": [{"what": one.what, "fix": one.fix} for one in obstacles],
     }
 
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator, Mapping
 
 from sheets.amounts import Finding, Severity
+from sheets.errors import Problem
 from sheets.machine.model import Machine
 from sheets.procedure.steps import Procedure
 from sheets.targets.settings import Targets
@@ -35,12 +36,23 @@ def finding_lines(speaker: Speaker, findings: Iterable[Finding]) -> Iterator[str
         yield f"    {fix}"
 
 
-def target_lines(speaker: Speaker, targets: Targets) -> Iterator[str]:
-    """Settings in columns, then how each figure came about, then findings."""
+def note_lines(problems: Iterable[Problem]) -> Iterator[str]:
+    """What stands against issuing, as notes."""
+    for problem in problems:
+        yield f"before issue: {problem.what}"
+        yield f"    {problem.fix}"
+
+
+def target_lines(speaker: Speaker, targets: Targets, proposals: Mapping[str, str]) -> Iterator[str]:
+    """Settings in columns, then how each figure came about, then findings.
+
+    ``proposals``: for each computed setting, whether somebody accepted it.
+    """
     figures = speaker.figures
     rows = [("adjuster", "setting", "accepted settings", "origin")]
     for id_, setting in targets.settings.items():
         origin = f"{setting.origin.value}, {setting.given_by}" if setting.given_by else setting.origin.value
+        origin = f"{origin}, {proposals[id_]}" if id_ in proposals else origin
         window = f"{figures.pressure(setting.low_bar)} to {figures.pressure(setting.high_bar)}"
         rows.append((speaker.adjuster(id_), figures.pressure(setting.target_bar), window, origin))
     yield from columns(rows)
@@ -70,8 +82,9 @@ def step_lines(
     procedure: Procedure,
     spoken: Mapping[int, tuple[SpokenStep, ...]],
     findings: Iterable[Finding],
+    obstacles: Iterable[Problem],
 ) -> Iterator[str]:
-    """The whole job with warnings before their steps, then findings."""
+    """The whole job with warnings before their steps, then findings, then what stands against issuing."""
     yield from say_not_in_use(speaker, procedure)
     number = 0
     for place, stage in enumerate(procedure.stages):
@@ -91,3 +104,7 @@ def step_lines(
     if kept:
         yield ""
         yield from finding_lines(speaker, kept)
+    notes = list(note_lines(obstacles))
+    if notes:
+        yield ""
+        yield from notes

@@ -22,10 +22,12 @@ from sheets.circuit.plant import PlantState
 from sheets.circuit.solver import solve
 
 STATES = 4000
+ALONE = 100
+"""States that are solved one by one, too."""
 
 
 def main() -> None:
-    """Solve 4000 mixed states of a circuit of some 25 nodes, cold and after a small change, and compare."""
+    """Solve mixed states of a circuit of some 25 nodes, cold and after a small change, and compare."""
     circuit = build_circuit(many_sections(4))
     rng = np.random.default_rng(1)
     travels = ("between", "near stop", "far stop")
@@ -49,26 +51,35 @@ def main() -> None:
     newton.solve_each = counted
     print(f"{len(circuit.nodes)} nodes, {len(circuit.ways.ids)} ways, {STATES} states")
     solve(circuit, states[:100])
-    start = None
-    for name, batch in (("cold", states), ("after 2 %", [_nudged(state) for state in states])):
-        sizes.clear()
-        begun = time.perf_counter()
-        solved = solve(circuit, batch, start=start)
-        took = time.perf_counter() - begun
-        start = solved.pressures_bar
-        unknowns = len(circuit.nodes) - 1
-        matrices = rng.normal(size=(STATES, unknowns, unknowns)) + 30.0 * np.eye(unknowns)
-        right = rng.normal(size=(STATES, unknowns, 1))
-        begun = time.perf_counter()
-        for size in sizes:
-            np.linalg.solve(matrices[:size], right[:size])
-        bare = time.perf_counter() - begun
-        print(
-            f"{name}: {1000.0 * took / STATES:.3f} ms a state, "
-            f"{sum(sizes) / STATES:.1f} linear solves a state, "
-            f"{100.0 * np.mean(solved.established):.2f} % established, "
-            f"{took / bare:.1f} times the bare linear algebra"
-        )
+    unknowns = len(circuit.nodes) - 1
+    matrices = rng.normal(size=(STATES, unknowns, unknowns)) + 30.0 * np.eye(unknowns)
+    right = rng.normal(size=(STATES, unknowns, 1))
+    for together in (STATES, 1):
+        some = states if together > 1 else states[:ALONE]
+        start = None
+        for name, batch in (("cold", some), ("after 2 %", [_nudged(state) for state in some])):
+            sizes.clear()
+            begun = time.process_time()
+            solved = [
+                solve(
+                    circuit,
+                    batch[first : first + together],
+                    start=None if start is None else start[first : first + together],
+                )
+                for first in range(0, len(batch), together)
+            ]
+            took = time.process_time() - begun
+            start = np.concatenate([each.pressures_bar for each in solved])
+            begun = time.process_time()
+            for size in sizes:
+                np.linalg.solve(matrices[:size], right[:size])
+            bare = time.process_time() - begun
+            print(
+                f"{together} together, {name}: {1000.0 * took / len(batch):.3f} ms a state, "
+                f"{sum(sizes) / len(batch):.1f} linear solves a state, "
+                f"{100.0 * np.mean([each.established for each in solved]):.2f} % established, "
+                f"{took / bare:.1f} times the bare linear algebra"
+            )
 
 
 def _nudged(state: PlantState) -> PlantState:

@@ -280,6 +280,10 @@ def test_every_kind_of_fault_is_found_and_a_state_of_the_sound_circuit_is_one_of
     assert {fault.kind for fault in faults} == set(FaultKind)
     state = running(circuit).moved("DV0", "out")
     together = solve_faults(circuit, state, faults, effects=True)
+    sound = solve_one(circuit, state)
+    near = solve_faults(circuit, state, faults, start_bar=sound.pressures_bar)
+    for one, other in zip(together, near, strict=True):
+        assert other.pressures_bar == pytest.approx(one.pressures_bar, abs=1e-5)
     for fault, solution in zip(faults, together, strict=True):
         changed, faulty = under_fault(circuit, state, fault)
         assert changed.nodes is circuit.nodes

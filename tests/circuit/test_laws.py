@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 from circuit_bench import bench, edge, fixed_pump, hydraulic_motor, many_sections, relief
@@ -147,7 +149,7 @@ def test_setting_slopes_are_slopes_by_the_settings():
         for sign in (1.0, -1.0):
             settings = arrays.settings_bar.copy()
             settings[:, index] += sign * step
-            moved = StateArrays(**{**vars(arrays), "settings_bar": settings})
+            moved = replace(arrays, settings_bar=settings)
             residuals.append(balance(circuit, moved, pressures).residual_lpm)
         by_difference = -(residuals[0] - residuals[1]) / (2.0 * step)
         assert by_difference == pytest.approx(slopes[:, :, index], rel=1e-3, abs=1e-3)

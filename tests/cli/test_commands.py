@@ -111,6 +111,7 @@ def test_names_in_the_data_of_targets(run: Callable[..., object], sample: Path) 
                 "high_bar",
                 "origin",
                 "given_by",
+                "acceptance",
                 "window_origin",
                 "derivations",
             },
@@ -130,7 +131,7 @@ def test_names_in_the_data_of_steps(run: Callable[..., object], sample: Path) ->
     assert (done.status, done.err) == (0, "")
     data = json.loads(done.out)
     names = {"format", "tag", "verdict", "states_tried", "adjusters", "order", "edges", "ties", "stages"}
-    assert set(data) == names | {"findings"}
+    assert set(data) == names | {"findings", "before_issue"}
     answers = {answer["adjuster"]: answer for answer in data["adjusters"]}
     for answer in answers.values():
         assert_names(answer, FOUND if answer["answer"] == "found" else NOT_IN_USE)
@@ -222,7 +223,9 @@ def test_choices_are_those_of_the_pages() -> None:
 
 
 def test_readme_lists_every_command_and_no_other(root: Path) -> None:
-    listed = re.findall(r"^ {4}jamnut (\w+) MACHINE {2,}\S", section(readme(root), "Commands"), re.MULTILINE)
+    listed = re.findall(
+        r"^ {4}jamnut (\w+) [A-Z]+(?: [A-Z]+)? {2,}\S", section(readme(root), "Commands"), re.MULTILINE
+    )
     assert sorted(listed) == VERBS
 
 
@@ -248,8 +251,9 @@ def test_readme_commands_can_be_read(root: Path) -> None:
     for line in commands_in(root):
         _, verb, *rest = shlex.split(re.split(r" {2,}", line)[0])
         context = COMMANDS[verb].make_context(verb, rest or ["MACHINE"], resilient_parsing=False)
-        machine = context.params["machine"]
-        assert machine == Path("MACHINE") or (root / machine).is_file()
+        machines = context.params.get("machines") or (context.params.get("machine"),)
+        for machine in machines if verb not in ("new", "diff") else ():
+            assert machine.name in ("MACHINE", "PU-03.yaml") or (root / machine).is_file()
         read += 1
     assert read > len(VERBS)
 
@@ -307,7 +311,9 @@ def test_a_bug_keeps_its_traceback_in_a_file(
     monkeypatch.setattr(pipeline, "write_pack" if verb == "pack" else verb, fail)
     monkeypatch.setattr("tempfile.tempdir", str(tmp_path))
 
-    done = run(verb, variant())
+    arguments = {"new": ("fixed-pump", tmp_path / "new.yaml"), "diff": (variant(), variant())}
+
+    done = run(verb, *arguments.get(verb, (variant(),)))
 
     assert done.status == 70
     assert done.out == ""

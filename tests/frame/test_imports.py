@@ -221,6 +221,8 @@ def test_neither_clock_nor_chance_nor_environment() -> None:
         if one.name.split(".")[0] in IMPURE and not (part(one.by) == GATE and one.name == "tempfile")
     ]
     for module in modules():
+        if part(module) == GATE:
+            continue  # the day comes from here, and is handed on
         wrong += [
             f"{module}, line {node.lineno}: {node.func.attr}()"
             for node in ast.walk(tree(module))

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 from sheets.amounts import Finding
+from sheets.machine.walking import EntryState
 from sheets.pages.compose.faces import test_point, window_text
 from sheets.pages.compose.matter import Matter
 from sheets.pages.document import (
@@ -18,7 +19,11 @@ from sheets.pages.document import (
     Steps,
     Table,
 )
+from sheets.targets.settings import Origin
 from sheets.wording.findings import say_finding, say_not_in_use
+
+_MOST_PEOPLE = 4
+"""So many names have room; the walk-down file holds all."""
 
 
 def cover(matter: Matter, job: Sequence[Section]) -> Section:
@@ -31,7 +36,7 @@ def cover(matter: Matter, job: Sequence[Section]) -> Section:
         KeyLines(rows=_needs(matter)),
         Heading(text=matter.text("basis_heading"), level=2),
         Paragraph(text=matter.text("basis_model", dated=machine.dated.isoformat(), engine=matter.engine)),
-        Paragraph(text=matter.text("basis_walk")),
+        Paragraph(text=_walked(matter)),
         Paragraph(text=matter.text("basis_scope", tag=machine.tag)),
         Paragraph(text=matter.text("basis_persons")),
     ]
@@ -68,7 +73,7 @@ def _settings(matter: Matter) -> Table:
         rows.append(
             (
                 str(number),
-                speaker.adjuster(id_),
+                _named(matter, id_),
                 f"{speaker.target_digits(id_)} {matter.figures.pressure_unit}",
                 window_text(matter, choice),
                 matter.figures.second(choice.target_bar),
@@ -80,6 +85,35 @@ def _settings(matter: Matter) -> Table:
         head=("", "adjuster", matter.text("target"), matter.text("accept"), "", "gauge"),
         rows=tuple(rows),
         shares=(0.05, 0.32, 0.14, 0.18, 0.13, 0.18),
+    )
+
+
+def _named(matter: Matter, id_: str) -> str:
+    """The adjuster, marked where its setting was computed and nobody has accepted it."""
+    name = matter.speaker.adjuster(id_)
+    computed = matter.targets.settings[id_].origin is Origin.COMPUTED
+    accepted = matter.walkdown is not None and id_ not in matter.walkdown.proposals
+    return matter.text("proposal_mark", adjuster=name) if computed and not accepted else name
+
+
+def _walked(matter: Matter) -> str:
+    """Who compared the file with the machine, and what of it doesn't hold."""
+    state = matter.walkdown
+    if state is None or not state.begun:
+        return matter.text("basis_walk")
+    people = sorted({(one.on, one.by) for one in state.entries if one.on and one.state is EntryState.AGREES})
+    counts = {
+        name: str(len(found) or "")
+        for name, found in (
+            ("changed", state.in_state(EntryState.CHANGED, EntryState.GONE)),
+            ("differ", state.in_state(EntryState.DIFFERS)),
+            ("missing", state.in_state(EntryState.NOT_COMPARED)),
+        )
+    }
+    people_text = "; ".join(f"{by} on {on.isoformat()}" for on, by in people[:_MOST_PEOPLE])
+    more = len(people) - _MOST_PEOPLE
+    return matter.text(
+        "basis_walk", people=people_text or "nobody", more=str(more) if more > 0 else "", **counts
     )
 
 

@@ -9,6 +9,7 @@ from sheets.circuit.model import Circuit
 from sheets.hazards.assess import Hazard
 from sheets.machine.model import Machine
 from sheets.machine.site import Site
+from sheets.machine.walking import WalkdownState
 from sheets.pages.document import Box, Step, Warning
 from sheets.procedure.steps import Procedure, Stage
 from sheets.targets.settings import Targets
@@ -31,6 +32,8 @@ class Matter:
     hazards: Mapping[tuple[int, int], tuple[Hazard, ...]]
     speaker: Speaker
     engine: str
+    walkdown: WalkdownState | None = None
+    """How far the machine file was compared with the machine, and which computed settings were accepted."""
 
     @property
     def figures(self) -> Figures:

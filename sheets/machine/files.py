@@ -1,0 +1,96 @@
+"""Which files belong to a machine, which of a folder are machine files, and how a file is written."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from pathlib import Path
+from typing import Final
+
+from sheets.errors import InputError, Problem
+
+SITE_FILE: Final = "site.yaml"
+WALKDOWN_ENDING: Final = ".walkdown.yaml"
+
+
+def walkdown_file(machine_file: Path) -> Path:
+    """Where the walk-down of a machine file stands."""
+    return machine_file.with_name(f"{machine_file.stem}{WALKDOWN_ENDING}")
+
+
+def machine_files(named: Sequence[Path]) -> tuple[Path, ...]:
+    """Machine files among files and folders, each once, those of a folder by name.
+
+    Raises InputError for a folder without any. A file that isn't there stays, for the reader to tell.
+    """
+    found: dict[Path, Path] = {}
+    for path in named:
+        for file in _inside(path) if path.is_dir() else (path,):
+            found.setdefault(file.resolve(), file)
+    return tuple(found.values())
+
+
+def _inside(folder: Path) -> list[Path]:
+    files = sorted(file for file in folder.glob("*.yaml") if _is_machine_file(file))
+    if not files:
+        raise InputError(
+            Problem(
+                where=str(folder),
+                what="There is no machine file in this folder.",
+                fix="Machine files end in .yaml; folders inside it aren't searched.",
+            )
+        )
+    return files
+
+
+def _is_machine_file(file: Path) -> bool:
+    return (
+        file.is_file()
+        and not file.name.startswith(".")
+        and file.name != SITE_FILE
+        and not file.name.endswith(WALKDOWN_ENDING)
+    )
+
+
+def write_pdf(target: Path, data: bytes) -> None:
+    """Writes a PDF aside and moves it into place, so that nothing half-written is left.
+
+    Raises InputError if the folder isn't there or can't be written to, and if another kind of file already
+    stands under that name.
+    """
+    if target.exists() and not _is_pdf(target):
+        raise InputError(
+            Problem(
+                where=str(target),
+                what="Something stands there that isn't a PDF file.",
+                fix="Name another file with -o; nothing was overwritten.",
+            )
+        )
+    move_into_place(
+        target, data, fix="Name a file with -o, in a folder that exists and that you may write to."
+    )
+
+
+def move_into_place(target: Path, data: bytes, *, fix: str) -> None:
+    """Writes a file aside and moves it into place. Raises InputError with ``fix`` where it can't."""
+    aside = target.parent / f".{target.name}.part"
+    try:
+        aside.write_bytes(data)
+        aside.replace(target)
+    except OSError as error:
+        raise InputError(
+            Problem(
+                where=str(target),
+                what=f"The file can't be written: {error.strerror}.",
+                fix=fix,
+            )
+        ) from None
+    finally:
+        if aside.exists():
+            aside.unlink()
+
+
+def _is_pdf(file: Path) -> bool:
+    if not file.is_file():
+        return False
+    with file.open("rb") as opened:
+        return opened.read(5) in (b"%PDF-", b"")
