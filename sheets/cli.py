@@ -34,6 +34,14 @@ SITE = click.option(
 AS_JSON = click.option(
     "--json", "as_json", is_flag=True, help="Print data with stable names instead of text."
 )
+TASK = click.option(
+    "--task",
+    type=click.Choice(["read", "set", "commission", "replace"]),
+    default="set",
+    show_default=True,
+    help="Read only; read and set; set after commissioning; set one part after its replacement.",
+)
+PART = click.option("--part", metavar="ID", help="The part that was replaced, for --task replace.")
 KINDS = ("cover", "instruction", "lockout", "record", "tags", "engineer")
 
 
@@ -89,7 +97,19 @@ def targets(machines: tuple[Path, ...], site: Path | None, as_json: bool) -> Non
 @MACHINES
 @SITE
 @AS_JSON
-def steps(machines: tuple[Path, ...], site: Path | None, as_json: bool) -> None:
+@TASK
+@PART
+@click.option("--why", metavar="ADJUSTER", help="Explain one adjuster: its state, and the nearest others.")
+@click.option("--skew", is_flag=True, help="Name plate values that change order or states if a tenth out.")
+def steps(
+    machines: tuple[Path, ...],
+    site: Path | None,
+    as_json: bool,
+    task: str,
+    part: str | None,
+    why: str | None,
+    skew: bool,
+) -> None:
     """Find the states, derive the order and print every step.
 
     Example: jamnut steps sample_machines/clay_mixer.yaml
@@ -100,10 +120,18 @@ def steps(machines: tuple[Path, ...], site: Path | None, as_json: bool) -> None:
         _leave(_each(machines, lambda file: pipeline.outcome("steps", file, site, _today())[0], as_json))
         return
     described = pipeline.check(machines[0], site, _today())
+    wanted = pipeline.task_of(described, task, part)
     _tell("finding the state in which each adjuster can be set")
-    matter = pipeline.steps(described)
+    if skew:
+        _print(pipeline.skew_text(described))
+        return
+    matter = pipeline.steps(described, wanted)
+    if why is not None:
+        _print(pipeline.why_text(matter, why))
+        _leave(pipeline.status_of(matter.targets, matter.procedure, matter.replay))
+        return
     _print(pipeline.steps_json(matter) if as_json else pipeline.steps_text(matter))
-    _leave(pipeline.status_of(matter.targets, matter.procedure))
+    _leave(pipeline.status_of(matter.targets, matter.procedure, matter.replay))
 
 
 @main.command()
@@ -123,9 +151,13 @@ def steps(machines: tuple[Path, ...], site: Path | None, as_json: bool) -> None:
     multiple=True,
     help="Print this document of the pack only; may be named several times.",
 )
+@TASK
+@PART
 def pack(
     machines: tuple[Path, ...],
     site: Path | None,
+    task: str,
+    part: str | None,
     output: Path | None,
     paper: Literal["A4", "Letter"],
     only: tuple[str, ...],
@@ -149,8 +181,9 @@ def pack(
         )
         return
     described = pipeline.check(machines[0], site, _today())
+    wanted = pipeline.task_of(described, task, part)
     _tell("finding the state in which each adjuster can be set")
-    matter = pipeline.steps(described)
+    matter = pipeline.steps(described, wanted)
     _tell("placing and drawing the pages")
     target = output or Path(pipeline.draft_name(described.machine))
     written = pipeline.write_pack(matter, target, paper=paper, only=only)

@@ -49,8 +49,9 @@ from sheets.pages.layout import place
 from sheets.pages.press import pdf_bytes, print_pack
 from sheets.procedure.case import Case
 from sheets.procedure.plan import make_procedure
+from sheets.procedure.skew import skew_findings
 from sheets.procedure.steps import Procedure
-from sheets.procedure.task import Task
+from sheets.procedure.task import Task, named_task
 from sheets.seal.canonical import canonical_bytes, digest
 from sheets.targets.accepting import accept, computed_settings
 from sheets.targets.compute import compute_targets
@@ -75,8 +76,9 @@ from sheets.wording.summary import broken as broken
 from sheets.wording.summary import failed, known, worst_finding
 from sheets.wording.summary import summary_json as summary_json
 from sheets.wording.summary import summary_lines as summary_lines
-from sheets.wording.terminal import columns, machine_lines, note_lines, step_lines, target_lines
+from sheets.wording.terminal import columns, machine_lines, note_lines, skew_lines, step_lines, target_lines
 from sheets.wording.walk_list import entry_lines, proposal_words, standing, walk_json, walk_lines
+from sheets.wording.why import why_lines
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -154,6 +156,21 @@ def steps(described: Described, task: Task = Task()) -> Matter:  # noqa: B008 --
         engine=str(ENGINE),
         walkdown=_walked(described, found),
     )
+
+
+def task_of(described: Described, kind: str, part: str | None) -> Task:
+    """The task as a command names it. Raises InputError for a part that isn't there or isn't wanted."""
+    return named_task(kind, part, described.machine.parts)
+
+
+def why_text(matter: Matter, adjuster: str) -> Iterator[str]:
+    """Nearest states of one adjuster, and what fails in them. Raises InputError for an unknown one."""
+    return why_lines(matter.speaker, matter.procedure, adjuster)
+
+
+def skew_text(described: Described) -> Iterator[str]:
+    """Plate values on which order or states hang; takes seconds, since each skew is a search."""
+    return skew_lines(_speaker(described), skew_findings(described.machine, described.policies))
 
 
 def walkdown(described: Described) -> WalkdownState:

@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+from collections.abc import Collection
 from dataclasses import dataclass
 from enum import Enum
+
+from sheets.errors import InputError, Problem, quoted
 
 
 class TaskKind(Enum):
@@ -21,3 +24,25 @@ class Task:
 
     kind: TaskKind = TaskKind.SET
     part: str = ""
+
+
+def named_task(kind: str, part: str | None, parts: Collection[str]) -> Task:
+    """The task that a command names. Raises InputError for a part that isn't there or isn't wanted."""
+    wanted = TaskKind(kind)
+    if (wanted is TaskKind.REPLACE) != (part is not None):
+        raise InputError(
+            Problem(
+                where="--part",
+                what="A part belongs to the task replace, and to no other.",
+                fix="Write --task replace --part RV1, with the id of the part that was replaced.",
+            )
+        )
+    if part is not None and part not in parts:
+        raise InputError(
+            Problem(
+                where="--part",
+                what=f"There is no part {quoted(part)}.",
+                fix=f"Name one of: {', '.join(parts)}.",
+            )
+        )
+    return Task(kind=wanted, part=part or "")

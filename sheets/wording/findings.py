@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from sheets.amounts import Amount, Finding
 from sheets.procedure.answers import NotInUse
+from sheets.procedure.conditions import Failure
 from sheets.procedure.steps import Procedure
 from sheets.wording.sentences import Sentences
 from sheets.wording.steps import Speaker, capital
@@ -12,31 +15,46 @@ from sheets.wording.steps import Speaker, capital
 def say_finding(speaker: Speaker, finding: Finding) -> tuple[str, str]:
     """What is so, and what to do."""
     sentences = Sentences(speaker.machine.language, "findings.j2")
-    values = {key: speaker.figures.amount(value) for key, value in finding.data.items()}
-    for key in ("other", "governs"):
-        if values.get(key) in speaker.screws:
-            values[key] = speaker.adjuster(values[key])
+    values = _values(speaker, finding.data)
     subject = speaker.adjuster(finding.subject) if finding.subject in speaker.screws else finding.subject
     if "condition" in values:
-        condition = values["condition"]
-        values["range_end"] = "yes" if _at_range_end(speaker, finding) else ""
-        values["why"] = sentences.say(f"why_{condition}", **values)
-        values["advice"] = sentences.say(f"advice_{condition}", **values)
+        values["why"], values["advice"] = _why(sentences, values)
     what = sentences.say(f"{finding.code}_what", **values, subject=subject)
     return capital(what), sentences.say(f"{finding.code}_fix", **values)
 
 
-def _at_range_end(speaker: Speaker, finding: Finding) -> bool:
+def say_failure(speaker: Speaker, failure: Failure) -> tuple[str, str]:
+    """What fails in a state, and what to add to the machine."""
+    values = _values(speaker, {**failure.data, "condition": failure.condition.value})
+    return _why(Sentences(speaker.machine.language, "findings.j2"), values)
+
+
+def _why(sentences: Sentences, values: dict[str, str]) -> tuple[str, str]:
+    condition = values["condition"]
+    return sentences.say(f"why_{condition}", **values), sentences.say(f"advice_{condition}", **values)
+
+
+def _values(speaker: Speaker, data: Mapping[str, Amount | str]) -> dict[str, str]:
+    """Figures and names as text; adjusters by what people call them."""
+    values = {key: speaker.figures.amount(value) for key, value in data.items()}
+    values["range_end"] = "yes" if _at_range_end(speaker, data) else ""
+    for key in ("other", "governs"):
+        if values.get(key) in speaker.screws:
+            values[key] = speaker.adjuster(values[key])
+    return values
+
+
+def _at_range_end(speaker: Speaker, data: Mapping[str, Amount | str]) -> bool:
     """The adjuster that governs stands at the end of its range, to a hundredth of it."""
-    governs, reading = str(finding.data.get("governs", "")), finding.data.get("reading")
+    governs, reading = str(data.get("governs", "")), data.get("reading")
     if governs not in speaker.screws or not isinstance(reading, Amount):
         return False
     highest_bar = speaker.screws[governs].adjuster.highest_bar
     return abs(reading.value - highest_bar) < 0.01 * highest_bar
 
 
-def say_not_in_use(speaker: Speaker, procedure: Procedure) -> tuple[str, ...]:
-    """Adjusters that no state answers to, each with the reason."""
+def say_not_in_use(speaker: Speaker, procedure: Procedure, only: str = "") -> tuple[str, ...]:
+    """Adjusters that no state answers to, each with the reason; ``only`` narrows it to one."""
     sentences = Sentences(speaker.machine.language, "findings.j2")
     return tuple(
         capital(
@@ -47,5 +65,5 @@ def say_not_in_use(speaker: Speaker, procedure: Procedure) -> tuple[str, ...]:
             )
         )
         for answer in procedure.search.answers.values()
-        if isinstance(answer, NotInUse)
+        if isinstance(answer, NotInUse) and only in ("", answer.adjuster)
     )

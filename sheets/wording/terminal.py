@@ -69,6 +69,15 @@ def target_lines(speaker: Speaker, targets: Targets, proposals: Mapping[str, str
         yield from finding_lines(speaker, targets.findings)
 
 
+def skew_lines(speaker: Speaker, findings: Iterable[Finding]) -> Iterator[str]:
+    """Values to measure first, or that none has to be."""
+    kept = list(findings)
+    if kept:
+        yield from finding_lines(speaker, kept)
+    else:
+        yield "no plate value changes order or states when it is a tenth higher or lower"
+
+
 def columns(rows: Iterable[tuple[str, ...]]) -> Iterator[str]:
     """Rows in columns, two spaces apart."""
     kept = list(rows)

@@ -3,13 +3,12 @@
 from __future__ import annotations
 
 from sheets.amounts import Derivation
-from sheets.circuit.plant import MoveValve
 from sheets.pages.compose.matter import Matter
 from sheets.pages.document import Block, Heading, Paragraph, Section, SheetKind, Table
 from sheets.procedure.answers import TestState
-from sheets.procedure.changes import Change
 from sheets.procedure.order import EdgeKind
 from sheets.wording.findings import say_not_in_use
+from sheets.wording.why import say_changes
 
 
 def engineer(matter: Matter) -> Section:
@@ -43,16 +42,6 @@ def engineer(matter: Matter) -> Section:
     )
 
 
-def _change(matter: Matter, change: Change) -> str:
-    if isinstance(change, MoveValve):
-        return matter.text("change_valve", valve=change.valve, position=change.position)
-    return matter.text(
-        "change_adjuster",
-        adjuster=matter.speaker.adjuster(change.adjuster),
-        setting=matter.figures.pressure(change.setting_bar),
-    )
-
-
 def _states(matter: Matter) -> Table:
     found, figures = matter.procedure.search.found(), matter.figures
     rows = []
@@ -62,7 +51,7 @@ def _states(matter: Matter) -> Table:
         rows.append(
             (
                 matter.speaker.adjuster(id_),
-                "; ".join(_change(matter, change) for change in state.changes) or matter.text("at_rest"),
+                say_changes(matter.speaker, state.changes),
                 f"{figures.pressure(setting.target_bar)} ({setting.origin.value}"
                 + (f": {setting.given_by})" if setting.given_by else ")"),
                 figures.pressure(state.reading_bar),
@@ -84,7 +73,7 @@ def _reasons(matter: Matter) -> Table:
     rows = [
         (
             matter.speaker.adjuster(id_),
-            _change(matter, change),
+            say_changes(matter.speaker, (change,)),
             matter.speaker.otherwise(failure, id_),
         )
         for id_ in matter.procedure.order.sequence

@@ -1,0 +1,83 @@
+"""Why an adjuster has the state that it has, or none: the nearest states and the condition that fails."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from sheets.circuit.plant import MoveValve
+from sheets.errors import InputError, Problem, quoted
+from sheets.procedure.answers import NearMiss, NotFound, NotInUse, TestState
+from sheets.procedure.changes import Change
+from sheets.procedure.steps import Procedure
+from sheets.wording.findings import say_failure, say_not_in_use
+from sheets.wording.sentences import Sentences
+from sheets.wording.steps import Speaker
+
+
+def say_changes(speaker: Speaker, changes: tuple[Change, ...]) -> str:
+    """Changes to the running rest state, in a few words."""
+    texts = Sentences(speaker.machine.language, "texts.j2")
+    said = [
+        texts.say("change_valve", valve=change.valve, position=change.position)
+        if isinstance(change, MoveValve)
+        else texts.say(
+            "change_ahead"
+            if change.setting_bar < speaker.screws[change.adjuster].adjuster.highest_bar
+            else "change_adjuster",
+            adjuster=speaker.adjuster(change.adjuster),
+            setting=speaker.figures.pressure(change.setting_bar),
+        )
+        for change in changes
+    ]
+    return "; ".join(said) or texts.say("at_rest")
+
+
+def why_lines(speaker: Speaker, procedure: Procedure, adjuster: str) -> Iterator[str]:
+    """The answer for one adjuster, its reasons, and the nearest states that don't serve.
+
+    Raises InputError for an adjuster that wasn't searched for.
+    """
+    answers = procedure.search.answers
+    if adjuster not in answers:
+        raise InputError(
+            Problem(
+                where="--why",
+                what=f"There is no adjuster {quoted(adjuster)} that was searched for.",
+                fix=f"Name one of: {', '.join(answers)}.",
+            )
+        )
+    answer = answers[adjuster]
+    sentences = Sentences(speaker.machine.language, "findings.j2")
+    match answer:
+        case NotInUse():
+            yield from say_not_in_use(speaker, procedure, only=adjuster)
+            return
+        case TestState():
+            yield sentences.say(
+                "why_found",
+                subject=speaker.adjuster(adjuster),
+                state=say_changes(speaker, answer.changes),
+                reading=speaker.figures.pressure(answer.reading_bar),
+            )
+            for change, failure in answer.reasons:
+                yield f"    {say_changes(speaker, (change,))}: {speaker.otherwise(failure, adjuster)}"
+        case NotFound():
+            yield sentences.say(
+                "why_not_found",
+                subject=speaker.adjuster(adjuster),
+                verdict=answer.verdict.value,
+                states=str(answer.states),
+            )
+    if answer.near_misses:
+        yield ""
+        yield sentences.say("why_near")
+        for miss in answer.near_misses:
+            yield from _miss(speaker, miss, advice=isinstance(answer, NotFound))
+
+
+def _miss(speaker: Speaker, miss: NearMiss, *, advice: bool) -> Iterator[str]:
+    what, fix = say_failure(speaker, miss.failure)
+    yield f"  {say_changes(speaker, miss.changes)}"
+    yield f"      {miss.failure.condition.value}: {what}"
+    if advice:
+        yield f"      {fix}"
