@@ -395,7 +395,7 @@ def outcome_of_pack(
         taken.add(target)
         written = write_pack(matter, target, paper=paper, only=only)
     except JamnutError as error:
-        return failed(str(file), error)
+        return replace(failed(str(file), error), tag=found.tag, settings=found.settings)
     return replace(found, data={"file": str(target), "pages": written.pages, "digest": written.digest})
 
 

@@ -64,10 +64,10 @@ def answered(
     if answers.rest_agrees:
         agree = [place for place in places if place not in differ]
     found: dict[Place, Answer | None] = {
-        place: Answer(seen=digests[place], by=by, on=on, answer="agrees") if place in digests else None
+        place: Answer(seen=digests[place], by=by, day=on, answer="agrees") if place in digests else None
         for place in agree
     }
     return found | {
-        place: Answer(seen=digests[place], by=by, on=on, answer="differs", note=text)
+        place: Answer(seen=digests[place], by=by, day=on, answer="differs", note=text)
         for place, text in differ.items()
     }

@@ -50,7 +50,7 @@ class Answer(Entry):
     """Digest of the entry as it was read then."""
     by: Person
     """Who compared it."""
-    on: IsoDate
+    day: IsoDate
     """When."""
     answer: Literal["agrees", "differs"]
     """What came out."""
@@ -74,7 +74,7 @@ class Acceptance(Entry):
     """The setting that was accepted."""
     by: Person
     """Who accepted it."""
-    on: IsoDate
+    day: IsoDate
     """When."""
     computed_from: Digest
     """Digest of everything that the value was computed from."""
@@ -110,11 +110,11 @@ class Walkdown(Entry):
 
     def dates_after(self, today: date) -> Iterator[Flaw]:
         """Answers and acceptances that claim to be made in the future."""
-        dated: dict[tuple[str, str], date] = {place: answer.on for place, answer in self.answers().items()}
-        dated |= {("acceptances", id_): acceptance.on for id_, acceptance in self.acceptances.items()}
+        dated: dict[tuple[str, str], date] = {place: answer.day for place, answer in self.answers().items()}
+        dated |= {("acceptances", id_): acceptance.day for id_, acceptance in self.acceptances.items()}
         for place, on in dated.items():
             if on > today:
-                yield Flaw(at=(*place, "on"), what=f"{on} lies in the future.", fix=_PAST)
+                yield Flaw(at=(*place, "day"), what=f"{on} lies in the future.", fix=_PAST)
 
 
 _PAST: Final = "Write the day on which it was done, year first."
@@ -135,7 +135,7 @@ def walkdown_text(walkdown: Walkdown) -> str:
             id_: {
                 "value": f"{round(one.value_bar, 6):.10g} bar",
                 "by": one.by,
-                "on": one.on.isoformat(),
+                "day": one.day.isoformat(),
                 "computed from": one.computed_from,
             }
             for id_, one in walkdown.acceptances.items()
@@ -145,21 +145,23 @@ def walkdown_text(walkdown: Walkdown) -> str:
 
 
 def _answer(answer: Answer) -> dict[str, str]:
-    body = {"seen": answer.seen, "by": answer.by, "on": answer.on.isoformat(), "answer": answer.answer}
+    body = {"seen": answer.seen, "by": answer.by, "day": answer.day.isoformat(), "answer": answer.answer}
     return body | ({"note": answer.note} if answer.note else {})
 
 
 def person(given: str) -> str:
     """A name as it may stand in the file. Raises InputError."""
-    return _held(given, Person, "--by", "the name")
+    return _held(given, Person, "--by", "The name")
 
 
 def note(given: str) -> str:
     """A note as it may stand in the file. Raises InputError."""
-    return _held(given, Text, "--note", "the note")
+    return _held(given, Text, "--note", "The note")
 
 
 def _held(given: str, kind: Any, where: str, called: str) -> str:
+    if not given.strip():
+        raise InputError(Problem(where=where, what=f"{called} is empty.", fix="Write it behind the option."))
     try:
         text: str = TypeAdapter(kind).validate_python(given)
     except ValidationError as error:

@@ -159,7 +159,7 @@ def walkdown_state(
     accepted = walkdown.acceptances if walkdown else {}
     entries = [_walked(place, answers.get(place), digest) for place, digest in digests.items()]
     entries += [
-        WalkedEntry(section=place[0], id=place[1], state=EntryState.GONE, by=answer.by, on=answer.on)
+        WalkedEntry(section=place[0], id=place[1], state=EntryState.GONE, by=answer.by, on=answer.day)
         for place, answer in answers.items()
         if place not in digests
     ]
@@ -180,7 +180,7 @@ def _walked(place: Place, answer: Answer | None, digest: str) -> WalkedEntry:
         state = EntryState.CHANGED
     else:
         state = EntryState.AGREES if answer.answer == "agrees" else EntryState.DIFFERS
-    return WalkedEntry(section=section, id=id_, state=state, by=answer.by, on=answer.on, note=answer.note)
+    return WalkedEntry(section=section, id=id_, state=state, by=answer.by, on=answer.day, note=answer.note)
 
 
 def _accepted(
@@ -195,7 +195,7 @@ def _accepted(
         computed_bar=value_bar,
         accepted_bar=acceptance.value_bar,
         by=acceptance.by,
-        on=acceptance.on,
+        on=acceptance.day,
     )
 
 

@@ -47,4 +47,4 @@ def accept(
     if setting.origin is not Origin.COMPUTED:
         what = f"Its setting is given, by {setting.given_by}: there is nothing to accept."
         raise InputError(Problem(where=adjuster, what=what, fix=_LOOK))
-    return Acceptance(value_bar=setting.target_bar, by=by, on=on, computed_from=computed_from)
+    return Acceptance(value_bar=setting.target_bar, by=by, day=on, computed_from=computed_from)
