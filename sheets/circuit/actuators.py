@@ -24,13 +24,15 @@ class _Fixed:
     larger: Floats
     """Swept flow of the larger side."""
     share_a: Floats
+    """1: swept flow at A over that of the larger side."""
     moves: Floats
     """[E, 3] flow into each node for 1 L/min that the larger side takes."""
     by_gain: Floats
     """[E, 3, 3] slopes for a gain of 1 L/min/bar."""
     by_leakage: Floats
-    """[E, 3, 3]"""
+    """[E, 3, 3] L/min/bar that leakage alone gives."""
     leaks: bool
+    """Whether any actuator leaks."""
 
 
 @dataclass(frozen=True, kw_only=True)

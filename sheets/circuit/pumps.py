@@ -25,9 +25,11 @@ class _Asks:
     turning: Floats
     """1 where the drive runs, else 0."""
     compensator_bar: Floats
+    """Setting of the compensator."""
     full_at_limit: Floats
     """Net flow at whole stroke, a width below the compensator's setting."""
     load_sensing_bar: Floats
+    """Setting of the load-sensing control."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -35,6 +37,7 @@ class _Fixed:
     """What neither pressures nor states change."""
 
     bled_from: Ints
+    """[E] node that seeps into the LS node."""
     seeps_into: Floats
     """[E, 4] flow into each node for 1 L/min that seeps."""
     by_seep: Floats
@@ -44,8 +47,11 @@ class _Fixed:
     by_fixed_pump: Floats
     """[E, 4] slopes of the net flow without controls."""
     controlled: Bools
+    """[E] whether it has a compensator."""
     has_signal: Bools
+    """[E] whether it has a load-sensing control."""
     signal_gain: Floats
+    """[E] L/min/bar of the load-sensing control."""
     variable: bool
     """Whether any pump is controlled."""
     senses: bool

@@ -20,11 +20,15 @@ class _Bands:
     """What the settings alone decide: [B, reliefs] each, slopes by the setting."""
 
     opening_bar: Floats
+    """Drop at which it opens."""
     bend_bar: Floats
+    """Length of the bend at the opening."""
     bend_slope: Floats
+    """Of that length by the setting."""
     straight_bar: Floats
     """Rise that the straight line would take from nothing to the reference flow."""
     straight_slope: Floats
+    """Of that rise by the setting."""
     gain: Floats
     """L/min/bar"""
 

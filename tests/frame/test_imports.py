@@ -77,7 +77,17 @@ IMPURE = {
 CLOCK_CALLS = {"today", "now", "utcnow"}
 
 LONGEST_MODULE = 500
-LAW_MODULES = ("actuators", "cavity", "pumps", "reliefs", "smooth", "ways")
+LAW_MODULES = (
+    "actuators",
+    "cavity",
+    "fault_edits",
+    "load_sensing",
+    "pumps",
+    "ratings",
+    "reliefs",
+    "smooth",
+    "ways",
+)
 PLAIN = re.compile(r"\b(float|int|bool|Floats|Ints|Bools)\b")
 """A parameter of one of these types says nothing of itself; a Machine or a Circuit does."""
 
