@@ -91,7 +91,7 @@ def _judge(case: Case, candidate: Candidate, adjuster: str) -> TestState | Failu
         or moving(stop)
         or starved(stop)
         or over_rating(stop)
-        or moved_by_fault(case, state)
+        or moved_by_fault(case, state, target)
     )
     if failure is not None:
         return failure
@@ -164,10 +164,15 @@ def _too_much_through(case: Case, candidate: Candidate, target: Solution) -> Fai
     return None
 
 
-def moved_by_fault(case: Case, state: PlantState) -> Failure | None:
-    """What moves when one spool sticks or leaks, or one coil is dead."""
+def moved_by_fault(case: Case, state: PlantState, sound: Solution | None = None) -> Failure | None:
+    """What moves when one spool sticks or leaks, or one coil is dead.
+
+    ``sound`` is the solution of the state without a fault, from which the others start faster.
+    """
     faults = faults_of(case.machine, case.circuit, state, kinds=CAN_MOVE)
-    for fault, solution in zip(faults, solve_faults(case.circuit, state, faults), strict=True):
+    start_bar = sound.pressures_bar if sound is not None else None
+    solutions = solve_faults(case.circuit, state, faults, start_bar=start_bar)
+    for fault, solution in zip(faults, solutions, strict=True):
         if not solution.established:
             return Failure(condition=Condition.BARRED, data={"fault": fault.kind.value, "valve": fault.part})
         failure = moving(solution)
@@ -239,7 +244,7 @@ def _worst(case: Case, state: PlantState, stop: Solution, part: str) -> tuple[fl
     solutions = [
         stop,
         *(solved.one(index) for index in range(len(slips))),
-        *solve_faults(case.circuit, state, faults),
+        *solve_faults(case.circuit, state, faults, start_bar=stop.pressures_bar),
     ]
     return tuple(
         max(solution.pressures_bar[node] if solution.established else float("inf") for solution in solutions)
