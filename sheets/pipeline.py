@@ -20,7 +20,6 @@ from sheets.errors import (
     NotEstablishedError,
     Problem,
     RefusedError,
-    gravest,
 )
 from sheets.hazards.assess import assess
 from sheets.machine.answering import Answers as Answers
@@ -61,12 +60,11 @@ from sheets.wording import as_json
 from sheets.wording.as_json import Json as Json
 from sheets.wording.as_json import machine_json
 from sheets.wording.difference import (
-    Change,
+    Differing,
     Side,
     difference_json,
     difference_lines,
     differences,
-    refusal_lines,
 )
 from sheets.wording.findings import say_finding
 from sheets.wording.obstacles import obstacles
@@ -262,20 +260,6 @@ def starter_kinds() -> Iterator[str]:
     return columns([(one.kind, one.sentence) for one in starters()])
 
 
-@dataclass(frozen=True, kw_only=True)
-class Differing:
-    """Two machine files, and what isn't the same in them."""
-
-    old: Side
-    new: Side
-    changes: tuple[Change, ...]
-
-    @property
-    def status(self) -> ExitStatus:
-        """The gravest that either file comes to; a difference alone is good."""
-        return gravest((ExitStatus(self.old.status), ExitStatus(self.new.status)))
-
-
 def diff(old_file: Path, new_file: Path, site_file: Path | None = None) -> Differing:
     """What changes from one machine file to another, from plate values to readings.
 
@@ -292,7 +276,7 @@ def diff(old_file: Path, new_file: Path, site_file: Path | None = None) -> Diffe
         raise InputError(*problems)
     units = described[1].machine.units
     before, after = (_side(one, units) for one in described)
-    return Differing(old=before, new=after, changes=differences(before, after))
+    return differences(before, after)
 
 
 def _side(described: Described, units: Units) -> Side:
@@ -310,12 +294,11 @@ def _side(described: Described, units: Units) -> Side:
 
 
 def diff_text(differing: Differing) -> Iterator[str]:
-    yield from difference_lines(differing.changes)
-    yield from refusal_lines(differing.old, differing.new)
+    return difference_lines(differing)
 
 
 def diff_json(differing: Differing) -> dict[str, Json]:
-    return difference_json(differing.old, differing.new, differing.changes)
+    return difference_json(differing)
 
 
 Depth = Literal["check", "targets", "steps"]

@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from difflib import SequenceMatcher
 from typing import Final
 
 from sheets.amounts import Severity
 from sheets.circuit.plant import Adjust
+from sheets.errors import ExitStatus, gravest
 from sheets.machine.leaves import Leaf, leaves
 from sheets.machine.model import Machine, Units
 from sheets.procedure.answers import NotFound, NotInUse, TestState
@@ -60,7 +61,21 @@ class Change:
     """None for what is gone."""
 
 
-def differences(old: Side, new: Side) -> tuple[Change, ...]:
+@dataclass(frozen=True, kw_only=True)
+class Differing:
+    """Two machine files, and what isn't the same in them."""
+
+    old: Side
+    new: Side
+    changes: tuple[Change, ...]
+
+    @property
+    def status(self) -> ExitStatus:
+        """The gravest that either file comes to; a difference alone is good."""
+        return gravest((ExitStatus(self.old.status), ExitStatus(self.new.status)))
+
+
+def differences(old: Side, new: Side) -> Differing:
     """All changes, by section, in the order of the old file with what is new behind it."""
     units = new.machine.units
     found = [
@@ -71,7 +86,8 @@ def differences(old: Side, new: Side) -> tuple[Change, ...]:
         *_compare("order", _order(old), _order(new)),
         *_steps(old, new, units),
     ]
-    return tuple(sorted(found, key=lambda change: SECTIONS.index(change.section)))
+    ranked = sorted(found, key=lambda change: SECTIONS.index(change.section))
+    return Differing(old=old, new=new, changes=tuple(ranked))
 
 
 Texts = dict[tuple[str, ...], str]
@@ -278,10 +294,10 @@ def _reading(reading: Reading | None, units: Units) -> str | None:
 # How it is told
 
 
-def difference_lines(changes: Iterable[Change]) -> Iterator[str]:
-    """One line a change under its section; a sentence if there is none."""
+def difference_lines(differing: Differing) -> Iterator[str]:
+    """One line a change under its section, or that there is none; then what stands against each file."""
     section = ""
-    for change in changes:
+    for change in differing.changes:
         if change.section != section:
             if section:
                 yield ""
@@ -296,11 +312,7 @@ def difference_lines(changes: Iterable[Change]) -> Iterator[str]:
             yield f"    {place}: {change.old} → {change.new}"
     if not section:
         yield "Nothing differs: what is written, computed, done and read is the same."
-
-
-def refusal_lines(old: Side, new: Side) -> Iterator[str]:
-    """What stands against either file by itself."""
-    for name, side in (("old", old), ("new", new)):
+    for name, side in (("old", differing.old), ("new", differing.new)):
         for one in (*side.targets.findings, *side.procedure.findings):
             if one.severity in (Severity.REFUSED, Severity.NOT_ESTABLISHED):
                 what, fix = say_finding(side.speaker, one)
@@ -309,7 +321,7 @@ def refusal_lines(old: Side, new: Side) -> Iterator[str]:
                 yield f"    {fix}"
 
 
-def difference_json(old: Side, new: Side, changes: Iterable[Change]) -> dict[str, Json]:
+def difference_json(differing: Differing) -> dict[str, Json]:
     """The changes as data."""
     return {
         "format": FORMAT,
@@ -319,7 +331,7 @@ def difference_json(old: Side, new: Side, changes: Iterable[Change]) -> dict[str
                 "dated": side.machine.dated.isoformat(),
                 "status": side.status,
             }
-            for name, side in (("old", old), ("new", new))
+            for name, side in (("old", differing.old), ("new", differing.new))
         },
         "changes": [
             {
@@ -328,6 +340,6 @@ def difference_json(old: Side, new: Side, changes: Iterable[Change]) -> dict[str
                 "old": change.old,
                 "new": change.new,
             }
-            for change in changes
+            for change in differing.changes
         ],
     }

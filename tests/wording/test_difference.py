@@ -7,8 +7,8 @@ from pathlib import Path
 
 import pytest
 
-from sheets.pipeline import Differing, diff, diff_text
-from sheets.wording.difference import SECTIONS, Change
+from sheets.pipeline import diff, diff_text
+from sheets.wording.difference import SECTIONS, Change, Differing
 
 
 @pytest.fixture
