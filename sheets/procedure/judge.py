@@ -253,21 +253,25 @@ def _worst(case: Case, state: PlantState, stop: Solution, part: str) -> tuple[fl
 
 
 def reasons_of(case: Case, candidate: Candidate, adjuster: str) -> tuple[tuple[Change, Failure], ...]:
-    """Takes each change away alone and names what then fails, also with one fault."""
+    """Takes each change away alone and names what then fails, with one fault and at the screw's stop too."""
     if not candidate.changes:
         return ()
     site = case.site(adjuster)
     target_bar = case.targets.settings[adjuster].target_bar
     lesser = [
-        apply(case.base, tuple(change for change in candidate.changes if change is not left_out))
+        replace(candidate, changes=tuple(change for change in candidate.changes if change is not left_out))
         for left_out in candidate.changes
     ]
-    solved = solve(case.circuit, lesser, effects=True)
+    states = [apply(case.base, one.changes) for one in lesser]
+    solved = solve(case.circuit, states, effects=True)
     reasons: list[tuple[Change, Failure]] = []
     for index, left_out in enumerate(candidate.changes):
-        failure = first_failure(solved.one(index), site, target_bar, case.trusted_ports) or moved_by_fault(
-            case, lesser[index]
+        # A fault comes first where it is enough: it is the plainer reason than a limit far from the target.
+        outcome = (
+            first_failure(solved.one(index), site, target_bar, case.trusted_ports)
+            or moved_by_fault(case, states[index])
+            or _judge(case, lesser[index], adjuster)
         )
-        if failure is not None:
-            reasons.append((left_out, failure))
+        if isinstance(outcome, Failure):
+            reasons.append((left_out, outcome))
     return tuple(reasons)
