@@ -3,12 +3,12 @@
 from collections.abc import Callable
 
 from sheets.circuit.verdict import Verdict
+from sheets.machine.site import Policies
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline import Described, steps, targets
-from sheets.procedure.in_use import ever_governs
-from sheets.machine.site import Policies
 from sheets.procedure.answers import NotInUse
 from sheets.procedure.case import Case
+from sheets.procedure.in_use import ever_governs
 from sheets.wording.findings import say_not_in_use
 
 RETURN_RELIEF = """  RV2:

@@ -7,7 +7,7 @@ import pytest
 from sheets.amounts import Severity
 from sheets.circuit.plant import Adjust, MoveValve
 from sheets.pages.compose.matter import Matter
-from sheets.procedure import search
+from sheets.procedure import answers
 from sheets.procedure.order import EdgeKind, Order, derive_order
 from sheets.targets.settings import Targets
 
@@ -19,7 +19,7 @@ def order_of(clay_mixer: Matter) -> object:
     setting = clay_mixer.targets.settings["RV1"]
 
     def derive(**given: tuple[float, str, str]) -> Order:
-        found: dict[str, search.TestState] = {}
+        found: dict[str, answers.TestState] = {}
         settings = {}
         for name, (target_bar, raised, shifted_by) in given.items():
             found[name] = replace(

@@ -10,14 +10,19 @@ L/min: p = 206 · (0.95 + 0.05 · q / 99.489), q = 104.725 − 0.018701 · p, so
 L/min. Shaft power 206.14 · 100.87 / 600 / 0.88 = 39.4 kW, under the 45 kW of the drive.
 
 In that state the compensator stands at its stop, away from its target: RV1 comes first. The compensator's own
-state is the same without that change; its setting is the deadhead reading. Standby needs no change at all:
-the lever's centre drains the load signal. No state of the load-sensing control asks for anything, nor does
-it shift a shut line: it is tied with both.
+state is the same without that change; its setting is the deadhead reading. Standby needs nothing to be read:
+the lever's centre drains the load signal. But a spool that stuck shifted would turn the mixer: stuck in mix
+with HV1 open, or in reverse with HV2 open. One shut valve isn't enough: stuck so that the open line is fed,
+the pump goes to deadhead, the motor presses into its shut side and turns by what leaks there to its case. So
+both are shut. No state of the load-sensing control moves another adjuster, nor does it shift a shut line: it
+is tied with both.
 
 Gauges: G1 has 0.25 % of 400 bar = 1 bar error on divisions of 2 bar, G2 0.2 bar on 0.1 bar. Lowest rating
 in reach: 250 bar (lever valve, motor). Never exceed: 250 − 1 = 249, down to a division: 248 bar on G1;
 249.8 bar on G2.
 """
+
+import math
 
 import pytest
 
@@ -26,13 +31,15 @@ from sheets.circuit.verdict import Verdict
 from sheets.errors import ExitStatus
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline import status_of
-from sheets.procedure import search
+from sheets.procedure import answers
+from sheets.procedure.conditions import Condition
 from sheets.procedure.steps import StageKind, StepKind
 
 DISPLACED_LPM = 71 * 1475 / 1000
 LEAK = 0.05 * DISPLACED_LPM / 280
 FULL_LPM = 0.95 * DISPLACED_LPM
 SHUT_AND_HELD = {MoveValve(valve="HV1", position="closed"), MoveValve(valve="DV1", position="mix")}
+BOTH_SHUT = {MoveValve(valve=valve, position="closed") for valve in ("HV1", "HV2")}
 COMPENSATOR_AWAY = Adjust(adjuster="PU1.compensator", setting_bar=230.0)
 
 
@@ -42,7 +49,7 @@ def relief_reading(setting_bar: float) -> float:
     return (setting_bar * 0.95 + rise * DISPLACED_LPM) / (1 + rise * LEAK)
 
 
-def state(matter: Matter, adjuster: str) -> search.TestState:
+def state(matter: Matter, adjuster: str) -> answers.TestState:
     return matter.procedure.search.found()[adjuster]
 
 
@@ -54,7 +61,7 @@ def test_it_may_be_issued(clay_mixer: Matter) -> None:
 
 
 def test_changes_that_each_setting_needs(clay_mixer: Matter) -> None:
-    assert set(state(clay_mixer, "PU1.load sensing").changes) == set()
+    assert set(state(clay_mixer, "PU1.load sensing").changes) == BOTH_SHUT
     assert set(state(clay_mixer, "PU1.compensator").changes) == SHUT_AND_HELD
     assert set(state(clay_mixer, "RV1").changes) == SHUT_AND_HELD | {COMPENSATOR_AWAY}
 
@@ -66,6 +73,38 @@ def test_every_change_has_its_reason(clay_mixer: Matter) -> None:
     assert reasons[MoveValve(valve="HV1", position="closed")].data["part"] == "HM1"
     assert reasons[MoveValve(valve="DV1", position="mix")].data["governs"] == "PU1.load sensing"
     assert reasons[COMPENSATOR_AWAY].data["governs"] == "PU1.compensator"
+
+
+def creep_rpm() -> float:
+    """Speed of the mixer with one working line shut, the other fed at deadhead.
+
+    The motor's fed side stands at the pump's pressure, 176 bar less the width's share and the spool's edge.
+    Its load takes 640 N·m / 0.9 · 20π / 400 cm³ = 111.7 bar; the rest stands at the shut side and leaks
+    there: 0.06 · 99.489 L/min / 250 bar of it a minute, through 0.4 L a turn.
+    """
+    leak = 0.06 * FULL_LPM / 250
+    load_bar = 640 / 0.9 * 20 * math.pi / 400
+    fed_bar = shut_bar = 0.0
+    for _ in range(50):
+        flow_lpm = leak * (fed_bar + shut_bar)
+        pump_bar = 176.0 - 4.0 * flow_lpm / (DISPLACED_LPM - LEAK * 172.0)
+        fed_bar = pump_bar - 24.0 * (flow_lpm / 60) ** 2
+        shut_bar = fed_bar - load_bar
+    return leak * shut_bar / 0.4
+
+
+def test_both_lines_are_shut_for_standby_against_a_stuck_spool(clay_mixer: Matter) -> None:
+    assert creep_rpm() == pytest.approx(3.81, abs=0.01)
+    reasons = dict(state(clay_mixer, "PU1.load sensing").reasons)
+    assert set(reasons) == BOTH_SHUT
+    for valve, position in (("HV1", "mix"), ("HV2", "reverse")):
+        failure = reasons[MoveValve(valve=valve, position="closed")]
+        assert failure.condition is Condition.BARRED
+        told = {name: failure.data[name] for name in ("fault", "valve", "position", "part")}
+        assert told == {"fault": "spool stuck", "valve": "DV1", "position": position, "part": "HM1"}
+        speed = failure.data["speed"]
+        assert not isinstance(speed, str)
+        assert speed.value == pytest.approx(creep_rpm(), rel=1e-3)
 
 
 def test_edges_and_ties(clay_mixer: Matter) -> None:

@@ -3,7 +3,8 @@
 Pump: V·n = 45 cm³ · 1760 /min = 79.2 L/min. η_v = 0.95 at 4600 psi, so it gives 75.24 L/min there and leaks
 3.96 L/min / 4600 psi for each psi. The valve's centre blocks all ports: the line is shut at rest, so the
 compensator reads its setting as soon as the drive runs, and RV1 once the compensator is at its stop (3800
-psi).
+psi). A spool that sticks shifted would send the cylinder out at the pump's whole flow, 77 L/min / (6 · 78.5
+cm²) = 0.164 m/s, so HV1 is shut before the start: then nothing past it can move.
 
 RV1 there: p = 3300 · (0.95 + 0.05 · q/75.24), q = 79.2 − 3.96 · p/4600, so p = 3302.4 psi, q = 76.36 L/min;
 shaft power 227.7 bar · 76.36 / 600 / 0.88 = 32.9 kW, under 40 hp · 1.15 = 34.3 kW.
@@ -11,22 +12,27 @@ shaft power 227.7 bar · 76.36 / 600 / 0.88 = 32.9 kW, under 40 hp · 1.15 = 34.
 The LS port is fed from the outlet inside the pump: that control sees the same pressure on both of its sides
 and never asks for anything, whatever the screw.
 
-G1: 0.25 % of 5000 psi = 12.5 psi on divisions of 20 psi. Lowest rating in reach 4000 psi (hose); never
-exceed: 3987.5, down to a division: 3980 psi. Accuracy ratio 60 / 12.5 = 4.8.
+G1: 0.25 % of 5000 psi = 12.5 psi on divisions of 20 psi. With HV1 shut the hose (4000 psi) is out of reach;
+the lowest rating on the pump line is the pump's, 4600 psi. Never exceed: 4587.5, down to a division: 4580
+psi. Accuracy ratio 60 / 12.5 = 4.8.
 """
+
+import math
 
 import pytest
 
-from sheets.circuit.plant import Adjust
+from sheets.circuit.plant import Adjust, MoveValve
 from sheets.circuit.verdict import Verdict
 from sheets.pages.compose.matter import Matter
 from sheets.procedure.answers import NotInUse
+from sheets.procedure.conditions import Condition
 from sheets.wording.findings import say_not_in_use
 
 PSI = 0.45359237 * 9.80665 / 0.0254**2 / 1e5  # one pound force on one square inch, in bar
 DISPLACED_LPM = 45 * 1760 / 1000
 FULL_LPM = 0.95 * DISPLACED_LPM
 LEAK_PER_PSI = 0.05 * DISPLACED_LPM / 4600
+SHUT = MoveValve(valve="HV1", position="closed")
 
 
 def test_it_may_be_issued(glaze_press: Matter) -> None:
@@ -39,11 +45,27 @@ def test_changes_that_each_setting_needs(glaze_press: Matter) -> None:
     found = glaze_press.procedure.search.found()
 
     assert set(found) == {"PU1.compensator", "RV1"}
-    assert set(found["PU1.compensator"].changes) == set()
-    (change,) = found["RV1"].changes
+    assert found["PU1.compensator"].changes == (SHUT,)
+    shut, change = found["RV1"].changes
+    assert shut == SHUT
     assert isinstance(change, Adjust)
     assert change.adjuster == "PU1.compensator"
     assert change.setting_bar == pytest.approx(3800 * PSI)
+
+
+@pytest.mark.parametrize("adjuster", ["PU1.compensator", "RV1"])
+def test_the_line_is_shut_against_a_stuck_spool(glaze_press: Matter, adjuster: str) -> None:
+    # The cylinder goes out, with 100 kN · 10 / 0.95 / 78.54 cm² = 134 bar, or back: out is tried first.
+    failure = dict(glaze_press.procedure.search.found()[adjuster].reasons)[SHUT]
+
+    assert failure.condition is Condition.BARRED
+    told = {name: failure.data[name] for name in ("fault", "valve", "position", "part")}
+    assert told == {"fault": "spool stuck", "valve": "DV1", "position": "press", "part": "CY1"}
+    speed = failure.data["speed"]
+    assert not isinstance(speed, str)
+    # The valve's edge takes 20 gal/min at 75 psi, so its two edges take some 6 bar: the pump stands near 140.
+    flow_lpm = DISPLACED_LPM - LEAK_PER_PSI * 142 / PSI
+    assert speed.value == pytest.approx(flow_lpm / (6 * math.pi * 10**2 / 4), rel=2e-3)
 
 
 def test_edge_and_sequence(glaze_press: Matter) -> None:
@@ -86,7 +108,7 @@ def test_windows_stand_on_divisions_in_psi(glaze_press: Matter) -> None:
         choice = glaze_press.procedure.search.found()[adjuster].gauge
         shown = (choice.window.low_bar / PSI, choice.window.high_bar / PSI)
         assert shown == pytest.approx(window, abs=1e-6)
-        assert choice.never_exceed_bar / PSI == pytest.approx(3980, abs=1e-6)
+        assert choice.never_exceed_bar / PSI == pytest.approx(4580, abs=1e-6)
         assert choice.accuracy_ratio == pytest.approx(60 / 12.5)
 
 

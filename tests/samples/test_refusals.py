@@ -9,8 +9,8 @@ from sheets.circuit.verdict import Verdict
 from sheets.errors import ExitStatus
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline import Described, status_of, targets
-from sheets.procedure.conditions import Condition
 from sheets.procedure.answers import NotFound, NotInUse
+from sheets.procedure.conditions import Condition
 from sheets.targets.settings import Origin, Targets
 from sheets.wording.findings import say_finding
 
@@ -145,15 +145,15 @@ def test_coarse_gauge_widens_a_policy_window_to_three_divisions(refused: Refused
 
 
 def test_gauge_with_an_error_wider_than_the_window(refused: Refused) -> None:
-    # Class 1.6 of 250 bar is 4 bar; half of the window 178 … 184 is 3 bar.
+    # Class 1.6 of 250 bar is 4 bar; half of the window 178 … 182 is 2 bar.
     matter = refused("kiln_pusher", ("accuracy class: 0.25", "accuracy class: 1.6"))
     assert not_found(matter, "RV1").failure.condition is Condition.SEEN
-    assert amount(finding(matter, "cannot_be_set"), "accuracy_ratio") == pytest.approx(3 / 4)
+    assert amount(finding(matter, "cannot_be_set"), "accuracy_ratio") == pytest.approx(2 / 4)
 
 
 def test_gauge_under_three_to_one_warns(refused: Refused) -> None:
-    # Class 0.6 of 250 bar is 1.5 bar: 3 / 1.5 = 2 to 1.
-    matter = refused("kiln_pusher", ("accuracy class: 0.25", "accuracy class: 0.6"))
+    # Class 0.4 of 250 bar is 1 bar: 2 / 1 = 2 to 1.
+    matter = refused("kiln_pusher", ("accuracy class: 0.25", "accuracy class: 0.4"))
     warning = finding(matter, "gauge_accuracy")
     assert warning.severity is Severity.WARNING
     assert amount(warning, "accuracy_ratio") == pytest.approx(2.0)
@@ -329,9 +329,14 @@ def test_compensator_whose_value_is_not_given_is_computed(refused: Refused) -> N
     # The whole window carries the work: its half is the larger of 2 % and 3 bar.
     assert setting.low_bar == pytest.approx(needed_bar, abs=0.3)
     assert setting.target_bar == pytest.approx(max(needed_bar / 0.98, needed_bar + 3), abs=0.3)
-    assert state.gauge.window.low_bar >= needed_bar - 0.2 * 2.0
-    assert state.gauge.target_bar % 2.0 == 0.0  # rounded up to a division
-    assert state.gauge.target_bar >= setting.target_bar
+    # On divisions of 2 bar, inward, 165.0 … 171.7 would be 166 … 170 at most: 2 to 1 with G1's error of 1
+    # bar. G2 reads steps of 0.1 bar.
+    assert state.gauge.gauge == "G2"
+    assert state.gauge.window.low_bar >= setting.low_bar - 0.2 * 0.1
+    assert state.gauge.window.high_bar <= setting.high_bar + 0.2 * 0.1
+    steps_up = state.gauge.target_bar / 0.1
+    assert steps_up == pytest.approx(round(steps_up), abs=1e-6)  # rounded up to a step
+    assert 0.0 <= state.gauge.target_bar - setting.target_bar + 1e-6 < 0.1
 
 
 def test_value_that_nothing_gives_or_computes(refused: Refused) -> None:
@@ -342,6 +347,7 @@ def test_value_that_nothing_gives_or_computes(refused: Refused) -> None:
             "      given by: machine manual, sheet 4\n",
             "",
         ),
+        ("      differential: 24 bar\n      differential flow: 60 L/min\n", ""),
     )
     refusal = finding(matter, "value_not_given")
     assert refusal.subject == "PU1.load sensing"

@@ -83,7 +83,8 @@ def test_nothing_is_guessed_for_a_standby(changed: Callable[..., Described]) -> 
         "      setting: 27 bar                  # standby: LS at tank, no flow\n"
         "      given by: machine manual, sheet 4\n"
     )
-    found = targets(changed("clay_mixer", (given, "")))
+    difference = "      differential: 24 bar\n      differential flow: 60 L/min\n"
+    found = targets(changed("clay_mixer", (given, ""), (difference, "")))
     (finding,) = found.refusals
 
     assert (finding.code, finding.subject) == ("value_not_given", "PU1.load sensing")

@@ -7,6 +7,7 @@ import pytest
 from sheets.targets.reading import (
     ReadingWindow,
     accuracy_ratio,
+    as_set_bar,
     graduations_within,
     never_exceed_bar,
     reading_window,
@@ -21,8 +22,8 @@ NO_FLOOR, NO_CEILING = 0.0, math.inf
     [
         (172.0, 180.0, 2.0, (172.0, 180.0, 5)),
         (171.0, 181.0, 2.0, (172.0, 180.0, 5)),  # inward
-        (172.3, 179.7, 2.0, (172.0, 180.0, 5)),  # 0.15 of a division: nobody reads that
-        (172.5, 179.5, 2.0, (174.0, 178.0, 3)),  # a quarter of a division is read
+        (172.3, 179.7, 2.0, (174.0, 178.0, 3)),  # strictly inward, however little is cut
+        (172.001, 179.999, 2.0, (174.0, 178.0, 3)),
         (101.5, 103.5, 5.0, (105.0, 100.0, 0)),  # none inside
         (26.0, 28.0, 0.1, (26.0, 28.0, 21)),
     ],
@@ -33,6 +34,22 @@ def test_graduations_inside(
     first, last, count = graduations_within(low_bar=low, high_bar=high, graduation_bar=graduation)
     assert (first, last) == pytest.approx(expected[:2])
     assert count == expected[2]
+
+
+@pytest.mark.parametrize(
+    ("reading", "setting", "graduation", "expected"),
+    [
+        (180.26, 180.0, 2.0, 180.0),  # 0.13 of a division
+        (180.39, 180.0, 2.0, 180.0),
+        (180.41, 180.0, 2.0, 180.41),  # a fifth of 2 bar is 0.4 bar
+        (179.59, 180.0, 2.0, 179.59),
+        (180.26, 180.0, 0.1, 180.26),  # a digital gauge shows it
+    ],
+)
+def test_reading_that_nobody_can_tell_from_its_setting(
+    reading: float, setting: float, graduation: float, expected: float
+) -> None:
+    assert as_set_bar(reading_bar=reading, setting_bar=setting, graduation_bar=graduation) == expected
 
 
 def window(
