@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import functools
 import io
 import json
 import sys
@@ -67,7 +68,7 @@ def check(machines: tuple[Path, ...], site: Path | None, as_json: bool) -> None:
     from sheets import pipeline
 
     if _many(machines):
-        _leave(_each(machines, lambda file: pipeline.outcome("check", file, site, _today())[0], as_json))
+        _leave(_each(machines, functools.partial(pipeline.outcome_of_check, site, _today()), as_json))
         return
     described = pipeline.check(machines[0], site, _today())
     _print(pipeline.check_json(described) if as_json else pipeline.check_text(described))
@@ -85,7 +86,7 @@ def targets(machines: tuple[Path, ...], site: Path | None, as_json: bool) -> Non
     from sheets import pipeline
 
     if _many(machines):
-        _leave(_each(machines, lambda file: pipeline.outcome("targets", file, site, _today())[0], as_json))
+        _leave(_each(machines, functools.partial(pipeline.outcome_of_targets, site, _today()), as_json))
         return
     described = pipeline.check(machines[0], site, _today())
     found = pipeline.targets(described)
@@ -117,7 +118,10 @@ def steps(
     from sheets import pipeline
 
     if _many(machines):
-        _leave(_each(machines, lambda file: pipeline.outcome("steps", file, site, _today())[0], as_json))
+        if why is not None or skew:
+            raise _wrong("--why, --skew", "They belong to one machine.", "Name one machine file.")
+        doing = functools.partial(pipeline.outcome_of_steps, site, _today(), task, part)
+        _leave(_each(machines, doing, as_json))
         return
     described = pipeline.check(machines[0], site, _today())
     wanted = pipeline.task_of(described, task, part)
@@ -169,16 +173,9 @@ def pack(
     from sheets import pipeline
 
     if _many(machines):
-        folder, taken = output or Path(), set[Path]()
-        _leave(
-            _each(
-                machines,
-                lambda file: pipeline.outcome_of_pack(
-                    file, site, _today(), folder, paper=paper, only=only, taken=taken
-                ),
-                as_json=False,
-            )
-        )
+        writing = pipeline.Writing(folder=output or Path(), paper=paper, only=only)
+        doing = functools.partial(pipeline.outcome_of_pack, site, _today(), task, part, writing)
+        _leave(_each(machines, doing, as_json=False))
         return
     described = pipeline.check(machines[0], site, _today())
     wanted = pipeline.task_of(described, task, part)

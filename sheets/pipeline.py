@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from datetime import date
 from pathlib import Path
 from typing import Literal
 
 from sheets import ENGINE
-from sheets.amounts import Finding, Severity
+from sheets.amounts import Finding
 from sheets.circuit.build import both_ends
 from sheets.circuit.model import Circuit
 from sheets.circuit.verdict import Verdict
@@ -66,8 +66,7 @@ from sheets.wording.difference import (
     difference_lines,
     differences,
 )
-from sheets.wording.findings import say_finding
-from sheets.wording.obstacles import obstacles
+from sheets.wording.obstacles import obstacles, refusals
 from sheets.wording.steps import Speaker, SpokenStep
 from sheets.wording.summary import Outcome as Outcome
 from sheets.wording.summary import broken as broken
@@ -301,32 +300,81 @@ def diff_json(differing: Differing) -> dict[str, Json]:
     return difference_json(differing)
 
 
-Depth = Literal["check", "targets", "steps"]
-
-
-def outcome(depth: Depth, file: Path, site_file: Path | None, today: date) -> tuple[Outcome, Matter | None]:
-    """What comes of one file among many, computed as far as a command goes; its matter where there is one.
-
-    A known error is an outcome, so that the other files get theirs.
-    """
+def outcome_of_check(site_file: Path | None, today: date, file: Path) -> Outcome:
+    """What comes of one file among many; a known error is an outcome, so that the others get theirs."""
     try:
         described = check(file, site_file, today)
-        if depth == "check":
-            return known(str(file), described.machine, ExitStatus.GOOD, "", "", check_json(described)), None
-        screws = len(screws_of(described.machine))
-        if depth == "targets":
-            found = targets(described)
-            words = worst_finding(_speaker(described), found.findings)
-            data = targets_json(described, found)
-            count = f"{len(found.settings)} of {screws}"
-            return known(str(file), described.machine, status_of(found), count, words, data), None
-        matter = steps(described)
+    except JamnutError as error:
+        return failed(str(file), error)
+    return known(str(file), described.machine, ExitStatus.GOOD, "", "", check_json(described))
+
+
+def outcome_of_targets(site_file: Path | None, today: date, file: Path) -> Outcome:
+    """The same for its settings."""
+    try:
+        described = check(file, site_file, today)
+        found = targets(described)
+    except JamnutError as error:
+        return failed(str(file), error)
+    words = worst_finding(_speaker(described), found.findings)
+    count = f"{len(found.settings)} of {len(screws_of(described.machine))}"
+    data = targets_json(described, found)
+    return known(str(file), described.machine, status_of(found), count, words, data)
+
+
+def outcome_of_steps(site_file: Path | None, today: date, kind: str, part: str | None, file: Path) -> Outcome:
+    """The same for its procedure; ``kind`` and ``part`` name the task as for `task_of`."""
+    found, _ = _stepped(site_file, today, kind, part, file)
+    return found
+
+
+def _stepped(
+    site_file: Path | None, today: date, kind: str, part: str | None, file: Path
+) -> tuple[Outcome, Matter | None]:
+    try:
+        described = check(file, site_file, today)
+        matter = steps(described, task_of(described, kind, part))
     except JamnutError as error:
         return failed(str(file), error), None
     words = worst_finding(matter.speaker, _findings(matter))
     status = status_of(matter.targets, matter.procedure, matter.replay)
-    count = f"{len(matter.procedure.search.found())} of {screws}"
+    count = f"{len(matter.procedure.search.found())} of {len(screws_of(described.machine))}"
     return known(str(file), described.machine, status, count, words, steps_json(matter)), matter
+
+
+@dataclass(frozen=True, kw_only=True)
+class Writing:
+    """Where packs of many machines go, and how. ``only`` as in `write_pack`."""
+
+    folder: Path
+    paper: Literal["A4", "Letter"]
+    only: tuple[str, ...]
+    taken: set[Path] = field(default_factory=set)
+    """Files that were written for machines before this one; it grows."""
+
+
+def outcome_of_pack(
+    site_file: Path | None, today: date, kind: str, part: str | None, writing: Writing, file: Path
+) -> Outcome:
+    """The same, with its draft written where the job holds."""
+    found, matter = _stepped(site_file, today, kind, part, file)
+    if matter is None or found.status is not ExitStatus.GOOD:
+        return found
+    target = writing.folder / draft_name(matter.machine)
+    try:
+        if target in writing.taken:
+            raise InputError(
+                Problem(
+                    where=str(file),
+                    what=f"Another of these machine files has the tag {matter.machine.tag} too.",
+                    fix="Give each machine a tag of its own, or write this pack by itself with -o.",
+                )
+            )
+        writing.taken.add(target)
+        written = write_pack(matter, target, paper=writing.paper, only=writing.only)
+    except JamnutError as error:
+        return replace(failed(str(file), error), tag=found.tag, settings=found.settings)
+    return replace(found, data={"file": str(target), "pages": written.pages, "digest": written.digest})
 
 
 def content(matter: Matter) -> tuple[Document, str]:
@@ -346,40 +394,6 @@ def pack(matter: Matter, layout: Layout, issue: IssueContext | None = None) -> b
     """The pack as PDF bytes; a draft without an issue context. Raises as `content` and `place` do."""
     document, printed = content(matter)
     return print_pack(document, layout=layout, digest=printed, issue=issue)
-
-
-def outcome_of_pack(
-    file: Path,
-    site_file: Path | None,
-    today: date,
-    folder: Path,
-    *,
-    paper: Literal["A4", "Letter"],
-    only: tuple[str, ...],
-    taken: set[Path],
-) -> Outcome:
-    """What comes of one file among many, with its draft written into a folder where the job holds.
-
-    ``only`` as in `write_pack`. ``taken``: files that were written for others before; it grows.
-    """
-    found, matter = outcome("steps", file, site_file, today)
-    if matter is None or found.status is not ExitStatus.GOOD:
-        return found
-    target = folder / draft_name(matter.machine)
-    try:
-        if target in taken:
-            raise InputError(
-                Problem(
-                    where=str(file),
-                    what=f"Another of these machine files has the tag {matter.machine.tag} too.",
-                    fix="Give each machine a tag of its own, or write this pack by itself with -o.",
-                )
-            )
-        taken.add(target)
-        written = write_pack(matter, target, paper=paper, only=only)
-    except JamnutError as error:
-        return replace(failed(str(file), error), tag=found.tag, settings=found.settings)
-    return replace(found, data={"file": str(target), "pages": written.pages, "digest": written.digest})
 
 
 def draft_name(machine: Machine) -> str:
@@ -426,19 +440,7 @@ def _hold(matter: Matter) -> None:
     status = status_of(matter.targets, matter.procedure, matter.replay)
     if status is ExitStatus.GOOD:
         return
-    against = [
-        one for one in _findings(matter) if one.severity in (Severity.REFUSED, Severity.NOT_ESTABLISHED)
-    ]
-    problems = [
-        Problem(where=matter.machine.tag, what=what, fix=fix)
-        for what, fix in (say_finding(matter.speaker, one) for one in against)
-    ] or [
-        Problem(
-            where=matter.machine.tag,
-            what="There is no adjuster that is in use and may be set.",
-            fix="Look for 'may be set: no' in the machine file, and at what jamnut steps says of each.",
-        )
-    ]
+    problems = refusals(matter.speaker, _findings(matter))
     raise (RefusedError if status is ExitStatus.REFUSED else NotEstablishedError)(*problems)
 
 

@@ -5,8 +5,10 @@ from __future__ import annotations
 from collections.abc import Iterable, Iterator
 from typing import Final
 
+from sheets.amounts import Finding, Severity
 from sheets.errors import Problem
 from sheets.machine.walking import AcceptanceState, EntryState, WalkdownState, WalkedEntry
+from sheets.wording.findings import say_finding
 from sheets.wording.sentences import Sentences
 from sheets.wording.steps import Speaker
 from sheets.wording.walk_list import setting_values
@@ -19,6 +21,19 @@ _BY_STATE: Final = (
     (EntryState.GONE, "gone"),
     (EntryState.NOT_COMPARED, "not_compared"),
 )
+
+
+def refusals(speaker: Speaker, findings: Iterable[Finding]) -> tuple[Problem, ...]:
+    """What stands against printing; never empty: where nothing is refused, there is nothing to set."""
+    where, against = speaker.machine.tag, (Severity.REFUSED, Severity.NOT_ESTABLISHED)
+    said = (say_finding(speaker, one) for one in findings if one.severity in against)
+    return tuple(Problem(where=where, what=what, fix=fix) for what, fix in said) or (
+        Problem(
+            where=where,
+            what="There is no adjuster that is in use and may be set.",
+            fix="Look for 'may be set: no' in the machine file, and at what jamnut steps says of each.",
+        ),
+    )
 
 
 def obstacles(speaker: Speaker, state: WalkdownState, *, established: bool) -> tuple[Problem, ...]:

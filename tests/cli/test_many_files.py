@@ -144,14 +144,14 @@ def test_progress_is_for_a_terminal(
 def test_a_bug_at_one_file_keeps_the_others(
     run: Callable[..., object], folder: Path, monkeypatch: pytest.MonkeyPatch, tmp_path: Path
 ) -> None:
-    whole = pipeline.outcome
+    whole = pipeline.check
 
-    def fail(verb: str, file: Path, *others: object) -> object:
+    def fail(file: Path, *others: object) -> object:
         if file.name == "glaze_press.yaml":
             raise RuntimeError("a wheel came off")
-        return whole(verb, file, *others)  # type: ignore[arg-type]  # handed through
+        return whole(file, *others)  # type: ignore[arg-type]  # handed through
 
-    monkeypatch.setattr(pipeline, "outcome", fail)
+    monkeypatch.setattr(pipeline, "check", fail)
     monkeypatch.setattr("tempfile.tempdir", str(tmp_path))
 
     done = run("check", folder)
@@ -161,6 +161,19 @@ def test_a_bug_at_one_file_keeps_the_others(
     (kept,) = tmp_path.glob("jamnut-bug-*.txt")
     assert str(kept) in " ".join(rows(done.out)["glaze_press.yaml"])
     assert "a wheel came off" in kept.read_text(encoding="utf-8")
+
+
+def test_the_task_holds_for_every_file(run: Callable[..., object], folder: Path) -> None:
+    (folder / "bad.yaml").unlink()
+    (folder / "low.yaml").unlink()
+
+    data = json.loads(run("steps", folder, "--task", "read", "--json").out)
+
+    assert len(data) == 2
+    for one in data:
+        assert "set" not in [stage["kind"] for stage in one["result"]["stages"]]
+    assert run("steps", folder, "--why", "RV1").status == 2
+    assert run("steps", folder, "--skew").status == 2
 
 
 # --- new and diff ----------------------------------------------------------------------------------------
