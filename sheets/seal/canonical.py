@@ -9,10 +9,10 @@ from typing import Final
 
 import rfc8785
 
+from sheets.crockford import CROCKFORD as CROCKFORD
+from sheets.crockford import in_crockford
 from sheets.quantities import number
 
-CROCKFORD: Final = "0123456789ABCDEFGHJKMNPQRSTVWXYZ"
-"""Crockford's base32: no I, L, O or U, so that nobody misreads it."""
 PRINTED: Final = 16
 """Characters of a digest that are printed: 80 bits."""
 
@@ -45,5 +45,4 @@ def canonical_bytes(value: object) -> bytes:
 
 def digest(data: bytes) -> str:
     """First 80 bits of SHA-256 in 16 characters of Crockford's base32. Source: FIPS 180-4 for the hash."""
-    bits = int.from_bytes(hashlib.sha256(data).digest()[:10], "big")
-    return "".join(CROCKFORD[(bits >> shift) & 31] for shift in range(75, -1, -5))
+    return in_crockford(hashlib.sha256(data).digest(), PRINTED)
