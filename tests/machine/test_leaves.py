@@ -14,7 +14,7 @@ def test_values_with_their_keys_and_units(small_text: str) -> None:
     assert found["parts", "RV1", "adjuster", "setting"] == (
         150.0,
         "bar",
-    )  # optional, and a quantity all the same
+    )  # optional as well
     assert found["parts", "PU1", "volumetric efficiency"] == (0.93, "")
     assert found["parts", "DV1", "positions", "centre"] == (("P to T",), None)
     assert found["parts", "HV1", "rest"] == ("closed", None)
