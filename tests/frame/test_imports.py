@@ -40,7 +40,9 @@ GATE_IMPORTS = {"pipeline", "errors", "sheets"}
 
 ANYWHERE = None
 FENCES = {
+    "asn1crypto": "seal",
     "click": "cli",
+    "cryptography": "seal",
     "fontpkg_ibm_plex_sans": "pages",
     "fontpkg_ibm_plex_sans_condensed": "pages",
     "jinja2": "wording",
@@ -49,6 +51,7 @@ FENCES = {
     "pint": "quantities",
     "pydantic": "machine",
     "pydantic_core": "machine",
+    "pyhanko": "seal",
     "qrcode": "pages",
     "reportlab": "pages",
     "rfc8785": "seal",
