@@ -7,7 +7,15 @@ from dataclasses import dataclass
 
 from sheets.circuit.model import TANK, Circuit
 from sheets.machine.model import Machine
-from sheets.machine.parts import CheckValve, DirectionalValve, FlowPath, HandValve, ReliefValve
+from sheets.machine.parts import (
+    CheckValve,
+    DirectionalValve,
+    FlowControl,
+    FlowPath,
+    HandValve,
+    Orifice,
+    ReliefValve,
+)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -42,13 +50,17 @@ def open_ways(machine: Machine, circuit: Circuit, positions: Mapping[str, str]) 
 
 
 def joined_at_rest(machine: Machine, circuit: Circuit, node: int) -> frozenset[int]:
-    """Nodes that a line valve at rest, a filter or an orifice joins with a node; spools don't count."""
+    """Nodes that a line valve at rest, a check valve or a filter joins with a node.
+
+    Spools don't count, and neither do throttles: what stands behind one may limit its own line, never the
+    node before it.
+    """
     rest = {valve: positions[0] for valve, positions in circuit.positions.items()}
     reached, front = {node}, [node]
     ways = [
         way
         for way in open_ways(machine, circuit, rest)
-        if not isinstance(machine.parts[way.part], DirectionalValve)
+        if not isinstance(machine.parts[way.part], DirectionalValve | Orifice | FlowControl)
     ]
     while front:
         here = front.pop()

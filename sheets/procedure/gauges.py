@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, field
 
 from sheets.amounts import Amount, Finding, Severity, bar, ratio
 from sheets.circuit.model import Circuit
@@ -63,6 +64,15 @@ def graduation_bar(gauge: DialGauge | DigitalGauge) -> float:
 
 
 @dataclass(frozen=True, kw_only=True)
+class Worst:
+    """Highest pressure that a node comes to in or near a test state, and what leads to it."""
+
+    pressure_bar: float
+    cause: Mapping[str, str] = field(default_factory=dict)
+    """``slip``: valve, screw or fault; with the valve or part, its position, the adjuster, the fault."""
+
+
+@dataclass(frozen=True, kw_only=True)
 class Readings:
     """What a gauge on a node would show in one test state; all in bar."""
 
@@ -73,8 +83,8 @@ class Readings:
     low_bar: float
     high_bar: float
     """What the setting and its window convert to."""
-    worst_bar: tuple[float, ...]
-    """Highest pressure of every node with the screw at its stop, after one slip, with one fault."""
+    worst: tuple[Worst, ...]
+    """Of every node, with the screw at its stop, after one slip, with one fault."""
     rating_bar: float
     """Lowest rating in reach."""
     floor_bar: float
@@ -90,22 +100,29 @@ def choose_gauge(
     A gauge that one slip or one fault would over-range, or whose error is as wide as the window, is refused.
     """
     best: tuple[tuple[int, float], GaugeChoice] | None = None
-    nearest = Failure(condition=Condition.SEEN, data={"line": circuit.nodes[readings.node].name})
+    nothing = Failure(condition=Condition.SEEN, data={"line": circuit.nodes[readings.node].name})
+    failures: list[Failure] = []
     controlled_bar = readings.pressures_bar[readings.node]
     for id_, gauge in machine.gauges.items():
         for test_point in gauge.fitted_at or ("",):
             place = circuit.node_of.get(gauge_port(id_, test_point))
             if place is None or abs(readings.pressures_bar[place] - controlled_bar) > SAME_PRESSURE_BAR:
                 continue
-            outcome = _judge(id_, gauge, test_point, policies, setting, readings, readings.worst_bar[place])
+            outcome = _judge(id_, gauge, test_point, policies, setting, readings, readings.worst[place])
             if isinstance(outcome, Failure):
-                nearest = outcome
+                failures.append(outcome)
             else:
                 rank = (len(outcome.findings), -min(outcome.accuracy_ratio, policies.accuracy_ratio))
                 if best is None or rank < best[0]:
                     best = (rank, outcome)
             break
-    return best[1] if best else nearest
+    return best[1] if best else min(failures, key=_share_over, default=nothing)
+
+
+def _share_over(failure: Failure) -> float:
+    """How far a gauge is over-ranged, as a share of what it carries; one that fails otherwise is nearer."""
+    over, most = failure.data.get("over"), failure.data.get("most")
+    return over.value / most.value if isinstance(over, Amount) and isinstance(most, Amount) else 0.0
 
 
 def _judge(
@@ -115,14 +132,17 @@ def _judge(
     policies: Policies,
     setting: Setting,
     readings: Readings,
-    worst_bar: float,
+    worst: Worst,
 ) -> GaugeChoice | Failure:
     error, graduation = error_bar(gauge), graduation_bar(gauge)
     data: dict[str, Amount | str] = {"gauge": id_, "test_point": test_point}
-    if worst_bar > gauge.rating_bar or readings.high_bar > gauge.range_bar:
-        most = gauge.rating_bar if worst_bar > gauge.rating_bar else gauge.range_bar
-        seen_bar = max(worst_bar, readings.high_bar)
-        return Failure(condition=Condition.SEEN, data={**data, "over": bar(seen_bar), "most": bar(most)})
+    if readings.high_bar > min(gauge.range_bar, gauge.rating_bar):
+        most_bar = min(gauge.range_bar, gauge.rating_bar)
+        over = {"over": bar(readings.high_bar), "most": bar(most_bar)}
+        return Failure(condition=Condition.SEEN, data={**data, **over})
+    if worst.pressure_bar > gauge.rating_bar:
+        over = {"over": bar(worst.pressure_bar), "most": bar(gauge.rating_bar)}
+        return Failure(condition=Condition.SEEN, data={**data, **over, **worst.cause})
     never = never_exceed_bar(
         rating_bar=min(readings.rating_bar, gauge.rating_bar),
         gauge_error_bar=error,

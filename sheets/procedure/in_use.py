@@ -14,20 +14,28 @@ STILL_EFFECT = 1e-6
 _BATCH = 256
 
 
-def ever_governs(circuit: Circuit, base: PlantState, adjuster: str) -> bool:
+def ever_governs(
+    circuit: Circuit, base: PlantState, adjuster: str, trusted_ports: frozenset[str] = frozenset()
+) -> bool:
     """Whether the adjuster's reading answers to it in any state that no opened line makes.
 
     Valves stand in every combination of their positions, the adjuster at both ends and the middle of its
     range (at its target in ``base`` it may only be hidden), the others at their targets, all at the
     highest or all at the lowest end. States that move or aren't fit for setting count too: what governs
-    there is in use. So does a state that isn't established, since nobody knows what governs it.
+    there is in use. So does a state that isn't established, since nobody knows what governs it; nor does
+    anybody where leakage alone decides the LS port of the adjuster's own pump, unless that is one of the
+    ``trusted_ports``.
     """
     place = next(index for index, site in enumerate(circuit.adjusters) if site.id == adjuster)
     site = circuit.adjusters[place]
     states = _states(circuit, base, site)
+    own_port = f"{site.part}.X"
+    doubtful = [id_ == site.part and own_port not in trusted_ports for id_ in circuit.pumps.ids]
     while batch := list(islice(states, _BATCH)):
         solved = solve(circuit, batch, effects=True)
         if solved.effects is None or not solved.established.all():
+            return True
+        if solved.loose_signals[:, doubtful].any():
             return True
         if (abs(solved.effects[:, place, site.controlled_node]) > STILL_EFFECT).any():
             return True

@@ -24,7 +24,7 @@ from sheets.procedure.conditions import (
     starved,
     unestablished,
 )
-from sheets.procedure.gauges import GaugeChoice, Readings, choose_gauge
+from sheets.procedure.gauges import GaugeChoice, Readings, Worst, choose_gauge
 from sheets.procedure.load import drive_findings
 from sheets.targets.settings import Setting
 
@@ -209,7 +209,7 @@ def _gauge(
             target_bar=reading_bar,
             low_bar=low.pressures_bar[node],
             high_bar=top.pressures_bar[node],
-            worst_bar=_worst(case, state, stop, setting.part),
+            worst=_worst(case, state, stop, setting),
             rating_bar=min(
                 here.rating_bar
                 for here, pressure_bar in zip(case.circuit.nodes, target.pressures_bar, strict=True)
@@ -221,33 +221,50 @@ def _gauge(
     )
 
 
-def _worst(case: Case, state: PlantState, stop: Solution, part: str) -> tuple[float, ...]:
+def _worst(case: Case, state: PlantState, stop: Solution, setting: Setting) -> tuple[Worst, ...]:
     """Highest pressure at every node with the screw at its stop, after one slip, or with one fault.
 
-    Slips: one valve elsewhere, one screw at the end of its range. A valve of ``part``, the one that is set,
-    stuck shut isn't counted: its pressure is approached slowly, with a stop rule. States that aren't
-    established count as beyond every gauge.
+    Slips: one valve elsewhere, one screw at the end of its range. The valve that is set, stuck shut, isn't
+    counted: its pressure is approached slowly, with a stop rule. States that aren't established count as
+    beyond every gauge.
     """
     slips = [
-        state.moved(valve, other)
+        (state.moved(valve, other), {"slip": "valve", "valve": valve, "position": other})
         for valve, positions in case.circuit.positions.items()
         for other in positions
         if other != state.positions[valve]
     ]
-    slips += [state.adjusted(site.id, site.highest_bar) for site in case.circuit.adjusters]
-    solved = solve(case.circuit, slips)
+    slips += [
+        (state.adjusted(site.id, site.highest_bar), {"slip": "screw", "adjuster": site.id})
+        for site in case.circuit.adjusters
+    ]
+    solved = solve(case.circuit, [slip for slip, _ in slips])
     faults = [
         fault
         for fault in faults_of(case.machine, case.circuit, state, kinds=CAN_RAISE)
-        if not (fault.kind is FaultKind.RELIEF_STUCK_SHUT and fault.part == part)
+        if not (fault.kind is FaultKind.RELIEF_STUCK_SHUT and fault.part == setting.part)
     ]
-    solutions = [
-        stop,
-        *(solved.one(index) for index in range(len(slips))),
-        *solve_faults(case.circuit, state, faults, start_bar=stop.pressures_bar),
+    caused = [
+        (stop, {"slip": "screw", "adjuster": setting.adjuster}),
+        *((solved.one(index), cause) for index, (_, cause) in enumerate(slips)),
+        *(
+            (solution, {"slip": "fault", "valve": fault.part, "fault": fault.kind.value})
+            for fault, solution in zip(
+                faults, solve_faults(case.circuit, state, faults, start_bar=stop.pressures_bar), strict=True
+            )
+        ),
     ]
     return tuple(
-        max(solution.pressures_bar[node] if solution.established else float("inf") for solution in solutions)
+        max(
+            (
+                Worst(
+                    pressure_bar=solution.pressures_bar[node] if solution.established else float("inf"),
+                    cause=cause,
+                )
+                for solution, cause in caused
+            ),
+            key=lambda worst: worst.pressure_bar,
+        )
         for node in range(len(case.circuit.nodes))
     )
 

@@ -88,7 +88,9 @@ def find_test_states(case: Case) -> Search:
         if one.answer is not None:
             answers[id_] = replace(one.answer, near_misses=one.near_misses())
         elif id_ in by_law or (
-            exhausted and not one.responded and not ever_governs(case.circuit, case.base, id_)
+            exhausted
+            and not one.responded
+            and not ever_governs(case.circuit, case.base, id_, case.trusted_ports)
         ):
             answers[id_] = NotInUse(adjuster=id_, by_law=id_ in by_law, states=states)
         else:

@@ -164,9 +164,19 @@ def _deadhead(job: Job, rig: Rig) -> Stage:
 
 
 def _back_out(job: Job, rig: Rig, adjuster: str) -> None:
+    """Turns a screw out with the drive off; only one whose direction is known may be moved unseen."""
+    if not _direction_known(job, adjuster):
+        finding = Finding(code="direction_not_known", severity=Severity.REFUSED, subject=adjuster)
+        if finding not in rig.findings:
+            rig.findings.append(finding)
+        return
     lowest_bar = job.case.site(adjuster).lowest_bar
     rig.do(StepKind.BACK_OUT, adjuster, Adjust(adjuster=adjuster, setting_bar=lowest_bar))
     rig.backed_out.add(adjuster)
+
+
+def _direction_known(job: Job, adjuster: str) -> bool:
+    return job.case.targets.settings[adjuster].screw.raises != "not known"
 
 
 def _otherwise(job: Job, valve: str, position: str) -> Failure | None:
@@ -334,9 +344,13 @@ def _set(job: Job, rig: Rig, adjuster: str, *, first: bool) -> Stage:
 def _raise(
     job: Job, rig: Rig, adjuster: str, to_raise: list[Adjust], reasons: dict[PlantAction, Failure]
 ) -> None:
-    """With the drive off: the one that is set goes low first, then the others go out of its way."""
+    """With the drive off: the one that is set goes low first, then the others go out of its way.
+
+    A screw whose direction nobody knows stays: the state was judged with it at its stop, too, and its
+    direction shows under the gauge.
+    """
     _stop(job, rig)
-    if adjuster not in rig.backed_out:
+    if adjuster not in rig.backed_out and _direction_known(job, adjuster):
         _back_out(job, rig, adjuster)
     for change in to_raise:
         at_stop = change.setting_bar >= job.case.site(change.adjuster).highest_bar

@@ -8,13 +8,13 @@ from itertools import pairwise
 
 from sheets.amounts import Derivation, Finding, Severity, bar, lpm, ratio
 from sheets.circuit.load_sensing import standby_from_differential
-from sheets.circuit.model import AdjusterSite, Circuit
+from sheets.circuit.model import AdjusterSite, Circuit, Node
 from sheets.circuit.reach import joined_at_rest, loaded_with
 from sheets.machine.model import Machine
 from sheets.machine.parts import FixedPump, LoadSensingControl, ReliefValve, VariablePump
 from sheets.machine.screws import Screw, screws_of
 from sheets.machine.site import Policies
-from sheets.targets.demand import Demand, work_demands
+from sheets.targets.demand import Demand, idle_loads, work_demands
 from sheets.targets.rules import (
     compensator_needed_bar,
     relief_capacity,
@@ -23,6 +23,9 @@ from sheets.targets.rules import (
     working_relief,
 )
 from sheets.targets.settings import Origin, Setting, Targets, window_of
+
+_LEAST_GAP_BAR, _LEAST_GAP_RATIO = 15.0, 1.10
+"""Policy: a relief that the ratings press down stands this far over a compensator at the least."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -49,12 +52,20 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
     lines = _pressure_lines(machine, circuit)
     findings: list[Finding] = []
     settings: dict[str, Setting] = {}
-    demands = _demands(machine, circuit, screws, lines)
+    differences = {
+        line.difference: _difference(line.difference, sites[line.difference], screws, policies)
+        for line in lines
+        if line.difference is not None
+    }
+    trial_bar, limits = _trial(screws, differences)
+    demands = work_demands(machine, circuit, trial_bar, limits)
+    findings += idle_loads(machine, circuit, trial_bar)
 
     for line in lines:
+        if line.limit is None and not line.reliefs:
+            findings.append(Finding(code="nothing_limits", severity=Severity.REFUSED, subject=line.pump))
         if line.difference is not None:
-            site = sites[line.difference]
-            _settle(settings, findings, _difference(line.difference, site, screws, policies))
+            _settle(settings, findings, differences[line.difference])
         if line.limit is not None:
             _settle(settings, findings, _compensator(line, screws, demands, policies))
         for relief in line.reliefs:
@@ -109,21 +120,14 @@ def _pressure_lines(machine: Machine, circuit: Circuit) -> tuple[_Line, ...]:
     return tuple(lines)
 
 
-def _demands(
-    machine: Machine,
-    circuit: Circuit,
-    screws: Mapping[str, Screw],
-    lines: tuple[_Line, ...],
-) -> tuple[Demand, ...]:
-    differences = {line.difference for line in lines}
+def _trial(
+    screws: Mapping[str, Screw], differences: Mapping[str, Setting | Finding]
+) -> tuple[dict[str, float], frozenset[str]]:
+    """Settings in which the work is looked at, and the limits among them, which stand at their ends."""
     limits = frozenset(id_ for id_ in screws if id_ not in differences)
-    trial_bar = {
-        id_: screw.adjuster.highest_bar
-        if id_ in limits
-        else (screw.adjuster.setting_bar or screw.adjuster.highest_bar)
-        for id_, screw in screws.items()
-    }
-    return work_demands(machine, circuit, trial_bar, limits)
+    trial_bar = {id_: screw.adjuster.highest_bar for id_, screw in screws.items()}
+    trial_bar |= {id_: known.target_bar for id_, known in differences.items() if isinstance(known, Setting)}
+    return trial_bar, limits
 
 
 def _missing(adjuster: str) -> Finding:
@@ -291,7 +295,7 @@ def _relief(
     opening, opening_is_policy = _ratio(
         part.opening_ratio, policies.direct_opening_ratio if direct else policies.pilot_opening_ratio
     )
-    closing, _ = _ratio(
+    closing, closing_is_policy = _ratio(
         part.closing_ratio, policies.direct_closing_ratio if direct else policies.pilot_closing_ratio
     )
     capacity = relief_capacity(
@@ -309,6 +313,9 @@ def _relief(
             compensator_top_bar=below.high_bar, gap_bar=policies.gap_bar, closing_ratio=closing
         )
         target_bar = max(bottom_bar / (1.0 - policies.window_ratio), bottom_bar + policies.window_minimum_bar)
+        if closing_is_policy:
+            rating_bar = _weakest(machine, circuit, circuit.node_of[f"{relief}.P"]).rating_bar
+            target_bar = _under_rating(target_bar, rating_bar, below.target_bar, policies)
         origin = Origin.COMPUTED
     else:
         target_bar, origin = screw.setting_bar, Origin.GIVEN
@@ -331,6 +338,22 @@ def _relief(
         derivations=(derivation, *setting.derivations),
         floor_bar=below.high_bar,
     )
+
+
+def _under_rating(target_bar: float, rating_bar: float, compensator_bar: float, policies: Policies) -> float:
+    """A computed relief where the ratings leave no room for it, its closing ratio being policy only.
+
+    It comes down until half a window lies between its window and the rating, but never under common practice
+    over the compensator; what it gives up in closing is then warned of by the rule that asked for it.
+    """
+    half_bar = max(policies.window_ratio * target_bar, policies.window_minimum_bar)
+    if target_bar + half_bar <= rating_bar:
+        return target_bar
+    roomy_bar = min(
+        rating_bar / (1.0 + 2.0 * policies.window_ratio), rating_bar - 2.0 * policies.window_minimum_bar
+    )
+    least_bar = max(compensator_bar + _LEAST_GAP_BAR, _LEAST_GAP_RATIO * compensator_bar)
+    return min(target_bar, max(least_bar, roomy_bar))
 
 
 def _working_relief(
@@ -372,12 +395,17 @@ def _ratio(plate: float | None, policy: float) -> tuple[float, bool]:
     return (policy, True) if plate is None else (plate, False)
 
 
+def _weakest(machine: Machine, circuit: Circuit, node: int) -> Node:
+    """The node of the lowest rating among those that come to the pressure of a node."""
+    loaded = sorted(loaded_with(machine, circuit, node))
+    return min((circuit.nodes[index] for index in loaded), key=lambda each: each.rating_bar)
+
+
 def _within_rating(
     setting: Setting, site: AdjusterSite, machine: Machine, circuit: Circuit
 ) -> tuple[Finding, ...]:
     """A setting must lie under every rating that its pressure comes to, window and all."""
-    loaded = sorted(loaded_with(machine, circuit, site.controlled_node))
-    node = min((circuit.nodes[index] for index in loaded), key=lambda each: each.rating_bar)
+    node = _weakest(machine, circuit, site.controlled_node)
     if setting.high_bar <= node.rating_bar:
         return ()
     return (

@@ -2,13 +2,20 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
+from itertools import islice, product
 
+from sheets.amounts import Amount, Finding, Severity
 from sheets.circuit.model import Circuit
+from sheets.circuit.plant import PlantState
 from sheets.circuit.solver import solve
 from sheets.machine.model import Machine
-from sheets.machine.parts import DirectionalValve, FixedPump, VariablePump
+from sheets.machine.parts import Cylinder, DirectionalValve, FixedPump, HydraulicMotor, VariablePump
+
+_MOST_POSITIONS = 1024
+"""Sets of spool positions that are tried for a load; beyond them nothing is said about it."""
+_BATCH = 256
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -72,3 +79,60 @@ def work_demands(
                     )
                 )
     return tuple(sorted(demands, key=lambda demand: (-demand.pump_pressure_bar, demand.actuator)))
+
+
+def idle_loads(machine: Machine, circuit: Circuit, settings_bar: Mapping[str, float]) -> tuple[Finding, ...]:
+    """Refuses loads that no spool position moves, though every limit stands at the end of its range.
+
+    ``settings_bar`` as for ``work_demands``. Such a load can't be what the pump is set for: the load, the
+    nets or what is said of an LS port is wrong, and no work pressure is known. Nothing is said where there
+    are too many sets of positions to look at all, or where a state isn't established.
+    """
+    left = dict(_loads(machine))
+    running = circuit.rest_state(settings_bar)
+    for drive in circuit.drives:
+        running = running.driven(drive, on=True)
+    spools = [id_ for id_, part in machine.parts.items() if isinstance(part, DirectionalValve)]
+    sets = product(*(circuit.positions[id_] for id_ in spools))
+    if not spools:
+        return ()
+    tried = 0
+    while left and (batch := list(islice(sets, _BATCH))):
+        tried += len(batch)
+        if tried > _MOST_POSITIONS:
+            return ()
+        states: list[PlantState] = []
+        for positions in batch:
+            state = running
+            for spool, position in zip(spools, positions, strict=True):
+                state = state.moved(spool, position)
+            states.append(state)
+        solved = solve(circuit, states)
+        if not solved.established.all():
+            return ()
+        for index in range(len(batch)):
+            solution = solved.one(index)
+            for actuator in solution.moving:
+                turns = isinstance(machine.parts[actuator], HydraulicMotor)
+                left.pop((actuator, turns or solution.speeds[actuator] > 0.0), None)
+    return tuple(
+        Finding(
+            code="load_never_moves",
+            severity=Severity.REFUSED,
+            subject=actuator,
+            data={"load": load, "sense": sense},
+        )
+        for (actuator, _), (load, sense) in left.items()
+    )
+
+
+def _loads(machine: Machine) -> Iterator[tuple[tuple[str, bool], tuple[Amount, str]]]:
+    """Every load that a file names, by actuator and whether it is of the positive sense, as a motor's is."""
+    for id_, part in machine.parts.items():
+        if isinstance(part, Cylinder):
+            both = ((part.extending_load_kn, "extending"), (part.retracting_load_kn, "retracting"))
+            for load_kn, sense in both:
+                if load_kn > 0.0:
+                    yield (id_, sense == "extending"), (Amount(value=load_kn, quantity="force_kn"), sense)
+        elif isinstance(part, HydraulicMotor) and part.load_torque_nm > 0.0:
+            yield (id_, True), (Amount(value=part.load_torque_nm, quantity="torque_nm"), "either way")

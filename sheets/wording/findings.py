@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from sheets.amounts import Amount, Finding
+from sheets.machine.parts import Cylinder, HydraulicMotor
 from sheets.procedure.answers import NotInUse
 from sheets.procedure.conditions import Failure
 from sheets.procedure.steps import Procedure
@@ -38,10 +39,28 @@ def _values(speaker: Speaker, data: Mapping[str, Amount | str]) -> dict[str, str
     """Figures and names as text; adjusters by what people call them."""
     values = {key: speaker.figures.amount(value) for key, value in data.items()}
     values["range_end"] = "yes" if _at_range_end(speaker, data) else ""
-    for key in ("other", "governs"):
+    values["unknown_turn"] = "yes" if _turn_unknown(speaker, str(data.get("governs", ""))) else ""
+    for key in ("part", "rated_part"):
+        if _by_structure(speaker, str(data.get(key, "")), data.get("rating")):
+            values[key] = speaker.structure(values[key])
+    for key in ("other", "governs", "adjuster"):
         if values.get(key) in speaker.screws:
             values[key] = speaker.adjuster(values[key])
     return values
+
+
+def _turn_unknown(speaker: Speaker, adjuster: str) -> bool:
+    return adjuster in speaker.screws and speaker.screws[adjuster].adjuster.raises == "not known"
+
+
+def _by_structure(speaker: Speaker, part: str, rating: Amount | str | None) -> bool:
+    """A rating below the one on an actuator's plate is what the structure around it stands."""
+    actuator = speaker.machine.parts.get(part)
+    return (
+        isinstance(actuator, Cylinder | HydraulicMotor)
+        and isinstance(rating, Amount)
+        and rating.value < actuator.rating_bar - 1e-6
+    )
 
 
 def _at_range_end(speaker: Speaker, data: Mapping[str, Amount | str]) -> bool:

@@ -74,6 +74,10 @@ class Speaker:
         screw = self.screws[id_]
         return self._names.say("adjuster", name=screw.name, part=screw.part)
 
+    def structure(self, id_: str) -> str:
+        """``the structure at CY1``: what an actuator works on."""
+        return self._names.say("structure", part=id_)
+
     def set_title(self, id_: str) -> str:
         screw = self.screws[id_]
         return self._names.say("set_title", name=screw.name, kind=self.machine.parts[screw.part].kind)
