@@ -1,0 +1,116 @@
+"""Joins the stages: a table of contents, one function a verb.
+
+Each name below stands in the module behind it, which is imported when the name is first asked for: reading a
+machine file must not wait for what draws pages or signs them.
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import TYPE_CHECKING, Any, Final
+
+if TYPE_CHECKING:
+    from sheets.machine.answering import Answers as Answers
+    from sheets.machine.files import machine_files as machine_files
+    from sheets.machine.walking import WalkdownState as WalkdownState
+    from sheets.pipeline.comparing import diff as diff
+    from sheets.pipeline.comparing import diff_json as diff_json
+    from sheets.pipeline.comparing import diff_text as diff_text
+    from sheets.pipeline.computing import issuable as issuable
+    from sheets.pipeline.computing import issuable_text as issuable_text
+    from sheets.pipeline.computing import skew_text as skew_text
+    from sheets.pipeline.computing import status_of as status_of
+    from sheets.pipeline.computing import steps as steps
+    from sheets.pipeline.computing import steps_json as steps_json
+    from sheets.pipeline.computing import steps_text as steps_text
+    from sheets.pipeline.computing import targets as targets
+    from sheets.pipeline.computing import targets_json as targets_json
+    from sheets.pipeline.computing import targets_text as targets_text
+    from sheets.pipeline.computing import task_of as task_of
+    from sheets.pipeline.computing import why_text as why_text
+    from sheets.pipeline.describing import Described as Described
+    from sheets.pipeline.describing import check as check
+    from sheets.pipeline.describing import check_json as check_json
+    from sheets.pipeline.describing import check_text as check_text
+    from sheets.pipeline.many import Writing as Writing
+    from sheets.pipeline.many import outcome_of_check as outcome_of_check
+    from sheets.pipeline.many import outcome_of_pack as outcome_of_pack
+    from sheets.pipeline.many import outcome_of_steps as outcome_of_steps
+    from sheets.pipeline.many import outcome_of_targets as outcome_of_targets
+    from sheets.pipeline.printing import content as content
+    from sheets.pipeline.printing import draft_name as draft_name
+    from sheets.pipeline.printing import pack as pack
+    from sheets.pipeline.printing import write_pack as write_pack
+    from sheets.pipeline.starting import new as new
+    from sheets.pipeline.starting import starter_kinds as starter_kinds
+    from sheets.pipeline.walking import walkdown as walkdown
+    from sheets.pipeline.walking import walkdown_json as walkdown_json
+    from sheets.pipeline.walking import walkdown_questions as walkdown_questions
+    from sheets.pipeline.walking import walkdown_standing as walkdown_standing
+    from sheets.pipeline.walking import walkdown_text_lines as walkdown_text_lines
+    from sheets.pipeline.walking import write_walkdown as write_walkdown
+    from sheets.wording.as_json import Json as Json
+    from sheets.wording.summary import Outcome as Outcome
+    from sheets.wording.summary import broken as broken
+    from sheets.wording.summary import summary_json as summary_json
+    from sheets.wording.summary import summary_lines as summary_lines
+
+_CONTENTS: Final[dict[str, str]] = {
+    # read a machine
+    "Described": "pipeline.describing",
+    "check": "pipeline.describing",
+    "check_json": "pipeline.describing",
+    "check_text": "pipeline.describing",
+    # begin one
+    "new": "pipeline.starting",
+    "starter_kinds": "pipeline.starting",
+    # compare it with the machine itself
+    "Answers": "machine.answering",
+    "WalkdownState": "machine.walking",
+    "walkdown": "pipeline.walking",
+    "walkdown_json": "pipeline.walking",
+    "walkdown_questions": "pipeline.walking",
+    "walkdown_standing": "pipeline.walking",
+    "walkdown_text_lines": "pipeline.walking",
+    "write_walkdown": "pipeline.walking",
+    # compute settings and the job
+    "targets": "pipeline.computing",
+    "targets_json": "pipeline.computing",
+    "targets_text": "pipeline.computing",
+    "task_of": "pipeline.computing",
+    "steps": "pipeline.computing",
+    "steps_json": "pipeline.computing",
+    "steps_text": "pipeline.computing",
+    "why_text": "pipeline.computing",
+    "skew_text": "pipeline.computing",
+    "status_of": "pipeline.computing",
+    "issuable": "pipeline.computing",
+    "issuable_text": "pipeline.computing",
+    # print it
+    "content": "pipeline.printing",
+    "draft_name": "pipeline.printing",
+    "pack": "pipeline.printing",
+    "write_pack": "pipeline.printing",
+    # compare two machines
+    "diff": "pipeline.comparing",
+    "diff_json": "pipeline.comparing",
+    "diff_text": "pipeline.comparing",
+    # many machines at once
+    "machine_files": "machine.files",
+    "Writing": "pipeline.many",
+    "Outcome": "wording.summary",
+    "broken": "wording.summary",
+    "outcome_of_check": "pipeline.many",
+    "outcome_of_pack": "pipeline.many",
+    "outcome_of_steps": "pipeline.many",
+    "outcome_of_targets": "pipeline.many",
+    "summary_json": "wording.summary",
+    "summary_lines": "wording.summary",
+}
+"""Every name of this package to the module, below ``sheets``, that it stands in."""
+
+
+def __getattr__(name: str) -> Any:  # whatever the module behind it holds
+    if name not in _CONTENTS:
+        raise AttributeError(f"{__name__} has no {name}")
+    return getattr(import_module(f"sheets.{_CONTENTS[name]}"), name)

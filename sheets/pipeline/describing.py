@@ -1,0 +1,77 @@
+"""From files to a described machine: read, checked, its circuit built."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from datetime import date
+from pathlib import Path
+
+from sheets.circuit.build import both_ends
+from sheets.circuit.model import Circuit
+from sheets.machine.files import SITE_FILE, walkdown_file
+from sheets.machine.loading import load_machine, load_site, load_walkdown
+from sheets.machine.model import Machine
+from sheets.machine.site import Policies, Site
+from sheets.machine.walkdown import Walkdown
+from sheets.wording.as_json import Json, machine_json
+from sheets.wording.steps import Speaker
+from sheets.wording.terminal import machine_lines
+
+
+@dataclass(frozen=True, kw_only=True)
+class Described:
+    """A machine as read, with its site."""
+
+    machine: Machine
+    site: Site | None
+    circuit: Circuit
+    walkdown: Walkdown | None = None
+
+    @property
+    def policies(self) -> Policies:
+        return self.site.policies if self.site else Policies()
+
+
+def check(machine_file: Path, site_file: Path | None = None, today: date | None = None) -> Described:
+    """Reads a machine file, its site and walk-down files where there are, and builds the circuit.
+
+    ``today`` only refuses walk-down answers from the future. Raises InputError.
+    """
+    machine = load_machine(machine_file).machine
+    site = _site(machine_file, site_file)
+    policies = site.policies if site else Policies()
+    ends = both_ends(
+        machine,
+        opening_ratio_direct=policies.direct_opening_ratio,
+        opening_ratio_pilot=policies.pilot_opening_ratio,
+        control_width_bar=policies.compensator_width_bar,
+    )
+    # Where the maker's drawing shows no bleed, outlet pressure reaches a port that is cut off: the last end.
+    # Where nobody has looked, the search refuses every state in which the end matters.
+    walked = walkdown_beside(machine_file, machine, today)
+    return Described(machine=machine, site=site, circuit=ends[-1], walkdown=walked)
+
+
+def _site(machine_file: Path, site_file: Path | None) -> Site | None:
+    if site_file is not None:
+        return load_site(site_file).site
+    beside = machine_file.parent / SITE_FILE
+    return load_site(beside).site if beside.is_file() else None
+
+
+def walkdown_beside(machine_file: Path, machine: Machine, today: date | None) -> Walkdown | None:
+    beside = walkdown_file(machine_file)
+    return load_walkdown(beside, machine=machine, today=today) if beside.is_file() else None
+
+
+def check_text(described: Described) -> Iterator[str]:
+    return machine_lines(described.machine)
+
+
+def check_json(described: Described) -> dict[str, Json]:
+    return machine_json(described.machine)
+
+
+def speaker_of(described: Described) -> Speaker:
+    return Speaker(described.machine, described.circuit, described.policies, {})
