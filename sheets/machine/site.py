@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from typing import Annotated
+from typing import Annotated, Literal
 
 from sheets.machine.fields import (
     Bar,
@@ -28,6 +28,17 @@ RecordAddress = Annotated[
         says="a web address without a closing slash",
         example="https://records.example",
         longest=54,  # the code on a page has room for 84 characters, and 30 of them are the record's own
+    ),
+]
+
+
+TimeServer = Annotated[
+    str,
+    Name(
+        pattern=r"https?://[A-Za-z0-9][A-Za-z0-9.-]*(?::[0-9]{1,5})?(?:/[A-Za-z0-9_./-]*)?",
+        says="a web address",
+        example="https://time.example",
+        longest=200,
     ),
 ]
 
@@ -88,6 +99,35 @@ class Policies(Entry):
             )
 
 
+Meaning = Literal["prepared", "checked", "approved"]
+"""What a signature says; the order in which they are given."""
+
+
+class Signatures(Entry):
+    """Which signatures an issued pack needs, and whose certificates the site trusts."""
+
+    needed: tuple[Meaning, ...] = ("prepared", "checked", "approved")
+    """Meanings that must all be signed. Prepared and approved can't be waived, nor given by one person."""
+    trust: tuple[Text, ...] = ()
+    """Certificate files (PEM) of the authorities that the site trusts, beside this file."""
+    time_server: TimeServer | None = None
+    """Address of a time server (RFC 3161); without one a signature carries its signer's own time."""
+    note: Text = ""
+    """Printed as the state of every issue of this site, for example: demonstration."""
+
+    def contradictions(self) -> Iterator[Flaw]:
+        yield from super().contradictions()
+        for meaning in ("prepared", "approved"):
+            if meaning not in self.needed:
+                yield Flaw(
+                    at=("needed",),
+                    what=f"The signature {meaning} can't be waived.",
+                    fix="Name at least prepared and approved; checked may be left out.",
+                )
+        if len(set(self.needed)) < len(self.needed):
+            yield Flaw(at=("needed",), what="A signature stands here twice.", fix="Name each once.")
+
+
 class Site(Entry):
     """What holds for all machines of one works."""
 
@@ -105,5 +145,7 @@ class Site(Entry):
     """Where an injection injury is treated, in the words for the card."""
     local_rules: tuple[Text, ...] = ()
     """Rules of the works, each printed as it stands."""
+    signatures: Signatures = Signatures()
+    """Signatures that an issued pack needs, and who is trusted."""
     policies: Policies = Policies()
     """Policy figures of the works, where they differ from the project's."""
