@@ -31,8 +31,11 @@ class Invariant(Enum):
     ZERO = "run_not_zero"
     LOCKED = "run_runs_while_locked"
     GAUGE_WITHIN = "run_gauge_over"
+    GAUGE_FITTED = "run_gauge_not_fitted"
     READS_RIGHT = "run_reads_wrong"
     ON_TARGET = "run_off_target"
+    AS_IN_SERVICE = "run_left_shifted"
+    GAUGES_OFF = "run_gauge_left"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -147,6 +150,22 @@ def gauge_within(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
     return None
 
 
+def gauge_fitted(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
+    """What is read for the job was fitted before; a gauge that is fixed on a line always shows."""
+    step = moment.step
+    if step is None:
+        return None
+    reads = {} if step.reading is None else {step.reading.gauge: step.reading.test_point}
+    reads |= {band.gauge: moment.fitted.get(band.gauge, "") for band in step.bands}
+    if step.kind is StepKind.VERIFY_ZERO:
+        reads[step.subject] = str(step.data["test_point"])
+    for gauge, test_point in reads.items():
+        fixed = not moment.machine.gauges[gauge].fitted_at
+        if not fixed and (not test_point or moment.fitted.get(gauge) != test_point):
+            return gauge, {"test_point": test_point}
+    return None
+
+
 CHECKS: Mapping[Invariant, Check] = {
     Invariant.WITHIN_RATING: within_rating,
     Invariant.STILL: still,
@@ -156,5 +175,6 @@ CHECKS: Mapping[Invariant, Check] = {
     Invariant.ZERO: zero,
     Invariant.LOCKED: locked,
     Invariant.GAUGE_WITHIN: gauge_within,
+    Invariant.GAUGE_FITTED: gauge_fitted,
 }
 """Held on the start state and after every step, once its pressures are established."""

@@ -12,7 +12,6 @@ from sheets.amounts import Finding, Severity, bar
 from sheets.circuit.model import Circuit
 from sheets.circuit.plant import PlantState
 from sheets.circuit.solution import Solution
-from sheets.circuit.solver import solve
 from sheets.circuit.step import take_steps
 from sheets.circuit.verdict import Verdict
 from sheets.machine.model import Machine
@@ -45,6 +44,8 @@ class Start:
     settings_bar: Mapping[str, float]
     as_printed: bool
     """The printed readings were computed from this start."""
+    in_service: bool = False
+    """The drives run when the job begins, so that lines hold pressure once they stop."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -80,7 +81,7 @@ class Replay:
 
 
 def starts_of(circuit: Circuit, targets: Targets) -> tuple[Start, ...]:
-    """All at target; all backed out; each one alone at the end of its range.
+    """All at target, standing and in service; all backed out; each one alone at the end of its range.
 
     Nobody knows how screws stand before they are read, so the steps must hold from all of these.
     """
@@ -88,6 +89,7 @@ def starts_of(circuit: Circuit, targets: Targets) -> tuple[Start, ...]:
     all_out = {site.id: site.lowest_bar for site in circuit.adjusters}
     starts = [
         Start(name="all at target", settings_bar=at_target, as_printed=True),
+        Start(name="in service", settings_bar=at_target, as_printed=True, in_service=True),
         Start(name="all backed out", settings_bar=all_out, as_printed=False),
     ]
     starts += [
@@ -142,9 +144,10 @@ class _Runner:
     ) -> None:
         self.machine, self.circuit, self.policies = machine, circuit, policies
         self.trusted_ports, self.starts = trusted_ports, starts
-        self.states = [circuit.rest_state(start.settings_bar) for start in starts]
-        batch = solve(circuit, self.states)
-        self.solutions = [batch.one(index) for index in range(len(starts))]
+        standing = [_standing(circuit, start) for start in starts]
+        outcomes = take_steps(circuit, [(state, None) for state in standing], to_stops=False)
+        self.states = [outcome.state for outcome in outcomes]
+        self.solutions = [outcome.solution for outcome in outcomes]
         self.fitted: dict[str, str] = {}
         self.traces: list[list[Traced]] = [[] for _ in starts]
         self.violations: list[list[Violation]] = [[] for _ in starts]
@@ -159,6 +162,7 @@ class _Runner:
         for index, state in enumerate(self.states):
             if self.stopped_at[index] is None:
                 self.violations[index].extend(_off_target(procedure, targets, state))
+                self.violations[index].extend(self._left_behind(procedure, state))
         return tuple(
             Run(start=start, trace=tuple(trace), violations=tuple(violations), stopped_at=stopped)
             for start, trace, violations, stopped in zip(
@@ -253,6 +257,35 @@ class _Runner:
                     "start": start.name,
                 },
             )
+
+    def _left_behind(self, procedure: Procedure, state: PlantState) -> Iterator[Violation]:
+        """At the end every valve stands as in service, and what was fitted is off."""
+        at, place = len(procedure.stages) - 1, len(procedure.stages[-1].steps) - 1
+        for valve, positions in self.circuit.positions.items():
+            if state.positions[valve] != positions[0]:
+                yield Violation(
+                    invariant=Invariant.AS_IN_SERVICE,
+                    stage=at,
+                    step=place,
+                    subject=valve,
+                    data={"position": state.positions[valve], "rest": positions[0]},
+                )
+        for gauge, test_point in self.fitted.items():
+            yield Violation(
+                invariant=Invariant.GAUGES_OFF,
+                stage=at,
+                step=place,
+                subject=gauge,
+                data={"test_point": test_point},
+            )
+
+
+def _standing(circuit: Circuit, start: Start) -> PlantState:
+    """The plant before the job: valves at rest, settings of the start, drives as it says."""
+    state = circuit.rest_state(start.settings_bar)
+    for drive in circuit.drives if start.in_service else ():
+        state = state.driven(drive, on=True)
+    return state
 
 
 def _off_target(procedure: Procedure, targets: Targets, state: PlantState) -> Iterator[Violation]:
