@@ -246,6 +246,11 @@ class PageWords:
     issued: str = "issued"
     state: str = "state"
     changes: str = "changes"
+    target: str = "target"
+    accept: str = "accept"
+    never_exceed: str = "never exceed"
+    code: str = "code with the record address"
+    """Said in its place to who hears the page."""
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -12,6 +12,7 @@ from reportlab.pdfgen.pathobject import PDFPathObject
 from sheets.pages.document import Document
 from sheets.pages.fonts import WIDE_FONT, WIDE_SCALE, WIDE_STROKE, Weight, condensed, font_name, spans, wide
 from sheets.pages.placed import MM, Circle, Code, Item, Line, PlacedPage, Polygon, Rect, TextRun
+from sheets.pages.structure import runs
 
 SIGN_STROKE = {Weight.REGULAR: 0.075, Weight.SEMIBOLD: 0.105, Weight.BOLD: 0.12}
 """Thickness of a sign drawn as a path, as a share of the size."""
@@ -46,12 +47,24 @@ def sign(canvas: Canvas, character: str, x: float, y: float, size: float, weight
     canvas.drawPath(path, stroke=1, fill=0)
 
 
+def text_string(text: str) -> str:
+    """A text as digits of a PDF string, UTF-16 with its mark (ISO 32000-1, 7.9.2.2)."""
+    return ("\ufeff" + text).encode("utf-16-be").hex().upper()
+
+
 def text_run(canvas: Canvas, item: TextRun, x: float, y: float) -> None:
-    """The spans of a run from (x, y), each by its source."""
+    """The spans of a run from (x, y), each by its source.
+
+    A blank ends it: who hears the page, or searches it, must not find two lines run together.
+    """
     ink_colour(canvas, white=item.white)
-    for span in spans(item.text, item.weight):
+    found = spans(item.text, item.weight)
+    for span in found:
+        ending = " " if span is found[-1] else ""
         if span.source == "path":
+            canvas.addLiteral(f"/Span <</ActualText <{text_string(span.text + ending)}>>> BDC")
             sign(canvas, span.text, x, y, item.size, item.weight)
+            canvas.addLiteral("EMC")
         else:
             text = canvas.beginText(x, y)
             if span.source == "wide":
@@ -64,6 +77,8 @@ def text_run(canvas: Canvas, item: TextRun, x: float, y: float) -> None:
             else:
                 text.setFont(font_name(item.weight), item.size)
             text.textOut(span.text)
+            if ending:
+                text.textOut(ending)
             if span.source == "wide":
                 text.setHorizScale(100)
                 text.setTextRenderMode(FILL_ONLY)
@@ -140,6 +155,28 @@ def draw_item(canvas: Canvas, item: Item, page_height: float) -> None:
             shape(canvas, thickness=0, fill="black", path=code_path(item, page_height, path))
 
 
+ARTIFACTS = {
+    "Header": "<</Type /Pagination /Subtype /Header>>",
+    "Footer": "<</Type /Pagination /Subtype /Footer>>",
+    "Layout": "<</Type /Layout>>",
+    "Page": "<</Type /Page>>",
+}
+"""Property lists of what is no part of the content (ISO 32000-1, 14.8.2.2)."""
+
+
+def draw_page(canvas: Canvas, page: PlacedPage) -> None:
+    """All items of a page, each run marked as what it is."""
+    for run in runs(page.items):
+        last = run.path[-1]
+        if run.number is None:
+            canvas.addLiteral(f"/Artifact {ARTIFACTS[str(last.key)]} BDC")
+        else:
+            canvas.addLiteral(f"/{last.type} <</MCID {run.number}>> BDC")
+        for item in run.items:
+            draw_item(canvas, item, page.height)
+        canvas.addLiteral("EMC")
+
+
 def raw_pdf(pages: Sequence[PlacedPage], document: Document) -> bytes:
     """Pages as the drawing library writes them, before the finishing pass."""
     for weight in Weight:
@@ -164,8 +201,7 @@ def raw_pdf(pages: Sequence[PlacedPage], document: Document) -> bytes:
             key = f"page-{page.number}"
             canvas.bookmarkPage(key)
             canvas.addOutlineEntry(page.bookmark, key, level=0)
-        for item in page.items:
-            draw_item(canvas, item, page.height)
+        draw_page(canvas, page)
         canvas.showPage()
     canvas.save()
     return buffer.getvalue()

@@ -61,6 +61,14 @@ def check(face: GaugeFace) -> None:
         )
 
 
+def face_alternative(face: GaugeFace, *, target: str, window: str, never_exceed: str) -> str:
+    """What a face says, in words: for who hears the page. The other texts are the words for its numbers."""
+    return (
+        f"{face.caption}: {target} {face.target_text} {face.unit}, {window} {face.window_text} {face.unit}, "
+        f"{never_exceed} {face.never_exceed_text} {face.unit}"
+    )
+
+
 def number_text(value: float) -> str:
     """A number on a dial, without needless digits."""
     return f"{value:.6g}"

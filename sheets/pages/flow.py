@@ -27,6 +27,7 @@ from sheets.pages.document import (
 )
 from sheets.pages.ink import Ink, Piece
 from sheets.pages.placed import MM
+from sheets.pages.roles import GROUP, element
 
 Unit = Piece | PanelRun
 
@@ -36,21 +37,30 @@ def kept(pieces: list[Piece]) -> list[Piece]:
     return [*pieces[:-1], replace(pieces[-1], keep_with_next=True)] if pieces else []
 
 
-def block_pieces(block: Block, width: float, signing: Signing, *, after_act: bool = False) -> list[Piece]:
-    """Pieces of any block but a run with a panel and a sheet of tags."""
+def heading_type(heading: Heading, before: Sequence[Block]) -> str:
+    """H2 below the title of the section; H3 only below an H2, so that no rank is left out."""
+    below = any(
+        isinstance(block, Act) or (isinstance(block, Heading) and block.level == 1) for block in before
+    )
+    return "H3" if heading.level > 1 and below else "H2"
+
+
+def block_pieces(block: Block, width: float, signing: Signing, before: Sequence[Block]) -> list[Piece]:
+    """Pieces of any block but a run with a panel and a sheet of tags; `before` are those of its section."""
     match block:
         case Heading():
-            return [heading_piece(block, width)]
+            return [heading_piece(block, width, type_=heading_type(block, before))]
         case Paragraph():
             return paragraph_pieces(block, width)
         case Warning():
             return [warning_piece(block, width)]
         case Steps():
-            pieces = [step_piece(step, width, signing) for step in block.steps]
+            pieces = [step_piece(step, width, signing, index=index) for index, step in enumerate(block.steps)]
             return [replace(piece, space_before=max(piece.space_before, 2.5 * MM)) if index == 0 else piece
                     for index, piece in enumerate(pieces)]  # fmt: skip
         case Act():
             first, *rows = act_pieces(block, width, signing)
+            after_act = bool(before) and isinstance(before[-1], Act)
             return [replace(first, space_before=0.0 if after_act else 3.5 * MM), *rows]
         case Hold():
             return [hold_piece(block, width, signing, space_before=4 * MM)]
@@ -72,16 +82,16 @@ def units_of(blocks: Sequence[Block], width: float, signing: Signing) -> list[Un
         if skip:
             skip = False
             continue
+        group = element(GROUP, index)
         following = blocks[index + 1] if index + 1 < len(blocks) else None
         if isinstance(block, Steps) and block.panel is not None:
             tail: tuple[Piece, ...] = ()
             if isinstance(following, Hold):
                 tail = (hold_piece(following, width, signing),)
                 skip = True
-            units.append(panel_run(block, block.panel, width, signing, tail))
+            units.append(panel_run(block, block.panel, width, signing, tail).within(group))
             continue
-        after_act = index > 0 and isinstance(blocks[index - 1], Act)
-        pieces = block_pieces(block, width, signing, after_act=after_act)
+        pieces = [piece.within(group) for piece in block_pieces(block, width, signing, blocks[:index])]
         units.extend(kept(pieces) if isinstance(following, Hold) else pieces)
     return units
 

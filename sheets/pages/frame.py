@@ -28,6 +28,8 @@ from sheets.pages.look import (
     TITLES,
 )
 from sheets.pages.placed import MM, Mark
+from sheets.pages.roles import FOOTER as FOOTER_ARTIFACT
+from sheets.pages.roles import element, figure
 from sheets.pages.text import Style, fit, fit_cut, style, wrap
 
 BANNER_HEIGHT = 11 * MM
@@ -88,7 +90,8 @@ def banner(ink: Ink, frame: Frame, state: Banner, top: float) -> float:
             ink.line(paper.left, y, paper.right, y, thick)
     word = BANNER_WORD.width(state.word)
     baseline = top + BANNER_HEIGHT / 2 + ASCENT * BANNER_WORD.size / 2 * 0.94
-    ink.text(middle, baseline, state.word, BANNER_WORD, side="centre", white=locked)
+    with ink.inside(element("P", "banner")):
+        ink.text(middle, baseline, state.word, BANNER_WORD, side="centre", white=locked)
     pad = 3 * MM if locked else 0.0
     room = (paper.inner - word) / 2 - pad - 4 * MM
     for text, side in ((state.left, "left"), (state.right, "right")):
@@ -97,10 +100,11 @@ def banner(ink: Ink, frame: Frame, state: Banner, top: float) -> float:
         )
         tall = shape.leading * (len(lines) - 1) + ASCENT * shape.size
         first = top + (BANNER_HEIGHT - tall) / 2 - 0.4
-        if side == "left":
-            ink.lines(paper.left + pad, first, lines, shape, white=locked)
-        else:
-            ink.lines(paper.right - pad, first, lines, shape, side="right", white=locked)
+        with ink.inside(element("P", f"banner {side}")):
+            if side == "left":
+                ink.lines(paper.left + pad, first, lines, shape, white=locked)
+            else:
+                ink.lines(paper.right - pad, first, lines, shape, side="right", white=locked)
     ink.mark(
         Mark(
             kind="banner", key=state.state.value, x=paper.left, y=top, width=paper.inner, height=BANNER_HEIGHT
@@ -118,11 +122,12 @@ def draft_block(
     sizes = tuple(style(size, Weight.BOLD) for size in (24, 22, 20, 18, 16, 15, 14, 13, 12, 10, 8))
     shape, _ = fit(word, width=side - 2 * inset, styles=sizes, lines=1)
     baseline = y + side * 0.5
-    ink.text(x + side / 2, baseline, word, shape, side="centre", white=True)
     top = baseline + 0.11 * side
-    for text in rest:
-        _, lines = fit_cut(text, width=side - 1 * MM, styles=(small,), lines=2)
-        top = ink.lines(x + side / 2, top, lines, small, side="centre", white=True)
+    with ink.inside(element("P", "draft block")):
+        ink.text(x + side / 2, baseline, word, shape, side="centre", white=True)
+        for text in rest:
+            _, lines = fit_cut(text, width=side - 1 * MM, styles=(small,), lines=2)
+            top = ink.lines(x + side / 2, top, lines, small, side="centre", white=True)
     ink.mark(Mark(kind="draft", key="block", x=x, y=y, width=side, height=side))
 
 
@@ -141,7 +146,8 @@ def corner(ink: Ink, frame: Frame, top: float) -> float:
         )
     else:
         side = CODE_MODULE * len(frame.code)
-        ink.code(right - side, top, CODE_MODULE, frame.code)
+        with ink.inside(figure(frame.document.words.code)):
+            ink.code(right - side, top, CODE_MODULE, frame.code)
         ink.mark(Mark(kind="code", key="", x=right - side, y=top, width=side, height=side))
     return top + CODE_SIDE
 
@@ -151,7 +157,6 @@ def head(ink: Ink, frame: Frame, section: Section, top: float, *, first: bool) -
     paper = frame.paper
     right = paper.right - CODE_SIDE - HEAD_GAP
     room = right - paper.left
-    foot = corner(ink, frame, top)
     titles = TITLES if first else SHORT_TITLES
     subject_room = room * 0.42
     subject_shape, subject = fit_cut(
@@ -165,18 +170,19 @@ def head(ink: Ink, frame: Frame, section: Section, top: float, *, first: bool) -
         title_shape, lines = fit(title, width=title_room, styles=titles, lines=2)
     else:
         title_shape, lines = fit_cut(title, width=title_room, styles=titles, lines=2)
-    y = top
-    subject_foot = ink.lines(right, y, subject, subject_shape, side="right")
-    y = max(subject_foot, ink.lines(paper.left, y, lines, title_shape))
+    with ink.inside(element("H1")):
+        title_foot = ink.lines(paper.left, top, lines, title_shape)
+        y = max(title_foot, ink.lines(right, top, subject, subject_shape, side="right"))
     y += 1.2 * MM
     shown = section.lines if first else section.lines[:1]
-    for line in shown:
-        if first:
-            y = ink.paragraph(paper.left, y, room, line, HEAD_LINE) + 0.5 * MM
-        else:
-            shape, parts = fit_cut(line, width=room, styles=(HEAD_LINE,), lines=1)
-            y = ink.lines(paper.left, y, parts, shape)
-    y = max(y + 1.2 * MM, foot)
+    for index, line in enumerate(shown):
+        with ink.inside(element("P", f"head {index}")):
+            if first:
+                y = ink.paragraph(paper.left, y, room, line, HEAD_LINE) + 0.5 * MM
+            else:
+                shape, parts = fit_cut(line, width=room, styles=(HEAD_LINE,), lines=1)
+                y = ink.lines(paper.left, y, parts, shape)
+    y = max(y + 1.2 * MM, corner(ink, frame, top))
     ink.line(paper.left, y, right, y, RULE)
     ink.mark(Mark(kind="head", key=section.title, x=paper.left, y=top, width=paper.inner, height=y - top))
     return y + 4.5 * MM
@@ -188,7 +194,8 @@ def draft_word(ink: Ink, x: float, baseline: float, word: str, shape: Style) -> 
     pad = 1.4 * MM
     above, below = ASCENT * shape.size + 0.8 * MM, 0.9 * MM
     ink.rect(x, baseline - above, width + 2 * pad, above + below, fill="black")
-    ink.text(x + pad, baseline, word, shape, white=True)
+    with ink.inside(element("P", "draft word")):
+        ink.text(x + pad, baseline, word, shape, white=True)
     ink.mark(
         Mark(kind="draft", key="word", x=x, y=baseline - above, width=width + 2 * pad, height=above + below)
     )
@@ -226,6 +233,12 @@ def data_line(frame: Frame) -> str:
 
 
 def footer(ink: Ink, frame: Frame, *, number: int, total: int) -> None:
+    """What stands at the foot of a page; not a part of what is heard, since it repeats."""
+    with ink.inside(FOOTER_ARTIFACT):
+        foot_lines(ink, frame, number=number, total=total)
+
+
+def foot_lines(ink: Ink, frame: Frame, *, number: int, total: int) -> None:
     """Number and revision or DRAFT, title, page of pages; validity, date of the data and digest."""
     paper, words = frame.paper, frame.document.words
     top = paper.height - MARGIN_BOTTOM - FOOTER_HEIGHT

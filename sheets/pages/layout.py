@@ -14,6 +14,7 @@ from sheets.pages.frame import Frame, Paper, banner, footer, head
 from sheets.pages.ink import Ink
 from sheets.pages.look import MARGIN_TOP, PAPERS
 from sheets.pages.placed import MM, PlacedPage
+from sheets.pages.roles import HEADER, element
 from sheets.pages.tags import tag_page, tag_pages
 from sheets.pages.titleblock import title_block
 
@@ -28,6 +29,8 @@ class Planned:
     """A page before its number of pages is known."""
 
     section: Section
+    place: int
+    """Of its section in the document."""
     first: bool
     body: Ink | None
     """Content from (0, 0); None on a page of tags."""
@@ -54,25 +57,32 @@ def grouped(digest: str) -> str:
 def top_of(frame: Frame, section: Section, ink: Ink, *, first: bool) -> float:
     """Banner and head of a page; returns where its content begins."""
     y = MARGIN_TOP
-    if section.banner is not None:
-        y = banner(ink, frame, section.banner, y) + BANNER_GAP
-    return head(ink, frame, section, y, first=first)
+    with ink.inside(*() if first else (HEADER,)):
+        if section.banner is not None:
+            y = banner(ink, frame, section.banner, y) + BANNER_GAP
+        return head(ink, frame, section, y, first=first)
 
 
-def planned(frame: Frame, section: Section, signing: Signing, *, with_title_block: bool) -> list[Planned]:
-    """The pages of one section: what flows, then its tags."""
+def planned(frame: Frame, section: Section, signing: Signing, *, place: int, cover: bool) -> list[Planned]:
+    """The pages of one section: what flows, with the title block on the cover, then its tags.
+
+    `place` is that of the section in the document.
+    """
     tags = [tag for block in section.blocks if isinstance(block, TagSheet) for tag in block.tags]
     flowing = [block for block in section.blocks if not isinstance(block, TagSheet)]
     pages: list[Planned] = []
     if flowing or not tags:
         tops = {first: top_of(frame, section, Ink(), first=first) for first in (True, False)}
         units = units_of(flowing, frame.paper.inner, signing)
-        if with_title_block:
+        if cover:
             units.append(title_block(frame, frame.paper.inner))
         bodies = fill(units, lambda index: frame.paper.floor - tops[index == 0])
-        pages = [Planned(section=section, first=index == 0, body=body) for index, body in enumerate(bodies)]
+        pages = [
+            Planned(section=section, place=place, first=index == 0, body=body)
+            for index, body in enumerate(bodies)
+        ]
     pages.extend(
-        Planned(section=section, first=not pages and index == 0, body=None, tags=group)
+        Planned(section=section, place=place, first=not pages and index == 0, body=None, tags=group)
         for index, group in enumerate(tag_pages(tags, frame))
     )
     return pages
@@ -80,13 +90,14 @@ def planned(frame: Frame, section: Section, signing: Signing, *, with_title_bloc
 
 def inked(frame: Frame, page: Planned, *, number: int, total: int) -> PlacedPage:
     """A planned page with its frame and numbers."""
-    if page.body is None:
-        ink = tag_page(page.tags, frame, page.section, number=number, total=total)
-    else:
-        ink = Ink()
-        y = top_of(frame, page.section, ink, first=page.first)
-        ink.add(page.body.piece(0), frame.paper.left, y)
-        footer(ink, frame, number=number, total=total)
+    ink = Ink()
+    with ink.inside(element("Sect", page.place)):
+        if page.body is None:
+            tag_page(ink, page.tags, frame, page.section, number=number, total=total, first=page.first)
+        else:
+            y = top_of(frame, page.section, ink, first=page.first)
+            ink.add(page.body.piece(0), frame.paper.left, y)
+            footer(ink, frame, number=number, total=total)
     return PlacedPage(
         number=number,
         total=total,
@@ -123,7 +134,7 @@ def place(
     signing = Signing(draft=issue is None, not_signed=document.words.not_signed)
     covers = [section for section in document.sections if section.kind is SheetKind.COVER]
     pages: list[Planned] = []
-    for section in document.sections:
-        pages.extend(planned(frame, section, signing, with_title_block=section in covers[:1]))
+    for index, section in enumerate(document.sections):
+        pages.extend(planned(frame, section, signing, place=index, cover=section in covers[:1]))
     placed = [inked(frame, page, number=index, total=len(pages)) for index, page in enumerate(pages, start=1)]
     return tuple(page for page in placed if page.kind in layout.kinds)

@@ -11,6 +11,7 @@ from typing import Literal
 
 from sheets.pages.document import SheetKind
 from sheets.pages.fonts import ASCENT, DESCENT, Weight, text_width
+from sheets.pages.roles import Path
 
 MM = 72 / 25.4
 """Points in a millimetre."""
@@ -19,7 +20,15 @@ Fill = Literal["none", "black", "white"]
 
 
 @dataclass(frozen=True, kw_only=True)
-class TextRun:
+class Inked:
+    """What all items have."""
+
+    path: Path = ()
+    """What it is to a reader who hears the page; layout if nothing is said."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class TextRun(Inked):
     """One line of text in one weight; x, y is the start of its baseline."""
 
     x: float
@@ -34,7 +43,7 @@ class TextRun:
 
 
 @dataclass(frozen=True, kw_only=True)
-class Line:
+class Line(Inked):
     x1: float
     y1: float
     x2: float
@@ -45,7 +54,7 @@ class Line:
 
 
 @dataclass(frozen=True, kw_only=True)
-class Rect:
+class Rect(Inked):
     """A rectangle by its upper left corner; thickness 0 draws no outline."""
 
     x: float
@@ -57,7 +66,7 @@ class Rect:
 
 
 @dataclass(frozen=True, kw_only=True)
-class Polygon:
+class Polygon(Inked):
     """Joined points; open when it is not closed, as an arc is."""
 
     points: tuple[tuple[float, float], ...]
@@ -69,7 +78,7 @@ class Polygon:
 
 
 @dataclass(frozen=True, kw_only=True)
-class Circle:
+class Circle(Inked):
     x: float
     y: float
     radius: float
@@ -78,7 +87,7 @@ class Circle:
 
 
 @dataclass(frozen=True, kw_only=True)
-class Code:
+class Code(Inked):
     """A matrix code; rows of dark modules from its upper left corner, without the quiet zone."""
 
     x: float
@@ -103,6 +112,8 @@ class Mark:
     y: float
     width: float
     height: float
+    path: Path = ()
+    """What it is part of."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -161,12 +172,15 @@ def extent(item: Item) -> Extent:
             return (item.x, item.y, item.x + side, item.y + side)
 
 
-def moved(item: Item, dx: float, dy: float) -> Item:
-    """The same item elsewhere."""
+def moved(item: Item, dx: float, dy: float, under: Path = ()) -> Item:
+    """The same item elsewhere, as part of what it now lies in."""
+    path = under + item.path if under else item.path
     match item:
         case Line():
-            return replace(item, x1=item.x1 + dx, y1=item.y1 + dy, x2=item.x2 + dx, y2=item.y2 + dy)
+            return replace(
+                item, x1=item.x1 + dx, y1=item.y1 + dy, x2=item.x2 + dx, y2=item.y2 + dy, path=path
+            )
         case Polygon():
-            return replace(item, points=tuple((x + dx, y + dy) for x, y in item.points))
+            return replace(item, points=tuple((x + dx, y + dy) for x, y in item.points), path=path)
         case _:
-            return replace(item, x=item.x + dx, y=item.y + dy)
+            return replace(item, x=item.x + dx, y=item.y + dy, path=path)

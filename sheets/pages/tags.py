@@ -7,12 +7,14 @@ from dataclasses import dataclass
 
 from sheets.errors import InputError, Problem
 from sheets.pages.document import Section, SettingTag
-from sheets.pages.face import dial_face, number_face
+from sheets.pages.face import dial_face, face_alternative, number_face
 from sheets.pages.fonts import ASCENT, Weight
 from sheets.pages.frame import Frame, data_line, draft_block, draft_word, identity, revision
 from sheets.pages.ink import Ink, Piece
 from sheets.pages.look import FOOTER, FOOTER_SMALL, HAIRLINE, MARGIN_LEAST
 from sheets.pages.placed import MM, Mark
+from sheets.pages.roles import CUT_MARKS, element, figure
+from sheets.pages.roles import FOOTER as FOOTER_ARTIFACT
 from sheets.pages.text import Style, fit, fit_cut, shortened, style, wrap
 
 WIDTH = 85.60 * MM
@@ -39,6 +41,8 @@ LEFT = tuple(style(size, Weight.SEMIBOLD) for size in (9.5, 9, 8.5, 8, 7.5))
 FOOT = tuple(style(size) for size in (8.5, 8, 7.5))
 REVISION = tuple(style(size, Weight.BOLD) for size in (9.5, 9, 8.5, 8))
 TITLE = tuple(style(size, Weight.BOLD) for size in (13, 11, 9.5))
+STRIP_FIRST = MARGIN_LEAST + ASCENT * TITLE[0].size
+"""Baseline of the first line of the strip."""
 
 
 def refuse(tag: SettingTag, what: str) -> InputError:
@@ -70,11 +74,13 @@ def name_and_kind(ink: Ink, tag: SettingTag, *, width: float) -> None:
     room = width - left
     shape, lines = fit_cut(tag.adjuster, width=room, styles=ADJUSTER, lines=1)
     baseline = INSET + 0.6 * MM + ASCENT * ADJUSTER[0].size
-    ink.lines(left, baseline - ASCENT * shape.size, lines, shape)
+    with ink.inside(element("H2")):
+        ink.lines(left, baseline - ASCENT * shape.size, lines, shape)
     shape, lines = fit_cut(tag.kind, width=room, styles=KIND, lines=1)
     if shape.width(tag.kind) > room:
         shape, lines = fit_cut(tag.kind, width=room, styles=(KIND[-1],), lines=2)
-    ink.lines(left, baseline + 1.7 * MM, lines, shape)
+    with ink.inside(element("P", "kind")):
+        ink.lines(left, baseline + 1.7 * MM, lines, shape)
 
 
 def body(ink: Ink, tag: SettingTag, as_left: str) -> None:
@@ -89,21 +95,25 @@ def body(ink: Ink, tag: SettingTag, as_left: str) -> None:
     over = value_baseline - ASCENT * shape.size < CODE_TOP + CODE_SIDE + 4 * CODE_MODULE
     if over and shape.width(tag.value) > clear:
         value_baseline = CODE_TOP + CODE_SIDE + 4 * CODE_MODULE + ASCENT * shape.size
-    ink.text(TEXT_LEFT, value_baseline, lines[0], shape)
+    with ink.inside(element("P", "value")):
+        ink.text(TEXT_LEFT, value_baseline, lines[0], shape)
     y = value_baseline + 5.2 * MM
     second = f"   {tag.second_unit}" if tag.second_unit else ""
-    one_line(ink, tag, tag.window + second, x=TEXT_LEFT, y=y, width=room, styles=WINDOW)
+    with ink.inside(element("P", "window")):
+        one_line(ink, tag, tag.window + second, x=TEXT_LEFT, y=y, width=room, styles=WINDOW)
     top, most = y + 1.5 * MM, 46.5 * MM - y - 1.5 * MM
     for shape in BASIS:
         wrapped = [line for text in tag.basis for line in wrap(text, shape, room)]
         if len(wrapped) * shape.leading <= most + 0.1:
-            ink.lines(TEXT_LEFT, top, wrapped, shape)
+            with ink.inside(element("P", "basis")):
+                ink.lines(TEXT_LEFT, top, wrapped, shape)
             break
     else:
         raise refuse(tag, "the basis of the setting")
     line = 48.75 * MM
     whole = f"{as_left}   ·   {tag.next_check}" if as_left and tag.next_check else as_left or tag.next_check
-    one_line(ink, tag, whole, x=INSET, y=line, width=right - INSET, styles=LEFT)
+    with ink.inside(element("P", "as left")):
+        one_line(ink, tag, whole, x=INSET, y=line, width=right - INSET, styles=LEFT)
 
 
 def tag_piece(tag: SettingTag, frame: Frame) -> Piece:
@@ -112,6 +122,7 @@ def tag_piece(tag: SettingTag, frame: Frame) -> Piece:
     right = WIDTH - INSET
     words = frame.document.words
     ink.circle(INSET + HOLE_RADIUS, INSET + HOLE_RADIUS + 0.5 * MM, HOLE_RADIUS, thickness=0.7)
+    name_and_kind(ink, tag, width=right - CODE_SIDE - 4 * CODE_MODULE)
     if frame.code is None:
         draft_block(
             ink,
@@ -124,31 +135,37 @@ def tag_piece(tag: SettingTag, frame: Frame) -> Piece:
         )
     else:
         side = CODE_MODULE * len(frame.code)
-        ink.code(right - side, CODE_TOP, CODE_MODULE, frame.code)
+        with ink.inside(figure(words.code, "code")):
+            ink.code(right - side, CODE_TOP, CODE_MODULE, frame.code)
         ink.mark(Mark(kind="code", key=tag.id, x=right - side, y=CODE_TOP, width=side, height=side))
-    name_and_kind(ink, tag, width=right - CODE_SIDE - 4 * CODE_MODULE)
     centre = INSET + DIAL / 2
-    if tag.face.digital:
-        number_face(ink, tag.face, x=INSET, y=21 * MM, width=DIAL, height=23 * MM, labels=None)
-    else:
-        dial_face(ink, tag.face, x=centre, y=18.2 * MM + DIAL / 2, diameter=DIAL)
+    alternative = face_alternative(
+        tag.face, target=words.target, window=words.accept, never_exceed=words.never_exceed
+    )
+    with ink.inside(figure(alternative, "face")):
+        if tag.face.digital:
+            number_face(ink, tag.face, x=INSET, y=21 * MM, width=DIAL, height=23 * MM, labels=None)
+        else:
+            dial_face(ink, tag.face, x=centre, y=18.2 * MM + DIAL / 2, diameter=DIAL)
     as_left = tag.as_left
     if frame.issue is not None:
         as_left = dict(frame.issue.as_left).get(tag.id, tag.as_left)
     body(ink, tag, as_left)
     foot = HEIGHT - 1.9 * MM
-    one_line(ink, tag, tag.footer, x=INSET, y=foot, width=right - INSET, styles=FOOT)
+    with ink.inside(element("P", "foot")):
+        one_line(ink, tag, tag.footer, x=INSET, y=foot, width=right - INSET, styles=FOOT)
     known = 20.9 * MM
     room = right - CODE_SIDE - 4 * CODE_MODULE - TEXT_LEFT
     draft_width = REVISION[-1].width(words.draft) + 3 * MM + 2 * MM if frame.issue is None else 0.0
     kept = f"  {revision(frame)}".rstrip()
     shape, _ = fit(identity(frame), width=room - draft_width, styles=REVISION, lines=1)
     number = shortened(frame.document.number, shape, room - draft_width - shape.width(kept))
-    end = TEXT_LEFT + ink.text(TEXT_LEFT, known, number + kept, shape)
+    with ink.inside(element("P", "identity")):
+        end = TEXT_LEFT + ink.text(TEXT_LEFT, known, number + kept, shape)
     if frame.issue is None:
         draft_word(ink, end + 2 * MM, known, words.draft, REVISION[-1])
     ink.mark(Mark(kind="tag", key=tag.id, x=0, y=0, width=WIDTH, height=HEIGHT))
-    return ink.piece(HEIGHT, name=tag.id)
+    return ink.piece(HEIGHT, name=tag.id).within(element("SettingTag", tag.id))
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -200,28 +217,47 @@ def cut_lines(ink: Ink, grid: Grid, count: int) -> None:
         ink.line(x, end, x, end + CUT_MARK, 0.8)
 
 
-def strip(ink: Ink, frame: Frame, section: Section, *, number: int, total: int) -> None:
-    """Left of the tags, reading upwards: title and subject, then what stands at the foot of other pages."""
-    paper, words = frame.paper, frame.document.words
-    foot = paper.height - MARGIN_LEAST
-    length = paper.height - 2 * MARGIN_LEAST
-    first = MARGIN_LEAST + ASCENT * TITLE[0].size
-    page = words.page.format(number=number, total=total)
-    y = foot
-    if frame.issue is None:
-        shape = TITLE[0]
-        width = shape.width(words.draft) + 3 * MM
-        ink.rect(MARGIN_LEAST, y - width, 4.7 * MM, width, fill="black")
-        ink.upward(MARGIN_LEAST + 4.0 * MM, y - 1.5 * MM, words.draft, shape, white=True)
-        ink.mark(Mark(kind="draft", key="strip", x=MARGIN_LEAST, y=y - width, width=4.7 * MM, height=width))
-        y -= width + 4 * MM
-    page_width = REVISION[0].width(page)
-    title = f"{section.title}   {section.subject}"
-    shape, lines = fit_cut(title, width=y - MARGIN_LEAST - page_width - 5 * MM, styles=TITLE, lines=1)
-    for text in lines:
-        ink.upward(first, y, text, shape)
-    ink.upward(first, MARGIN_LEAST + page_width, page, REVISION[0])
-    second = first + 4.3 * MM
+def strip(ink: Ink, frame: Frame, section: Section, *, number: int, total: int, first: bool) -> None:
+    """Left of the tags, reading upwards: title and subject, then what stands at the foot of other pages.
+
+    On the first page of its section the title is the heading; the rest repeats on every page.
+    """
+    with ink.inside(FOOTER_ARTIFACT):
+        y = strip_draft(ink, frame)
+        foot_lines_upward(ink, frame, section, number=number, total=total)
+    room = y - MARGIN_LEAST - REVISION[0].width(page_of(frame, number, total)) - 5 * MM
+    shape, lines = fit_cut(f"{section.title}   {section.subject}", width=room, styles=TITLE, lines=1)
+    with ink.inside(element("H1") if first else FOOTER_ARTIFACT):
+        for text in lines:
+            ink.upward(STRIP_FIRST, y, text, shape)
+
+
+def page_of(frame: Frame, number: int, total: int) -> str:
+    """Number of a page among all."""
+    return frame.document.words.page.format(number=number, total=total)
+
+
+def strip_draft(ink: Ink, frame: Frame) -> float:
+    """DRAFT at the foot of the strip; returns where the title begins."""
+    words = frame.document.words
+    y = frame.paper.height - MARGIN_LEAST
+    if frame.issue is not None:
+        return y
+    shape = TITLE[0]
+    width = shape.width(words.draft) + 3 * MM
+    ink.rect(MARGIN_LEAST, y - width, 4.7 * MM, width, fill="black")
+    ink.upward(MARGIN_LEAST + 4.0 * MM, y - 1.5 * MM, words.draft, shape, white=True)
+    ink.mark(Mark(kind="draft", key="strip", x=MARGIN_LEAST, y=y - width, width=4.7 * MM, height=width))
+    return y - width - 4 * MM
+
+
+def foot_lines_upward(ink: Ink, frame: Frame, section: Section, *, number: int, total: int) -> None:
+    """Page of pages, number and title, where the data come from, how to check that it is current."""
+    foot = frame.paper.height - MARGIN_LEAST
+    length = frame.paper.height - 2 * MARGIN_LEAST
+    page = page_of(frame, number, total)
+    ink.upward(STRIP_FIRST, MARGIN_LEAST + REVISION[0].width(page), page, REVISION[0])
+    second = STRIP_FIRST + 4.3 * MM
     names = f"{identity(frame)}  ·  {frame.document.title}"
     data = data_line(frame)
     data_width = FOOTER_SMALL.width(data)
@@ -243,13 +279,21 @@ def tag_pages(tags: Sequence[SettingTag], frame: Frame) -> list[tuple[SettingTag
     return [tuple(tags[start : start + count]) for start in range(0, len(tags), count)]
 
 
-def tag_page(tags: tuple[SettingTag, ...], frame: Frame, section: Section, *, number: int, total: int) -> Ink:
-    """One page of tags."""
-    ink = Ink()
+def tag_page(
+    ink: Ink,
+    tags: tuple[SettingTag, ...],
+    frame: Frame,
+    section: Section,
+    *,
+    number: int,
+    total: int,
+    first: bool,
+) -> None:
+    """One page of tags; on the first one of its section the title is a heading."""
     grid = grid_of(frame)
-    strip(ink, frame, section, number=number, total=total)
+    strip(ink, frame, section, number=number, total=total, first=first)
     for index, tag in enumerate(tags):
         row, column = divmod(index, grid.columns)
         ink.add(tag_piece(tag, frame), grid.left + column * WIDTH, grid.top + row * HEIGHT)
-    cut_lines(ink, grid, len(tags))
-    return ink
+    with ink.inside(CUT_MARKS):
+        cut_lines(ink, grid, len(tags))

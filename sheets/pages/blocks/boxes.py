@@ -8,6 +8,7 @@ from sheets.pages.document import Box
 from sheets.pages.ink import Ink, Piece
 from sheets.pages.look import FRAME, HEAVY, LABEL, LABEL_STRONG, UNIT
 from sheets.pages.placed import MM, Mark
+from sheets.pages.roles import GROUP, element
 from sheets.pages.text import wrap
 
 TICK = 7.5 * MM
@@ -39,7 +40,8 @@ def tick(box: Box) -> Piece:
     label = max((LABEL.width(line) for line in lines), default=0.0)
     x = label + PAD if lines else 0.0
     top = (TICK - len(lines) * LABEL.leading) / 2
-    ink.lines(x - PAD, top, lines, LABEL, side="right")
+    with ink.inside(element("P")):
+        ink.lines(x - PAD, top, lines, LABEL, side="right")
     outline(ink, x, TICK, TICK, strong=box.strong)
     ink.mark(Mark(kind="box", key=box.label, x=x, y=0, width=TICK, height=TICK))
     return ink.piece(max(TICK, len(lines) * LABEL.leading))
@@ -49,7 +51,8 @@ def unsigned(width: float, signing: Signing) -> Piece:
     """What a draft says where an issued sheet has a box for a name or a sign."""
     ink = Ink()
     lines = wrap(signing.not_signed, LABEL, width)
-    bottom = ink.lines(width, (HEIGHT - len(lines) * LABEL.leading) / 2, lines, LABEL, side="right")
+    with ink.inside(element("P")):
+        bottom = ink.lines(width, (HEIGHT - len(lines) * LABEL.leading) / 2, lines, LABEL, side="right")
     return ink.piece(max(HEIGHT, bottom))
 
 
@@ -66,15 +69,17 @@ def boxed(
         return width, unsigned(width, signing)
     ink = Ink()
     height = max(height, len(label_lines) * LABEL.leading + 5.5 * MM)
-    ink.lines(PAD, PAD * 0.8, label_lines, LABEL)
-    if box.unit:
-        ink.text(width - PAD, height - PAD - 0.8, box.unit, UNIT, side="right")
+    with ink.inside(element("P")):
+        ink.lines(PAD, PAD * 0.8, label_lines, LABEL)
+        if box.unit:
+            ink.text(width - PAD, height - PAD - 0.8, box.unit, UNIT, side="right")
     outline(ink, 0, width, height, strong=box.strong)
     ink.mark(Mark(kind="sign" if box.signed else "box", key=box.label, x=0, y=0, width=width, height=height))
     bottom = height
     if box.never_exceed:
         limit_lines = wrap(box.never_exceed, LABEL_STRONG, width)
-        bottom = ink.lines(width, height + 2, limit_lines, LABEL_STRONG, side="right")
+        with ink.inside(element("P", "limit")):
+            bottom = ink.lines(width, height + 2, limit_lines, LABEL_STRONG, side="right")
     return width, ink.piece(bottom)
 
 
@@ -101,8 +106,8 @@ def row_of_boxes(boxes: tuple[Box, ...], signing: Signing, most: float) -> tuple
     for index, row in enumerate(rows):
         y += GAP if index else 0
         x = whole - sum(width for width, _ in row) - GAP * (len(row) - 1)
-        for width, piece in row:
-            ink.add(piece, x, y)
+        for column, (width, piece) in enumerate(row):
+            ink.add(piece.within(element(GROUP, f"box {index} {column}")), x, y)
             x += width + GAP
         y += max(piece.height for _, piece in row)
     return whole, ink.piece(y)

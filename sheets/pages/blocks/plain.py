@@ -7,24 +7,30 @@ from sheets.pages.fonts import ASCENT
 from sheets.pages.ink import Ink, Piece
 from sheets.pages.look import BODY, HEADING, SMALL, STRONG
 from sheets.pages.placed import MM, Mark
+from sheets.pages.roles import element, item_of_list
 from sheets.pages.text import style, wrap
 
 PARAGRAPH = {"plain": BODY, "strong": STRONG, "small": SMALL}
 KEY = style(10.5, STRONG.weight)
 
 
-def heading_piece(heading: Heading, width: float) -> Piece:
-    """A heading, with its light text beside it, or below where there is no room. Stays with what follows."""
+def heading_piece(heading: Heading, width: float, *, type_: str) -> Piece:
+    """A heading, with its light text beside it, or below where there is no room. Stays with what follows.
+
+    `type_` is its type among the headings of its section: H2 or H3.
+    """
     ink = Ink()
     shape = HEADING[heading.level]
     lines = wrap(heading.text, shape, width)
-    bottom = ink.lines(0, 0, lines, shape)
+    with ink.inside(element(type_)):
+        bottom = ink.lines(0, 0, lines, shape)
     if heading.light:
         x = shape.width(lines[-1]) + 4 * MM if lines else 0.0
-        if x + BODY.width(heading.light) <= width:
-            ink.text(x, bottom - shape.leading + ASCENT * shape.size, heading.light, BODY)
-        else:
-            bottom = ink.paragraph(0, bottom, width, heading.light, BODY)
+        with ink.inside(element("P")):
+            if x + BODY.width(heading.light) <= width:
+                ink.text(x, bottom - shape.leading + ASCENT * shape.size, heading.light, BODY)
+            else:
+                bottom = ink.paragraph(0, bottom, width, heading.light, BODY)
     ink.mark(Mark(kind="heading", key=heading.text, x=0, y=0, width=width, height=bottom))
     return ink.piece(
         bottom + 0.3 * MM,
@@ -41,7 +47,8 @@ def paragraph_pieces(paragraph: Paragraph, width: float) -> list[Piece]:
     pieces: list[Piece] = []
     for index, line in enumerate(lines):
         ink = Ink()
-        ink.lines(0, 0, (line,), shape)
+        with ink.inside(element("P")):
+            ink.lines(0, 0, (line,), shape)
         ink.mark(Mark(kind="paragraph", key=paragraph.text, x=0, y=0, width=width, height=shape.leading))
         last = index == len(lines) - 1
         pieces.append(
@@ -62,8 +69,10 @@ def key_line_pieces(block: KeyLines, width: float) -> list[Piece]:
     pieces: list[Piece] = []
     for index, (key, text) in enumerate(block.rows):
         ink = Ink()
-        key_bottom = ink.paragraph(0, 0, column - 4 * MM, key, KEY)
-        bottom = max(key_bottom, ink.paragraph(column, 0, width - column, text, BODY))
+        with ink.inside(*item_of_list(index), element("Lbl")):
+            key_bottom = ink.paragraph(0, 0, column - 4 * MM, key, KEY)
+        with ink.inside(*item_of_list(index), element("LBody")):
+            bottom = max(key_bottom, ink.paragraph(column, 0, width - column, text, BODY))
         ink.mark(Mark(kind="key line", key=key, x=0, y=0, width=width, height=bottom))
         pieces.append(ink.piece(bottom, space_before=(1.1 if index else 3.5) * MM, name=key))
     return pieces

@@ -11,12 +11,14 @@ from sheets.pages.fonts import ASCENT
 from sheets.pages.ink import Ink, Piece
 from sheets.pages.look import BODY, CELL, CELL_HEAD, HAIRLINE, HEADING, LABEL, RULE
 from sheets.pages.placed import MM, Mark
+from sheets.pages.roles import HEADER, Element, element
 from sheets.pages.text import Style, wrap
 
 PAD_X = 1.4 * MM
 PAD_Y = 1.0 * MM
 BLANK_HEIGHT = 9.5 * MM
 TITLE = HEADING[2]
+TABLE = element("Table")
 
 
 def edges_of(table: Table, width: float) -> list[float]:
@@ -28,13 +30,21 @@ def edges_of(table: Table, width: float) -> list[float]:
 
 
 def cells(
-    ink: Ink, texts: Sequence[str], edges: Sequence[float], top: float, shape: Style, *, inset: bool
+    ink: Ink,
+    texts: Sequence[str],
+    edges: Sequence[float],
+    top: float,
+    shape: Style,
+    *,
+    inset: bool,
+    row: Element,
 ) -> float:
     """Texts in their columns; returns the bottom edge of the longest. Without uprights the first is flush."""
     bottom = top
-    for text, left, right in zip(texts, edges, edges[1:], strict=False):
+    for column, (text, left, right) in enumerate(zip(texts, edges, edges[1:], strict=False)):
         pad = PAD_X if inset or left > 0 else 0.0
-        bottom = max(bottom, ink.paragraph(left + pad, top, right - left - pad - PAD_X, text, shape))
+        with ink.inside(TABLE, row, element("TH" if row.head else "TD", column)):
+            bottom = max(bottom, ink.paragraph(left + pad, top, right - left - pad - PAD_X, text, shape))
     return bottom
 
 
@@ -45,19 +55,19 @@ def head_piece(table: Table, edges: Sequence[float], *, title: bool) -> Piece:
     y = 0.0
     if title and table.title:
         lines = wrap(table.title, TITLE, width)
-        y = ink.lines(0, 0, lines, TITLE)
-        if table.light:
-            x = TITLE.width(lines[-1]) + 4 * MM
-            if x + BODY.width(table.light) <= width:
-                ink.text(x, y - TITLE.leading + ASCENT * TITLE.size, table.light, BODY)
-            else:
-                y = ink.paragraph(0, y, width, table.light, BODY)
+        with ink.inside(TABLE, element("Caption")):
+            y = ink.lines(0, 0, lines, TITLE)
+            if table.light:
+                x = TITLE.width(lines[-1]) + 4 * MM
+                if x + BODY.width(table.light) <= width:
+                    ink.text(x, y - TITLE.leading + ASCENT * TITLE.size, table.light, BODY)
+                else:
+                    y = ink.paragraph(0, y, width, table.light, BODY)
         y += 1 * MM
     if any(table.head):
-        y = (
-            cells(ink, table.head, edges, y + PAD_Y * 0.5, CELL_HEAD, inset=table.blank_rows > 0)
-            + PAD_Y * 0.7
-        )
+        uprights = table.blank_rows > 0
+        row = Element(type="TR", key="head", columns=len(table.head), head=True)
+        y = cells(ink, table.head, edges, y + PAD_Y * 0.5, CELL_HEAD, inset=uprights, row=row) + PAD_Y * 0.7
     ink.line(0, y, width, y, RULE)
     ink.mark(Mark(kind="table head", key=table.title, x=0, y=0, width=width, height=y))
     return ink.piece(y, name=table.title)
@@ -69,9 +79,10 @@ def row_piece(
     """One row, with a line below it; with uprights where the table is to be written in."""
     ink = Ink()
     uprights = table.blank_rows > 0
-    bottom = cells(Ink(), texts, edges, PAD_Y, CELL, inset=uprights) + PAD_Y * 0.6
+    row = Element(type="TR", key=key, columns=len(edges) - 1)
+    bottom = cells(Ink(), texts, edges, PAD_Y, CELL, inset=uprights, row=row) + PAD_Y * 0.6
     height = max(bottom, height)
-    cells(ink, texts, edges, PAD_Y + (height - bottom) / 2, CELL, inset=uprights)
+    cells(ink, texts, edges, PAD_Y + (height - bottom) / 2, CELL, inset=uprights, row=row)
     if uprights:
         for edge in edges:
             ink.line(edge, 0, edge, height, HAIRLINE)
@@ -83,7 +94,10 @@ def row_piece(
 def unsigned_piece(edges: Sequence[float], height: float, signing: Signing) -> Piece:
     """The room of rows to sign, in a draft."""
     ink = Ink()
-    ink.text(PAD_X, PAD_Y * 2 + ASCENT * LABEL.size, signing.not_signed, LABEL)
+    columns = len(edges) - 1
+    row = Element(type="TR", key="unsigned", columns=columns)
+    with ink.inside(TABLE, row, Element(type="TD", span=columns)):
+        ink.text(PAD_X, PAD_Y * 2 + ASCENT * LABEL.size, signing.not_signed, LABEL)
     ink.line(0, height, edges[-1], height, RULE)
     ink.mark(Mark(kind="row", key="unsigned", x=0, y=0, width=edges[-1], height=height))
     return ink.piece(height, name=signing.not_signed)
@@ -108,7 +122,7 @@ def table_pieces(table: Table, width: float, signing: Signing) -> list[Piece]:
                 row_piece(table, edges, (), blank, key=f"{table.title} {index}", last=index == total - 1)
             )
     first = head_piece(table, edges, title=True)
-    again = head_piece(table, edges, title=False)
+    again = head_piece(table, edges, title=False).within(HEADER)
     if not rows:
         return [replace(first, space_before=4 * MM)]
     pieces = [joined(first, rows[0], space_before=4 * MM)]

@@ -20,6 +20,7 @@ from sheets.pages.look import (
     WARNING_LINE,
 )
 from sheets.pages.placed import MM, Mark
+from sheets.pages.roles import element
 from sheets.pages.text import wrap
 
 FRAMES = {"DANGER": 2.6, "WARNING": 1.8, "CAUTION": 1.1, "NOTICE": 0.7}
@@ -61,16 +62,18 @@ def warning_piece(warning: Warning, width: float, *, key: str = "", space_before
     beside = room - signal - 3 * MM
     top = PAD * 0.9 + inset
     hazard = wrap(warning.hazard, HAZARD, beside)
-    if len(hazard) <= 2:
-        ink.text(left, top + ASCENT * SIGNAL.size, warning.signal, SIGNAL)
-        lowered = (SIGNAL.size - HAZARD.size) * ASCENT
-        bottom = ink.lines(left + signal + 3 * MM, top + lowered, hazard, HAZARD)
-    else:
-        bottom = ink.lines(left, top, (warning.signal,), SIGNAL)
-        bottom = ink.paragraph(left, bottom, room, warning.hazard, HAZARD)
+    with ink.inside(element("P", "hazard")):
+        if len(hazard) <= 2:
+            ink.text(left, top + ASCENT * SIGNAL.size, warning.signal, SIGNAL)
+            lowered = (SIGNAL.size - HAZARD.size) * ASCENT
+            bottom = ink.lines(left + signal + 3 * MM, top + lowered, hazard, HAZARD)
+        else:
+            bottom = ink.lines(left, top, (warning.signal,), SIGNAL)
+            bottom = ink.paragraph(left, bottom, room, warning.hazard, HAZARD)
     bottom += 0.6 * MM
-    for line in warning.lines:
-        bottom = ink.paragraph(left, bottom, room, line, WARNING_LINE)
+    for index, line in enumerate(warning.lines):
+        with ink.inside(element("P", index)):
+            bottom = ink.paragraph(left, bottom, room, line, WARNING_LINE)
     height = max(bottom + PAD * 0.7, (14.5 if sign else 0) * MM)
     back = Ink()
     if danger:
@@ -81,7 +84,8 @@ def warning_piece(warning: Warning, width: float, *, key: str = "", space_before
     back.rect(inset, inset, width - 2 * inset, height - 2 * inset, thickness=frame)
     back.items.extend(ink.items)
     back.mark(Mark(kind="warning", key=key or warning.hazard, x=0, y=0, width=width, height=height))
-    return back.piece(height, space_before=space_before, keep_with_next=True, name=warning.hazard)
+    piece = back.piece(height, space_before=space_before, keep_with_next=True, name=warning.hazard)
+    return piece.within(element("Warning"))
 
 
 FIELD_SHARES = {"name": 34 * MM, "sign": 27 * MM, "time": 18 * MM}
@@ -101,13 +105,16 @@ def hold_piece(
     fields = [FIELD_SHARES.get(field, 30 * MM) for field in hold.fields]
     fields_width = sum(fields) + FIELD_GAP * (len(fields) - 1)
     top = PAD + inset
-    ink.text(PAD * 1.6, top + ASCENT * HOLD_WORD.size, hold.word, HOLD_WORD)
+    with ink.inside(element("P", "word")):
+        ink.text(PAD * 1.6, top + ASCENT * HOLD_WORD.size, hold.word, HOLD_WORD)
     lowered = (HOLD_WORD.size - ORDER.size) * ASCENT
-    bottom = ink.paragraph(left, top + lowered, room, hold.order, ORDER)
+    with ink.inside(element("P", "order")):
+        bottom = ink.paragraph(left, top + lowered, room, hold.order, ORDER)
     beside = room - fields_width - 3 * MM
     stacked = beside < 42 * MM
     above = stacked or len(wrap(hold.reason, STEP_LINE, beside)) > len(wrap(hold.reason, STEP_LINE, room))
-    reason_bottom = ink.paragraph(left, bottom + 1, room if above else beside, hold.reason, STEP_LINE)
+    with ink.inside(element("P", "reason")):
+        reason_bottom = ink.paragraph(left, bottom + 1, room if above else beside, hold.reason, STEP_LINE)
     start = (reason_bottom - 1.5 * MM if above else bottom) + SIGN_HEIGHT
     end = start + LABEL.leading + 1
     if stacked:
@@ -117,11 +124,13 @@ def hold_piece(
         fields_width = sum(fields) + FIELD_GAP * (len(fields) - 1)
     x = left + room - fields_width
     if signing.draft:
-        ink.text(left + room, start, signing.not_signed, LABEL, side="right")
+        with ink.inside(element("P", "not signed")):
+            ink.text(left + room, start, signing.not_signed, LABEL, side="right")
     else:
         for name, field in zip(hold.fields, fields, strict=True):
             ink.line(x, start, x + field, start, 0.8)
-            ink.text(x, start + 1.5 + ASCENT * LABEL.size, name, LABEL)
+            with ink.inside(element("P", f"field {name}")):
+                ink.text(x, start + 1.5 + ASCENT * LABEL.size, name, LABEL)
             ink.mark(
                 Mark(kind="sign", key=name, x=x, y=start - SIGN_HEIGHT + 2, width=field, height=SIGN_HEIGHT)
             )
@@ -129,7 +138,7 @@ def hold_piece(
     height = max(reason_bottom, end) + PAD * 0.7
     ink.rect(inset, inset, width - 2 * inset, height - 2 * inset, thickness=HEAVY)
     ink.mark(Mark(kind="hold", key=key or hold.order, x=0, y=0, width=width, height=height))
-    return ink.piece(height, space_before=space_before, name=hold.order)
+    return ink.piece(height, space_before=space_before, name=hold.order).within(element("HoldPoint"))
 
 
 def emphasis_piece(block: Emphasis, width: float) -> Piece:
@@ -138,15 +147,18 @@ def emphasis_piece(block: Emphasis, width: float) -> Piece:
     right = min(STRONG.width(block.right), width * 0.4)
     room = width - 4 * PAD - (right + 4 * MM if block.right else 0)
     top = PAD + FRAME / 2
+    with ink.inside(element("P", "lead")):
+        bottom = ink.paragraph(2 * PAD, top, room, block.lead, STRONG) + 0.6 * MM
+    for index, line in enumerate(block.lines):
+        with ink.inside(element("P", index)):
+            bottom = ink.paragraph(2 * PAD, bottom, room, line, BODY)
     right_bottom = top
     if block.right:
         right_lines = wrap(block.right, STRONG, width * 0.4)
-        right_bottom = ink.lines(width - 2 * PAD, top, right_lines, STRONG, side="right")
-    bottom = ink.paragraph(2 * PAD, top, room, block.lead, STRONG) + 0.6 * MM
-    for line in block.lines:
-        bottom = ink.paragraph(2 * PAD, bottom, room, line, BODY)
+        with ink.inside(element("P", "right")):
+            right_bottom = ink.lines(width - 2 * PAD, top, right_lines, STRONG, side="right")
     height = max(bottom, right_bottom) + PAD * 0.6
     ink.rect(FRAME / 2, FRAME / 2, width - FRAME, height - FRAME, thickness=FRAME)
     ink.rect(0, 0, 1.4 * MM, height, fill="black")
     ink.mark(Mark(kind="emphasis", key=block.lead, x=0, y=0, width=width, height=height))
-    return ink.piece(height, space_before=4 * MM, name=block.lead)
+    return ink.piece(height, space_before=4 * MM, name=block.lead).within(element("Div"))
