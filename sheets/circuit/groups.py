@@ -79,7 +79,11 @@ def volume_kept(circuit: Circuit, state: StateArrays, at: Balance, pressures_bar
 
 
 def loose_signals(circuit: Circuit, state: StateArrays, at: Balance) -> Bools:
-    """[B, pumps] whether leakage alone decides the LS port of a turning pump in this state."""
+    """[B, pumps] whether leakage alone decides the LS port of a turning pump in this state.
+
+    It doesn't where a check valve leads from the outlet to the port: shut, it holds the port above the
+    outlet, and it opens before the port falls so far below that the load-sensing control would act.
+    """
     pumps = circuit.pumps
     asked = pumps.turning(state) & (pumps.signal_bleed > 0.0)
     if not asked.any():
@@ -91,4 +95,19 @@ def loose_signals(circuit: Circuit, state: StateArrays, at: Balance) -> Bools:
     held = labels[:, [TANK, *pumps.outlet]]
     of_signal = labels[row, pumps.signal[None, :]]
     decided = np.any(of_signal[:, :, None] == held[:, None, :], axis=2)
-    return np.asarray(asked & ~decided)
+    return np.asarray(asked & ~decided & ~_refilled(circuit, state, labels))
+
+
+def _refilled(circuit: Circuit, state: StateArrays, labels: Ints) -> Bools:
+    """[B, pumps] whether a check valve feeds the LS port from the outlet's group before the control acts."""
+    pumps, checks = circuit.pumps, circuit.checks
+    refilled = np.zeros((len(labels), len(pumps.ids)), dtype=np.bool_)
+    for pump, control in enumerate(pumps.load_sensing):
+        if control < 0:
+            continue
+        room_bar = state.settings_bar[:, control] - pumps.load_sensing_width_bar[pump]
+        from_outlet = labels[:, checks.first] == labels[:, [pumps.outlet[pump]]]
+        to_port = labels[:, checks.second] == labels[:, [pumps.signal[pump]]]
+        opens = checks.opening_bar[None, :] < room_bar[:, None]
+        refilled[:, pump] = np.any(from_outlet & to_port & opens, axis=1)
+    return refilled

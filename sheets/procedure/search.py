@@ -21,6 +21,8 @@ from sheets.targets.settings import Setting
 STATE_LIMIT = 20_000
 """Sets of changes that are tried before the answer is 'not found within the limit'."""
 BATCH = 256
+_NEARER_BAR = 0.05
+"""A dearer state stands in for a cheaper one only if it comes nearer to the target by this."""
 MOST_MISSES = 6
 """Near misses that an answer keeps, one for each condition."""
 _STAGES = tuple(Condition)
@@ -39,7 +41,7 @@ class _Wanted:
 
     def note(self, failure: Failure, changes: tuple[Change, ...], distance_bar: float) -> None:
         known = self.misses.get(failure.condition)
-        if known is None or distance_bar < known[0]:
+        if known is None or distance_bar < known[0] - _NEARER_BAR:
             self.misses[failure.condition] = (distance_bar, NearMiss(changes=changes, failure=failure))
 
     def near_misses(self) -> tuple[NearMiss, ...]:
