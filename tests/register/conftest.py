@@ -1,0 +1,91 @@
+"""What the register's tests share: a new register, times, random bytes, and another program that meddles."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from pathlib import Path
+from random import Random
+
+import pytest
+from register_bench import CONTENT, FILE, MACHINE, NOON, at, unguarded
+
+from sheets.register.issuing import Reservation, commit, reserve, sign_event
+from sheets.register.revisions import Revision, Signer
+from sheets.register.store import Register, create_register
+
+
+@pytest.fixture
+def path(tmp_path: Path) -> Path:
+    return tmp_path / "plant.register"
+
+
+@pytest.fixture
+def register(path: Path) -> Iterator[Register]:
+    with create_register(path, by="Ines Kurz", when=NOON) as made:
+        yield made
+
+
+@pytest.fixture
+def chance() -> Callable[[int], bytes]:
+    return Random(7).randbytes
+
+
+@pytest.fixture
+def hold(register: Register, chance: Callable[[int], bytes]) -> Callable[..., Reservation]:
+    def held(document: str = "WI-204", machine: str = "KP-2", minutes: int = 1) -> Reservation:
+        return reserve(
+            register,
+            document=document,
+            machine=machine,
+            by="Ines Kurz",
+            when=at(minutes),
+            random_bytes=chance,
+        )
+
+    return held
+
+
+@pytest.fixture
+def issue(register: Register, hold: Callable[..., Reservation]) -> Callable[..., Revision]:
+    """A revision with its three signatures, issued."""
+
+    def issued(document: str = "WI-204", machine: str = "KP-2", content: str = CONTENT) -> Revision:
+        held = hold(document, machine)
+        signers = [
+            Signer(meaning="prepared", name="Ines Kurz"),
+            Signer(meaning="approved", name="Olaf Brenner"),
+        ]
+        for signer in signers:
+            sign_event(
+                register,
+                held.record_id,
+                who=signer.name,
+                meaning=signer.meaning,
+                file_digest=FILE,
+                when=at(2),
+            )
+        return commit(
+            register,
+            held.record_id,
+            content_digest=content,
+            file_digest=FILE,
+            machine_digest=MACHINE,
+            engine=3,
+            signers=signers,
+            by="Ines Kurz",
+            when=at(3),
+        )
+
+    return issued
+
+
+@pytest.fixture
+def meddle(path: Path) -> Callable[..., None]:
+    """Another program that takes the guards off, runs its statements, and puts the guards back."""
+
+    def meddled(*statements: str, **values: object) -> None:
+        with unguarded(path) as database:
+            for statement in statements:
+                database.execute(statement, values)
+
+    return meddled

@@ -1,0 +1,124 @@
+"""Several programs at once, and programs that are stopped while they write."""
+
+from __future__ import annotations
+
+import os
+import signal
+import subprocess
+import sys
+import time
+from pathlib import Path
+from random import Random
+
+import pytest
+from register_bench import NOON, at
+
+from sheets.errors import InputError
+from sheets.register.chain import check_chain
+from sheets.register.finding import document_revisions, revision_of
+from sheets.register.issuing import LEFT_OVER, void_left_over
+from sheets.register.revisions import RevisionState
+from sheets.register.store import Register, open_register
+
+WORKER = """
+import os, sys
+from datetime import UTC, datetime
+from pathlib import Path
+from sheets.register.issuing import reserve
+from sheets.register.store import open_register
+
+path, count, document, machine = sys.argv[1:]
+with open_register(Path(path), wait_s=60) as register:
+    print("ready", flush=True)
+    sys.stdin.readline()
+    for _ in range(int(count)):
+        held = reserve(register, document=document, machine=machine, by="Worker",
+                       when=datetime(2031, 3, 4, 13, tzinfo=UTC), random_bytes=os.urandom)
+        print(held.number, held.record_id, flush=True)
+"""
+
+
+def start(root: Path, path: Path, count: int) -> subprocess.Popen[str]:
+    return subprocess.Popen(
+        [sys.executable, "-c", WORKER, str(path), str(count), "WI-204", "KP-2"],
+        stdin=subprocess.PIPE,
+        stdout=subprocess.PIPE,
+        text=True,
+        env={**os.environ, "PYTHONPATH": str(root)},
+    )
+
+
+def go(worker: subprocess.Popen[str]) -> None:
+    assert worker.stdout.readline() == "ready\n"
+    worker.stdin.write("go\n")
+    worker.stdin.flush()
+
+
+def test_two_programs_never_hold_the_same_revision(register: Register, path: Path, root: Path) -> None:
+    workers = [start(root, path, 40) for _ in range(2)]
+    for worker in workers:
+        go(worker)
+    told = [line.split() for worker in workers for line in worker.communicate(timeout=120)[0].splitlines()]
+    assert [worker.returncode for worker in workers] == [0, 0]
+    numbers = sorted(int(number) for number, _ in told)
+    assert numbers == list(range(1, 81))
+    revisions = document_revisions(register, "WI-204")
+    assert {str(one.number): one.record_id for one in revisions} == dict(told)
+    assert [one.state for one in revisions] == [RevisionState.VOID] * 79 + [RevisionState.RESERVED]
+    assert check_chain(register).holds
+
+
+def test_a_program_killed_while_it_reserves_loses_nothing_acknowledged(
+    register: Register, path: Path, root: Path
+) -> None:
+    register.close()
+    chance = Random()
+    told: dict[str, int] = {}
+    for _ in range(8):
+        worker = start(root, path, 100_000)
+        go(worker)
+        time.sleep(chance.uniform(0.002, 0.12))
+        worker.send_signal(signal.SIGKILL)
+        output, _ = worker.communicate(timeout=60)
+        lines = output.split("\n")[:-1]  # the last piece isn't a whole line: not acknowledged
+        told |= {record_id: int(number) for number, record_id in (line.split() for line in lines)}
+        with open_register(path) as opened:
+            assert check_chain(opened).holds
+            kept = {one.record_id: one.number for one in document_revisions(opened, "WI-204")}
+            assert told.items() <= kept.items()
+    assert told
+    with open_register(path) as opened:
+        (left,) = void_left_over(opened, reserved_before=at(90), by="Ines Kurz", when=NOON)
+        assert revision_of(opened, left.record_id).reason == LEFT_OVER
+
+
+STOPPED = """
+import os, sys
+from datetime import UTC, datetime
+from pathlib import Path
+from sheets.register.events import Entry, EventKind
+from sheets.register.store import open_register
+
+with open_register(Path(sys.argv[1])) as register, register.writing() as writer:
+    writer._connection.exec_driver_sql("PRAGMA cache_size = 5")  # so that pages reach the file before the end
+    for _ in range(500):
+        writer.append(Entry(when=datetime(2031, 3, 4, tzinfo=UTC), who="Worker", kind=EventKind.VOIDED))
+    os._exit(9)
+"""
+
+
+def test_half_a_transaction_in_the_file_is_taken_back_by_the_next_who_may_write(
+    register: Register, path: Path, root: Path
+) -> None:
+    register.close()
+    whole = path.read_bytes()
+    done = subprocess.run(
+        [sys.executable, "-c", STOPPED, str(path)], env={**os.environ, "PYTHONPATH": str(root)}, check=False
+    )
+    assert done.returncode == 9
+    assert path.read_bytes() != whole
+    with pytest.raises(InputError, match="stopped while it wrote"):
+        open_register(path, read_only=True)
+    with open_register(path) as opened:
+        assert check_chain(opened).last.sequence == 1
+    assert path.read_bytes() == whole
