@@ -9,8 +9,8 @@ from typing import Literal
 from reportlab.pdfgen.canvas import Canvas
 from reportlab.pdfgen.pathobject import PDFPathObject
 
-from sheets.pages.document import Document
 from sheets.pages.fonts import WIDE_FONT, WIDE_SCALE, WIDE_STROKE, Weight, condensed, font_name, spans, wide
+from sheets.pages.metadata import PROGRAM, About
 from sheets.pages.placed import MM, Circle, Code, Item, Line, PlacedPage, Polygon, Rect, TextRun
 from sheets.pages.structure import runs
 
@@ -177,7 +177,7 @@ def draw_page(canvas: Canvas, page: PlacedPage) -> None:
         canvas.addLiteral("EMC")
 
 
-def raw_pdf(pages: Sequence[PlacedPage], document: Document) -> bytes:
+def raw_pdf(pages: Sequence[PlacedPage], said: About) -> bytes:
     """Pages as the drawing library writes them, before the finishing pass."""
     for weight in Weight:
         condensed(weight)
@@ -190,10 +190,10 @@ def raw_pdf(pages: Sequence[PlacedPage], document: Document) -> bytes:
         initialFontName=font_name(Weight.REGULAR),  # type: ignore[arg-type]  # the stub asks a float for a name
         initialFontSize=10,
     )
-    canvas.setTitle(f"{document.number} {document.title}")
-    canvas.setAuthor("Jamnut")
-    canvas.setCreator("Jamnut")
-    canvas.setSubject("; ".join(dict.fromkeys(section.title for section in document.sections)))
+    canvas.setTitle(said.title)
+    canvas.setAuthor(PROGRAM)
+    canvas.setCreator(PROGRAM)
+    canvas.setSubject(said.subject)
     for page in pages:
         canvas.setPageSize((page.width, page.height))
         canvas.setLineJoin(1)

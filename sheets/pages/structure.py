@@ -48,7 +48,8 @@ class Node:
 
     element: Element
     parent: Node | None = None
-    children: list[Node | Held] = field(default_factory=list)
+    children: list[Node | Held | int] = field(default_factory=list)
+    """Elements, ink, and fields by their number."""
 
     def walk(self) -> Iterator[Node]:
         """This one, then all below it."""
@@ -69,12 +70,15 @@ class Structure:
 
     root: Node
     holders: tuple[tuple[Node, ...], ...]
-    places: dict[Path, Node]
-    """Every element by its path."""
+    forms: tuple[Node, ...]
+    """The element of each field."""
 
 
-def structure(pages: Sequence[PlacedPage]) -> Structure:
-    """The tree over all pages. An element that goes on over a page stays one element."""
+def structure(pages: Sequence[PlacedPage], fields: Sequence[Path] = ()) -> Structure:
+    """The tree over all pages. An element that goes on over a page stays one element.
+
+    `fields` are the paths of what the fields to sign are part of.
+    """
     root = Node(element=element("Document"))
     places: dict[Path, Node] = {(): root}
     holders: list[tuple[Node, ...]] = []
@@ -86,9 +90,12 @@ def structure(pages: Sequence[PlacedPage]) -> Structure:
                 node.children.append(Held(page=index, run=run.number))
                 held.append(node)
         holders.append(tuple(held))
+    forms = [placed_at(places, (*path, element("Form", index))) for index, path in enumerate(fields)]
+    for index, node in enumerate(forms):
+        node.children.append(index)
     for node in list(root.walk()):
         put_right(node)
-    return Structure(root=root, holders=tuple(holders), places=places)
+    return Structure(root=root, holders=tuple(holders), forms=tuple(forms))
 
 
 def placed_at(places: dict[Path, Node], path: Path) -> Node:
