@@ -56,6 +56,26 @@ class LoadedSite:
     """Name of the file, without its folder."""
 
 
+@dataclass(frozen=True, kw_only=True)
+class LoadedWalkdown:
+    """A walk-down, and the file that it came from."""
+
+    walkdown: Walkdown
+    source: bytes
+    """The file as it stood."""
+    name: str
+    """Name of the file, without its folder."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class Sources:
+    """The files that a machine was read from, each as it stood; None where there was none."""
+
+    machine: bytes
+    site: bytes | None
+    walkdown: bytes | None
+
+
 def load_machine(path: Path) -> LoadedMachine:
     """Read a machine file. Raises InputError with every problem in it, in the order of its lines."""
     source = _bytes_of(path)
@@ -78,7 +98,7 @@ def parse_site(text: bytes, name: str) -> Site:
     return _parsed(text, name, Site, lambda _: (), lambda _: None)
 
 
-def load_walkdown(path: Path, *, machine: Machine, today: date | None) -> Walkdown:
+def load_walkdown(path: Path, *, machine: Machine, today: date | None) -> LoadedWalkdown:
     """Read a walk-down file. Raises InputError with every problem in it.
 
     ``machine`` is the one that it has to be about. ``today`` comes from the clock; where it is given, answers
@@ -95,7 +115,9 @@ def load_walkdown(path: Path, *, machine: Machine, today: date | None) -> Walkdo
         if today is not None:
             yield from walkdown.dates_after(today)
 
-    return _parsed(_bytes_of(path), path.name, Walkdown, check, lambda _: None)
+    source = _bytes_of(path)
+    walkdown = _parsed(source, path.name, Walkdown, check, lambda _: None)
+    return LoadedWalkdown(walkdown=walkdown, source=source, name=path.name)
 
 
 def _bytes_of(path: Path) -> bytes:

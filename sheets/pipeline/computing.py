@@ -51,6 +51,7 @@ def steps(described: Described, task: Task = Task()) -> Matter:  # noqa: B008 --
         ),
         machine=described.machine,
         site=described.site,
+        sources=described.sources,
         circuit=described.circuit,
         targets=found,
         procedure=procedure,

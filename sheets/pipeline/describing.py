@@ -10,7 +10,7 @@ from pathlib import Path
 from sheets.circuit.build import both_ends
 from sheets.circuit.model import Circuit
 from sheets.machine.files import SITE_FILE, walkdown_file
-from sheets.machine.loading import load_machine, load_site, load_walkdown
+from sheets.machine.loading import LoadedSite, LoadedWalkdown, Sources, load_machine, load_site, load_walkdown
 from sheets.machine.model import Machine
 from sheets.machine.site import Policies, Site
 from sheets.machine.walkdown import Walkdown
@@ -26,6 +26,7 @@ class Described:
     machine: Machine
     site: Site | None
     circuit: Circuit
+    sources: Sources
     walkdown: Walkdown | None = None
 
     @property
@@ -38,8 +39,10 @@ def check(machine_file: Path, site_file: Path | None = None, today: date | None 
 
     ``today`` only refuses walk-down answers from the future. Raises InputError.
     """
-    machine = load_machine(machine_file).machine
-    site = _site(machine_file, site_file)
+    loaded = load_machine(machine_file)
+    machine = loaded.machine
+    loaded_site = _site(machine_file, site_file)
+    site = loaded_site.site if loaded_site else None
     policies = site.policies if site else Policies()
     ends = both_ends(
         machine,
@@ -50,17 +53,27 @@ def check(machine_file: Path, site_file: Path | None = None, today: date | None 
     # Where the maker's drawing shows no bleed, outlet pressure reaches a port that is cut off: the last end.
     # Where nobody has looked, the search refuses every state in which the end matters.
     walked = walkdown_beside(machine_file, machine, today)
-    return Described(machine=machine, site=site, circuit=ends[-1], walkdown=walked)
+    return Described(
+        machine=machine,
+        site=site,
+        circuit=ends[-1],
+        sources=Sources(
+            machine=loaded.source,
+            site=loaded_site.source if loaded_site else None,
+            walkdown=walked.source if walked else None,
+        ),
+        walkdown=walked.walkdown if walked else None,
+    )
 
 
-def _site(machine_file: Path, site_file: Path | None) -> Site | None:
+def _site(machine_file: Path, site_file: Path | None) -> LoadedSite | None:
     if site_file is not None:
-        return load_site(site_file).site
+        return load_site(site_file)
     beside = machine_file.parent / SITE_FILE
-    return load_site(beside).site if beside.is_file() else None
+    return load_site(beside) if beside.is_file() else None
 
 
-def walkdown_beside(machine_file: Path, machine: Machine, today: date | None) -> Walkdown | None:
+def walkdown_beside(machine_file: Path, machine: Machine, today: date | None) -> LoadedWalkdown | None:
     beside = walkdown_file(machine_file)
     return load_walkdown(beside, machine=machine, today=today) if beside.is_file() else None
 

@@ -14,28 +14,58 @@ from sheets.pages.compose.pack import compose
 from sheets.pages.document import Document, IssueContext, Layout, SheetKind
 from sheets.pages.layout import place
 from sheets.pages.press import pdf_bytes, print_pack
+from sheets.pipeline.attaching import attachments_of
 from sheets.pipeline.computing import findings_of_job, status_of
 from sheets.seal.canonical import canonical_bytes, digest
 from sheets.wording.obstacles import refusals
 
 
-def content(matter: Matter) -> tuple[Document, str]:
-    """The content of the pack and its printed digest.
+@dataclass(frozen=True, kw_only=True)
+class Content:
+    """What a pack says."""
+
+    document: Document
+    data: bytes
+    """Its canonical form, without the names and dates of a walk-down."""
+    digest: str
+    """Of the data, as printed."""
+
+
+def whole_content(matter: Matter) -> Content:
+    """The content of the pack, its canonical form and the printed digest of that.
 
     Raises RefusedError or NotEstablishedError, with what stands against it, where the job doesn't hold.
     """
     _hold(matter)
     document = compose(matter)
-    if matter.walkdown is None or not matter.walkdown.touched:
-        return document, digest(canonical_bytes(document))
+    walked = matter.walkdown is not None and matter.walkdown.touched
     # Names and dates are no part of the content: the digest is that of the sheets before any walk-down.
-    return document, digest(canonical_bytes(compose(replace(matter, walkdown=None))))
+    data = canonical_bytes(compose(replace(matter, walkdown=None)) if walked else document)
+    return Content(document=document, data=data, digest=digest(data))
 
 
-def pack(matter: Matter, layout: Layout, issue: IssueContext | None = None) -> bytes:
-    """The pack as PDF bytes; a draft without an issue context. Raises as `content` and `place` do."""
-    document, printed = content(matter)
-    return print_pack(document, layout=layout, digest=printed, issue=issue)
+def content(matter: Matter) -> tuple[Document, str]:
+    """The content of the pack and its printed digest. Raises as `whole_content` does."""
+    said = whole_content(matter)
+    return said.document, said.digest
+
+
+def pack(
+    matter: Matter, layout: Layout, issue: IssueContext | None = None, *, fillable: bool = True
+) -> bytes:
+    """The pack as PDF bytes, with what it was made from attached; a draft without an issue context.
+
+    ``fillable``: whether an issued pack gets fields to sign by key. Raises as `whole_content` and `place` do.
+    """
+    said = whole_content(matter)
+    return print_pack(
+        said.document,
+        layout=layout,
+        digest=said.digest,
+        issue=issue,
+        attachments=attachments_of(matter, layout, said.data),
+        fillable=fillable,
+    )
 
 
 def draft_name(machine: Machine) -> str:
@@ -59,11 +89,13 @@ def write_pack(
     ``only``: names of the documents to print; the whole pack if there are none. Raises InputError, and
     RefusedError or NotEstablishedError where nothing may be printed.
     """
-    document, printed = content(matter)
+    said = whole_content(matter)
     kinds = tuple(SheetKind(name) for name in only) or tuple(SheetKind)
-    pages = place(document, Layout(paper=paper, kinds=kinds), digest=printed)
-    write_pdf(target, pdf_bytes(pages, document))
-    return Written(pages=len(pages), digest=printed)
+    layout = Layout(paper=paper, kinds=kinds)
+    pages = place(said.document, layout, digest=said.digest)
+    attachments = attachments_of(matter, layout, said.data)
+    write_pdf(target, pdf_bytes(pages, said.document, attachments=attachments))
+    return Written(pages=len(pages), digest=said.digest)
 
 
 def _hold(matter: Matter) -> None:

@@ -56,7 +56,8 @@ def write_walkdown(machine_file: Path, described: Described, answers: Answers) -
     """
     by, on = answers.signed(dated=described.machine.dated)
     found = _targets(described)
-    now = replace(described, walkdown=walkdown_beside(machine_file, described.machine, answers.today))
+    beside = walkdown_beside(machine_file, described.machine, answers.today)
+    now = replace(described, walkdown=beside.walkdown if beside else None)
     computed_from = _computing_digest(now)
     changed = with_answers(
         now.walkdown,

@@ -41,7 +41,7 @@ def read(tmp_path: Path, machine: Machine) -> Callable[..., Walkdown]:
     def load(text: str, today: date | None = None) -> Walkdown:
         file = tmp_path / "small.walkdown.yaml"
         file.write_text(text, encoding="utf-8")
-        return load_walkdown(file, machine=machine, today=today)
+        return load_walkdown(file, machine=machine, today=today).walkdown
 
     return load
 

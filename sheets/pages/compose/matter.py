@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 from sheets.circuit.model import Circuit
 from sheets.hazards.assess import Hazard
+from sheets.machine.loading import Sources
 from sheets.machine.model import Machine
 from sheets.machine.site import Site
 from sheets.machine.walking import WalkdownState
@@ -25,6 +26,7 @@ class Matter:
 
     machine: Machine
     site: Site | None
+    sources: Sources
     circuit: Circuit
     targets: Targets
     procedure: Procedure
