@@ -25,7 +25,6 @@ from cryptography.hazmat.primitives.asymmetric import ec, padding
 from cryptography.hazmat.primitives.serialization import Encoding
 from pyhanko.pdf_utils import generic
 from pyhanko.pdf_utils.incremental_writer import IncrementalPdfFileWriter
-from pyhanko.pdf_utils.misc import PdfError
 from pyhanko.pdf_utils.reader import PdfFileReader
 from pyhanko.sign.fields import MDPPerm, SigSeedSubFilter, enumerate_sig_fields
 from pyhanko.sign.signers.cms_embedder import PdfCMSEmbedder, SigIOSetup, SigMDPSetup, SigObjSetup
@@ -40,6 +39,7 @@ from sheets.seal.signatures import held_signatures
 from sheets.seal.signatures_bytes import signed_ranges
 from sheets.seal.signatures_people import Person, check_needed, clash, person_of
 from sheets.seal.signatures_report import ROLES, Flaw
+from sheets.seal.signatures_revisions import UNREADABLE
 
 DIGEST: Final = "sha256"
 ROOM_BYTES: Final = 1200
@@ -127,15 +127,22 @@ def open_signer(p12: bytes, passphrase: str, *, where: str = "key file", when: d
 
 def signing_fields(pdf: bytes) -> Mapping[str, SigningField]:
     """The signature fields of a file by name. Raises InputError for a file that can't be read."""
-    return {
-        name: SigningField(
-            width=abs(float(box[2]) - float(box[0])), height=abs(float(box[3]) - float(box[1])), signed=signed
-        )
-        for name, signed, box in (
-            (name, value is not None, reference.get_object().get("/Rect", (0, 0, 0, 0)))
-            for name, value, reference in enumerate_sig_fields(_reader(pdf))
-        )
-    }
+    fields = {}
+    try:
+        for name, value, reference in enumerate_sig_fields(PdfFileReader(io.BytesIO(pdf))):
+            left, bottom, right, top = (float(edge) for edge in reference.get_object()["/Rect"])
+            fields[name] = SigningField(
+                width=abs(right - left), height=abs(top - bottom), signed=value is not None
+            )
+    except UNREADABLE as error:
+        raise InputError(
+            Problem(
+                where="file to sign",
+                what="it can't be read as a PDF with fields for signatures",
+                fix="Give the pack as it was written.",
+            )
+        ) from error
+    return fields
 
 
 def sign_field(
@@ -161,7 +168,7 @@ def sign_field(
     if when.tzinfo is None:
         raise ValueError("the time of a signature needs its zone")
     _check_turn(pdf, field, signer.person, needed, when)
-    writer = _Update(io.BytesIO(pdf), prev=_reader(pdf))
+    writer = _Update(io.BytesIO(pdf))
     first = not signed_ranges(pdf)
 
     embedder = PdfCMSEmbedder().write_cms(field_name=field, writer=writer, existing_fields_only=True)
@@ -204,21 +211,15 @@ def _reserved(signer: Signer, *, timed: bool) -> int:
     return 2 * (inside + (ROOM_FOR_TIME_BYTES if timed else 0))
 
 
-def _reader(pdf: bytes) -> PdfFileReader:
-    try:
-        return PdfFileReader(io.BytesIO(pdf))
-    except (PdfError, ValueError) as error:
-        raise InputError(
-            Problem(
-                where="file to sign",
-                what=f"it can't be read as a PDF ({error})",
-                fix="Give the pack as it was written.",
-            )
-        ) from error
-
-
 def _check_turn(pdf: bytes, field: str, person: Person, needed: tuple[str, ...], when: datetime) -> None:
     """Whether this person may sign this field now. Raises RefusedError or InputError."""
+    try:
+        held = held_signatures(pdf)
+    except Flaw as flaw:
+        raise _refused(
+            field, flaw.reason.says, "Sign the pack as it was written by the last signer."
+        ) from flaw
+    given = [one.field.name for one in held]
     fields = signing_fields(pdf)
     if field not in fields or field not in ROLES:
         raise InputError(
@@ -229,13 +230,6 @@ def _check_turn(pdf: bytes, field: str, person: Person, needed: tuple[str, ...],
                 f"{', '.join(role for role in ROLES if role in fields) or 'none'}.",
             )
         )
-    try:
-        held = held_signatures(pdf)
-    except Flaw as flaw:
-        raise _refused(
-            field, flaw.reason.says, "Sign the pack as it was written by the last signer."
-        ) from flaw
-    given = [one.field.name for one in held]
     flaws = [one.field.flaw.reason.says for one in held if one.field.flaw is not None]
     if flaws:
         raise _refused(field, flaws[0], "Issue the pack anew; this one was changed.")

@@ -15,7 +15,7 @@ from typing import Any, Final, Literal
 
 from asn1crypto import cms  # type: ignore[import-untyped]  # the package ships no types
 from cryptography import x509
-from cryptography.exceptions import InvalidSignature
+from cryptography.exceptions import InvalidSignature, UnsupportedAlgorithm
 from cryptography.hazmat.primitives import hashes
 from cryptography.hazmat.primitives.asymmetric import ec, padding, rsa
 from cryptography.hazmat.primitives.serialization import Encoding
@@ -139,7 +139,8 @@ def _read(packed: bytes, held: Held) -> tuple[Container, bytes]:
     (own,) = fitting
 
     digest_der, scheme_der = signer["digest_algorithm"].dump(), signer["signature_algorithm"].dump()
-    digest_name = _allowed(digest_der, scheme_der, own.dump())
+    certificate = _certificate(own.dump())
+    digest_name = _allowed(digest_der, scheme_der, certificate.public_key())
     tagged = signer["signed_attrs"].dump()
     attributes = _attributes(signer["signed_attrs"], digest_der, scheme_der)
     token = _token(signer["unsigned_attrs"]) if signer["unsigned_attrs"] else b""
@@ -172,8 +173,8 @@ def _read(packed: bytes, held: Held) -> tuple[Container, bytes]:
         ),
     )
     container = Container(
-        certificate=x509.load_der_x509_certificate(own.dump()),
-        others=tuple(x509.load_der_x509_certificate(one.dump()) for one in certificates if one is not own),
+        certificate=certificate,
+        others=tuple(_certificate(one.dump()) for one in certificates if one is not own),
         digest_name=digest_name,
         attributes=attributes,
         attributes_der=bytes((SET,)) + tagged[1:],
@@ -184,13 +185,31 @@ def _read(packed: bytes, held: Held) -> tuple[Container, bytes]:
     return container, written
 
 
-def _allowed(digest_der: bytes, scheme_der: bytes, certificate_der: bytes) -> str:
+def _certificate(der: bytes) -> x509.Certificate:
+    """A certificate of which everything that is asked later can be read. Raises Flaw."""
+    try:
+        certificate = x509.load_der_x509_certificate(der)
+        for read in ("subject", "issuer", "extensions", "not_valid_before_utc", "not_valid_after_utc"):
+            getattr(certificate, read)
+        certificate.public_key()
+    except (
+        ValueError,
+        OverflowError,
+        UnsupportedAlgorithm,
+        x509.InvalidVersion,
+        x509.DuplicateExtension,
+        x509.UnsupportedGeneralNameType,
+    ) as error:
+        raise Flaw(Cause.CONTAINER, "A certificate in the container can't be read.") from error
+    return certificate
+
+
+def _allowed(digest_der: bytes, scheme_der: bytes, public: object) -> str:
     """Name of the digest, if digest, scheme and key are on the lists and agree. Raises Flaw."""
     digest_name = _DIGESTS.get(digest_der)
     kind, scheme_digest = _SCHEMES.get(scheme_der, ("", ""))
     if digest_name is None or not kind or scheme_digest not in ("", digest_name):
         raise _not_allowed()
-    public = x509.load_der_x509_certificate(certificate_der).public_key()
     if kind == "ec" and isinstance(public, ec.EllipticCurvePublicKey) and isinstance(public.curve, _CURVES):
         return digest_name
     if kind == "rsa" and isinstance(public, rsa.RSAPublicKey) and public.key_size >= _SHORTEST_RSA:

@@ -14,7 +14,7 @@ from typing import Final
 
 from asn1crypto import tsp  # type: ignore[import-untyped]  # the package ships no types
 from cryptography import x509
-from cryptography.exceptions import InvalidSignature
+from cryptography.exceptions import InvalidSignature, UnsupportedAlgorithm
 from cryptography.x509.oid import ExtendedKeyUsageOID, ExtensionOID
 
 from sheets.errors import InputError, Problem
@@ -69,7 +69,7 @@ def vouching(certificate: x509.Certificate, trust: Sequence[x509.Certificate]) -
     for one in namesakes:
         try:
             certificate.verify_directly_issued_by(one)
-        except (ValueError, TypeError, InvalidSignature):
+        except (ValueError, TypeError, InvalidSignature, UnsupportedAlgorithm):
             continue
         return one
     name, issuer = common_name(certificate), certificate.issuer.rfc4514_string()
@@ -209,10 +209,7 @@ def _for_time_alone(certificate: x509.Certificate) -> bool:
 
 
 def _check_critical(certificate: x509.Certificate) -> None:
-    try:
-        unread = [one.oid for one in certificate.extensions if one.critical and one.oid not in _READ]
-    except (ValueError, x509.DuplicateExtension) as error:
-        raise Flaw(Cause.CONTAINER, "The certificate can't be read.") from error
+    unread = [one.oid for one in certificate.extensions if one.critical and one.oid not in _READ]
     if unread:
         raise Flaw(
             Cause.FOREIGN,

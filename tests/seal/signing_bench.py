@@ -7,9 +7,12 @@ from datetime import UTC, datetime, timedelta, timezone
 from functools import cache
 
 import pikepdf
+import pytest
+from cryptography.hazmat.primitives.asymmetric import ec
 from reportlab.pdfgen.canvas import Canvas
 
 from sheets.pages.stamp import stamp_pdf
+from sheets.seal import keys
 from sheets.seal.keys import KeyFile, KeyKind, OpenKey, Validity, make_authority, make_signer, open_key
 from sheets.seal.sign import Signer, open_signer, sign_field, signing_fields
 from sheets.seal.signatures import judge_signatures
@@ -44,6 +47,18 @@ def signer(
         authority(issuer)[1], person, validity=validity, serial=7, passphrase=PASSPHRASE, kind=kind
     )
     return open_signer(made.p12, PASSPHRASE, when=when)
+
+
+def signers_with_one_key(*people: str) -> list[Signer]:
+    """Certificates for several names over one key, as a careless authority might issue."""
+    private = ec.generate_private_key(ec.SECP256R1())
+    found = []
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(keys, "_new_key", lambda _: private)
+        for person in people:
+            made = make_signer(authority(WORKS)[1], person, validity=YEARS, serial=9, passphrase=PASSPHRASE)
+            found.append(open_signer(made.p12, PASSPHRASE, when=SIGNED_AT))
+    return found
 
 
 @cache
