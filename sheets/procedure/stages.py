@@ -50,6 +50,13 @@ def write_stages(job: Job) -> tuple[tuple[Stage, ...], tuple[Finding, ...]]:
     return tuple(stages), tuple(rig.findings)
 
 
+def _stop_service(job: Job, rig: Rig) -> None:
+    """Whoever needs the machine is told, then every drive is stopped: it may run, whatever the rig knows."""
+    rig.say(StepKind.TELL_BEFORE)
+    for drive in job.case.circuit.drives:
+        rig.do(StepKind.PRESS_STOP, drive, StopDrive(drive=drive))
+
+
 def _choice(job: Job, rig: Rig, adjuster: str) -> None:
     """Points the rig at the gauge of an adjuster, at the test point where it really is."""
     choice = job.found[adjuster].gauge
@@ -60,9 +67,9 @@ def _isolate(job: Job, rig: Rig, kind: StageKind) -> Stage:
     """Stop, isolate, relieve, verify; then gauges on, or valves back and gauges off."""
     machine, circuit, first = job.case.machine, job.case.circuit, kind is StageKind.ISOLATE
     if first:
-        rig.say(StepKind.TELL_BEFORE)
-    for drive in circuit.drives:
-        rig.do(StepKind.PRESS_STOP, drive, StopDrive(drive=drive))
+        _stop_service(job, rig)
+    else:
+        _stop(job, rig)
     for supply in machine.energy:
         rig.say(StepKind.ISOLATE, supply)
     trapped = find_trapped(machine, circuit, rig.state.positions)
@@ -139,7 +146,12 @@ def _put_back(job: Job, rig: Rig, valves: list[str]) -> None:
 
 
 def _deadhead(job: Job, rig: Rig) -> Stage:
-    """Valves as the settings need them, and screws that nobody knows backed out, before any power."""
+    """Valves as the settings need them, and screws that nobody knows backed out, with every drive off.
+
+    Where no lockout came before, the machine is still in service: it is stopped here.
+    """
+    if not job.locked:
+        _stop_service(job, rig)
     wanted = {move.valve: move.position for move in job.line_up}
     reasons = {
         change.valve: failure
