@@ -28,7 +28,7 @@ def file(variant: Callable[..., Path]) -> Path:
 @pytest.fixture(autouse=True)
 def _late_enough(monkeypatch: pytest.MonkeyPatch) -> None:
     """The samples are dated in November 2026; the clock stands a little later."""
-    monkeypatch.setattr(cli, "_today", lambda: date(2026, 12, 1))
+    monkeypatch.setattr(cli, "today", lambda: date(2026, 12, 1))
 
 
 def answers_in(file: Path) -> dict[str, dict[str, dict[str, str]]]:

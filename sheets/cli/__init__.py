@@ -8,41 +8,20 @@ import json
 import sys
 import tempfile
 import traceback
-from datetime import date
 from pathlib import Path
 from typing import TYPE_CHECKING, Literal
 
 import click
 
 from sheets import __version__
-from sheets.errors import ExitStatus, InputError, JamnutError, Problem, gravest
+from sheets.cli.common import AS_JSON, MACHINE, MACHINES, PART, SITE, TASK, leave, show, tell, today, wrong
+from sheets.errors import ExitStatus, JamnutError, gravest
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Iterable
+    from collections.abc import Callable
 
-    from sheets.pipeline import Described, Json, Outcome, WalkdownState
+    from sheets.pipeline import Described, Outcome, WalkdownState
 
-MACHINE = click.argument("machine", type=click.Path(path_type=Path), metavar="MACHINE")
-MACHINES = click.argument(
-    "machines", type=click.Path(path_type=Path), metavar="MACHINE...", nargs=-1, required=True
-)
-SITE = click.option(
-    "--site",
-    type=click.Path(path_type=Path),
-    metavar="FILE",
-    help="Site file; without it, site.yaml beside the machine file, if there is one.",
-)
-AS_JSON = click.option(
-    "--json", "as_json", is_flag=True, help="Print data with stable names instead of text."
-)
-TASK = click.option(
-    "--task",
-    type=click.Choice(["read", "set", "commission", "replace"]),
-    default="set",
-    show_default=True,
-    help="Read only; read and set; set after commissioning; set one part after its replacement.",
-)
-PART = click.option("--part", metavar="ID", help="The part that was replaced, for --task replace.")
 KINDS = ("cover", "instruction", "lockout", "record", "tags", "engineer")
 
 
@@ -68,10 +47,10 @@ def check(machines: tuple[Path, ...], site: Path | None, as_json: bool) -> None:
     from sheets import pipeline
 
     if _many(machines):
-        _leave(_each(machines, functools.partial(pipeline.outcome_of_check, site, _today()), as_json))
+        leave(_each(machines, functools.partial(pipeline.outcome_of_check, site, today()), as_json))
         return
-    described = pipeline.check(machines[0], site, _today())
-    _print(pipeline.check_json(described) if as_json else pipeline.check_text(described))
+    described = pipeline.check(machines[0], site, today())
+    show(pipeline.check_json(described) if as_json else pipeline.check_text(described))
 
 
 @main.command()
@@ -86,12 +65,12 @@ def targets(machines: tuple[Path, ...], site: Path | None, as_json: bool) -> Non
     from sheets import pipeline
 
     if _many(machines):
-        _leave(_each(machines, functools.partial(pipeline.outcome_of_targets, site, _today()), as_json))
+        leave(_each(machines, functools.partial(pipeline.outcome_of_targets, site, today()), as_json))
         return
-    described = pipeline.check(machines[0], site, _today())
+    described = pipeline.check(machines[0], site, today())
     found = pipeline.targets(described)
-    _print(pipeline.targets_json(described, found) if as_json else pipeline.targets_text(described, found))
-    _leave(pipeline.status_of(found))
+    show(pipeline.targets_json(described, found) if as_json else pipeline.targets_text(described, found))
+    leave(pipeline.status_of(found))
 
 
 @main.command()
@@ -119,23 +98,23 @@ def steps(
 
     if _many(machines):
         if why is not None or skew:
-            raise _wrong("--why, --skew", "They belong to one machine.", "Name one machine file.")
-        doing = functools.partial(pipeline.outcome_of_steps, site, _today(), task, part)
-        _leave(_each(machines, doing, as_json))
+            raise wrong("--why, --skew", "They belong to one machine.", "Name one machine file.")
+        doing = functools.partial(pipeline.outcome_of_steps, site, today(), task, part)
+        leave(_each(machines, doing, as_json))
         return
-    described = pipeline.check(machines[0], site, _today())
+    described = pipeline.check(machines[0], site, today())
     wanted = pipeline.task_of(described, task, part)
-    _tell("finding the state in which each adjuster can be set")
+    tell("finding the state in which each adjuster can be set")
     if skew:
-        _print(pipeline.skew_text(described))
+        show(pipeline.skew_text(described))
         return
     matter = pipeline.steps(described, wanted)
     if why is not None:
-        _print(pipeline.why_text(matter, why))
-        _leave(pipeline.status_of(matter.targets, matter.procedure, matter.replay))
+        show(pipeline.why_text(matter, why))
+        leave(pipeline.status_of(matter.targets, matter.procedure, matter.replay))
         return
-    _print(pipeline.steps_json(matter) if as_json else pipeline.steps_text(matter))
-    _leave(pipeline.status_of(matter.targets, matter.procedure, matter.replay))
+    show(pipeline.steps_json(matter) if as_json else pipeline.steps_text(matter))
+    leave(pipeline.status_of(matter.targets, matter.procedure, matter.replay))
 
 
 @main.command()
@@ -174,17 +153,17 @@ def pack(
 
     if _many(machines):
         writing = pipeline.Writing(folder=output or Path(), paper=paper, only=only)
-        doing = functools.partial(pipeline.outcome_of_pack, site, _today(), task, part, writing)
-        _leave(_each(machines, doing, as_json=False))
+        doing = functools.partial(pipeline.outcome_of_pack, site, today(), task, part, writing)
+        leave(_each(machines, doing, as_json=False))
         return
-    described = pipeline.check(machines[0], site, _today())
+    described = pipeline.check(machines[0], site, today())
     wanted = pipeline.task_of(described, task, part)
-    _tell("finding the state in which each adjuster can be set")
+    tell("finding the state in which each adjuster can be set")
     matter = pipeline.steps(described, wanted)
-    _tell("placing and drawing the pages")
+    tell("placing and drawing the pages")
     target = output or Path(pipeline.draft_name(described.machine))
     written = pipeline.write_pack(matter, target, paper=paper, only=only)
-    _print([f"{target}: {written.pages} pages, draft, content {written.digest}"])
+    show([f"{target}: {written.pages} pages, draft, content {written.digest}"])
     for line in pipeline.issuable_text(matter):
         click.echo(line, err=True)
 
@@ -220,27 +199,27 @@ def walkdown(
     """
     from sheets import pipeline
 
-    described = pipeline.check(machine, site, _today())
+    described = pipeline.check(machine, site, today())
     state = pipeline.walkdown(described)
     given = bool(agree or differ or rest_agrees or accept)
     if len(note) != len(differ):
-        raise _wrong("--note", "Each --differ needs one --note, in the same order.", "Say what is there.")
+        raise wrong("--note", "Each --differ needs one --note, in the same order.", "Say what is there.")
     if len(set(differ)) != len(differ):
-        raise _wrong("--differ", "An entry is named twice.", "Name it once, with one note.")
+        raise wrong("--differ", "An entry is named twice.", "Name it once, with one note.")
     if by is None:
         if given or on:
-            raise _wrong("--by", "Nobody is named who compared or accepted.", "Add --by NAME.")
+            raise wrong("--by", "Nobody is named who compared or accepted.", "Add --by NAME.")
         shown = pipeline.walkdown_json(described, state)
-        _print(shown if as_json else pipeline.walkdown_text_lines(described, state))
+        show(shown if as_json else pipeline.walkdown_text_lines(described, state))
         return
     said = dict(zip(differ, note, strict=True))
     if not given:
         agree, said = _ask(described, state)
     answers = pipeline.Answers(
-        by=by, on=on or "", today=_today(), agree=agree, differ=said, rest_agrees=rest_agrees, accept=accept
+        by=by, on=on or "", today=today(), agree=agree, differ=said, rest_agrees=rest_agrees, accept=accept
     )
     state = pipeline.write_walkdown(machine, described, answers)
-    _print(
+    show(
         pipeline.walkdown_json(described, state)
         if as_json
         else [pipeline.walkdown_standing(described, state)]
@@ -278,10 +257,10 @@ def new(kind: str | None, file: Path | None) -> None:
     from sheets import pipeline
 
     if kind is None:
-        _print(pipeline.starter_kinds())
+        show(pipeline.starter_kinds())
         return
     if file is None:
-        raise _wrong("FILE", "No file is named to write to.", f"Write jamnut new {kind} FILE.")
+        raise wrong("FILE", "No file is named to write to.", f"Write jamnut new {kind} FILE.")
     pipeline.new(kind, file)
     click.echo(f"{file}: written; fill it in, and ask jamnut check what is still blank")
 
@@ -299,17 +278,8 @@ def diff(old: Path, new_file: Path, site: Path | None, as_json: bool) -> None:
     from sheets import pipeline
 
     differing = pipeline.diff(old, new_file, site)
-    _print(pipeline.diff_json(differing) if as_json else pipeline.diff_text(differing))
-    _leave(differing.status)
-
-
-def _today() -> date:
-    """The only look at a calendar; it refuses answers from the future and dates new ones."""
-    return date.today()
-
-
-def _wrong(where: str, what: str, fix: str) -> InputError:
-    return InputError(Problem(where=where, what=what, fix=fix))
+    show(pipeline.diff_json(differing) if as_json else pipeline.diff_text(differing))
+    leave(differing.status)
 
 
 def _many(machines: tuple[Path, ...]) -> bool:
@@ -324,37 +294,16 @@ def _each(machines: tuple[Path, ...], doing: Callable[[Path], Outcome], as_json:
     files = pipeline.machine_files(machines)
     outcomes: list[Outcome] = []
     for number, file in enumerate(files, start=1):
-        _tell(f"{number} of {len(files)}: {file}")
+        tell(f"{number} of {len(files)}: {file}")
         try:
             outcomes.append(doing(file))
         except Exception:  # noqa: BLE001 -- a bug at one file is told in its row; the others get theirs
             outcomes.append(pipeline.broken(str(file), f"please report it with {_keep_traceback()}"))
     if as_json:
-        _print([json.dumps(pipeline.summary_json(outcomes), indent=2)])
+        show([json.dumps(pipeline.summary_json(outcomes), indent=2)])
     else:
-        _print(pipeline.summary_lines(outcomes))
+        show(pipeline.summary_lines(outcomes))
     return gravest(outcome.status for outcome in outcomes)
-
-
-def _print(shown: Iterable[str] | dict[str, Json]) -> None:
-    """Prints lines or data. A reader that leaves early changes nothing about the exit status."""
-    lines = [json.dumps(shown, indent=2)] if isinstance(shown, dict) else shown
-    try:
-        for line in lines:
-            click.echo(line)
-    except BrokenPipeError:
-        sys.stdout = io.StringIO()
-
-
-def _tell(doing: str) -> None:
-    """Progress, for a person who waits at a terminal."""
-    if sys.stderr.isatty():
-        click.echo(f"… {doing}", err=True)
-
-
-def _leave(status: ExitStatus) -> None:
-    if status is not ExitStatus.GOOD:
-        raise SystemExit(int(status))
 
 
 def _keep_traceback() -> str:
