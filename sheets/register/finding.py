@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from sheets.crockford import as_printed, is_crockford
 from sheets.errors import InputError, Problem, quoted
-from sheets.register.events import REVISION_KINDS, EventKind
+from sheets.register.events import REVISION_KINDS, EventKind, contradiction
 from sheets.register.form import RECORD_ID
 from sheets.register.revisions import Revision, revisions_from
 from sheets.register.store import Register, View
@@ -32,10 +32,12 @@ def revision_in(view: View, record_id: str) -> Revision | None:
     """The revision that a record id names, within a view that is open already."""
     if not is_crockford(record_id, RECORD_ID):
         return None
-    event = next(view.events(record_id=record_id, kinds={EventKind.RESERVED}), None)
-    if event is None:
+    reserved = list(view.events(record_id=record_id, kinds={EventKind.RESERVED}))
+    if not reserved:
         return None
-    return next(one for one in revisions_in(view, event.document) if one.record_id == record_id)
+    if len(reserved) > 1:
+        raise contradiction(reserved[1].sequence, "it reserves a record id that was given out before")
+    return next(one for one in revisions_in(view, reserved[0].document) if one.record_id == record_id)
 
 
 def found_in(view: View, record_id: str) -> Revision:
