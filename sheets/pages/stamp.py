@@ -52,11 +52,9 @@ def when_line(when: datetime, zone: str) -> str:
     """Date and time to the second with zone and offset: 2026-03-05 14:07:00 Europe/Lisbon (UTC+00:00)."""
     if when.tzinfo is None:
         raise ValueError("the time of a signature needs its zone")
-    return (
-        f"{when:%Y-%m-%d %H:%M:%S} {zone} (UTC{when:%:z})"
-        if zone != "UTC"
-        else f"{when:%Y-%m-%d %H:%M:%S} UTC"
-    )
+    moment = f"{when:%Y-%m-%d %H:%M:%S} {zone}"
+    offset = f"{when:%z}"
+    return moment if zone == "UTC" else f"{moment} (UTC{offset[:3]}:{offset[3:5]})"
 
 
 def _placed(meaning: str, name: str, when: str, width: float, height: float) -> Ink:

@@ -35,7 +35,7 @@ from pyhanko.sign.timestamps.common_utils import TimestampRequestError
 
 from sheets.errors import InputError, NotEstablishedError, Problem, RefusedError, quoted
 from sheets.seal.keys import OpenKey, common_name, open_key
-from sheets.seal.signatures import held_signatures
+from sheets.seal.signatures import held_container, held_signatures
 from sheets.seal.signatures_bytes import signed_ranges
 from sheets.seal.signatures_people import Person, check_needed, clash, person_of
 from sheets.seal.signatures_report import ROLES, Flaw
@@ -187,7 +187,23 @@ def sign_field(
     embedder.send(SigObjSetup(sig_placeholder=placeholder, mdp_setup=certify if first else None))
     prepared, output = embedder.send(SigIOSetup(md_algorithm=DIGEST))
     embedder.send(_container(signer.cms, prepared.document_digest, time_server))
-    return bytes(output.getvalue())
+    signed = bytes(output.getvalue())
+    _check_made(signed, field)
+    return signed
+
+
+def _check_made(signed: bytes, field: str) -> None:
+    """What was just written is read again: a time token, for one, comes from elsewhere."""
+    try:
+        held_container(signed, signed_ranges(signed)[-1])
+    except Flaw as flaw:
+        raise NotEstablishedError(
+            Problem(
+                where=f"signature as {field}",
+                what=f"it couldn't be judged later: {flaw.reason.says}",
+                fix="Sign with a key that `jamnut keys` made; take another time server, or none.",
+            )
+        ) from flaw
 
 
 def _container(signer: _CachedSigner, digest: bytes, time_server: str | None) -> Any:

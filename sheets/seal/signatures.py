@@ -35,10 +35,12 @@ from sheets.seal.signatures_revisions import FilledField, filled_fields
 from sheets.seal.signatures_trust import (
     CLOCKS_APART,
     Proof,
+    TimeToken,
     check_others,
     check_signing_use,
     check_time,
     proven_time,
+    read_token,
     read_trust,
     vouching,
 )
@@ -61,6 +63,7 @@ class HeldSignature:
 
     field: FilledField
     container: Container
+    token: TimeToken | None
     person: Person
 
 
@@ -82,15 +85,22 @@ def held_signatures(pdf: bytes) -> tuple[HeldSignature, ...]:
     """
     ranges = signed_ranges(pdf)
     check_ranges(pdf, ranges)
-    containers = [_held_container(pdf, one) for one in ranges]
+    containers = [held_container(pdf, one) for one in ranges]
     fields = filled_fields(pdf, ranges) if ranges else ()
     held = []
-    for container, field in zip(containers, fields, strict=True):
+    for (container, token), field in zip(containers, fields, strict=True):
         person = person_of(container.certificate)
         if person.name != field.person:
             raise Flaw(Cause.FORM, f"The signature {field.name} is said to be by another person.")
-        held.append(HeldSignature(field=field, container=container, person=person))
+        held.append(HeldSignature(field=field, container=container, token=token, person=person))
     return tuple(held)
+
+
+def held_container(pdf: bytes, signed: SignedRange) -> tuple[Container, TimeToken | None]:
+    """The container in a gap and the time token in it, each fitting what it covers. Raises Flaw."""
+    container = read_container(container_bytes(pdf, signed), held="data")
+    check_container(container, signed.digest(pdf, container.digest_name))
+    return container, read_token(container) if container.time_token else None
 
 
 def judge_signatures(
@@ -137,12 +147,6 @@ def judge_signatures(
     return SignaturesReport(judgement=worst(every), reasons=missing, signatures=reports)
 
 
-def _held_container(pdf: bytes, signed: SignedRange) -> Container:
-    container = read_container(container_bytes(pdf, signed), held="data")
-    check_container(container, signed.digest(pdf, container.digest_name))
-    return container
-
-
 def _judged(one: HeldSignature, before: Sequence[HeldSignature], trusting: _Trusting) -> SignatureReport:
     """One signature by trust, time and persons; every reason against it, not only the first."""
     reasons: list[Reason] = [] if one.field.flaw is None else [one.field.flaw.reason]
@@ -156,8 +160,8 @@ def _judged(one: HeldSignature, before: Sequence[HeldSignature], trusting: _Trus
         reasons.append(flaw.reason)
     try:
         proof = trusting.registered
-        if one.container.time_token:
-            stamped = proven_time(one.container, trusting.time_servers)
+        if one.token is not None:
+            stamped = proven_time(one.token, trusting.time_servers)
             proof = stamped if proof is None or stamped.at < proof.at else proof
         check_time(chain, claimed=one.field.claimed, proof=proof, now=trusting.now)
     except Flaw as flaw:
@@ -205,7 +209,7 @@ def _broken(pdf: bytes, reason: Reason) -> SignaturesReport:
     for signed in signed_ranges(pdf):
         person, certificate, own = "", "", _LATER
         try:
-            container = _held_container(pdf, signed)
+            container, _ = held_container(pdf, signed)
         except Flaw as flaw:
             own = flaw.reason
         else:

@@ -103,10 +103,18 @@ def check_signing_use(certificate: x509.Certificate) -> None:
         raise Flaw(Cause.KEY_USAGE, "The certificate isn't for signing.")
 
 
-def proven_time(container: Container, trust: Sequence[x509.Certificate]) -> Proof:
-    """The time in the token beside a signature, from a time server on the trust list. Raises Flaw.
+@dataclass(frozen=True, kw_only=True)
+class TimeToken:
+    """A token that fits the signature beside it; who stands behind it is another question."""
 
-    Source: RFC 3161, 2.3 (the certificate is for time stamping alone), 2.4.2 (what the token says).
+    at: datetime
+    container: Container
+
+
+def read_token(container: Container) -> TimeToken:
+    """The token beside a signature, held against the signature's bytes. Raises Flaw.
+
+    Source: RFC 3161, 2.4.2.
     """
     token = read_container(container.time_token, held="tst_info")
     check_container(token, hashlib.new(token.digest_name, token.content).digest())
@@ -121,14 +129,23 @@ def proven_time(container: Container, trust: Sequence[x509.Certificate]) -> Proo
         raise Flaw(Cause.TIME_TOKEN, "The time token digests by a weak algorithm.", Judgement.NOT_ESTABLISHED)
     if hashlib.new(algorithm, container.signature).digest() != stamped:
         raise Flaw(Cause.TIME_TOKEN, "The time token belongs to another signature.")
-    issuer = vouching(token.certificate, trust)
-    check_others(token, trust)
-    if not _for_time_alone(token.certificate):
+    return TimeToken(at=at, container=token)
+
+
+def proven_time(token: TimeToken, trust: Sequence[x509.Certificate]) -> Proof:
+    """The time of a token from a time server on the trust list. Raises Flaw.
+
+    Source: RFC 3161, 2.3: the certificate is for time stamping alone.
+    """
+    certificate = token.container.certificate
+    issuer = vouching(certificate, trust)
+    check_others(token.container, trust)
+    if not _for_time_alone(certificate):
         raise Flaw(Cause.TIME_TOKEN, "The time token's certificate isn't for time stamping alone.")
-    for one in (token.certificate, issuer):
-        if not holds_at(one, at):
+    for one in (certificate, issuer):
+        if not holds_at(one, token.at):
             raise Flaw(Cause.TIME_TOKEN, "The time token lies outside the validity of its certificate.")
-    return Proof(at=at, by=common_name(token.certificate) or "time server")
+    return Proof(at=token.at, by=common_name(certificate) or "time server")
 
 
 def check_time(

@@ -45,7 +45,7 @@ def tool(name: str) -> str:
 
 
 def run(*command: str) -> str:
-    done = subprocess.run(command, capture_output=True, text=True, check=False)
+    done = subprocess.run(command, capture_output=True, encoding="utf-8", errors="replace", check=False)
     assert done.returncode == 0, f"{command}\n{done.stdout}\n{done.stderr}"
     return done.stdout + done.stderr
 
