@@ -15,6 +15,7 @@ import click
 
 from sheets import __version__
 from sheets.cli.common import AS_JSON, MACHINE, MACHINES, PART, SITE, TASK, leave, show, tell, today, wrong
+from sheets.cli.issuing import COMMANDS
 from sheets.errors import ExitStatus, JamnutError, gravest
 
 if TYPE_CHECKING:
@@ -313,6 +314,10 @@ def _keep_traceback() -> str:
     ) as kept:
         traceback.print_exc(file=kept)
     return kept.name
+
+
+for command in COMMANDS:
+    main.add_command(command)
 
 
 def entry() -> None:

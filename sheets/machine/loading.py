@@ -99,7 +99,17 @@ def parse_site(text: bytes, name: str) -> Site:
 
 
 def load_walkdown(path: Path, *, machine: Machine, today: date | None) -> LoadedWalkdown:
-    """Read a walk-down file. Raises InputError with every problem in it.
+    """Read a walk-down file. Raises InputError with every problem in it; ``machine`` and ``today`` as below."""
+    source = _bytes_of(path)
+    return LoadedWalkdown(
+        walkdown=parse_walkdown(source, path.name, machine=machine, today=today),
+        source=source,
+        name=path.name,
+    )
+
+
+def parse_walkdown(text: bytes, name: str, *, machine: Machine, today: date | None) -> Walkdown:
+    """The walk-down in that text; ``name`` stands in the problems. Raises InputError.
 
     ``machine`` is the one that it has to be about. ``today`` comes from the clock; where it is given, answers
     from the future are refused.
@@ -115,9 +125,7 @@ def load_walkdown(path: Path, *, machine: Machine, today: date | None) -> Loaded
         if today is not None:
             yield from walkdown.dates_after(today)
 
-    source = _bytes_of(path)
-    walkdown = _parsed(source, path.name, Walkdown, check, lambda _: None)
-    return LoadedWalkdown(walkdown=walkdown, source=source, name=path.name)
+    return _parsed(text, name, Walkdown, check, lambda _: None)
 
 
 def _bytes_of(path: Path) -> bytes:

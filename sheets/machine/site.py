@@ -137,6 +137,8 @@ class Site(Entry):
     """Name of the works."""
     record_address: RecordAddress | None = None
     """Web address of the record page; the code on each page begins with it."""
+    zone: Text = "UTC"
+    """Time zone of the works, as on paper: an IANA name such as Europe/Lisbon."""
     planner_telephone: Text
     """Whom a technician calls about a sheet."""
     emergency_telephone: Text

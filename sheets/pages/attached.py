@@ -3,12 +3,15 @@
 from __future__ import annotations
 
 import hashlib
+import io
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Literal
 
 import pikepdf
 from pikepdf import Array, Dictionary, Name, String
+
+from sheets.errors import InputError, Problem
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -38,6 +41,21 @@ def write_attachments(pdf: pikepdf.Pdf, attachments: Sequence[Attachment]) -> No
         names += [String(one.name), file]
     pdf.Root.AF = Array(files)
     pdf.Root.Names = Dictionary(EmbeddedFiles=pdf.make_indirect(Dictionary(Names=Array(names))))
+
+
+def attachments_in(data: bytes) -> dict[str, bytes]:
+    """The files that travel in a PDF, by name. Raises InputError for what can't be read as one."""
+    try:
+        with pikepdf.open(io.BytesIO(data)) as pdf:
+            return {name: bytes(held.get_file().read_bytes()) for name, held in pdf.attachments.items()}
+    except pikepdf.PdfError as error:
+        raise InputError(
+            Problem(
+                where="file",
+                what=f"It can't be read as a PDF: {error}.",
+                fix="Give the pack as it was written.",
+            )
+        ) from None
 
 
 def file_of(pdf: pikepdf.Pdf, one: Attachment) -> pikepdf.Object:

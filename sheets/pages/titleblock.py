@@ -11,7 +11,7 @@ from sheets.pages.placed import MM, Mark
 from sheets.pages.roles import GROUP, element, item_of_list
 from sheets.pages.text import fit, style, wrap
 
-ROW = 8.5 * MM
+ROW = 11.5 * MM
 ROWS_LEAST = 3
 SPLIT = 0.6
 """Share of the width that the signers take."""

@@ -28,10 +28,17 @@ if TYPE_CHECKING:
     from sheets.pipeline.computing import targets_text as targets_text
     from sheets.pipeline.computing import task_of as task_of
     from sheets.pipeline.computing import why_text as why_text
+    from sheets.pipeline.demonstrating import demo as demo
+    from sheets.pipeline.demonstrating import demo_text as demo_text
     from sheets.pipeline.describing import Described as Described
     from sheets.pipeline.describing import check as check
     from sheets.pipeline.describing import check_json as check_json
     from sheets.pipeline.describing import check_text as check_text
+    from sheets.pipeline.issuing import Signing as Signing
+    from sheets.pipeline.issuing import issue as issue
+    from sheets.pipeline.issuing import issued_text as issued_text
+    from sheets.pipeline.issuing import reject_issue as reject_issue
+    from sheets.pipeline.keying import keys as keys
     from sheets.pipeline.many import Writing as Writing
     from sheets.pipeline.many import outcome_of_check as outcome_of_check
     from sheets.pipeline.many import outcome_of_pack as outcome_of_pack
@@ -39,10 +46,15 @@ if TYPE_CHECKING:
     from sheets.pipeline.many import outcome_of_targets as outcome_of_targets
     from sheets.pipeline.printing import content as content
     from sheets.pipeline.printing import draft_name as draft_name
+    from sheets.pipeline.printing import layout_named as layout_named
     from sheets.pipeline.printing import pack as pack
     from sheets.pipeline.printing import write_pack as write_pack
+    from sheets.pipeline.signing import sign_pack as sign_pack
     from sheets.pipeline.starting import new as new
     from sheets.pipeline.starting import starter_kinds as starter_kinds
+    from sheets.pipeline.verifying import verify as verify
+    from sheets.pipeline.verifying import verify_json as verify_json
+    from sheets.pipeline.verifying import verify_text as verify_text
     from sheets.pipeline.walking import walkdown as walkdown
     from sheets.pipeline.walking import walkdown_json as walkdown_json
     from sheets.pipeline.walking import walkdown_questions as walkdown_questions
@@ -95,6 +107,20 @@ _CONTENTS: Final[dict[str, str]] = {
     "diff": "pipeline.comparing",
     "diff_json": "pipeline.comparing",
     "diff_text": "pipeline.comparing",
+    # stand behind it
+    "keys": "pipeline.keying",
+    "Signing": "pipeline.issuing",
+    "issue": "pipeline.issuing",
+    "issued_text": "pipeline.issuing",
+    "sign_pack": "pipeline.signing",
+    "reject_issue": "pipeline.issuing",
+    "layout_named": "pipeline.printing",
+    "demo": "pipeline.demonstrating",
+    "demo_text": "pipeline.demonstrating",
+    # judge it
+    "verify": "pipeline.verifying",
+    "verify_json": "pipeline.verifying",
+    "verify_text": "pipeline.verifying",
     # many machines at once
     "machine_files": "machine.files",
     "Writing": "pipeline.many",

@@ -6,13 +6,14 @@ the pack can be made again from itself. A file of another name gives the same by
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
-from typing import Final
+from typing import Any, Final
 
 from sheets.machine.files import SITE_FILE, WALKDOWN_ENDING
 from sheets.pages.attached import Attachment
 from sheets.pages.compose.matter import Matter
-from sheets.pages.document import Layout
+from sheets.pages.document import IssueContext, Layout, SheetKind
 from sheets.seal.canonical import canonical_bytes
 
 MACHINE_NAME: Final = "machine.yaml"
@@ -20,6 +21,7 @@ SITE_NAME: Final = SITE_FILE
 WALKDOWN_NAME: Final = f"machine{WALKDOWN_ENDING}"
 JOB_NAME: Final = "job.json"
 CONTENT_NAME: Final = "content.json"
+ISSUE_NAME: Final = "issue.json"
 
 YAML_TYPE: Final = "application/yaml"
 """RFC 9512."""
@@ -40,8 +42,10 @@ class Job:
     documents: tuple[str, ...]
 
 
-def attachments_of(matter: Matter, layout: Layout, content: bytes) -> tuple[Attachment, ...]:
-    """Attachments of a pack; ``content`` is its canonical form."""
+def attachments_of(
+    matter: Matter, layout: Layout, content: bytes, issue: IssueContext | None = None
+) -> tuple[Attachment, ...]:
+    """Attachments of a pack; ``content`` is its canonical form. An issued one carries its issue too."""
     task = matter.procedure.task
     job = Job(
         format=FORMAT,
@@ -78,4 +82,31 @@ def attachments_of(matter: Matter, layout: Layout, content: bytes) -> tuple[Atta
             relationship="Data",
             description="what the sheets say, as the digest is taken from it",
         ),
+        *(
+            (
+                Attachment(
+                    name=ISSUE_NAME,
+                    media_type=JSON_TYPE,
+                    data=canonical_bytes(issue),
+                    relationship="Data",
+                    description="revision, date and signers",
+                ),
+            )
+            if issue is not None
+            else ()
+        ),
     )
+
+
+def layout_of(job: Mapping[str, Any]) -> Layout:
+    """The layout that a pack was printed with, from its job."""
+    return Layout(paper=job["paper"], kinds=tuple(SheetKind(name) for name in job["documents"]))
+
+
+def issue_of(data: Mapping[str, Any]) -> IssueContext:
+    """The issue of a pack, from its attachment."""
+    known = {name: value for name, value in data.items() if name != "is"}
+    for name in ("signers", "as_left"):
+        known[name] = tuple((left, right) for left, right in known[name])
+    known["changes"] = tuple(known["changes"])
+    return IssueContext(**known)

@@ -10,7 +10,17 @@ from pathlib import Path
 from sheets.circuit.build import both_ends
 from sheets.circuit.model import Circuit
 from sheets.machine.files import SITE_FILE, walkdown_file
-from sheets.machine.loading import LoadedSite, LoadedWalkdown, Sources, load_machine, load_site, load_walkdown
+from sheets.machine.loading import (
+    LoadedSite,
+    LoadedWalkdown,
+    Sources,
+    load_machine,
+    load_site,
+    load_walkdown,
+    parse_machine,
+    parse_site,
+    parse_walkdown,
+)
 from sheets.machine.model import Machine
 from sheets.machine.site import Policies, Site
 from sheets.machine.walkdown import Walkdown
@@ -40,9 +50,33 @@ def check(machine_file: Path, site_file: Path | None = None, today: date | None 
     ``today`` only refuses walk-down answers from the future. Raises InputError.
     """
     loaded = load_machine(machine_file)
-    machine = loaded.machine
-    loaded_site = _site(machine_file, site_file)
-    site = loaded_site.site if loaded_site else None
+    site = _site(machine_file, site_file)
+    walked = walkdown_beside(machine_file, loaded.machine, today)
+    return _described(
+        loaded.machine,
+        site.site if site else None,
+        walked.walkdown if walked else None,
+        Sources(
+            machine=loaded.source,
+            site=site.source if site else None,
+            walkdown=walked.source if walked else None,
+        ),
+    )
+
+
+def check_sources(sources: Sources) -> Described:
+    """The same from the files as they travel in a pack. Raises InputError."""
+    machine = parse_machine(sources.machine, "machine file in the pack")
+    site = parse_site(sources.site, "site file in the pack") if sources.site is not None else None
+    walked = (
+        parse_walkdown(sources.walkdown, "walk-down in the pack", machine=machine, today=None)
+        if sources.walkdown is not None
+        else None
+    )
+    return _described(machine, site, walked, sources)
+
+
+def _described(machine: Machine, site: Site | None, walked: Walkdown | None, sources: Sources) -> Described:
     policies = site.policies if site else Policies()
     ends = both_ends(
         machine,
@@ -52,18 +86,7 @@ def check(machine_file: Path, site_file: Path | None = None, today: date | None 
     )
     # Where the maker's drawing shows no bleed, outlet pressure reaches a port that is cut off: the last end.
     # Where nobody has looked, the search refuses every state in which the end matters.
-    walked = walkdown_beside(machine_file, machine, today)
-    return Described(
-        machine=machine,
-        site=site,
-        circuit=ends[-1],
-        sources=Sources(
-            machine=loaded.source,
-            site=loaded_site.source if loaded_site else None,
-            walkdown=walked.source if walked else None,
-        ),
-        walkdown=walked.walkdown if walked else None,
-    )
+    return Described(machine=machine, site=site, circuit=ends[-1], sources=sources, walkdown=walked)
 
 
 def _site(machine_file: Path, site_file: Path | None) -> LoadedSite | None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Literal
@@ -63,9 +64,14 @@ def pack(
         layout=layout,
         digest=said.digest,
         issue=issue,
-        attachments=attachments_of(matter, layout, said.data),
+        attachments=attachments_of(matter, layout, said.data, issue),
         fillable=fillable,
     )
+
+
+def layout_named(paper: Literal["A4", "Letter"], only: Sequence[str] = ()) -> Layout:
+    """The layout that a command names; ``only``: documents to print, the whole pack if there are none."""
+    return Layout(paper=paper, kinds=tuple(SheetKind(name) for name in only) or tuple(SheetKind))
 
 
 def draft_name(machine: Machine) -> str:
@@ -90,8 +96,7 @@ def write_pack(
     RefusedError or NotEstablishedError where nothing may be printed.
     """
     said = whole_content(matter)
-    kinds = tuple(SheetKind(name) for name in only) or tuple(SheetKind)
-    layout = Layout(paper=paper, kinds=kinds)
+    layout = layout_named(paper, only)
     pages = place(said.document, layout, digest=said.digest)
     attachments = attachments_of(matter, layout, said.data)
     write_pdf(target, pdf_bytes(pages, said.document, attachments=attachments))
