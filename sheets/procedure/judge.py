@@ -274,7 +274,7 @@ def reasons_of(case: Case, candidate: Candidate, adjuster: str) -> tuple[tuple[C
     if not candidate.changes:
         return ()
     site = case.site(adjuster)
-    target_bar = case.targets.settings[adjuster].target_bar
+    setting = case.targets.settings[adjuster]
     lesser = [
         replace(candidate, changes=tuple(change for change in candidate.changes if change is not left_out))
         for left_out in candidate.changes
@@ -283,9 +283,12 @@ def reasons_of(case: Case, candidate: Candidate, adjuster: str) -> tuple[tuple[C
     solved = solve(case.circuit, states, effects=True)
     reasons: list[tuple[Change, Failure]] = []
     for index, left_out in enumerate(candidate.changes):
-        # A fault comes first where it is enough: it is the plainer reason than a limit far from the target.
+        solution = solved.one(index)
+        # What happens at the target is the plainest reason, then a fault there, then what is farther away.
         outcome = (
-            first_failure(solved.one(index), site, target_bar, case.trusted_ports)
+            first_failure(solution, site, setting.target_bar, case.trusted_ports)
+            or _at_another_flow(setting, solution)
+            or _too_much_through(case, lesser[index], solution)
             or moved_by_fault(case, states[index])
             or _judge(case, lesser[index], adjuster)
         )
