@@ -99,7 +99,7 @@ def parse_site(text: bytes, name: str) -> Site:
 
 
 def load_walkdown(path: Path, *, machine: Machine, today: date | None) -> LoadedWalkdown:
-    """Read a walk-down file. Raises InputError with every problem in it; ``machine`` and ``today`` as below."""
+    """Read a walk-down file; ``machine`` and ``today`` as below. Raises InputError with every problem."""
     source = _bytes_of(path)
     return LoadedWalkdown(
         walkdown=parse_walkdown(source, path.name, machine=machine, today=today),

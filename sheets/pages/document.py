@@ -280,6 +280,8 @@ class IssueContext:
     state: str
     date: str
     zone: str
+    mark: str = ""
+    """A word that every page and tag carries beside the revision, such as DEMONSTRATION; mostly none."""
     signers: tuple[tuple[str, str], ...] = ()
     """Meaning and name: prepared, checked, approved."""
     changes: tuple[str, ...] = ()

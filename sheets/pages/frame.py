@@ -207,6 +207,11 @@ def revision(frame: Frame) -> str:
     return f"{frame.document.words.revision} {frame.issue.revision}" if frame.issue else ""
 
 
+def mark_of(frame: Frame) -> str:
+    """The word in black beside the number: DRAFT, or the mark of an issue; mostly none."""
+    return frame.document.words.draft if frame.issue is None else frame.issue.mark
+
+
 def identity(frame: Frame) -> str:
     """Document number, with the revision of an issued pack."""
     return f"{frame.document.number}  {revision(frame)}".rstrip()
@@ -246,8 +251,8 @@ def foot_lines(ink: Ink, frame: Frame, *, number: int, total: int) -> None:
     first = top + 1.5 * MM + ASCENT * FOOTER_STRONG.size
     shape, name = whole_identity(frame, IDENTITY_ROOM)
     x = paper.left + ink.text(paper.left, first, name, shape) + 3 * MM
-    if frame.issue is None:
-        x = draft_word(ink, x, first, words.draft, FOOTER_STRONG) + 3 * MM
+    if mark_of(frame):
+        x = draft_word(ink, x, first, mark_of(frame), FOOTER_STRONG) + 3 * MM
     page = words.page.format(number=number, total=total)
     page_width = ink.text(paper.right, first, page, FOOTER_STRONG, side="right")
     x = max(x + 2 * MM, paper.left + 40 * MM)

@@ -150,6 +150,8 @@ def tag_piece(tag: SettingTag, frame: Frame) -> Piece:
     as_left = tag.as_left
     if frame.issue is not None:
         as_left = dict(frame.issue.as_left).get(tag.id, tag.as_left)
+        if frame.issue.mark:
+            as_left = f"{frame.issue.mark} · {as_left}"
     body(ink, tag, as_left)
     foot = HEIGHT - 1.9 * MM
     with ink.inside(element("P", "foot")):

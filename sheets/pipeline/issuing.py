@@ -92,6 +92,7 @@ def issue(
             record_address=str(site.record_address),
             revision=str(reservation.number),
             state=site.signatures.note or ISSUED,
+            mark=site.signatures.note.split(",")[0].upper(),
             date=local.date().isoformat(),
             zone=site.zone,
             signers=tuple((one.meaning, one.name) for one in named),

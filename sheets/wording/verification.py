@@ -1,4 +1,4 @@
-"""What a verification says to people. It gets plain words and enums' values, no library of any side branch."""
+"""What a verification says to people. It gets plain words, no value of a side branch."""
 
 from __future__ import annotations
 
