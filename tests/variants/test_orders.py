@@ -8,7 +8,7 @@ For κ₂ = 0.95: q₂ = 28.62 L/min, p₁ = 180.92 bar, p₂ = 49.88 bar. With 
 b = dp₂/dq₂ = 50·0.05/30 = 0.083, g = dq₂/d(p₁ − p₂) = 2.5/(2·√131.0) = 0.109 and 1 + g·(a + b) = 1.082:
 
 - RV2 on RV1's reading: a·g·0.998/1.082 = 0.067 bar for a bar; RV1 itself 0.905·(1 − a·g/1.082) = 0.844. That
-is   8.0 %, over 2 %: RV2 is set first.
+  is 8.0 %, over 2 %: RV2 is set first.
 - RV1 on RV2's reading: b·g·0.905/1.082 = 0.0076; RV2 itself 0.998·(1 − b·g/1.082) = 0.989. That is 0.8 %.
 
 With κ₂ = 0.80, b = 0.333: RV1 on RV2 becomes 0.333·0.109·0.905/1.109 = 0.0297 of 0.958, 3.1 %: each would
