@@ -9,6 +9,7 @@ from __future__ import annotations
 import hashlib
 import io
 from datetime import datetime
+from itertools import product
 
 import pikepdf
 from reportlab.pdfgen.canvas import Canvas
@@ -19,9 +20,10 @@ from sheets.pages.fonts import Weight, condensed, font_name, wide
 from sheets.pages.ink import Ink
 from sheets.pages.text import style, wrap
 
-SIZES = (11.0, 10.0, 9.0, 8.0, 7.0)
+SIZES = (11.0, 10.0, 9.0, 8.5, 8.0, 7.5, 7.0, 6.5)
 """Sizes of the name, the largest that fits is taken; the other lines are a tenth smaller."""
 PADDING = 2.0
+"""Left and right; above and below the lines bring their own."""
 
 
 def stamp_pdf(*, meaning: str, name: str, when: datetime, zone: str, width: float, height: float) -> bytes:
@@ -58,16 +60,15 @@ def when_line(when: datetime, zone: str) -> str:
 
 
 def _placed(meaning: str, name: str, when: str, width: float, height: float) -> Ink:
-    """Lines at the largest size at which all of them fit."""
+    """Lines at the largest size at which all of them fit; in a low field the meaning stands by the name."""
     room = width - 2 * PADDING
-    for size in SIZES:
+    for heads, size in product(((name, meaning), (f"{name} · {meaning}",)), SIZES):
         strong, light = style(size, Weight.SEMIBOLD), style(0.9 * size)
-        names = wrap(name, strong, room)
-        rest = (*wrap(meaning, light, room), *wrap(when, light, room))
-        high = len(names) * strong.leading + len(rest) * light.leading
-        if high + 2 * PADDING <= height:
+        names = wrap(heads[0], strong, room)
+        rest = [line for text in (*heads[1:], when) for line in wrap(text, light, room)]
+        if len(names) * strong.leading + len(rest) * light.leading <= height:
             ink = Ink()
-            bottom = ink.lines(PADDING, PADDING, names, strong)
+            bottom = ink.lines(PADDING, 0, names, strong)
             ink.lines(PADDING, bottom, rest, light)
             return ink
     raise InputError(

@@ -127,22 +127,37 @@ def open_signer(p12: bytes, passphrase: str, *, where: str = "key file", when: d
 
 def signing_fields(pdf: bytes) -> Mapping[str, SigningField]:
     """The signature fields of a file by name. Raises InputError for a file that can't be read."""
+    return _fields(_reader(pdf))
+
+
+def _reader(pdf: bytes) -> PdfFileReader:
+    try:
+        return PdfFileReader(io.BytesIO(pdf))
+    except UNREADABLE as error:
+        raise _unreadable() from error
+
+
+def _fields(reader: PdfFileReader) -> Mapping[str, SigningField]:
     fields = {}
     try:
-        for name, value, reference in enumerate_sig_fields(PdfFileReader(io.BytesIO(pdf))):
+        for name, value, reference in enumerate_sig_fields(reader):
             left, bottom, right, top = (float(edge) for edge in reference.get_object()["/Rect"])
             fields[name] = SigningField(
                 width=abs(right - left), height=abs(top - bottom), signed=value is not None
             )
     except UNREADABLE as error:
-        raise InputError(
-            Problem(
-                where="file to sign",
-                what="it can't be read as a PDF with fields for signatures",
-                fix="Give the pack as it was written.",
-            )
-        ) from error
+        raise _unreadable() from error
     return fields
+
+
+def _unreadable() -> InputError:
+    return InputError(
+        Problem(
+            where="file to sign",
+            what="it can't be read as a PDF with fields for signatures",
+            fix="Give the pack as it was written.",
+        )
+    )
 
 
 def sign_field(
@@ -167,8 +182,9 @@ def sign_field(
     check_needed(needed)
     if when.tzinfo is None:
         raise ValueError("the time of a signature needs its zone")
-    _check_turn(pdf, field, signer.person, needed, when)
-    writer = _Update(io.BytesIO(pdf))
+    reader = _reader(pdf)
+    _check_turn(pdf, reader, field, signer.person, needed, when)
+    writer = _Update(reader.stream, prev=reader)
     first = not signed_ranges(pdf)
 
     embedder = PdfCMSEmbedder().write_cms(field_name=field, writer=writer, existing_fields_only=True)
@@ -227,16 +243,18 @@ def _reserved(signer: Signer, *, timed: bool) -> int:
     return 2 * (inside + (ROOM_FOR_TIME_BYTES if timed else 0))
 
 
-def _check_turn(pdf: bytes, field: str, person: Person, needed: tuple[str, ...], when: datetime) -> None:
+def _check_turn(
+    pdf: bytes, reader: PdfFileReader, field: str, person: Person, needed: tuple[str, ...], when: datetime
+) -> None:
     """Whether this person may sign this field now. Raises RefusedError or InputError."""
     try:
-        held = held_signatures(pdf)
+        held = held_signatures(pdf, searching=False)
     except Flaw as flaw:
         raise _refused(
             field, flaw.reason.says, "Sign the pack as it was written by the last signer."
         ) from flaw
     given = [one.field.name for one in held]
-    fields = signing_fields(pdf)
+    fields = _fields(reader)
     if field not in fields or field not in ROLES:
         raise InputError(
             Problem(

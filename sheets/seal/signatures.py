@@ -77,16 +77,17 @@ class _Trusting:
     now: datetime
 
 
-def held_signatures(pdf: bytes) -> tuple[HeldSignature, ...]:
+def held_signatures(pdf: bytes, *, searching: bool = True) -> tuple[HeldSignature, ...]:
     """All signatures of a file, each fitting its bytes and its field; none if it is unsigned.
 
+    `searching` as in `filled_fields`; who signs may leave it out, who judges may not.
     Raises Flaw at the first that doesn't. What an update changed beside its signature stays a flaw of the
     field.
     """
     ranges = signed_ranges(pdf)
     check_ranges(pdf, ranges)
     containers = [held_container(pdf, one) for one in ranges]
-    fields = filled_fields(pdf, ranges) if ranges else ()
+    fields = filled_fields(pdf, ranges, searching=searching) if ranges else ()
     held = []
     for (container, token), field in zip(containers, fields, strict=True):
         person = person_of(container.certificate)

@@ -18,6 +18,7 @@ from typing import Any, Final
 from pyhanko.pdf_utils import generic
 from pyhanko.pdf_utils.misc import PdfError
 from pyhanko.pdf_utils.reader import PdfFileReader
+from pyhanko.pdf_utils.xref import ObjStreamRef
 from pyhanko.sign.fields import enumerate_sig_fields
 
 from sheets.seal.signatures_bytes import SignedRange
@@ -66,23 +67,27 @@ class FilledField:
     """Why the update that brought it isn't one that brings a signature alone."""
 
 
-def filled_fields(pdf: bytes, ranges: tuple[SignedRange, ...]) -> tuple[FilledField, ...]:
+def filled_fields(
+    pdf: bytes, ranges: tuple[SignedRange, ...], *, searching: bool = True
+) -> tuple[FilledField, ...]:
     """The signed fields in the order of `ranges`, each judged by what its update changed.
 
+    `searching`: also look through the whole file for objects that are asked for and not there, the dearest
+    of the questions.
     Raises Flaw where the file can't be read, or isn't a pack with these signatures and no others.
     """
     try:
         states = [PdfFileReader(io.BytesIO(pdf[: one.end])) for one in ranges]
-        return tuple(_fields(states, ranges, pdf))
+        return tuple(_fields(states, ranges, pdf, searching))
     except UNREADABLE as error:
         raise Flaw(Cause.UNREADABLE, "The file can't be read as a PDF.") from error
 
 
 def _fields(
-    states: list[PdfFileReader], ranges: tuple[SignedRange, ...], pdf: bytes
+    states: list[PdfFileReader], ranges: tuple[SignedRange, ...], pdf: bytes, searching: bool
 ) -> Iterator[FilledField]:
     known: set[str] = set()
-    referenced = _referenced(states[0]) if len(states) > 1 else set()
+    referenced = _referenced(states[0]) if searching and len(states) > 1 else set()
     for index, (state, signed) in enumerate(zip(states, ranges, strict=True)):
         if state.encrypted:
             raise Flaw(Cause.FORM, "The file is encrypted.", Judgement.NOT_ESTABLISHED)
@@ -224,10 +229,29 @@ def _check_changed(
 def _referenced(state: PdfFileReader) -> set[tuple[int, int]]:
     """All objects that any object of a state refers to, whether they are there or not."""
     found: set[tuple[int, int]] = set()
+    streams: set[int] = set()
     for revision in range(state.total_revisions):
         for reference in state.xrefs.explicit_refs_in_revision(revision):
-            found |= set(_references(_object(state, reference)))
+            place = state.xrefs[reference]
+            if isinstance(place, ObjStreamRef):
+                streams.add(place.obj_stream_id)
+            else:
+                found |= set(_references(_object(state, reference)))
+    for number in streams:
+        for packed in _packed(state, generic.Reference(number, 0, state)):
+            found |= set(_references(packed))
     return found
+
+
+def _packed(state: PdfFileReader, reference: generic.Reference) -> Iterator[generic.PdfObject]:
+    """All objects of an object stream in one pass; the library unpacks the stream for each anew.
+
+    Source: ISO 32000-1, 7.5.7.
+    """
+    stream = _object(state, reference)
+    data, first = stream.data, int(stream["/First"])
+    for offset in data[:first].split()[1 : 2 * int(stream["/N"]) : 2]:
+        yield generic.read_object(io.BytesIO(data[first + int(offset) :]), reference)
 
 
 def _references(value: generic.PdfObject) -> Iterator[tuple[int, int]]:

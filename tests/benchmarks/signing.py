@@ -1,26 +1,30 @@
 """What three signatures cost beside making the pack that they stand in, and what judging them costs.
 
-Run: PYTHONPATH=.:tests/seal python tests/benchmarks/signing.py. It prints times and their ratio; nothing is
+Run: PYTHONPATH=. python tests/benchmarks/signing.py. It prints times and their ratio; nothing is
 asserted, since times hang on the computer.
 """
 
 from __future__ import annotations
 
 import gc
-import io
 import statistics
 import sys
 import time
 from collections.abc import Callable
 from pathlib import Path
 
-import pikepdf
-
 sys.path.insert(0, str(Path(__file__).parents[1] / "seal"))
+sys.path.insert(0, str(Path(__file__).parents[1] / "pages"))
 
+from sample_document import ISSUE
 from signing_bench import PEOPLE, SIGNED_AT, judged, signed_once, signer
 
-from sheets.pipeline import check, pack, steps
+from sheets import pipeline
+from sheets.pages.document import Layout
+from sheets.pages.layout import place
+from sheets.pages.press import pdf_bytes
+from sheets.pipeline.attaching import attachments_of
+from sheets.pipeline.printing import whole_content
 from sheets.seal.keys import KeyKind
 from sheets.seal.signatures_report import ROLES
 
@@ -30,20 +34,26 @@ RUNS = 15
 
 def main() -> None:
     """Make a sample's pack, then sign it with each kind of key and judge it."""
-    matter = steps(check(SAMPLE))
-    made = pack(matter).pdf
-    unsigned = timed(lambda: pack(matter))
+    matter = pipeline.steps(pipeline.check(SAMPLE))
+    said = whole_content(matter)
+    files = attachments_of(matter, Layout(), said.data)
+
+    def unsigned_pack() -> bytes:
+        pages = place(said.document, Layout(), ISSUE, digest=said.digest)
+        return pdf_bytes(pages, said.document, issue=ISSUE, attachments=files)
+
+    made = unsigned_pack()
+    unsigned = timed(unsigned_pack)
     print(f"unsigned pack: {unsigned:.0f} ms, {len(made) / 1000:.0f} kB")
-    with_fields = fielded(made)
     for kind in KeyKind:
         for role in ROLES:
             signer(PEOPLE[role], kind=kind)
-        signed = signed_thrice(with_fields, kind)
-        took = timed(lambda kind=kind: signed_thrice(with_fields, kind))
+        signed = signed_thrice(made, kind)
+        took = timed(lambda kind=kind: signed_thrice(made, kind))
         judging = timed(lambda signed=signed: judged(signed))
         print(
             f"{kind.value}: three signatures {took:.0f} ms, {took / unsigned:.2f} of the unsigned pack, "
-            f"{(len(signed) - len(with_fields)) / 1000:.0f} kB more; "
+            f"{(len(signed) - len(made)) / 1000:.0f} kB more; "
             f"judging {judging:.0f} ms ({judged(signed).judgement.value})"
         )
 
@@ -53,28 +63,6 @@ def signed_thrice(pdf: bytes, kind: KeyKind) -> bytes:
     for role in ROLES:
         pdf = signed_once(pdf, role, signer(PEOPLE[role], kind=kind), when=SIGNED_AT)
     return pdf
-
-
-def fielded(pdf: bytes) -> bytes:
-    """The pack with three empty fields, where it has none."""
-    buffer = io.BytesIO()
-    with pikepdf.open(io.BytesIO(pdf)) as opened:
-        if "/AcroForm" in opened.Root:
-            return pdf
-        page = opened.pages[0]
-        fields = [
-            opened.make_indirect(
-                pikepdf.Dictionary(
-                    Type=pikepdf.Name.Annot, Subtype=pikepdf.Name.Widget, FT=pikepdf.Name.Sig, T=role, F=4,
-                    Rect=[72, 100 + 60 * row, 232, 150 + 60 * row], P=page.obj,
-                )
-            )
-            for row, role in enumerate(ROLES)
-        ]  # fmt: skip
-        page.Annots = pikepdf.Array(fields)
-        opened.Root.AcroForm = opened.make_indirect(pikepdf.Dictionary(Fields=fields))
-        opened.save(buffer, object_stream_mode=pikepdf.ObjectStreamMode.generate)
-    return buffer.getvalue()
 
 
 def timed(act: Callable[[], object]) -> float:

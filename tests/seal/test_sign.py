@@ -215,14 +215,12 @@ def test_a_key_that_does_not_hold_now_signs_nothing() -> None:
 
 def test_a_broken_pack_gets_no_further_signature() -> None:
     pdf = bytearray(signed_pack("prepared"))
-    pdf[100] ^= 1
+    pdf[signed_ranges(pdf)[0].gap_start - 2000] ^= 1  # within the stamp
     who = signer("Checker Two")
     with pytest.raises(RefusedError, match="changed after it was signed"):
         sign_field(bytes(pdf), field="checked", signer=who, when=SIGNED_AT, stamp=b"")
     with pytest.raises(RefusedError, match="after the end"):
         sign_field(signed_pack("prepared") + b"\n", field="checked", signer=who, when=SIGNED_AT, stamp=b"")
-    with pytest.raises(InputError, match="can't be read as a PDF"):
-        signing_fields(bytes(pdf))
 
 
 def test_a_clock_that_went_back_is_noticed() -> None:

@@ -53,3 +53,11 @@ def test_long_names_take_more_lines_and_then_are_refused_by_name() -> None:
     assert len(pypdfium2.PdfDocument(stamp(long))) == 1
     with pytest.raises(InputError, match=r"Bartholomew.*doesn't fit into 60 by 20"):
         stamp(long, width=60, height=20)
+
+
+def test_a_field_of_two_lines_has_the_meaning_beside_the_name() -> None:
+    page = pypdfium2.PdfDocument(stamp(width=145, height=22))[0].get_textpage()
+    assert page.get_text_range().splitlines() == [
+        "Preparer One · prepared",
+        "2026-03-05 14:07:09 America/St_Johns (UTC-03:30)",
+    ]

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import io
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from datetime import timedelta
 
 import pikepdf
@@ -12,6 +12,7 @@ from asn1crypto import cms, core, x509
 from cryptography.hazmat.primitives.asymmetric import rsa
 from pyhanko.pdf_utils import generic
 from pyhanko.pdf_utils.incremental_writer import IncrementalPdfFileWriter
+from pyhanko.pdf_utils.reader import PdfFileReader
 from signing_bench import (
     PEOPLE,
     SIGNED_AT,
@@ -26,7 +27,7 @@ from signing_bench import (
 )
 
 from sheets.errors import InputError, NotEstablishedError
-from sheets.seal import keys, sign
+from sheets.seal import keys, sign, signatures_revisions
 from sheets.seal.signatures import judge_signatures
 from sheets.seal.signatures_bytes import container_bytes, signed_ranges
 from sheets.seal.signatures_report import ROLES, Cause, Judgement, SignaturesReport
@@ -166,8 +167,8 @@ def test_update_together_with_a_later_trusted_signature(
     pdf = signed_pack("prepared")
 
     class Changing(sign._Update):
-        def __init__(self, stream: io.BytesIO) -> None:
-            super().__init__(stream)
+        def __init__(self, stream: io.BytesIO, prev: PdfFileReader) -> None:
+            super().__init__(stream, prev)
             change(self)
 
     with monkeypatch.context() as patch:
@@ -192,16 +193,16 @@ def test_object_that_was_asked_for_before_it_was_there(monkeypatch: pytest.Monke
     class Planting(sign._Update):
         """Signs and plants a reference to object number 500."""
 
-        def __init__(self, stream: io.BytesIO) -> None:
-            super().__init__(stream)
+        def __init__(self, stream: io.BytesIO, prev: PdfFileReader) -> None:
+            super().__init__(stream, prev)
             page = first_page(self)
             awaiting = generic.IndirectObject(500, 0, self)
             page[generic.pdf_name("/Contents")] = generic.ArrayObject([page.raw_get("/Contents"), awaiting])
             self.update_container(page)
 
     class Bringing(sign._Update):
-        def __init__(self, stream: io.BytesIO) -> None:
-            super().__init__(stream)
+        def __init__(self, stream: io.BytesIO, prev: PdfFileReader) -> None:
+            super().__init__(stream, prev)
             self._lastobj_id = 499
 
     with monkeypatch.context() as patch:
@@ -213,6 +214,30 @@ def test_object_that_was_asked_for_before_it_was_there(monkeypatch: pytest.Monke
     report = judged(pdf)
     assert report.judgement is Judgement.BAD
     assert "asked for before it was there" in report.signatures[1].reasons[0].says
+
+
+def test_all_references_are_seen_packed_or_not() -> None:
+    """Against the library's own reading of every object, one by one."""
+    state = PdfFileReader(io.BytesIO(signed_pack("prepared")))
+    seen = {
+        (reference.idnum, reference.generation)
+        for revision in range(state.total_revisions)
+        for one in state.xrefs.explicit_refs_in_revision(revision)
+        for reference in generic_references(state.get_object(one))
+    }
+    assert len(seen) > 10
+    assert signatures_revisions._referenced(state) == seen
+
+
+def generic_references(value: object) -> Iterator[generic.IndirectObject]:
+    if isinstance(value, generic.IndirectObject):
+        yield value
+    elif isinstance(value, dict):
+        for key in value:
+            yield from generic_references(value.raw_get(key))
+    elif isinstance(value, list):
+        for index in range(len(value)):
+            yield from generic_references(value.raw_get(index))
 
 
 @pytest.mark.parametrize("tail", [b"\n", b" ", b"\0", b"%%EOF\n", b"%PDF-1.7\n"])
