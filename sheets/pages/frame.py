@@ -237,9 +237,12 @@ def data_line(frame: Frame) -> str:
     return f"{words.machine_data} {frame.document.data_dated}  ·  {words.content} {frame.digest}"
 
 
-def footer(ink: Ink, frame: Frame, *, number: int, total: int) -> None:
-    """What stands at the foot of a page; not a part of what is heard, since it repeats."""
-    with ink.inside(FOOTER_ARTIFACT):
+def footer(ink: Ink, frame: Frame, *, number: int, total: int, heard: bool) -> None:
+    """What stands at the foot of a page, `number` of `total`.
+
+    It repeats, so it is `heard` once: how to check that the pack is current must reach everybody.
+    """
+    with ink.inside(*() if heard else (FOOTER_ARTIFACT,)):
         foot_lines(ink, frame, number=number, total=total)
 
 
@@ -250,11 +253,13 @@ def foot_lines(ink: Ink, frame: Frame, *, number: int, total: int) -> None:
     ink.line(paper.left, top, paper.right, top, HAIRLINE)
     first = top + 1.5 * MM + ASCENT * FOOTER_STRONG.size
     shape, name = whole_identity(frame, IDENTITY_ROOM)
-    x = paper.left + ink.text(paper.left, first, name, shape) + 3 * MM
+    with ink.inside(element("P", "foot number")):
+        x = paper.left + ink.text(paper.left, first, name, shape) + 3 * MM
     if mark_of(frame):
         x = draft_word(ink, x, first, mark_of(frame), FOOTER_STRONG) + 3 * MM
     page = words.page.format(number=number, total=total)
-    page_width = ink.text(paper.right, first, page, FOOTER_STRONG, side="right")
+    with ink.inside(FOOTER_ARTIFACT):
+        page_width = ink.text(paper.right, first, page, FOOTER_STRONG, side="right")
     x = max(x + 2 * MM, paper.left + 40 * MM)
     shape, parts = fit_cut(
         frame.document.title,
@@ -262,11 +267,12 @@ def foot_lines(ink: Ink, frame: Frame, *, number: int, total: int) -> None:
         styles=(FOOTER, FOOTER_SMALL),
         lines=1,
     )
-    for part in parts:
-        ink.text(x, first, part, shape)
+    with ink.inside(element("P", "foot title")):
+        ink.lines(x, first - ASCENT * shape.size, parts, shape)
     second = top + FOOTER_HEIGHT - 4.5 * MM
     data = data_line(frame)
-    data_width = ink.text(paper.right, second, data, FOOTER_SMALL, side="right")
+    with ink.inside(element("P", "foot data")):
+        data_width = ink.text(paper.right, second, data, FOOTER_SMALL, side="right")
     parts = wrap(frame.document.footer, FOOTER_SMALL, paper.inner - data_width - 5 * MM)
     if len(parts) > FOOTER_LINES:
         raise InputError(
@@ -276,6 +282,7 @@ def foot_lines(ink: Ink, frame: Frame, *, number: int, total: int) -> None:
                 fix="shorten what the site file says on how to check that a sheet is current",
             )
         )
-    for index, part in enumerate(parts):
-        ink.text(paper.left, second + index * FOOTER_SMALL.leading, part, FOOTER_SMALL)
+    with ink.inside(element("P", "foot validity")):
+        for index, part in enumerate(parts):
+            ink.text(paper.left, second + index * FOOTER_SMALL.leading, part, FOOTER_SMALL)
     ink.mark(Mark(kind="footer", key=page, x=paper.left, y=top, width=paper.inner, height=FOOTER_HEIGHT))

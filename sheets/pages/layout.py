@@ -97,7 +97,8 @@ def inked(frame: Frame, page: Planned, *, number: int, total: int) -> PlacedPage
         else:
             y = top_of(frame, page.section, ink, first=page.first)
             ink.add(page.body.piece(0), frame.paper.left, y)
-            footer(ink, frame, number=number, total=total)
+            heard = page.first and page.section.kind is SheetKind.COVER
+            footer(ink, frame, number=number, total=total, heard=heard)
     return PlacedPage(
         number=number,
         total=total,

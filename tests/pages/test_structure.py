@@ -195,6 +195,19 @@ def test_what_repeats_on_a_page_is_heard_once() -> None:
         assert len(heads) == sum(any(table.head) for table in tables)
 
 
+def test_how_to_check_that_it_is_current_is_heard_once() -> None:
+    """With number, mark and digest, on the cover; at the foot of every other page it is for the eye only."""
+    document = replace(SAMPLE, sections=SAMPLE.sections[:4])
+    pages = place(document, Layout(), replace(ISSUE, mark="DEMONSTRATION"), digest=DIGEST)
+    root = structure(pages).root
+    heard = plain(text_of(root, pages))
+    cover = plain(text_of(root.nodes[0], pages))
+    for text in (SAMPLE.footer, f"{SAMPLE.words.content} 7K4Q-2M9D-X1TB-60RA"):
+        assert (cover.count(plain(text)), heard.count(plain(text))) == (1, 1)
+    assert "DEMONSTRATION" in cover
+    assert plain(SAMPLE.words.page.format(number=1, total=len(pages))) not in heard
+
+
 def test_a_panel_that_stands_on_several_pages_is_heard_once() -> None:
     document = replace(SAMPLE, sections=(LONG_RUN,))
     pages = place(document, Layout(), None, digest=DIGEST)
