@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
+import json
 import secrets
 from pathlib import Path
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
 
 import click
 
 from sheets.cli.common import AS_JSON, MACHINE, PART, SITE, TASK, leave, now, show, tell, today, wrong
-from sheets.errors import gravest
+from sheets.errors import ExitStatus, JamnutError, gravest
+
+if TYPE_CHECKING:
+    from sheets.pipeline import Json
 
 FILE = click.argument("file", type=click.Path(path_type=Path), metavar="FILE")
 REGISTER = click.option(
@@ -31,15 +35,22 @@ PASSPHRASES = click.option(
 def _passphrase(folder: Path | None, key: Path) -> str:
     """The passphrase of a key file: from a file beside others, or asked for without showing it."""
     if folder is None:
-        answer: str = click.prompt(f"passphrase of {key.name}", hide_input=True, err=True)
+        new = not key.exists()
+        answer: str = click.prompt(
+            f"passphrase {'for the new key' if new else 'of'} {key.name}",
+            hide_input=True,
+            confirmation_prompt=new,
+            err=True,
+        )
         return answer
     file = folder / f"{key.stem}.txt"
     try:
-        return file.read_text(encoding="utf-8").rstrip("\n")
-    except OSError as error:
+        return file.read_text(encoding="utf-8").rstrip("\r\n")
+    except (OSError, UnicodeDecodeError) as error:
+        why = error.strerror if isinstance(error, OSError) else "it isn't text in UTF-8"
         raise wrong(
             str(file),
-            f"The passphrase can't be read: {error.strerror}.",
+            f"The passphrase can't be read: {why}.",
             "Write it there, or leave the option out.",
         ) from None
 
@@ -57,31 +68,19 @@ def _signer(meaning: str, given: str | None) -> tuple[str, str, Path | None] | N
     "--authority", default="Site authority", show_default=True, help="Name of the site's own authority."
 )
 @click.option("--person", "persons", multiple=True, required=True, metavar="NAME", help="One who will sign.")
-@click.option(
-    "--passphrase-file", type=click.Path(path_type=Path), metavar="FILE", help="Else it is asked for."
-)
-def keys(folder: Path, authority: str, persons: tuple[str, ...], passphrase_file: Path | None) -> None:
+@PASSPHRASES
+def keys(folder: Path, authority: str, persons: tuple[str, ...], passphrases: Path | None) -> None:
     """Make a site's own authority, once, and a key file for each person who signs.
 
-    Example: jamnut keys keys --person "Ada Quarrow" --person "Bram Tolliver"
+    Example: jamnut keys demonstration/keys --person "Dora Vell"
     """
     from sheets import pipeline
 
-    if not folder.is_dir():
-        raise wrong(
-            str(folder), "There is no such folder.", "Make the folder first; keys are not for everyone."
-        )
-    if passphrase_file is not None:
-        passphrase = _passphrase(passphrase_file.parent, passphrase_file)
-    else:
-        passphrase = click.prompt(
-            "passphrase for these keys", hide_input=True, confirmation_prompt=True, err=True
-        )
     ring = pipeline.keys(
         folder,
         authority_name=authority,
         persons=persons,
-        passphrase=passphrase,
+        passphrase=lambda key: _passphrase(passphrases, key),
         when=now(),
         random_bytes=secrets.token_bytes,
     )
@@ -119,7 +118,10 @@ def issue(
 ) -> None:
     """Issue a pack: reserve a revision, print, sign, write, commit.
 
-    Example: jamnut issue PU-07.yaml --register register.db --prepared ada.p12 --approved "Cleo Harnett"
+    With the keys of a demonstration the passphrase is: demonstration only
+
+    Example: jamnut issue demonstration/clay_mixer.yaml --register demonstration/register.db
+    --prepared demonstration/keys/ada-quarrow.p12 --checked "Bram Tolliver" --approved "Cleo Harnett"
     """
     from sheets import pipeline
 
@@ -138,6 +140,7 @@ def issue(
         signings=[pipeline.Signing(meaning=meaning, name=name, key=key) for meaning, name, key in people],
         passphrase=lambda key: _passphrase(passphrases, key),
         register_file=register_file,
+        site_folder=(site or machine).parent,
         when=now(),
         random_bytes=secrets.token_bytes,
         layout=pipeline.layout_named(paper),
@@ -158,11 +161,12 @@ def sign(
 ) -> None:
     """Sign an issued pack for the next of the persons named on it; the last signature commits it.
 
-    Example: jamnut sign PU-07.pdf --as checked --key bram.p12 --site site.yaml --register register.db
+    Example: jamnut sign PU-07.pdf --as checked --key demonstration/keys/bram-tolliver.p12
+    --site demonstration/site.yaml --register demonstration/register.db
     """
     from sheets import pipeline
 
-    issued = pipeline.sign_pack(
+    issued = pipeline.sign(
         file,
         pipeline.Signing(meaning=meaning, key=key),
         site_file=site,
@@ -181,11 +185,12 @@ def sign(
 def reject(file: Path, register_file: Path, by: str, reason: str) -> None:
     """Reject a pack between its signatures, with a reason; its revision ends there.
 
-    Example: jamnut reject PU-07.pdf --register register.db --by "Bram Tolliver" --reason "wrong plate"
+    Example: jamnut reject PU-07.pdf --register demonstration/register.db
+    --by "Bram Tolliver" --reason "wrong plate"
     """
     from sheets import pipeline
 
-    ended = pipeline.reject_issue(file, register_file=register_file, by=by, reason=reason, when=now())
+    ended = pipeline.reject(file, register_file=register_file, by=by, reason=reason, when=now())
     show([f"revision {ended.number} of {ended.document} is {ended.state.value}"])
 
 
@@ -199,20 +204,38 @@ def reject(file: Path, register_file: Path, by: str, reason: str) -> None:
     metavar="FILE",
     help="The register, if within reach.",
 )
+@click.option("--code", metavar="TEXT", help="What a reader found in the code of a page: is it this file's?")
 @AS_JSON
-def verify(files: tuple[Path, ...], site: Path | None, register_file: Path | None, as_json: bool) -> None:
+def verify(
+    files: tuple[Path, ...], site: Path | None, register_file: Path | None, code: str | None, as_json: bool
+) -> None:
     """Judge packs three ways apart: signatures, content, and whether they are current.
 
-    Example: jamnut verify PU-07.pdf --site site.yaml --register register.db
+    Example: jamnut verify demonstration/PU-07.pdf
+    --site demonstration/site.yaml --register demonstration/register.db
     """
     from sheets import pipeline
 
-    statuses = []
+    if code is not None and len(files) > 1:
+        raise wrong("--code", "It belongs to one file.", "Name one file.")
+    statuses: list[ExitStatus] = []
+    found: list[Json] = []
     for file in files:
         tell(f"making {file} again from what travels in it")
-        one = pipeline.verify(file, site_file=site, register_file=register_file, now=now())
-        show(pipeline.verify_json(one) if as_json else pipeline.verify_text(one))
+        try:
+            one = pipeline.verify(file, site_file=site, register_file=register_file, now=now(), code=code)
+        except JamnutError as error:  # one file that can't be read keeps nothing from the others
+            statuses.append(error.status)
+            found.append(pipeline.verify_failed_json(file, error))
+            if not as_json:
+                click.echo(f"{file}\n{error}", err=True)
+            continue
         statuses.append(one.status)
+        found.append(pipeline.verify_json(one))
+        if not as_json:
+            show(pipeline.verify_text(one))
+    if as_json:
+        show([json.dumps(found if len(files) > 1 else found[0], indent=2)])
     leave(gravest(statuses))
 
 

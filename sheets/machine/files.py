@@ -51,12 +51,21 @@ def _is_machine_file(file: Path) -> bool:
     )
 
 
+_NAME_ANOTHER: Final = "Name a file with -o, in a folder that exists and that you may write to."
+
+
 def write_pdf(target: Path, data: bytes) -> None:
     """Writes a PDF aside and moves it into place, so that nothing half-written is left.
 
     Raises InputError if the folder isn't there or can't be written to, and if another kind of file already
     stands under that name.
     """
+    check_pdf_target(target)
+    move_into_place(target, data, fix=_NAME_ANOTHER)
+
+
+def check_pdf_target(target: Path) -> None:
+    """Whether a PDF may be written there, as far as can be told before. Raises InputError."""
     if target.exists() and not _is_pdf(target):
         raise InputError(
             Problem(
@@ -65,28 +74,50 @@ def write_pdf(target: Path, data: bytes) -> None:
                 fix="Name another file with -o; nothing was overwritten.",
             )
         )
-    move_into_place(
-        target, data, fix="Name a file with -o, in a folder that exists and that you may write to."
-    )
+    if not target.parent.is_dir():
+        raise InputError(Problem(where=str(target), what="Its folder isn't there.", fix=_NAME_ANOTHER))
 
 
-def move_into_place(target: Path, data: bytes, *, fix: str) -> None:
-    """Writes a file aside and moves it into place. Raises InputError with ``fix`` where it can't."""
-    aside = target.parent / f".{target.name}.part"
+def move_into_place(target: Path, data: bytes, *, fix: str, private: bool = False) -> None:
+    """Writes a file aside and moves it into place. Raises InputError with ``fix`` where it can't.
+
+    ``private``: only whoever writes it may read it, where the system keeps such rights.
+    """
+    aside = aside_of(target)
     try:
-        aside.write_bytes(data)
-        aside.replace(target)
-    except OSError as error:
-        raise InputError(
-            Problem(
-                where=str(target),
-                what=f"The file can't be written: {error.strerror}.",
-                fix=fix,
-            )
-        ) from None
+        write_aside(target, data, fix=fix, private=private)
+        move_aside(target, fix=fix)
     finally:
-        if aside.exists():
-            aside.unlink()
+        aside.unlink(missing_ok=True)
+
+
+def aside_of(target: Path) -> Path:
+    """Where a file is written before it is moved into place."""
+    return target.parent / f".{target.name}.part"
+
+
+def write_aside(target: Path, data: bytes, *, fix: str = _NAME_ANOTHER, private: bool = False) -> None:
+    """Writes a file beside its place. Raises InputError with ``fix`` where it can't."""
+    aside = aside_of(target)
+    try:
+        aside.unlink(missing_ok=True)
+        aside.touch(mode=0o600 if private else 0o666, exist_ok=False)
+        aside.write_bytes(data)
+    except OSError as error:
+        raise _unwritten(target, error, fix) from None
+
+
+def move_aside(target: Path, *, fix: str = _NAME_ANOTHER) -> None:
+    """Moves what was written aside into its place. Raises InputError with ``fix`` where it can't."""
+    try:
+        aside_of(target).replace(target)
+    except OSError as error:
+        raise _unwritten(target, error, fix) from None
+
+
+def _unwritten(target: Path, error: OSError, fix: str) -> InputError:
+    what = f"The file can't be written: {error.strerror}."
+    return InputError(Problem(where=str(target), what=what, fix=fix))
 
 
 def _is_pdf(file: Path) -> bool:

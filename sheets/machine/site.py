@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from typing import Annotated, Literal
+from typing import Annotated, Literal, get_args
 
 from sheets.machine.fields import (
     Bar,
@@ -126,6 +126,12 @@ class Signatures(Entry):
                 )
         if len(set(self.needed)) < len(self.needed):
             yield Flaw(at=("needed",), what="A signature stands here twice.", fix="Name each once.")
+        elif list(self.needed) != [meaning for meaning in get_args(Meaning) if meaning in self.needed]:
+            yield Flaw(
+                at=("needed",),
+                what="Signatures are given in another order.",
+                fix=f"Write them in the order {', '.join(get_args(Meaning))}.",
+            )
 
 
 class Site(Entry):

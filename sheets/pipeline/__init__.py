@@ -9,6 +9,8 @@ from __future__ import annotations
 from importlib import import_module
 from typing import TYPE_CHECKING, Any, Final
 
+from sheets.errors import InputError, Problem
+
 if TYPE_CHECKING:
     from sheets.machine.answering import Answers as Answers
     from sheets.machine.files import machine_files as machine_files
@@ -34,25 +36,26 @@ if TYPE_CHECKING:
     from sheets.pipeline.describing import check as check
     from sheets.pipeline.describing import check_json as check_json
     from sheets.pipeline.describing import check_text as check_text
-    from sheets.pipeline.issuing import Signing as Signing
     from sheets.pipeline.issuing import issue as issue
     from sheets.pipeline.issuing import issued_text as issued_text
-    from sheets.pipeline.issuing import reject_issue as reject_issue
     from sheets.pipeline.keying import keys as keys
     from sheets.pipeline.many import Writing as Writing
     from sheets.pipeline.many import outcome_of_check as outcome_of_check
     from sheets.pipeline.many import outcome_of_pack as outcome_of_pack
     from sheets.pipeline.many import outcome_of_steps as outcome_of_steps
     from sheets.pipeline.many import outcome_of_targets as outcome_of_targets
+    from sheets.pipeline.persons import Signing as Signing
     from sheets.pipeline.printing import content as content
     from sheets.pipeline.printing import draft_name as draft_name
     from sheets.pipeline.printing import layout_named as layout_named
     from sheets.pipeline.printing import pack as pack
     from sheets.pipeline.printing import write_pack as write_pack
-    from sheets.pipeline.signing import sign_pack as sign_pack
+    from sheets.pipeline.signing import reject as reject
+    from sheets.pipeline.signing import sign as sign
     from sheets.pipeline.starting import new as new
     from sheets.pipeline.starting import starter_kinds as starter_kinds
     from sheets.pipeline.verifying import verify as verify
+    from sheets.pipeline.verifying import verify_failed_json as verify_failed_json
     from sheets.pipeline.verifying import verify_json as verify_json
     from sheets.pipeline.verifying import verify_text as verify_text
     from sheets.pipeline.walking import walkdown as walkdown
@@ -109,16 +112,17 @@ _CONTENTS: Final[dict[str, str]] = {
     "diff_text": "pipeline.comparing",
     # stand behind it
     "keys": "pipeline.keying",
-    "Signing": "pipeline.issuing",
+    "Signing": "pipeline.persons",
     "issue": "pipeline.issuing",
     "issued_text": "pipeline.issuing",
-    "sign_pack": "pipeline.signing",
-    "reject_issue": "pipeline.issuing",
+    "sign": "pipeline.signing",
+    "reject": "pipeline.signing",
     "layout_named": "pipeline.printing",
     "demo": "pipeline.demonstrating",
     "demo_text": "pipeline.demonstrating",
     # judge it
     "verify": "pipeline.verifying",
+    "verify_failed_json": "pipeline.verifying",
     "verify_json": "pipeline.verifying",
     "verify_text": "pipeline.verifying",
     # many machines at once
@@ -136,7 +140,23 @@ _CONTENTS: Final[dict[str, str]] = {
 """Every name of this package to the module, below ``sheets``, that it stands in."""
 
 
+_EXTRA: Final = {"asn1crypto", "cryptography", "pyhanko", "sqlalchemy"}
+"""Libraries of the extra named site: what stands behind a sheet needs them, a draft doesn't."""
+
+
 def __getattr__(name: str) -> Any:  # whatever the module behind it holds
     if name not in _CONTENTS:
         raise AttributeError(f"{__name__} has no {name}")
-    return getattr(import_module(f"sheets.{_CONTENTS[name]}"), name)
+    try:
+        return getattr(import_module(f"sheets.{_CONTENTS[name]}"), name)
+    except ModuleNotFoundError as error:
+        library = (error.name or "").split(".")[0]
+        if library not in _EXTRA:
+            raise
+        raise InputError(
+            Problem(
+                where="this installation",
+                what=f"It can print drafts; keys, signatures and the register need the library {library}.",
+                fix="Install it with the extra named site: python -m pip install '.[site]'",
+            )
+        ) from None

@@ -6,10 +6,12 @@ the pack can be made again from itself. A file of another name gives the same by
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+import json
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from typing import Any, Final
 
+from sheets.errors import InputError, Problem
 from sheets.machine.files import SITE_FILE, WALKDOWN_ENDING
 from sheets.pages.attached import Attachment
 from sheets.pages.compose.matter import Matter
@@ -99,14 +101,37 @@ def attachments_of(
 
 
 def layout_of(job: Mapping[str, Any]) -> Layout:
-    """The layout that a pack was printed with, from its job."""
+    """The layout that a pack was printed with, from its job. Raises as reading a wrong one does."""
     return Layout(paper=job["paper"], kinds=tuple(SheetKind(name) for name in job["documents"]))
 
 
-def issue_of(data: Mapping[str, Any]) -> IssueContext:
-    """The issue of a pack, from its attachment."""
-    known = {name: value for name, value in data.items() if name != "is"}
+def issue_in(held: Mapping[str, bytes]) -> IssueContext | None:
+    """The issue that travels in a pack; None in a draft. Raises InputError if it can't be read as one."""
+    if ISSUE_NAME not in held:
+        return None
+    try:
+        return _issue_of(held[ISSUE_NAME])
+    except (AttributeError, KeyError, TypeError, ValueError, RecursionError):
+        raise InputError(
+            Problem(
+                where=ISSUE_NAME,
+                what="The issue that travels in the file isn't of the form of one.",
+                fix="Give the pack as it was written.",
+            )
+        ) from None
+
+
+def _issue_of(text: bytes) -> IssueContext:
+    """Raises whatever reading another form raises, and ValueError for one that reads but isn't ours."""
+    known = {name: value for name, value in json.loads(text).items() if name != "is"}
     for name in ("signers", "as_left"):
         known[name] = tuple((left, right) for left, right in known[name])
     known["changes"] = tuple(known["changes"])
-    return IssueContext(**known)
+    issue = IssueContext(**known)
+    if not _all_text(vars(issue).values()) or canonical_bytes(issue) != text:
+        raise ValueError("another form")
+    return issue
+
+
+def _all_text(values: Iterable[object]) -> bool:
+    return all(isinstance(value, str) or (isinstance(value, tuple) and _all_text(value)) for value in values)

@@ -15,8 +15,9 @@ from sheets.machine.loading import load_machine
 from sheets.pages.document import Layout
 from sheets.pipeline.computing import steps, targets
 from sheets.pipeline.describing import check
-from sheets.pipeline.issuing import Issued, Signing, issue
+from sheets.pipeline.issuing import Issued, issue
 from sheets.pipeline.keying import keys
+from sheets.pipeline.persons import Signing
 from sheets.pipeline.walking import write_walkdown
 from sheets.targets.accepting import computed_settings
 
@@ -74,10 +75,12 @@ def demo(
         folder / "keys",
         authority_name="Brackwater Tileworks demonstration authority",
         persons=PERSONS,
-        passphrase=PASSPHRASE,
+        passphrase=lambda _: PASSPHRASE,
         when=when,
         random_bytes=random_bytes,
     )
+    for key in (ring.authority, *ring.signers):
+        move_into_place(key.with_suffix(".txt"), f"{PASSPHRASE}\n".encode(), fix=_FIX, private=True)
     described = check(copied, site, when.date())
     write_walkdown(
         copied,
@@ -101,6 +104,7 @@ def demo(
         ),
         passphrase=lambda _: PASSPHRASE,
         register_file=register,
+        site_folder=folder,
         when=when,
         random_bytes=random_bytes,
         layout=Layout(),
@@ -113,4 +117,5 @@ def demo_text(made: Demonstration) -> Iterator[str]:
     yield f"{made.issued.file}: revision {made.issued.revision}, record {made.issued.record_id}, {MARK}"
     yield f"{made.register}: the register"
     yield f"look at it:  jamnut verify {made.issued.file} --site {made.site} --register {made.register}"
-    yield "the walk-down was answered, and the keys were made, for invented persons"
+    yield "the walk-down was answered, and the keys were made, for invented persons; beside each key, in a"
+    yield "file that no works would keep there, stands its passphrase"

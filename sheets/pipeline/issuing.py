@@ -1,44 +1,38 @@
-"""Issues a pack: reserve, print, sign, write, commit. What breaks off leaves a void revision and no file."""
+"""Issues a pack: reserve, print, sign, write aside, tell the register, move into place.
+
+What breaks off before the register has the issue leaves a void revision and no file. What breaks off after
+that leaves the file aside, where signing takes it up again.
+"""
 
 from __future__ import annotations
 
+import contextlib
 import hashlib
-import json
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from datetime import datetime
 from pathlib import Path
 from typing import Final
-from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
+from zoneinfo import ZoneInfo
 
 from sheets import ENGINE
-from sheets.errors import InputError, Problem, RefusedError, quoted
-from sheets.machine.files import write_pdf
+from sheets.errors import InputError, JamnutError, Problem, RefusedError, quoted
+from sheets.machine.files import aside_of, check_pdf_target, move_aside, write_aside
 from sheets.machine.site import Site
-from sheets.pages.attached import attachments_in
 from sheets.pages.compose.matter import Matter
 from sheets.pages.document import IssueContext, Layout
 from sheets.pages.stamp import stamp_pdf
-from sheets.pipeline.attaching import ISSUE_NAME, issue_of
 from sheets.pipeline.computing import issuable
-from sheets.pipeline.printing import pack, whole_content
-from sheets.register.issuing import commit, reject, reserve, sign_event, void
-from sheets.register.revisions import Revision, Signer
+from sheets.pipeline.persons import Named, Signing, check_people, check_trusted, named_by, trust_of
+from sheets.pipeline.printing import printed, whole_content
+from sheets.register.finding import revision_of
+from sheets.register.issuing import Reservation, commit, reserve, sign_event, void
+from sheets.register.revisions import Revision, RevisionState, Signer
 from sheets.register.store import Register, create_register, open_register
 from sheets.seal.canonical import canonical_bytes, digest
-from sheets.seal.sign import open_signer, sign_field, signing_fields
+from sheets.seal.sign import sign_field, signing_fields
 
 ISSUED: Final = "issued"
-
-
-@dataclass(frozen=True, kw_only=True)
-class Signing:
-    """One of the signatures: by key now, or by somebody named who signs later or in ink."""
-
-    meaning: str
-    name: str = ""
-    """Of the person; taken from the certificate where a key is given."""
-    key: Path | None = None
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -60,23 +54,29 @@ def issue(
     signings: Sequence[Signing],
     passphrase: Callable[[Path], str],
     register_file: Path,
+    site_folder: Path,
     when: datetime,
     random_bytes: Callable[[int], bytes],
     layout: Layout,
     ink: bool = False,
 ) -> Issued:
-    """Issues the pack of a job, or begins to: with keys for some signatures, the others come by `sign_pack`.
+    """Issues the pack of a job, or begins to: with keys for some signatures, the others come by `sign`.
 
-    Raises RefusedError with everything that stands against it, before a revision is reserved.
+    ``site_folder`` is that of the site file, from where its trust list is read. Raises InputError and
+    RefusedError with everything that stands against it, before a revision is reserved.
     """
     against = issuable(matter)
     if against:
         raise RefusedError(*against)
     site = _site(matter)
-    named = [named_by(one, passphrase, when) for one in signings]
-    _check_people(site, named, ink=ink)
+    zone = zone_of(site)
+    check_pdf_target(target)
+    people = [named_by(one, passphrase, when) for one in signings]
+    check_people(site, people, ink=ink)
+    if not ink:
+        check_trusted(people, trust_of(site, site_folder))
     said = whole_content(matter)
-    by = named[0].name
+    by = people[0].name
     with _register(register_file, by, when) as register:
         reservation = reserve(
             register,
@@ -86,44 +86,31 @@ def issue(
             when=when,
             random_bytes=random_bytes,
         )
-        local = when.astimezone(_zone(site))
-        context = IssueContext(
-            record_id=reservation.record_id,
-            record_address=str(site.record_address),
-            revision=str(reservation.number),
-            state=site.signatures.note or ISSUED,
-            mark=site.signatures.note.split(",")[0].upper(),
-            date=local.date().isoformat(),
-            zone=site.zone,
-            signers=tuple((one.meaning, one.name) for one in named),
-        )
+        record_id = reservation.record_id
         try:
-            data = pack(matter, layout, context, fillable=not ink)
-            for one in named:
-                if one.key is None or ink:
+            context = _context(site, zone, reservation, people, when)
+            data = printed(said, matter, layout, context, fillable=not ink)
+            signed: list[tuple[Named, str]] = []
+            for one in people:
+                if one.holder is None or ink:
                     break  # signatures follow in their order
-                data = signed_by(data, one, passphrase, site, register, reservation.record_id, when=when)
-            write_pdf(target, data)
+                data = signed_by(data, one, site, when=when)
+                signed.append((one, file_digest(data)))
             waiting = () if ink else waiting_in(data)
+            write_aside(target, data)
+            for one, made in signed:
+                tell_signed(register, record_id, one, made, when=when)
             if not waiting:
-                commit_pack(
-                    register,
-                    reservation.record_id,
-                    matter,
-                    data,
-                    said.digest,
-                    tuple(Signer(meaning=one.meaning, name=one.name) for one in named),
-                    when=when,
-                    ink=ink,
-                )
-        except BaseException:  # whatever breaks it off, an issue that isn't finished leaves no file behind
-            target.unlink(missing_ok=True)
-            void(register, reservation.record_id, reason="broken off", by=by, when=when)
+                signers = tuple(Signer(meaning=one.meaning, name=one.name) for one in people)
+                commit_pack(register, record_id, matter, data, said.digest, signers, when=when, ink=ink)
+        except BaseException as error:
+            break_off(register, record_id, target, error, by=by, when=when)
             raise
+        put_in_place(target)
     return Issued(
         file=target,
         revision=context.revision,
-        record_id=context.record_id,
+        record_id=record_id,
         digest=said.digest,
         waiting=waiting,
     )
@@ -131,18 +118,57 @@ def issue(
 
 def issued_text(issued: Issued) -> Iterator[str]:
     """What came of an issue or a signature."""
-    yield (f"{issued.file}: revision {issued.revision}, record {issued.record_id}, content {issued.digest}")
+    yield f"{issued.file}: revision {issued.revision}, record {issued.record_id}, content {issued.digest}"
     if issued.waiting:
         yield f"not issued yet; still to sign: {', '.join(issued.waiting)}"
     else:
         yield "issued"
 
 
-def reject_issue(file: Path, *, register_file: Path, by: str, reason: str, when: datetime) -> Revision:
-    """Ends an issue between its signatures, with a reason. Raises RefusedError once it is issued."""
-    context = context_of(file.read_bytes())
-    with open_register(register_file) as register:
-        return reject(register, context.record_id, reason=reason, by=by, when=when)
+def _context(
+    site: Site, zone: ZoneInfo, reservation: Reservation, people: Sequence[Named], when: datetime
+) -> IssueContext:
+    note = site.signatures.note
+    return IssueContext(
+        record_id=reservation.record_id,
+        record_address=str(site.record_address),
+        revision=str(reservation.number),
+        state=note or ISSUED,
+        mark=note.split(",")[0].upper(),
+        date=when.astimezone(zone).date().isoformat(),
+        zone=site.zone,
+        signers=tuple((one.meaning, one.name) for one in people),
+    )
+
+
+def break_off(
+    register: Register, record_id: str, target: Path, error: BaseException, *, by: str, when: datetime
+) -> None:
+    """Ends a revision that can't be finished, with the reason, and takes its file away.
+
+    One that the register has as issued stays, and so does its file: it broke off too late to undo.
+    """
+    with contextlib.suppress(JamnutError):  # what can't be made void now, the next issue makes void
+        void(register, record_id, reason=_reason(error), by=by, when=when)
+    with contextlib.suppress(JamnutError):
+        if revision_of(register, record_id).state is RevisionState.ISSUED:
+            return
+    aside_of(target).unlink(missing_ok=True)
+
+
+def _reason(error: BaseException) -> str:
+    if isinstance(error, JamnutError) and error.problems:
+        return f"broken off: {error.problems[0].where}: {quoted(error.problems[0].what)}"
+    return f"broken off by {type(error).__name__}"
+
+
+def put_in_place(target: Path) -> None:
+    """Moves what the register knows into place. Raises InputError that says where it stands if it can't."""
+    move_aside(
+        target,
+        fix=f"The register has it already, and it stands as {aside_of(target)}: jamnut sign goes on from "
+        "there, once the file can be written.",
+    )
 
 
 def file_digest(data: bytes) -> str:
@@ -177,35 +203,20 @@ def waiting_in(data: bytes) -> tuple[str, ...]:
     return tuple(name for name, field in signing_fields(data).items() if not field.signed)
 
 
-def context_of(data: bytes) -> IssueContext:
-    held = attachments_in(data).get(ISSUE_NAME)
-    if held is None:
+def signed_by(data: bytes, one: Named, site: Site, *, when: datetime) -> bytes:
+    """The file with one signature more. Raises as `sign_field` does."""
+    if one.holder is None:
+        raise ValueError(f"{one.meaning}: no key was given")
+    local = when.astimezone(zone_of(site))
+    field = signing_fields(data).get(one.meaning)
+    if field is None:
         raise InputError(
             Problem(
-                where="file",
-                what="It is no issued pack: it carries no issue.",
-                fix="Give a file that jamnut issue wrote.",
+                where=f"signature {one.meaning}",
+                what="The pack has no field for it.",
+                fix="Sign a pack that was issued for signatures by key.",
             )
         )
-    return issue_of(json.loads(held))
-
-
-def signed_by(
-    data: bytes,
-    one: Signing,
-    passphrase: Callable[[Path], str],
-    site: Site,
-    register: Register,
-    record_id: str,
-    *,
-    when: datetime,
-) -> bytes:
-    """The file with one signature more, and the register told of it."""
-    if one.key is None:
-        raise ValueError(f"{one.meaning}: no key was given")
-    local = when.astimezone(_zone(site))
-    signer = open_signer(one.key.read_bytes(), passphrase(one.key), where=str(one.key), when=when)
-    field = signing_fields(data)[one.meaning]
     stamp = stamp_pdf(
         meaning=one.meaning,
         name=one.name,
@@ -214,19 +225,20 @@ def signed_by(
         width=field.width,
         height=field.height,
     )
-    signed = sign_field(
+    return sign_field(
         data,
         field=one.meaning,
-        signer=signer,
+        signer=one.holder,
         when=local,
         stamp=stamp,
         needed=site.signatures.needed,
         time_server=site.signatures.time_server,
     )
-    sign_event(
-        register, record_id, who=one.name, meaning=one.meaning, file_digest=file_digest(signed), when=when
-    )
-    return signed
+
+
+def tell_signed(register: Register, record_id: str, one: Named, made: str, *, when: datetime) -> Revision:
+    """The register hears of a signature; ``made`` is the digest of the file with it as its last."""
+    return sign_event(register, record_id, who=one.name, meaning=one.meaning, file_digest=made, when=when)
 
 
 def commit_pack(
@@ -234,16 +246,17 @@ def commit_pack(
     record_id: str,
     matter: Matter,
     data: bytes,
-    printed: str,
+    content_digest: str,
     signers: tuple[Signer, ...],
     *,
     when: datetime,
     ink: bool,
 ) -> None:
+    """The register has it as issued from here on. ``content_digest`` is the printed one."""
     commit(
         register,
         record_id,
-        content_digest=printed,
+        content_digest=content_digest,
         file_digest=file_digest(data),
         machine_digest=machine_digest(matter),
         engine=ENGINE,
@@ -252,58 +265,6 @@ def commit_pack(
         when=when,
         ink=ink,
     )
-
-
-def named_by(one: Signing, passphrase: Callable[[Path], str], when: datetime) -> Signing:
-    """The signing with the name from its certificate, where a key is given."""
-    if one.key is None:
-        return one
-    try:
-        data = one.key.read_bytes()
-    except OSError as error:
-        raise InputError(
-            Problem(
-                where=str(one.key),
-                what=f"The key file can't be read: {error.strerror}.",
-                fix="Look at the name of the file and whether you may read it.",
-            )
-        ) from None
-    signer = open_signer(data, passphrase(one.key), where=str(one.key), when=when)
-    return Signing(meaning=one.meaning, name=signer.person.name, key=one.key)
-
-
-def _check_people(site: Site, named: Sequence[Signing], *, ink: bool) -> None:
-    """Every signature that the site needs has a person, and no two that must differ are one."""
-    problems: list[Problem] = []
-    names = {one.meaning: one.name for one in named}
-    for meaning in site.signatures.needed:
-        if not names.get(meaning):
-            problems.append(
-                Problem(
-                    where=f"signature {meaning}",
-                    what="Nobody is named for it, and the site needs it.",
-                    fix=f"Give --{meaning} with a key file, or with the name of who signs later.",
-                )
-            )
-    folded = {meaning: " ".join(name.split()).casefold() for meaning, name in names.items() if name}
-    if folded.get("prepared") and folded["prepared"] in (folded.get("approved"), folded.get("checked")):
-        problems.append(
-            Problem(
-                where="signatures",
-                what=f"{names['prepared']} would sign twice.",
-                fix="Whoever prepared a sheet neither checks nor approves it: name another person.",
-            )
-        )
-    if not ink and named and named[0].key is None:
-        problems.append(
-            Problem(
-                where=f"signature {named[0].meaning}",
-                what="The first signature needs a key now.",
-                fix=f"Give --{named[0].meaning} KEY.p12, or issue for ink with --ink.",
-            )
-        )
-    if problems:
-        raise RefusedError(*problems)
 
 
 def _site(matter: Matter) -> Site:
@@ -316,14 +277,14 @@ def _site(matter: Matter) -> Site:
                 fix="Write record address into the site file, and name it with --site.",
             )
         )
-    _zone(site)
     return site
 
 
-def _zone(site: Site) -> ZoneInfo:
+def zone_of(site: Site) -> ZoneInfo:
+    """The time zone of a works. Raises InputError if it isn't known."""
     try:
         return ZoneInfo(site.zone)
-    except (ZoneInfoNotFoundError, ValueError):
+    except (KeyError, ValueError, OSError):  # a folder of zones is no zone, either
         raise InputError(
             Problem(
                 where="site file, zone",

@@ -8,7 +8,7 @@ from datetime import datetime, timedelta
 from pathlib import Path
 from typing import Final
 
-from sheets.errors import InputError, Problem
+from sheets.errors import InputError, Problem, quoted
 from sheets.machine.files import move_into_place
 from sheets.seal.keys import (
     SERIAL_BYTES,
@@ -43,15 +43,23 @@ def keys(
     *,
     authority_name: str,
     persons: Sequence[str],
-    passphrase: str,
+    passphrase: Callable[[Path], str],
     when: datetime,
     random_bytes: Callable[[int], bytes],
 ) -> KeyRing:
     """Writes the authority of a works, unless the folder has one, and a key file for each person.
 
-    All files of one call are locked with the same passphrase; an authority that is there is opened with it.
+    Each file is locked with its own passphrase; an authority that is there is opened with its.
     Existing key files are never overwritten. Raises InputError.
     """
+    if not folder.is_dir():
+        raise InputError(
+            Problem(
+                where=str(folder),
+                what="There is no such folder.",
+                fix="Make the folder first, where not everyone may read; keys are not for everyone.",
+            )
+        )
     targets = [folder / f"{_file_name(person)}.p12" for person in persons]
     taken = [target for target in targets if target.exists()]
     if taken or len(set(targets)) < len(targets):
@@ -66,21 +74,22 @@ def keys(
         )
     authority_file, certificate = folder / f"{AUTHORITY}.p12", folder / f"{AUTHORITY}.pem"
     if authority_file.exists():
-        opened = open_key(authority_file.read_bytes(), passphrase, where=str(authority_file))
+        opened = open_key(authority_file.read_bytes(), passphrase(authority_file), where=str(authority_file))
     else:
         validity = Validity(start=when, end=when + timedelta(days=365 * AUTHORITY_YEARS))
+        chosen = passphrase(authority_file)
         made = make_authority(
             authority_name,
             validity=validity,
             serial=serial_from(random_bytes(SERIAL_BYTES)),
-            passphrase=passphrase,
+            passphrase=chosen,
         )
-        move_into_place(authority_file, made.p12, fix=_FIX)
+        move_into_place(authority_file, made.p12, fix=_FIX, private=True)
         move_into_place(certificate, made.certificate_pem.encode(), fix=_FIX)
-        opened = open_key(made.p12, passphrase)
+        opened = open_key(made.p12, chosen)
     for person, target in zip(persons, targets, strict=True):
-        signer = _signer(opened, person, passphrase, when, random_bytes)
-        move_into_place(target, signer.p12, fix=_FIX)
+        signer = _signer(opened, person, passphrase(target), when, random_bytes)
+        move_into_place(target, signer.p12, fix=_FIX, private=True)
     return KeyRing(authority=authority_file, certificate=certificate, signers=tuple(targets))
 
 
@@ -106,6 +115,14 @@ def _file_name(person: str) -> str:
                 where="name of a person",
                 what="It has no letter.",
                 fix="Write the name as it is to stand on the sheets.",
+            )
+        )
+    if words == [AUTHORITY]:
+        raise InputError(
+            Problem(
+                where=f"name {quoted(person)}",
+                what="The key file of the authority has that name.",
+                fix="Name the person more fully.",
             )
         )
     return "-".join(words)

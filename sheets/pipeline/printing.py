@@ -58,7 +58,13 @@ def pack(
 
     ``fillable``: whether an issued pack gets fields to sign by key. Raises as `whole_content` and `place` do.
     """
-    said = whole_content(matter)
+    return printed(whole_content(matter), matter, layout, issue, fillable=fillable)
+
+
+def printed(
+    said: Content, matter: Matter, layout: Layout, issue: IssueContext | None = None, *, fillable: bool = True
+) -> bytes:
+    """The pack of a content that was made before; ``fillable`` as in `pack`. Raises as `place` does."""
     return print_pack(
         said.document,
         layout=layout,
