@@ -116,6 +116,12 @@ def body(ink: Ink, tag: SettingTag, as_left: str) -> None:
         one_line(ink, tag, whole, x=INSET, y=line, width=right - INSET, styles=LEFT)
 
 
+def marked(frame: Frame, footer: str) -> str:
+    """The foot of a tag, with the mark of an issue before it; a draft says so elsewhere on it."""
+    mark = frame.issue.mark if frame.issue is not None else ""
+    return f"{mark} · {footer}" if mark else footer
+
+
 def tag_piece(tag: SettingTag, frame: Frame) -> Piece:
     """One tag with its hole, face, numbers and code; a draft says so in two places."""
     ink = Ink()
@@ -150,12 +156,10 @@ def tag_piece(tag: SettingTag, frame: Frame) -> Piece:
     as_left = tag.as_left
     if frame.issue is not None:
         as_left = dict(frame.issue.as_left).get(tag.id, tag.as_left)
-        if frame.issue.mark:
-            as_left = f"{frame.issue.mark} · {as_left}"
     body(ink, tag, as_left)
     foot = HEIGHT - 1.9 * MM
     with ink.inside(element("P", "foot")):
-        one_line(ink, tag, tag.footer, x=INSET, y=foot, width=right - INSET, styles=FOOT)
+        one_line(ink, tag, marked(frame, tag.footer), x=INSET, y=foot, width=right - INSET, styles=FOOT)
     known = 20.9 * MM
     room = right - CODE_SIDE - 4 * CODE_MODULE - TEXT_LEFT
     draft_width = REVISION[-1].width(words.draft) + 3 * MM + 2 * MM if frame.issue is None else 0.0

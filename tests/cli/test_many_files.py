@@ -11,7 +11,7 @@ from pathlib import Path
 
 import pytest
 
-from sheets import pipeline
+from sheets.pipeline import many
 
 BEYOND = "    where: after the pump manifold, beyond RV1 and TP1\n"
 
@@ -144,14 +144,14 @@ def test_progress_is_for_a_terminal(
 def test_a_bug_at_one_file_keeps_the_others(
     run: Callable[..., object], folder: Path, monkeypatch: pytest.MonkeyPatch, tmp_path: Path
 ) -> None:
-    whole = pipeline.check
+    whole = many.check
 
     def fail(file: Path, *others: object) -> object:
         if file.name == "glaze_press.yaml":
             raise RuntimeError("a wheel came off")
         return whole(file, *others)  # type: ignore[arg-type]  # handed through
 
-    monkeypatch.setattr(pipeline, "check", fail)
+    monkeypatch.setattr(many, "check", fail)
     monkeypatch.setattr("tempfile.tempdir", str(tmp_path))
 
     done = run("check", folder)
