@@ -65,6 +65,7 @@ def issue(
     ``site_folder`` is that of the site file, from where its trust list is read. Raises InputError and
     RefusedError with everything that stands against it, before a revision is reserved.
     """
+    said = whole_content(matter)  # a job that doesn't hold says why
     against = issuable(matter)
     if against:
         raise RefusedError(*against)
@@ -75,7 +76,6 @@ def issue(
     check_people(site, people, ink=ink)
     if not ink:
         check_trusted(people, trust_of(site, site_folder))
-    said = whole_content(matter)
     by = people[0].name
     with _register(register_file, by, when) as register:
         reservation = reserve(
@@ -90,6 +90,7 @@ def issue(
         try:
             context = _context(site, zone, reservation, people, when)
             data = printed(said, matter, layout, context, fillable=not ink)
+            hold_archive_form(data)
             signed: list[tuple[Named, str]] = []
             for one in people:
                 if one.holder is None or ink:
@@ -139,6 +140,18 @@ def _context(
         zone=site.zone,
         signers=tuple((one.meaning, one.name) for one in people),
     )
+
+
+def hold_archive_form(data: bytes) -> None:
+    """Nothing is signed that isn't in archive form (ISO 19005-3, 3b). Raises RefusedError with every flaw."""
+    flaws = archive_flaws(data)
+    if flaws:
+        raise RefusedError(
+            *(
+                Problem(where="archive form", what=flaw, fix="This is an error of the pages: report it.")
+                for flaw in flaws
+            )
+        )
 
 
 def break_off(
