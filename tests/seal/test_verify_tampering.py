@@ -44,6 +44,7 @@ def causes(report: SignaturesReport) -> set[Cause]:
 def updated(pdf: bytes, change: Change) -> bytes:
     """An ordinary update behind the last signature, by somebody without a key."""
     writer = IncrementalPdfFileWriter(io.BytesIO(pdf))
+    writer._force_write_when_empty = True  # a change of the trailer alone is one, too
     change(writer)
     out = io.BytesIO()
     writer.write(out)
@@ -136,6 +137,11 @@ def other_info(writer: IncrementalPdfFileWriter) -> None:
     writer.set_info(generic.DictionaryObject({generic.pdf_name("/Title"): generic.TextStringObject("other")}))
 
 
+def point_elsewhere(writer: IncrementalPdfFileWriter) -> None:
+    """No object is new or changed; the file only says that another one describes it."""
+    writer.set_info(first_page(writer)["/Annots"].raw_get(2))
+
+
 CHANGES = (
     add_page,
     swap_attachment,
@@ -148,6 +154,7 @@ CHANGES = (
     other_form,
     other_catalog,
     other_info,
+    point_elsewhere,
 )
 
 
@@ -444,6 +451,18 @@ def test_container_that_lenient_readers_accept(change: Callable[[cms.ContentInfo
     report = judged(with_container(pdf, change(info)))
     assert report.judgement is not Judgement.GOOD
     assert causes(report) & {Cause.CONTAINER, Cause.FOREIGN}
+
+
+def test_another_certificate_over_the_same_key() -> None:
+    """Same key, issuer and serial number, another name: the signature alone would fit both."""
+    first, second = signers_with_one_key("Alias One", "Alias Two")
+    pdf = signed_once(unsigned_pack(), "prepared", first)
+    info = cms.ContentInfo.load(container_bytes(pdf, signed_ranges(pdf)[0]))
+    der = second.certificate.public_bytes(keys.serialization.Encoding.DER)
+    info["content"]["certificates"] = [x509.Certificate.load(der)]
+    report = judged(with_container(pdf, info.dump(force=True)))
+    assert report.judgement is Judgement.BAD
+    assert causes(report) == {Cause.ATTRIBUTES}
 
 
 def test_short_keys_are_not_established(monkeypatch: pytest.MonkeyPatch) -> None:

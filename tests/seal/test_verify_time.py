@@ -12,8 +12,8 @@ from functools import cache
 from http.server import BaseHTTPRequestHandler, HTTPServer
 
 import pytest
+from asn1crypto import cms, tsp
 from asn1crypto import keys as asn1_keys
-from asn1crypto import tsp
 from asn1crypto import x509 as asn1_x509
 from cryptography import x509
 from cryptography.hazmat.primitives import hashes, serialization
@@ -202,6 +202,22 @@ def test_every_fifteenth_digit_of_a_time_token_changed() -> None:
         changed = pdf[:position] + bytes((pdf[position] ^ 1,)) + pdf[position + 1 :]
         report = judged(changed, time_trust=[server.certificate_pem])
         assert report.judgement is not Judgement.GOOD, position
+
+
+def test_token_of_another_signature_gives_no_time() -> None:
+    server = time_server(SOON)
+    pdf = pack(server)
+    first, last = (cms.ContentInfo.load(container_bytes(pdf, signed_ranges(pdf)[index])) for index in (0, -1))
+    (theirs,), (own,) = first["content"]["signer_infos"], last["content"]["signer_infos"]
+    own["unsigned_attrs"] = theirs["unsigned_attrs"]
+    gap = signed_ranges(pdf)[-1]
+    room = gap.gap_end - gap.gap_start - 2
+    text = last.dump(force=True).hex().upper().ljust(room, "0").encode()
+    report = judged(
+        pdf[: gap.gap_start + 1] + text + pdf[gap.gap_end - 1 :], time_trust=[server.certificate_pem]
+    )
+    assert report.judgement is Judgement.BAD
+    assert report.reasons[0].says == "The time token belongs to another signature."
 
 
 def refuses(answer: Callable[[BaseHTTPRequestHandler], None]) -> type[BaseHTTPRequestHandler]:
