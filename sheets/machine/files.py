@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 from collections.abc import Sequence
 from pathlib import Path
 from typing import Final
@@ -104,6 +105,8 @@ def write_aside(target: Path, data: bytes, *, fix: str = _NAME_ANOTHER, private:
         aside.touch(mode=0o600 if private else 0o666, exist_ok=False)
         aside.write_bytes(data)
     except OSError as error:
+        with contextlib.suppress(OSError):
+            aside.unlink(missing_ok=True)
         raise _unwritten(target, error, fix) from None
 
 

@@ -140,7 +140,16 @@ _CONTENTS: Final[dict[str, str]] = {
 """Every name of this package to the module, below ``sheets``, that it stands in."""
 
 
-_EXTRA: Final = {"asn1crypto", "cryptography", "pyhanko", "sqlalchemy"}
+_EXTRA: Final = (
+    "asn1crypto",
+    "cryptography",
+    "fontTools",
+    "jsonschema",
+    "pikepdf.pdfa",
+    "pyhanko",
+    "referencing",
+    "sqlalchemy",
+)
 """Libraries of the extra named site: what stands behind a sheet needs them, a draft doesn't."""
 
 
@@ -149,9 +158,10 @@ def __getattr__(name: str) -> Any:  # whatever the module behind it holds
         raise AttributeError(f"{__name__} has no {name}")
     try:
         return getattr(import_module(f"sheets.{_CONTENTS[name]}"), name)
-    except ModuleNotFoundError as error:
-        library = (error.name or "").split(".")[0]
-        if library not in _EXTRA:
+    except ImportError as error:
+        missing = error.name or str(error)  # one of them tells the name in words only
+        library = next((one for one in _EXTRA if missing.startswith(one)), None)
+        if library is None:
             raise
         raise InputError(
             Problem(

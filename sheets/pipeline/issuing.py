@@ -19,6 +19,7 @@ from sheets import ENGINE
 from sheets.errors import InputError, JamnutError, Problem, RefusedError, quoted
 from sheets.machine.files import aside_of, check_pdf_target, move_aside, write_aside
 from sheets.machine.site import Site
+from sheets.pages.archive import archive_flaws
 from sheets.pages.compose.matter import Matter
 from sheets.pages.document import IssueContext, Layout
 from sheets.pages.stamp import stamp_pdf

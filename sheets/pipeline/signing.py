@@ -57,6 +57,8 @@ def sign(
         told = last is not None and last.meaning == person.meaning
         if not (told and revision.state is RevisionState.ISSUED):
             _check_open(revision)
+        if not told:
+            _check_unsigned(revision, person)
         _check_known(data, last.file_digest if last else "")
         made, printed = remade_with_digest(data)
         if told:  # and something broke off behind it
@@ -153,6 +155,18 @@ def _check_open(revision: Revision) -> None:
             where=f"revision {revision.number} of document {quoted(revision.document)}",
             what=f"It is {revision.state.value}{why}; nobody signs it any more.",
             fix="Issue a new revision.",
+        )
+    )
+
+
+def _check_unsigned(revision: Revision, person: Named) -> None:
+    if person.meaning not in {one.meaning for one in revision.signatures}:
+        return
+    raise RefusedError(
+        Problem(
+            where=f"signature {person.meaning}",
+            what=f"It is signed as {person.meaning} already, by {quoted(person.name)}.",
+            fix="See with jamnut verify which signature comes next.",
         )
     )
 
