@@ -66,9 +66,10 @@ def _placed(meaning: str, name: str, when: str, width: float, height: float) -> 
         strong, light = style(size, Weight.SEMIBOLD), style(0.9 * size)
         names = wrap(heads[0], strong, room)
         rest = [line for text in (*heads[1:], when) for line in wrap(text, light, room)]
-        if len(names) * strong.leading + len(rest) * light.leading <= height:
+        spare = height - len(names) * strong.leading - len(rest) * light.leading
+        if spare >= 0:
             ink = Ink()
-            bottom = ink.lines(PADDING, 0, names, strong)
+            bottom = ink.lines(PADDING, spare / 2, names, strong)
             ink.lines(PADDING, bottom, rest, light)
             return ink
     raise InputError(
