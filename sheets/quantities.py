@@ -227,6 +227,8 @@ def _conversion(written: str, unit: str) -> tuple[float, float, float]:
         return _TEMPERATURES[written]
     if written in _TEMPERATURES:
         raise _UnitError(f"{quoted(written)} is the unit of a temperature.", _expected(unit))
+    if written == unit.translate(_SAME_SIGNS):
+        return 0.0, 1.0, 1.0  # without pint: a file in base units doesn't wait for it
     size, dimension = _measure(_in_pint_words(written or "1", unit))
     candidates = (unit, KINDS[unit].also) if KINDS[unit].also else (unit,)
     base = next((one for one in candidates if _has_dimension(one, dimension)), None)

@@ -252,3 +252,13 @@ def test_pint_is_not_loaded_before_it_is_needed() -> None:
     code = "import sys, sheets.quantities, sheets.machine.model; sys.exit('pint' in sys.modules)"
 
     assert subprocess.run([sys.executable, "-c", code], check=False).returncode == 0
+
+
+def test_base_units_are_read_without_pint() -> None:
+    code = (
+        "import sys\nfrom sheets.quantities import KINDS, parse\n"
+        "read = [parse(f'7 {unit}', unit=unit) for unit in KINDS]\n"
+        "sys.exit('pint' in sys.modules or read != [7.0] * len(KINDS))"
+    )
+
+    assert subprocess.run([sys.executable, "-c", code], check=False).returncode == 0
