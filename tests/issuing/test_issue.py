@@ -374,3 +374,17 @@ def test_names_of_key_files(tmp_path: Path) -> None:
     make("Una Lind")  # the authority that is there vouches for her
     assert {path.name for path in tmp_path.iterdir()} == {*made, "una-lind.p12"}
     assert (tmp_path / "authority.p12").read_bytes() == made["authority.p12"]
+
+
+@pytest.mark.parametrize("paper", ["A4", "Letter"])
+def test_other_samples_and_papers_are_issued_and_good(root: Path, tmp_path: Path, paper: str) -> None:
+    """The two samples that the other tests leave out, each on one paper."""
+    name = {"A4": "clay_mixer", "Letter": "glaze_press"}[paper]
+    sample = root / "sample_machines" / f"{name}.yaml"
+    made = pipeline.demo(sample, tmp_path / "works", when=WHEN, random_bytes=Chance(1))
+    works = Works(tmp_path / "works")
+    file = made.issued.file
+    if paper == "Letter":
+        matter = pipeline.steps(pipeline.check(works.folder / sample.name))
+        works.issue(matter, file, layout=pipeline.layout_named("Letter"))
+    assert words(works.verify(file)) == ("good", "good", "good")
