@@ -120,8 +120,9 @@ def issue(
 
     With the keys of a demonstration the passphrase is: demonstration only
 
-    Example: jamnut issue demonstration/clay_mixer.yaml --register demonstration/register.db
-    --prepared demonstration/keys/ada-quarrow.p12 --checked "Bram Tolliver" --approved "Cleo Harnett"
+    \b
+    Example: jamnut issue demonstration/clay_mixer.yaml --register demonstration/register.db \\
+        --prepared demonstration/keys/ada-quarrow.p12 --checked "Bram Tolliver" --approved "Cleo Harnett"
     """
     from sheets import pipeline
 
@@ -161,8 +162,9 @@ def sign(
 ) -> None:
     """Sign an issued pack for the next of the persons named on it; the last signature commits it.
 
-    Example: jamnut sign PU-07.pdf --as checked --key demonstration/keys/bram-tolliver.p12
-    --site demonstration/site.yaml --register demonstration/register.db
+    \b
+    Example: jamnut sign PU-07.pdf --as checked --key demonstration/keys/bram-tolliver.p12 \\
+        --site demonstration/site.yaml --register demonstration/register.db
     """
     from sheets import pipeline
 
@@ -185,8 +187,9 @@ def sign(
 def reject(file: Path, register_file: Path, by: str, reason: str) -> None:
     """Reject a pack between its signatures, with a reason; its revision ends there.
 
-    Example: jamnut reject PU-07.pdf --register demonstration/register.db
-    --by "Bram Tolliver" --reason "wrong plate"
+    \b
+    Example: jamnut reject PU-07.pdf --register demonstration/register.db \\
+        --by "Bram Tolliver" --reason "wrong plate"
     """
     from sheets import pipeline
 
@@ -211,8 +214,9 @@ def verify(
 ) -> None:
     """Judge packs three ways apart: signatures, content, and whether they are current.
 
-    Example: jamnut verify demonstration/PU-07.pdf
-    --site demonstration/site.yaml --register demonstration/register.db
+    \b
+    Example: jamnut verify demonstration/PU-07.pdf \\
+        --site demonstration/site.yaml --register demonstration/register.db
     """
     from sheets import pipeline
 

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import contextlib
 import hashlib
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from datetime import datetime
 from pathlib import Path
@@ -31,7 +31,7 @@ from sheets.register.issuing import Reservation, commit, reserve, sign_event, vo
 from sheets.register.revisions import Revision, RevisionState, Signer
 from sheets.register.store import Register, create_register, open_register
 from sheets.seal.canonical import canonical_bytes, digest
-from sheets.seal.sign import sign_field, signing_fields
+from sheets.seal.sign import SigningField, sign_field, signing_fields
 
 ISSUED: Final = "issued"
 
@@ -92,15 +92,16 @@ def issue(
             context = _context(site, zone, reservation, people, when)
             data = printed(said, matter, layout, context, fillable=not ink)
             hold_archive_form(data)
-            signed: list[tuple[Named, str]] = []
+            fields = {} if ink else signing_fields(data)
+            signed: dict[str, tuple[Named, str]] = {}
             for one in people:
                 if one.holder is None or ink:
                     break  # signatures follow in their order
-                data = signed_by(data, one, site, when=when)
-                signed.append((one, file_digest(data)))
-            waiting = () if ink else waiting_in(data)
+                data = signed_by(data, one, site, fields, when=when)
+                signed[one.meaning] = one, file_digest(data)
+            waiting = tuple(name for name in fields if name not in signed)
             write_aside(target, data)
-            for one, made in signed:
+            for one, made in signed.values():
                 tell_signed(register, record_id, one, made, when=when)
             if not waiting:
                 signers = tuple(Signer(meaning=one.meaning, name=one.name) for one in people)
@@ -212,17 +213,14 @@ def machine_digest(matter: Matter) -> str:
     return digest(canonical_bytes(shaping))
 
 
-def waiting_in(data: bytes) -> tuple[str, ...]:
-    """Signature fields of a pack that are still empty, in the order in which they are signed."""
-    return tuple(name for name, field in signing_fields(data).items() if not field.signed)
-
-
-def signed_by(data: bytes, one: Named, site: Site, *, when: datetime) -> bytes:
-    """The file with one signature more. Raises as `sign_field` does."""
+def signed_by(
+    data: bytes, one: Named, site: Site, fields: Mapping[str, SigningField], *, when: datetime
+) -> bytes:
+    """The file with one signature more; ``fields`` are those of the file. Raises as `sign_field` does."""
     if one.holder is None:
         raise ValueError(f"{one.meaning}: no key was given")
     local = when.astimezone(zone_of(site))
-    field = signing_fields(data).get(one.meaning)
+    field = fields.get(one.meaning)
     if field is None:
         raise InputError(
             Problem(

@@ -20,7 +20,6 @@ from sheets.pipeline.issuing import (
     put_in_place,
     signed_by,
     tell_signed,
-    waiting_in,
 )
 from sheets.pipeline.persons import Named, Signing, check_trusted, named_by, trust_of
 from sheets.pipeline.verifying import remade_with_digest
@@ -28,6 +27,7 @@ from sheets.register import issuing as registered
 from sheets.register.finding import revision_of
 from sheets.register.revisions import Revision, RevisionState, Signer
 from sheets.register.store import Register, open_register
+from sheets.seal.sign import signing_fields
 
 
 def sign(
@@ -71,7 +71,7 @@ def sign(
             except BaseException:
                 aside_of(file).unlink(missing_ok=True)
                 raise
-        waiting = waiting_in(signed)
+        waiting = tuple(name for name, field in signing_fields(signed).items() if not field.signed)
         if not waiting and revision.state is RevisionState.RESERVED:
             signers = tuple(Signer(meaning=meaning, name=name) for meaning, name in context.signers)
             commit_pack(register, context.record_id, made, signed, printed, signers, when=when, ink=False)
@@ -130,7 +130,7 @@ def _signed(data: bytes, person: Named, made: Matter, site_file: Path, when: dat
         raise InputError(
             Problem(where="file", what="It carries no site file.", fix="Issue it anew, with a site file.")
         )
-    return signed_by(data, person, made.site, when=when)
+    return signed_by(data, person, made.site, signing_fields(data), when=when)
 
 
 def _check_named(context: IssueContext, person: Named) -> None:
