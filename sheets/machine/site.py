@@ -112,6 +112,8 @@ class Signatures(Entry):
     """Certificate files (PEM) of the authorities that the site trusts, beside this file."""
     time_server: TimeServer | None = None
     """Address of a time server (RFC 3161); without one a signature carries its signer's own time."""
+    time_trust: tuple[Text, ...] = ()
+    """Certificate files (PEM) of the authorities behind that time server, beside this file."""
     note: Text = ""
     """Printed as the state of every issue of this site, for example: demonstration."""
 
@@ -124,6 +126,12 @@ class Signatures(Entry):
                     what=f"The signature {meaning} can't be waived.",
                     fix="Name at least prepared and approved; checked may be left out.",
                 )
+        if self.time_server and not self.time_trust:
+            yield Flaw(
+                at=("time server",),
+                what="No authority is trusted for its time, so no signature with it could be called good.",
+                fix="Name the certificate of its authority under time trust, or leave the time server out.",
+            )
         if len(set(self.needed)) < len(self.needed):
             yield Flaw(at=("needed",), what="A signature stands here twice.", fix="Name each once.")
         elif list(self.needed) != [meaning for meaning in get_args(Meaning) if meaning in self.needed]:

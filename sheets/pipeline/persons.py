@@ -129,18 +129,27 @@ def check_trusted(people: Sequence[Named], trust: Sequence[str]) -> None:
 
 
 def trust_of(site: Site | None, folder: Path) -> tuple[str, ...]:
-    """Certificates that a site trusts, from the files that its site file names, beside it. Raises InputError.
+    """Certificates of the authorities whose signers a site trusts, from the files that its site file names.
 
-    ``folder`` is that of the site file.
+    ``folder`` is that of the site file. Raises InputError for a file that can't be read.
     """
+    return _certificates(site.signatures.trust if site is not None else (), folder, "trust")
+
+
+def time_trust_of(site: Site | None, folder: Path) -> tuple[str, ...]:
+    """The same of the authorities behind its time server."""
+    return _certificates(site.signatures.time_trust if site is not None else (), folder, "time trust")
+
+
+def _certificates(names: Sequence[str], folder: Path, where: str) -> tuple[str, ...]:
     found = []
-    for name in site.signatures.trust if site is not None else ():
+    for name in names:
         try:
             found.append((folder / name).read_text(encoding="ascii"))
         except (OSError, UnicodeDecodeError):
             raise InputError(
                 Problem(
-                    where="site file, signatures, trust",
+                    where=f"site file, signatures, {where}",
                     what=f"The certificate {quoted(name)} can't be read.",
                     fix="Name a PEM file beside the site file.",
                 )

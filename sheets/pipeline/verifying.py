@@ -33,7 +33,7 @@ from sheets.pipeline.codes import CodeReport, code_lines, judge_code
 from sheets.pipeline.computing import steps, task_of
 from sheets.pipeline.describing import check_sources
 from sheets.pipeline.issuing import file_digest
-from sheets.pipeline.persons import trust_of
+from sheets.pipeline.persons import time_trust_of, trust_of
 from sheets.pipeline.printing import Content, printed, whole_content
 from sheets.register.currency import Currency, Standing, currency_of
 from sheets.register.store import open_register
@@ -113,14 +113,15 @@ def verify(
     """
     data = _bytes_of(file)
     site = load_site(site_file).site if site_file is not None else None
-    trust = trust_of(site, site_file.parent) if site_file is not None else ()
+    folder = site_file.parent if site_file is not None else Path()
     held = attachments_in(data)
     issue = issue_in(held)
     currency = _currency(issue, held, data, register_file)
     signatures = _as_named(
         judge_signatures(
             data,
-            trust=trust,
+            trust=trust_of(site, folder),
+            time_trust=time_trust_of(site, folder),
             now=now,
             needed=site.signatures.needed if site else ("prepared", "approved"),
             registered=_registered(currency.currency, data),

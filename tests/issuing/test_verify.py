@@ -27,6 +27,7 @@ from sheets.pages.document import Layout
 from sheets.pipeline import issuing, verifying
 from sheets.pipeline.attaching import CONTENT_NAME, ISSUE_NAME, JOB_NAME, MACHINE_NAME
 from sheets.pipeline.printing import whole_content
+from sheets.seal.signatures import judge_signatures
 from sheets.seal.signatures_report import Cause
 
 NAMES = {"format", "file", "status", "record", "signatures", "content", "currency"}
@@ -133,6 +134,29 @@ def test_a_trust_list_that_cannot_be_read_is_wrong_input(works: Works) -> None:
     pem.unlink()
     with pytest.raises(InputError, match=r"keys/authority\.pem' can't be read"):
         works.verify()
+
+
+def test_time_servers_are_judged_by_their_own_list(works: Works, monkeypatch: pytest.MonkeyPatch) -> None:
+    """What the judging makes of it is tested where it stands; here, that it gets what the site file names."""
+    text = works.site.read_text(encoding="utf-8")
+    server = "  time server: https://time.example\n"
+    works.site.write_text(text + server, encoding="utf-8")
+    with pytest.raises(InputError, match="No authority is trusted for its time"):
+        works.verify()
+    works.site.write_text(text + server + "  time trust: [keys/time.pem]\n", encoding="utf-8")
+    with pytest.raises(InputError, match=r"time trust: The certificate 'keys/time\.pem' can't be read"):
+        works.verify()
+    pem = (works.folder / "keys" / "authority.pem").read_text(encoding="ascii")
+    (works.folder / "keys" / "time.pem").write_text(pem + "\n", encoding="ascii")
+    got: dict[str, object] = {}
+
+    def judge(data: bytes, **given: object) -> object:
+        got.update(given)
+        return judge_signatures(data, **given)  # type: ignore[arg-type]  # handed through
+
+    monkeypatch.setattr(verifying, "judge_signatures", judge)
+    assert words(works.verify()) == ("good", "good", "good")
+    assert (got["trust"], got["time_trust"]) == ((pem,), (pem + "\n",))
 
 
 def test_after_the_end_of_certificates_the_register_still_knows(issued: Works) -> None:
