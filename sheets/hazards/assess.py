@@ -5,7 +5,7 @@ No standard maps a pressure or a power to a signal word. The words here are poli
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from enum import Enum
 from typing import Literal
@@ -18,6 +18,7 @@ from sheets.machine.parts import Cylinder, HydraulicMotor
 from sheets.machine.site import Policies
 from sheets.procedure.answers import TestState
 from sheets.procedure.conditions import Condition
+from sheets.procedure.stages import HEAT_KW
 from sheets.procedure.steps import Procedure, Stage, Step, StepKind
 
 Signal = Literal["DANGER", "WARNING", "CAUTION", "NOTICE"]
@@ -27,15 +28,15 @@ INJECTION_BAR = 7.0
 100 bar (UK HSE, FOD 4-2014)."""
 HARMFUL_V = 60.0
 """Live parts above this are to be discharged after switching off (EN 60204-1, 6.2.4, as reported)."""
-HEAT_KW = 1.0
-"""Policy: power over a relief from which hot oil is warned of."""
 
 
 class HazardKind(Enum):
     """The value names its sentences."""
 
     ELECTRICITY = "electricity"
+    PANEL = "panel"
     RELIEVING = "relieving"
+    SETTLING = "settling"
     START = "start"
     MOVEMENT = "movement"
     INJECTION = "injection"
@@ -59,9 +60,17 @@ class _Facts:
     actuators: tuple[str, ...]
     states: Mapping[str, TestState]
     highest_bar: float
-    """Top of the highest window: what may still be shut in after the drive stops."""
+    """What may be shut in after the drive stops: the highest end of a range, or the rating below it."""
     never_exceed_bar: float
     longest_try_s: float
+
+
+def shut_in_bar(circuit: Circuit) -> float:
+    """Highest pressure that the adjusters allow anywhere, at most the rating there; bar."""
+    return max(
+        (min(site.highest_bar, circuit.nodes[site.controlled_node].rating_bar) for site in circuit.adjusters),
+        default=0.0,
+    )
 
 
 def assess(
@@ -73,55 +82,83 @@ def assess(
         machine=machine,
         actuators=circuit.actuators.ids,
         states=states,
-        highest_bar=max((state.gauge.window.high_bar for state in states.values()), default=0.0),
+        highest_bar=shut_in_bar(circuit),
         never_exceed_bar=min((state.gauge.never_exceed_bar for state in states.values()), default=0.0),
         longest_try_s=policies.longest_try_s,
     )
     found: dict[tuple[int, int], tuple[Hazard, ...]] = {}
     for at, stage in enumerate(procedure.stages):
         warned: set[HazardKind] = set()
+        hot = _heat_kw(procedure.stages, at)
         for place, step in enumerate(stage.steps):
-            new = [hazard for hazard in _of_step(facts, stage, step) if hazard.kind not in warned]
+            new = [hazard for hazard in _of_step(facts, stage, step, hot) if hazard.kind not in warned]
             if new:
                 found[at, place] = tuple(new)
                 warned.update(hazard.kind for hazard in new)
     return found
 
 
-def _of_step(facts: _Facts, stage: Stage, step: Step) -> tuple[Hazard, ...]:
+def _heat_kw(stages: Sequence[Stage], at: int) -> float:
+    """Most that turns to heat over reliefs in a stage, its first moment included."""
+    before = [step.trace for stage in stages[:at] for step in stage.steps if step.trace is not None][-1:]
+    here = [step.trace for step in stages[at].steps if step.trace is not None]
+    return max((trace.relief_kw for trace in (*before, *here)), default=0.0)
+
+
+def _of_step(facts: _Facts, stage: Stage, step: Step, heat_kw: float) -> tuple[Hazard, ...]:
     machine = facts.machine
     match step.kind:
+        case StepKind.ISOLATE | StepKind.RESTORE_SUPPLY:
+            supply = machine.energy[step.subject]
+            if not supply.isolator.inside_panel:
+                return ()
+            volts = Amount(value=supply.voltage_v, quantity="voltage_v")
+            return (Hazard(kind=HazardKind.PANEL, signal="WARNING", data={"voltage": volts}),)
         case StepKind.VERIFY_DEAD:
             voltage_v = machine.energy[step.subject].voltage_v
             if voltage_v <= HARMFUL_V:
                 return ()
             volts = Amount(value=voltage_v, quantity="voltage_v")
             return (Hazard(kind=HazardKind.ELECTRICITY, signal="DANGER", data={"voltage": volts}),)
-        case StepKind.OPEN_VENT | StepKind.WORK_LEVER:
-            data = {"pressure": bar(facts.highest_bar)}
+        case StepKind.OPEN_VENT:
+            data: dict[str, Amount | str] = {"pressure": bar(facts.highest_bar)}
             return (Hazard(kind=HazardKind.RELIEVING, signal="WARNING", data=data),)
+        case StepKind.WORK_LEVER:
+            data = {"pressure": bar(facts.highest_bar), "moves": _all_moves(facts)}
+            return (Hazard(kind=HazardKind.SETTLING, signal="WARNING", data=data),)
         case StepKind.START:
-            moves = ", ".join(_moves(machine, id_) for id_ in facts.actuators)
-            return (
-                Hazard(kind=HazardKind.START, signal="WARNING", data={"drive": step.subject, "moves": moves}),
-            )
+            data = {"drive": step.subject, "moves": _all_moves(facts)}
+            starts = Hazard(kind=HazardKind.START, signal="WARNING", data=data)
+            return (starts, *_under_pressure(facts, step, heat_kw))
     if not stage.powered or step.trace is None or not step.trace.established:
         return ()
     hazards: list[Hazard] = []
     if step.kind in (StepKind.HOLD_VALVE, StepKind.CLOSE_GRADUALLY):
         hazards.extend(_movement(machine, facts.states, stage, step))
     if step.kind in _PRESSURISING:
-        if max(step.trace.pressures_bar) >= INJECTION_BAR:
-            data = {"pressure": bar(facts.never_exceed_bar)}
-            hazards.append(Hazard(kind=HazardKind.INJECTION, signal="WARNING", data=data))
-        if step.trace.relief_kw >= HEAT_KW:
-            hazards.append(_heat(facts, stage))
+        hazards.extend(_under_pressure(facts, step, heat_kw))
     return tuple(hazards)
 
 
-def _heat(facts: _Facts, stage: Stage) -> Hazard:
+def _all_moves(facts: _Facts) -> str:
+    return ", ".join(_moves(facts.machine, id_) for id_ in facts.actuators)
+
+
+def _under_pressure(facts: _Facts, step: Step, heat_kw: float) -> tuple[Hazard, ...]:
+    """Injection, and hot oil where the stage has it."""
+    if step.trace is None or not step.trace.established:
+        return ()
+    hazards = []
+    if max(step.trace.pressures_bar) >= INJECTION_BAR:
+        data = {"pressure": bar(facts.never_exceed_bar)}
+        hazards.append(Hazard(kind=HazardKind.INJECTION, signal="WARNING", data=data))
+    if heat_kw >= HEAT_KW and (step.kind in _PRESSURISING or step.trace.relief_kw >= HEAT_KW):
+        hazards.append(_heat(facts, heat_kw))
+    return tuple(hazards)
+
+
+def _heat(facts: _Facts, heat_kw: float) -> Hazard:
     """Hot oil, with the most that turns to heat in the stage."""
-    heat_kw = max(step.trace.relief_kw for step in stage.steps if step.trace is not None)
     limit_c = facts.machine.fluid.limit_temperature_c
     return Hazard(
         kind=HazardKind.HOT_OIL,

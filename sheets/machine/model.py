@@ -26,6 +26,8 @@ class Isolator(Entry):
     """What to do with it: turn to OFF."""
     lock: Text
     """Where the lock goes."""
+    inside_panel: YesNo = False
+    """Yes where it is behind a door that only a qualified person opens."""
 
 
 class Supply(Entry):

@@ -16,11 +16,12 @@ from sheets.machine.model import Machine
 from sheets.procedure.conditions import OWN_SHARE, Failure, over_rating
 from sheets.procedure.gauges import GaugeChoice, graduation_bar
 from sheets.procedure.steps import Band, Reading, Step, StepKind, Trace
-from sheets.targets.reading import graduations_within
 
 AS_FOUND_SHARE = 0.10
 """Policy: a setting that is out by more than this has a cause to be found before it is adjusted."""
 AS_FOUND_LEAST_BAR = 3.0
+_DUST = 1e-6
+"""Of a graduation: a band that ends on one doesn't take the next."""
 
 
 class Rig:
@@ -114,6 +115,10 @@ class Rig:
             ),
         )
 
+    def relief_kw(self) -> float:
+        """Power that turns to heat over reliefs at present."""
+        return self._trace(self.look()).relief_kw
+
     def _find(self, code: str, severity: Severity, subject: str, data: Mapping[str, Amount | str]) -> None:
         finding = Finding(code=code, severity=severity, subject=subject, data=data)
         if finding not in self.findings:
@@ -127,7 +132,7 @@ class Rig:
         expected_bar = solution.pressures_bar[node]
         governs = window_of or _governor(solution, node)
         low_bar, high_bar = self._band(expected_bar, choice.graduation_bar)
-        if governs in self.unknown:
+        if governs in self.unknown and governs not in self.backed_out:
             high_bar = max(high_bar, self._at_stop(solution, governs, node, choice.graduation_bar))
         band_low_bar, beyond_bar = low_bar, high_bar
         if window_of:
@@ -178,11 +183,8 @@ class Rig:
         With an adjuster backed out, anything from zero up is right: its lowest setting isn't a known figure.
         """
         half_bar = max(AS_FOUND_SHARE * expected_bar, AS_FOUND_LEAST_BAR)
-        low_bar, high_bar, _ = graduations_within(
-            low_bar=expected_bar - half_bar - graduation,
-            high_bar=expected_bar + half_bar + graduation,
-            graduation_bar=graduation,
-        )
+        low_bar = math.floor((expected_bar - half_bar) / graduation + _DUST) * graduation
+        high_bar = math.ceil((expected_bar + half_bar) / graduation - _DUST) * graduation
         return (0.0 if self.backed_out else max(0.0, low_bar)), high_bar
 
 

@@ -9,7 +9,7 @@ from __future__ import annotations
 from dataclasses import replace
 from itertools import permutations
 
-from sheets.amounts import Finding, Severity, bar
+from sheets.amounts import Amount, Finding, Severity, bar
 from sheets.circuit.plant import Adjust, MoveValve, PlantAction, StartDrive, StopDrive
 from sheets.circuit.solver import solve_one
 from sheets.energy.trapped import Trapped, find_trapped
@@ -22,6 +22,8 @@ from sheets.procedure.rig import Rig
 from sheets.procedure.steps import Stage, StageKind, StepKind
 from sheets.procedure.task import TaskKind
 
+HEAT_KW = 1.0
+"""Policy: power over a relief from which oil is spared and warned of."""
 BELOW_SHARE = 0.95
 """How far below its window a setting is brought, as a share of the window's bottom, before it comes up."""
 
@@ -87,7 +89,10 @@ def _isolate(job: Job, rig: Rig, kind: StageKind) -> Stage:
     if not first:
         _put_back(job, rig, [valve for valve in circuit.positions if valve not in vents])
         relieved = {node for relief in trapped.reliefs for node in relief.nodes}
-        _relieve(job, rig, _beyond(find_trapped(machine, circuit, rig.state.positions), relieved))
+        beyond = _beyond(find_trapped(machine, circuit, rig.state.positions), relieved)
+        _relieve(job, rig, beyond)
+        if beyond.reliefs:  # what was verified no longer holds
+            _verify_zero(job, rig, first=first, vented=bool(vents))
         for gauge, test_point in rig.fitted.items():
             rig.say(StepKind.REMOVE_GAUGE, gauge, test_point=test_point)
         _put_back(job, rig, sorted(vents))
@@ -142,7 +147,8 @@ def _put_back(job: Job, rig: Rig, valves: list[str]) -> None:
         rest = job.case.circuit.positions[valve][0]
         if isinstance(job.case.machine.parts[valve], HandValve) and rig.state.positions[valve] != rest:
             move = MoveValve(valve=valve, position=rest)
-            rig.do(StepKind.SET_VALVE, valve, move, data={"position": rest, "back": "yes"})
+            data = {"position": rest, "back": "yes", "unlock": _lock(job, valve)}
+            rig.do(StepKind.SET_VALVE, valve, move, data=data)
 
 
 def _deadhead(job: Job, rig: Rig) -> Stage:
@@ -164,8 +170,14 @@ def _deadhead(job: Job, rig: Rig) -> Stage:
         reason = reasons.get(valve) if valve in wanted else None
         reason = reason or _otherwise(job, valve, position)
         if rig.state.positions[valve] != position or valve in wanted:
-            vent = "yes" if valve not in wanted else ""
-            data = {"position": position, "back": "", "vent": vent}
+            lines_up = valve in wanted
+            data = {
+                "position": position,
+                "back": "",
+                "vent": "" if lines_up else "yes",
+                "lock": _lock(job, valve) if lines_up else "",
+                "unlock": "" if lines_up else _lock(job, valve),
+            }
             move = MoveValve(valve=valve, position=position)
             rig.do(StepKind.SET_VALVE, valve, move, reason=reason, data=data)
         elif reason is not None:
@@ -173,6 +185,12 @@ def _deadhead(job: Job, rig: Rig) -> Stage:
     for adjuster in job.limits_unknown:
         _back_out(job, rig, adjuster)
     return Stage(kind=StageKind.DEADHEAD, powered=not job.locked, adjuster="", steps=rig.take_steps())
+
+
+def _lock(job: Job, valve: str) -> str:
+    """``yes`` where a valve takes a lock and the job has locks."""
+    part = job.case.machine.parts[valve]
+    return "yes" if job.locked and isinstance(part, HandValve) and part.lockable else ""
 
 
 def _back_out(job: Job, rig: Rig, adjuster: str) -> None:
@@ -337,8 +355,9 @@ def _set(job: Job, rig: Rig, adjuster: str, *, first: bool) -> Stage:
             StepKind.TURN_BELOW,
             adjuster,
             Adjust(adjuster=adjuster, setting_bar=below_bar),
-            data={"held_by": governor if governor != adjuster else ""},
+            data=_held(job, rig, adjuster, governor),
         )
+    from_out = "yes" if adjuster in rig.backed_out else ""
     rig.backed_out.discard(adjuster)
     rig.unknown.discard(adjuster)
     rig.do(
@@ -346,11 +365,23 @@ def _set(job: Job, rig: Rig, adjuster: str, *, first: bool) -> Stage:
         adjuster,
         Adjust(adjuster=adjuster, setting_bar=setting.target_bar),
         window_of=adjuster,
+        data={"from_out": from_out},
     )
     rig.do(StepKind.LOCK_NUT, adjuster, window_of=adjuster)
     rig.do(StepKind.READ_AGAIN, adjuster, window_of=adjuster)
     _leave(job, rig, state)
+    if rig.relief_kw() >= HEAT_KW:
+        _stop(job, rig)  # nothing else takes the pump off the relief
     return Stage(kind=StageKind.SET, powered=True, adjuster=adjuster, steps=rig.take_steps())
+
+
+def _held(job: Job, rig: Rig, adjuster: str, governor: str) -> dict[str, Amount | str]:
+    """Who holds the gauge still while a screw is turned out, and after how much it must fall."""
+    if governor == adjuster:
+        return {"held_by": ""}
+    node = job.case.site(adjuster).controlled_node
+    ahead_bar = max(0.0, rig.state.settings_bar[adjuster] - rig.state.pressures_bar[node])
+    return {"held_by": governor, "ahead": bar(ahead_bar)}
 
 
 def _raise(
@@ -399,6 +430,10 @@ def _return(job: Job, rig: Rig) -> Stage:
         _stop(job, rig)
         _put_back(job, rig, list(job.case.circuit.positions))
     rig.say(StepKind.INSPECT)
+    for valve, positions in job.case.circuit.positions.items():
+        reason = _otherwise(job, valve, positions[0])
+        if reason is not None:
+            rig.do(StepKind.CHECK_VALVE, valve, reason=reason, data={"position": positions[0]})
     rig.say(StepKind.CLEAR_PEOPLE)
     if job.locked:
         rig.say(StepKind.REMOVE_LOCKS)

@@ -53,11 +53,15 @@ class Figures:
         digits = number(amount.value, decimals=decimals)
         return f"{digits} {unit}" if unit else digits
 
-    def pressure(self, value_bar: float) -> str:
-        """A pressure in the first unit, without regard to a gauge."""
+    def pressure(self, value_bar: float, *, up: bool = False) -> str:
+        """A pressure in the first unit, without regard to a gauge; ``up``: never less than it is."""
         decimals = _PRESSURE_DECIMALS[self.pressure_unit]
         if abs(value_bar) < _SMALL_PRESSURE_BAR and self.pressure_unit != "psi":
             decimals += 1
+        if up:
+            scale = 10.0**decimals
+            top = math.ceil(to_unit(value_bar, self.pressure_unit) * scale - _DUST) / scale
+            value_bar = from_unit(top, self.pressure_unit)
         return shown(value_bar, self.pressure_unit, decimals=decimals)
 
     def flow(self, value_lpm: float) -> str:

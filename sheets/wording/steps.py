@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass
 
@@ -95,10 +96,29 @@ class Speaker:
         return self._names.say(raises if raising else other[raises])
 
     @property
+    def held_valve(self) -> str:
+        """The lever valve that somebody has to hold in a test state; empty where none is."""
+        for state in self.found.values():
+            for change in state.changes:
+                part = self.machine.parts.get(change.valve) if isinstance(change, MoveValve) else None
+                if isinstance(part, DirectionalValve) and part.operated_by == "lever":
+                    return change.valve if isinstance(change, MoveValve) else ""
+        return ""
+
+    @property
     def stop(self) -> str:
-        """The stop that a second person stays at: the first emergency stop, else the first stop."""
+        """The stop a second person stays at: within reach of a lever that is held, else the first."""
         places = self.machine.controls.emergency_stop or self.machine.controls.stop
-        return places[0].name
+        held = self.held_valve
+        where = self.machine.parts[held].where if held else ""
+        return next((place.name for place in places if place.where == where), places[0].name)
+
+    @property
+    def stop_at_lever(self) -> bool:
+        """Whether one person can hold the lever and reach the stop."""
+        held = self.held_valve
+        places = self.machine.controls.emergency_stop or self.machine.controls.stop
+        return bool(held) and any(place.where == self.machine.parts[held].where for place in places)
 
     # Steps
 
@@ -115,7 +135,8 @@ class Speaker:
         )
 
     def warning(self, hazard: Hazard) -> SpokenWarning:
-        values = {key: self.figures.amount(value) for key, value in hazard.data.items()} | {"stop": self.stop}
+        values = {key: self.figures.amount(value) for key, value in hazard.data.items()}
+        values |= {"stop": self.stop, "high": self.oil_window()[1]}
         return SpokenWarning(
             signal=hazard.signal,
             hazard=capital(self._hazards.say(f"{hazard.kind.value}_hazard", **values)),
@@ -149,13 +170,16 @@ class Speaker:
         """Everything that a sentence may want to name."""
         machine, data = self.machine, step.data
         values = {key: self.figures.amount(value) for key, value in data.items()}
+        hides = data.get("hides")
+        if isinstance(hides, Amount):
+            values["hides"] = self.figures.pressure(hides.value, up=True)
         gauge = step.reading.gauge if step.reading else ""
         values |= {"subject": step.subject, "stop": self.stop, "gauge": gauge}
         part = machine.parts.get(step.subject)
         if part is not None:
             values |= {"label": self.part(step.subject), "where": part.where}
         if isinstance(part, HandValve):
-            values["lockable"] = "yes" if part.lockable else ""
+            values["lockable"] = "yes" if part.lockable and part.rest == "closed" else ""
         if isinstance(part, DirectionalValve):
             values["solenoid"] = self._solenoid(step.subject, part)
         if isinstance(part, ElectricMotor):
@@ -226,6 +250,13 @@ class Speaker:
         text = [self.figures.amount(Amount(value=value, quantity="temperature_c")) for value in (low, high)]
         return text[0], text[1]
 
+    def _turns_of(self, adjuster: str, change: Amount | str | None) -> str:
+        """Turns that a change takes, up to the next eighth and one eighth more; empty if nobody knows."""
+        per_turn_bar = self.screws[adjuster].adjuster.per_turn_bar
+        if per_turn_bar is None or not isinstance(change, Amount):
+            return ""
+        return number((math.ceil(8.0 * change.value / per_turn_bar) + 1) / 8.0, decimals=2)
+
     def _turns(self, step: Step) -> str:
         """Turns that bring an adjuster from where it stands to just ahead, in eighths."""
         per_turn_bar, change = self.screws[step.subject].adjuster.per_turn_bar, step.data["change"]
@@ -265,6 +296,7 @@ class Speaker:
             case StepKind.BACK_OUT | StepKind.RUN_IN:
                 direction = self.turning(step.subject, raising=step.kind is StepKind.RUN_IN)
                 lines.append(say("out_line", direction=direction, key=values["key"]))
+                lines.append(say("loosen") if values["tool"] else "")
             case StepKind.RUN_AHEAD:
                 direction = self.turning(step.subject, raising=True)
                 lines.append(say("out_line", direction=direction, key=values["key"]))
@@ -272,11 +304,13 @@ class Speaker:
                 lines.append(say("ahead_line", setting=values["setting"], of=of))
             case StepKind.TURN_BELOW:
                 direction = self.turning(step.subject, raising=False)
-                lines.append(f"{direction}, {values['key']}.")
+                loosen = f" {say('loosen')}" if values["tool"] else ""
+                lines.append(f"{direction}, {values['key']}.{loosen}")
                 holder = str(step.data["held_by"])
                 if holder:
                     held_by = self.adjuster(holder)
-                    lines.append(say("held_at_first", gauge=values["gauge"], held_by=held_by))
+                    turns = self._turns_of(step.subject, step.data.get("ahead"))
+                    lines.append(say("held_at_first", gauge=values["gauge"], held_by=held_by, turns=turns))
                 else:
                     lines.append(say("wrong_screw", gauge=values["gauge"]))
             case StepKind.COME_UP:
@@ -302,8 +336,16 @@ class Speaker:
     def _come_up(self, stage: Stage, step: Step, values: Mapping[str, str]) -> list[str]:
         direction = self.turning(step.subject, raising=True)
         lines = [self._lines.say("come_up_line", direction=direction, key=values["key"])]
-        if not any(other.kind is StepKind.TURN_BELOW for other in stage.steps):
+        if step.data.get("from_out"):
+            lines.append(self._lines.say("from_out", gauge=values["gauge"]))
+        elif not any(other.kind is StepKind.TURN_BELOW for other in stage.steps):
             lines.append(self._lines.say("wrong_screw", gauge=values["gauge"]))
+        per_turn_bar = self.screws[step.subject].adjuster.per_turn_bar
+        if (
+            per_turn_bar is not None
+            and per_turn_bar / 4.0 > self.found[step.subject].gauge.window.half_width_bar
+        ):
+            lines.append(self._lines.say("eighths", change=self.figures.pressure(per_turn_bar / 4.0)))
         return lines
 
     def _expected(self, stage: Stage, step: Step, values: Mapping[str, str]) -> list[str]:
@@ -337,7 +379,7 @@ class Speaker:
             case StepKind.LET_GO:
                 label, position = values["label"], values["position"]
                 lines.append(say("returns_to", label=capital(label), position=position))
-                lines.append(shows)
+                lines.append(f"{shows} {say('above', stop=self.stop)}")
             case StepKind.LOCK_NUT | StepKind.TURN_BELOW:
                 pass
             case _:

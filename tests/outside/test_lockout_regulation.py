@@ -33,6 +33,10 @@ WORK_IN_BETWEEN = {StepKind.FIT_GAUGE, StepKind.REMOVE_GAUGE, StepKind.SET_VALVE
 LOCKED = (StageKind.ISOLATE, StageKind.LOCK_AGAIN)
 
 
+UNDER_LOCK = {StepKind.REMOVE_GAUGE, StepKind.SET_VALVE}
+RELIEVING = {StepKind.OPEN_VENT, StepKind.WORK_LEVER}
+
+
 def locked_stages(matter: Matter) -> list[Stage]:
     return [stage for stage in matter.procedure.stages if stage.kind in LOCKED]
 
@@ -42,10 +46,21 @@ def test_lockout_follows_the_paragraphs(any_sample: Matter) -> None:
     for stage in locked_stages(any_sample):
         kinds = [step.kind for step in stage.steps]
         assert set(kinds) <= {*PARAGRAPHS, *WORK_IN_BETWEEN}
-        paragraphs = [PARAGRAPHS[kind] for kind in kinds if kind in PARAGRAPHS]
+        begins = next((at for at, kind in enumerate(kinds) if kind in UNDER_LOCK), len(kinds))
+        paragraphs = [PARAGRAPHS[kind] for kind in kinds[:begins] if kind in PARAGRAPHS]
         assert paragraphs == sorted(paragraphs)
         assert set(paragraphs) >= {"(d)(2)", "(d)(3)", "(d)(5)", "(d)(6)"}
     assert any_sample.procedure.stages[0].steps[0].kind is StepKind.TELL_BEFORE
+
+
+def test_verified_once_more_after_each_relieving_before_a_gauge_comes_off(any_sample: Matter) -> None:
+    """(d)(5)(ii): where energy can build up again, verifying goes on until the work is done. From memory."""
+    again = next(one for one in locked_stages(any_sample) if one.kind is StageKind.LOCK_AGAIN)
+    kinds = [step.kind for step in again.steps]
+    relieved = max(at for at, kind in enumerate(kinds) if kind in RELIEVING)
+    off = kinds.index(StepKind.REMOVE_GAUGE)
+    gauges = {step.subject for step in again.steps if step.kind is StepKind.REMOVE_GAUGE}
+    assert {step.subject for step in again.steps[relieved:off] if step.kind is StepKind.VERIFY_ZERO} == gauges
 
 
 def lockout_sections(matter: Matter) -> list[Section]:
@@ -69,6 +84,16 @@ def test_lockout_sheets_have_the_acts_in_order_with_a_lock_for_each_supply(any_s
         isolating = acts[1]
         assert len(isolating.rows) == len(any_sample.machine.energy)
         assert all("lock" in row.boxes[0].label for row in isolating.rows)
+
+
+def test_lockout_sheets_hold_every_step_of_their_stage_once_and_in_order(any_sample: Matter) -> None:
+    sections = [section for section in lockout_sections(any_sample) if acts_of(section)]
+    answers = {any_sample.text("not_relieved"), any_sample.text("relieve_none")}
+    for stage, section in zip(locked_stages(any_sample), sections, strict=True):
+        printed = [row.order for act in acts_of(section) if act.name != "Block" for row in act.rows]
+        assert [order for order in printed if order not in answers] == [
+            step.order for step in any_sample.spoken(stage)
+        ]
 
 
 def test_each_source_has_a_magnitude_and_a_verification(any_sample: Matter) -> None:
@@ -156,7 +181,7 @@ def test_energy_control_is_applied_again_after_the_window(any_sample: Matter) ->
 def test_return_to_service(any_sample: Matter) -> None:
     """(e)(1) area inspected, (e)(2)(i) people clear, (e)(3) locks off, (e)(2)(ii) people told, then power."""
     last = any_sample.procedure.stages[-1]
-    kinds = [step.kind for step in last.steps]
+    kinds = [step.kind for step in last.steps if step.kind is not StepKind.CHECK_VALVE]  # of the inspection
     assert kinds[:5] == [
         StepKind.INSPECT,
         StepKind.CLEAR_PEOPLE,

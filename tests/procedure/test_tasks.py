@@ -138,22 +138,22 @@ def first(matter: Matter, kind: StepKind, adjuster: str) -> Step:
 def test_bands_hold_an_unknown_screw_up_to_its_stop(changed: Changed) -> None:
     mixer = job(changed, "clay_mixer", TaskKind.COMMISSION)
     # Nobody knows the load-sensing control: its stop is 34 bar, on G1's divisions of 2 bar upward 36 (the
-    # model reads 34.001). RV1 ends at 230 bar, which reads some 230.2 at full flow: 232.
+    # model reads 34.001). RV1, backed out, reads 50 bar and some more at full flow, 10 % more at most: 56.
     standby = first(mixer, StepKind.START, "RV1").reading
     held = first(mixer, StepKind.HOLD_VALVE, "RV1").reading
     assert standby is not None
     assert held is not None
     assert (standby.adjuster, standby.low_bar, standby.high_bar) == ("PU1.load sensing", 0.0, 36.0)
-    assert (held.adjuster, held.low_bar, held.high_bar) == ("RV1", 0.0, 232.0)
-    # The pusher's relief, backed out, may stand anywhere up to 210 bar, read 210.2: 212. In 'set' it is out
-    # by 10 % at most: 198.3, and a division: 200.
+    assert (held.adjuster, held.low_bar, held.high_bar) == ("RV1", 0.0, 56.0)
+    # The pusher's relief, backed out, reads 30 bar and some more, 3 bar more at most: 34. In 'set' it is out
+    # by 10 % at most, 198.3: 200.
     pusher = job(changed, "kiln_pusher", TaskKind.COMMISSION)
     known = job(changed, "kiln_pusher", TaskKind.SET)
     closing = first(pusher, StepKind.CLOSE_GRADUALLY, "RV1").reading
     sure = first(known, StepKind.CLOSE_GRADUALLY, "RV1").reading
     assert closing is not None
     assert sure is not None
-    assert (closing.low_bar, closing.high_bar) == (0.0, 212.0)
+    assert (closing.low_bar, closing.high_bar) == (0.0, 34.0)
     assert sure.high_bar == 200.0
 
 

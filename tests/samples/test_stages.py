@@ -196,7 +196,9 @@ def test_what_hides_a_setting_is_moved_away_without_power_and_after_backing_out(
         assert run_in == raised  # each once, and never in a stage that needs none
         if not raised:
             continue
-        (stop,), (out,) = places(stage, StepKind.PRESS_STOP), places(stage, StepKind.BACK_OUT)
+        # One stop more ends the stage where the setting leaves a pump over a relief.
+        stop, *_ = places(stage, StepKind.PRESS_STOP)
+        (out,) = places(stage, StepKind.BACK_OUT)
         (start,) = places(stage, StepKind.START)
         assert stage.steps[out].subject == stage.adjuster
         assert stop < out < min(places(stage, StepKind.RUN_IN))

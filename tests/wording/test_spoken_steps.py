@@ -20,8 +20,8 @@ IMPERATIVE = frozenset(
     for word in line.split()
 )
 STATEMENTS = ("Nothing starts.", "It shows 0.", "Guards are on, caps are on, nothing leaks.")
-"""What is seen after an order, and the rule that each takes off their own lock."""
-OWN_LOCK = "Each person takes off their own lock."
+"""What is seen after an order, and the rule that each takes their own lock off."""
+OWN_LOCK = "Each person takes their own lock off the isolators."
 
 
 def spoken(matter: Matter) -> Iterator[SpokenStep]:
@@ -46,7 +46,7 @@ def test_orders_are_short(any_sample: Matter) -> None:
 def test_orders_are_imperative(any_sample: Matter) -> None:
     for step in spoken(any_sample):
         for sentence in sentences(step.order):
-            if sentence in (*STATEMENTS, OWN_LOCK):
+            if sentence in (*STATEMENTS, OWN_LOCK) or sentence.startswith("It is "):
                 continue
             order = sentence.split(": ", 1)[-1]  # 'Q7 MAIN: turn to OFF', 'As found 26 to 28 bar: leave …'
             first = re.split(r"\W", order.strip())[0].lower()

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 
 from sheets.amounts import Finding
@@ -24,6 +25,9 @@ from sheets.wording.findings import say_finding, say_not_in_use
 
 _MOST_PEOPLE = 4
 """So many names have room; the walk-down file holds all."""
+
+_UNBROKEN = re.compile(r"(?<=\d) (?=[A-Za-z])|(?<= N) (?=m\b)")
+"""Spaces inside a figure with its unit."""
 
 
 def cover(matter: Matter, job: Sequence[Section]) -> Section:
@@ -48,8 +52,8 @@ def cover(matter: Matter, job: Sequence[Section]) -> Section:
         blocks += [Paragraph(text=" ".join(say_finding(matter.speaker, finding))) for finding in warnings]
     return Section(
         kind=SheetKind.COVER,
-        bookmark=matter.text("cover_title"),
-        title=matter.text("cover_title"),
+        bookmark=matter.text("cover_title", sets=_sets(matter)),
+        title=matter.text("cover_title", sets=_sets(matter)),
         subject=machine.tag,
         lines=(
             matter.text("cover_line", name=machine.name, area=machine.area),
@@ -63,6 +67,10 @@ def cover(matter: Matter, job: Sequence[Section]) -> Section:
         banner=None,
         blocks=tuple(blocks),
     )
+
+
+def _sets(matter: Matter) -> str:
+    return "yes" if matter.sets else ""
 
 
 def _settings(matter: Matter) -> Table:
@@ -81,7 +89,7 @@ def _settings(matter: Matter) -> Table:
             )
         )
     return Table(
-        title=matter.text("settings_title"),
+        title=matter.text("settings_title", sets=_sets(matter)),
         head=("", "adjuster", matter.text("target"), matter.text("accept"), "", "gauge"),
         rows=tuple(rows),
         shares=(0.05, 0.32, 0.14, 0.18, 0.13, 0.18),
@@ -154,8 +162,16 @@ def _needs(matter: Matter) -> tuple[tuple[str, str], ...]:
         for id_ in gauges
     )
     return (
-        ("Crew", matter.text("crew", stop=speaker.stop)),
-        ("Tools", "; ".join(tools)),
+        (
+            "Crew",
+            matter.text(
+                "crew",
+                stop=speaker.stop,
+                held=speaker.held_valve,
+                near="yes" if speaker.stop_at_lever else "",
+            ),
+        ),
+        ("Tools", _UNBROKEN.sub("\N{NO-BREAK SPACE}", "; ".join(tools))),
         ("Gauges", shown),
         ("Oil", f"{machine.fluid.kind} {machine.fluid.grade}, {low} to {high}"),
     )

@@ -114,7 +114,12 @@ def _before(matter: Matter, stage: Stage, numbers: Numbering) -> Section:
         number=numbers.next(), order=matter.text("do_lockout"), lines=(matter.text("do_lockout_line"),)
     )
     rows = (first, *_rows(matter, matter.spoken(stage), numbers))
-    return _section(matter, "before", _locked(matter), (Steps(steps=rows),))
+    hold = Hold(
+        word=matter.text("hold_word"),
+        order=matter.text("before_hold"),
+        reason=matter.text("before_hold_reason"),
+    )
+    return _section(matter, "before", _locked(matter), (Steps(steps=rows), hold))
 
 
 def _rows(matter: Matter, spoken: Sequence[SpokenStep], numbers: Numbering) -> tuple[Step, ...]:
@@ -159,14 +164,21 @@ def _people(matter: Matter) -> Table:
     return Table(
         title=matter.text("window_people_title"),
         head=("place", "name", "from", "to"),
-        rows=(
-            (matter.text("role_screw"), "", "", ""),
-            (matter.text("role_stop", stop=matter.speaker.stop), "", "", ""),
-        ),
+        rows=tuple((place, "", "", "") for place in _places(matter)),
         shares=(0.30, 0.40, 0.15, 0.15),
         row_height_mm=8.0,
         signed=True,
     )
+
+
+def _places(matter: Matter) -> tuple[str, ...]:
+    """Where the persons of a window stand: a lever that is held has somebody of its own."""
+    held, stop = matter.speaker.held_valve, matter.speaker.stop
+    screw = matter.text("role_screw")
+    if matter.speaker.stop_at_lever:
+        return screw, matter.text("role_lever_stop", held=held, stop=stop)
+    watching = matter.text("role_stop", stop=stop)
+    return (screw, matter.text("role_lever", held=held), watching) if held else (screw, watching)
 
 
 def _groups(matter: Matter, spoken: Sequence[SpokenStep], numbers: Numbering, box: str) -> Iterator[Steps]:
@@ -206,6 +218,8 @@ def _boxes(matter: Matter, spoken: SpokenStep) -> tuple[Box, ...] | None:
     match spoken.step.kind:
         case StepKind.WARM_OIL:
             return (Box(label=matter.text("box_oil"), unit="°C", size="short"),)
+        case StepKind.SET_VALVE if spoken.step.data.get("lock"):
+            return (Box(label=matter.text("box_lock"), size="short"),)
         case StepKind.BACK_OUT | StepKind.RUN_IN | StepKind.RUN_AHEAD:
             return (Box(label=matter.text("box_turns"), size="short"),)
         case _:

@@ -2,7 +2,11 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from itertools import groupby
+
 from sheets.amounts import Amount, bar
+from sheets.hazards.assess import shut_in_bar
 from sheets.machine.parts import Cylinder, HydraulicMotor
 from sheets.pages.compose.common import first_aid
 from sheets.pages.compose.matter import Matter, page_step
@@ -22,19 +26,24 @@ from sheets.pages.document import (
 from sheets.procedure.steps import Stage, StageKind, StepKind
 from sheets.wording.steps import SpokenStep, capital
 
-_ACTS: tuple[tuple[str, frozenset[StepKind]], ...] = (
-    ("stop", frozenset({StepKind.TELL_BEFORE, StepKind.PRESS_STOP})),
-    ("isolate", frozenset({StepKind.ISOLATE})),
-    ("block", frozenset()),
-    ("relieve", frozenset({StepKind.OPEN_VENT, StepKind.WORK_LEVER})),
-    (
-        "verify",
-        frozenset({StepKind.ATTEMPT_START, StepKind.VERIFY_DEAD, StepKind.FIT_GAUGE, StepKind.VERIFY_ZERO}),
-    ),
-    ("restore", frozenset({StepKind.SET_VALVE, StepKind.REMOVE_GAUGE})),
-)
-"""The regulation's order (29 CFR 1910.147(d)(2) to (d)(6)): stop, isolate with locks, relieve, verify. A load
-is blocked before its line is relieved. What is put back afterwards stands last."""
+_ACTS: dict[StepKind, str] = {
+    StepKind.TELL_BEFORE: "stop",
+    StepKind.PRESS_STOP: "stop",
+    StepKind.ISOLATE: "isolate",
+    StepKind.OPEN_VENT: "relieve",
+    StepKind.WORK_LEVER: "relieve",
+    StepKind.ATTEMPT_START: "verify",
+    StepKind.VERIFY_DEAD: "verify",
+    StepKind.FIT_GAUGE: "verify",
+    StepKind.VERIFY_ZERO: "verify",
+    StepKind.SET_VALVE: "restore",
+    StepKind.REMOVE_GAUGE: "restore",
+}
+"""The act that a step belongs to. The stage's own order stands, so a line that is relieved once more after
+valves went back is an act of its own there."""
+_BEFORE_VERIFYING = ("stop", "isolate", "block", "relieve")
+"""The regulation's order (29 CFR 1910.147(d)(2) to (d)(6)): stop, isolate with locks, relieve, then verify. A
+load is blocked before its line is relieved."""
 
 
 def lockout(matter: Matter, stage: Stage) -> Section:
@@ -43,17 +52,10 @@ def lockout(matter: Matter, stage: Stage) -> Section:
     name = "lockout_again" if again else "lockout"
     spoken = matter.spoken(stage)
     acts: list[Block] = []
-    for act, kinds in _ACTS:
-        rows = tuple(_row(step) for step in spoken if step.step.kind in kinds)
-        if act == "block":
-            rows = _blocking(matter)
-        if act == "relieve" and not rows:
-            rows = (Step(number="", order=matter.text("relieve_none"), boxes=(_tick(),)),)
-        if act == "restore" and rows:
+    for number, (act, rows) in enumerate(_acts(matter, spoken), start=1):
+        if act == "restore" and not any(isinstance(block, Hold) for block in acts):
             acts.append(_hold(matter, again=again))
-        if rows:
-            number = sum(isinstance(block, Act) for block in acts) + 1
-            acts.append(Act(number=str(number), name=matter.text(f"act_{act}"), rows=rows))
+        acts.append(Act(number=str(number), name=matter.text(f"act_{act}"), rows=rows))
     if not any(isinstance(block, Hold) for block in acts):
         acts.append(_hold(matter, again=again))
     blocks: list[Block] = [
@@ -82,13 +84,43 @@ def energies(matter: Matter) -> Section:
         title=matter.text("energies_title"),
         subject=matter.machine.tag,
         lines=(matter.text("energies_line"),),
-        banner=Banner(state=PowerState.LOCKED, word=matter.text("locked_word")),
+        banner=None,
         blocks=(
             Paragraph(text=matter.text("lockout_first"), weight="strong"),
             _sources(matter),
             _trapped(matter),
         ),
     )
+
+
+def _acts(matter: Matter, spoken: Sequence[SpokenStep]) -> list[tuple[str, tuple[Step, ...]]]:
+    """Acts in the order in which the simulation did them; a new one wherever that order changes."""
+    runs = [(act, tuple(_row(step) for step in run)) for act, run in groupby(spoken, _act)]
+    verified = next((at for at, (act, _) in enumerate(runs) if act == "verify"), len(runs))
+    before: dict[str, tuple[Step, ...]] = {"block": _blocking(matter)}
+    for act, rows in runs[:verified]:
+        before[act] = (*before.get(act, ()), *rows)
+    before["relieve"] = (*before.get("relieve", _nothing(matter)), *_not_relieved(matter))
+    return [*((act, before.pop(act)) for act in _BEFORE_VERIFYING if act in before), *runs[verified:]]
+
+
+def _act(spoken: SpokenStep) -> str:
+    return _ACTS[spoken.step.kind]
+
+
+def _nothing(matter: Matter) -> tuple[Step, ...]:
+    if matter.procedure.trapped.without_relief:
+        return ()
+    return (Step(number="", order=matter.text("relieve_none"), boxes=(_tick(),)),)
+
+
+def _not_relieved(matter: Matter) -> tuple[Step, ...]:
+    """Lines that nothing on the machine relieves: the act says so where it is read."""
+    names = [matter.circuit.nodes[volume.node].name for volume in matter.procedure.trapped.without_relief]
+    if not names:
+        return ()
+    order = matter.text("not_relieved")
+    return (Step(number="", order=order, lines=(f"{capital('; '.join(names))}.",), boxes=(_tick(),)),)
 
 
 def _tick() -> Box:
@@ -170,20 +202,14 @@ def _people(matter: Matter) -> Table:
 
 
 def _trapped(matter: Matter) -> Table:
-    """Every line that can hold pressure, how it is relieved, and where that is verified."""
-    found = matter.procedure.search.found().values()
-    highest = {
-        site.controlled_node: max(
-            (
-                state.gauge.window.high_bar
-                for state in found
-                if _node(matter, state.adjuster) == site.controlled_node
-            ),
-            default=0.0,
-        )
-        for site in matter.circuit.adjusters
+    """Every line that can hold pressure, how it is relieved, and where this job verifies that."""
+    top_bar = shut_in_bar(matter.circuit)
+    read = {
+        str(step.data["test_point"])
+        for stage in matter.procedure.stages
+        for step in stage.steps
+        if step.kind is StepKind.VERIFY_ZERO
     }
-    top_bar = max(highest.values(), default=0.0)
     rows = []
     for volume in matter.procedure.trapped.volumes:
         node = matter.circuit.nodes[volume.node]
@@ -199,7 +225,8 @@ def _trapped(matter: Matter) -> Table:
                 node.name,
                 matter.figures.amount(bar(most_bar)),
                 how,
-                ", ".join(volume.test_points) or matter.text("no_test_point"),
+                ", ".join(point for point in volume.test_points if point in read)
+                or matter.text("not_verified"),
             )
         )
     return Table(
@@ -209,10 +236,6 @@ def _trapped(matter: Matter) -> Table:
         rows=tuple(rows),
         shares=(0.32, 0.14, 0.34, 0.20),
     )
-
-
-def _node(matter: Matter, adjuster: str) -> int:
-    return next(site.controlled_node for site in matter.circuit.adjusters if site.id == adjuster)
 
 
 def _sources(matter: Matter) -> Table:

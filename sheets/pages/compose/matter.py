@@ -13,6 +13,7 @@ from sheets.machine.site import Site
 from sheets.machine.walking import WalkdownState
 from sheets.pages.document import Box, Step, Warning
 from sheets.procedure.steps import Procedure, Stage
+from sheets.procedure.task import TaskKind
 from sheets.targets.settings import Targets
 from sheets.trial.replay import Replay
 from sheets.wording.figures import Figures
@@ -40,6 +41,11 @@ class Matter:
     @property
     def figures(self) -> Figures:
         return self.speaker.figures
+
+    @property
+    def sets(self) -> bool:
+        """Whether the job sets anything; one that only reads has nothing to hang a tag for."""
+        return self.procedure.task.kind is not TaskKind.READ
 
     def text(self, sentence: str, /, **values: str) -> str:
         """A fixed text."""

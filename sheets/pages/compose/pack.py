@@ -41,5 +41,6 @@ def _sections(matter: Matter) -> Iterator[Section]:
     yield energies(matter)
     yield from job
     yield record(matter)
-    yield tags(matter)
+    if matter.sets:
+        yield tags(matter)
     yield engineer(matter)
