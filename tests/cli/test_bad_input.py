@@ -197,8 +197,8 @@ def test_wrong_option(
 @pytest.mark.parametrize(
     ("output", "words"),
     [
-        ("nowhere/pack.pdf", ("can't be written", "folder that exists")),
-        ("machine.yaml/pack.pdf", ("can't be written", "folder that exists")),
+        ("nowhere/pack.pdf", ("folder isn't there", "folder that exists")),
+        ("machine.yaml/pack.pdf", ("folder isn't there", "folder that exists")),
         (".", ("isn't a PDF", "-o")),
         ("machine.yaml", ("isn't a PDF", "nothing was overwritten")),
     ],

@@ -52,11 +52,12 @@ def signer(
 def signers_with_one_key(*people: str) -> list[Signer]:
     """Certificates for several names over one key, as a careless authority might issue."""
     private = ec.generate_private_key(ec.SECP256R1())
+    issuer = authority(WORKS)[1]  # kept, so made before its key would be the shared one
     found = []
     with pytest.MonkeyPatch.context() as patch:
         patch.setattr(keys, "_new_key", lambda _: private)
         for person in people:
-            made = make_signer(authority(WORKS)[1], person, validity=YEARS, serial=9, passphrase=PASSPHRASE)
+            made = make_signer(issuer, person, validity=YEARS, serial=9, passphrase=PASSPHRASE)
             found.append(open_signer(made.p12, PASSPHRASE, when=SIGNED_AT))
     return found
 

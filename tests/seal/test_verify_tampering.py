@@ -467,9 +467,10 @@ def test_another_certificate_over_the_same_key() -> None:
 
 def test_short_keys_are_not_established(monkeypatch: pytest.MonkeyPatch) -> None:
     weak = rsa.generate_private_key(public_exponent=65537, key_size=1024)
+    issuer = authority(WORKS)[1]  # kept for other tests, so made before its key would be the weak one
     monkeypatch.setattr(keys, "_new_key", lambda _: weak)
     made = keys.make_signer(
-        authority(WORKS)[1],
+        issuer,
         "Weak Six",
         validity=keys.Validity(start=SIGNED_AT, end=SIGNED_AT + timedelta(days=9)),
         serial=4,
