@@ -36,7 +36,7 @@ from sheets.pages.look import PAPERS
 COMMANDS = dict(cli.main.commands)
 VERBS = sorted(COMMANDS)
 ISSUING = {command.name for command in issuing.COMMANDS}
-"""Their examples stand on a demonstration site: test_issuing.py runs them."""
+"""Their examples stand on a demonstration site: test_issuing_commands.py runs them."""
 
 
 def readme(root: Path) -> str:
