@@ -66,9 +66,9 @@ class Control(Entry):
 class Controls(Entry):
     """Where the machine is started and stopped."""
 
-    start: tuple[Control, ...]
+    start: Annotated[tuple[Control, ...], Field(min_length=1)]
     """Places from which it can be started."""
-    stop: tuple[Control, ...]
+    stop: Annotated[tuple[Control, ...], Field(min_length=1)]
     """Places from which it is stopped in normal service."""
     emergency_stop: tuple[Control, ...]
     """Emergency stops."""

@@ -165,7 +165,7 @@ def _too_much_through(case: Case, candidate: Candidate, target: Solution) -> Fai
 
 
 def moved_by_fault(case: Case, state: PlantState, sound: Solution | None = None) -> Failure | None:
-    """What moves when one spool sticks or leaks, or one coil is dead.
+    """What moves, or passes a rating, when one spool sticks or leaks, or one coil is dead.
 
     ``sound`` is the solution of the state without a fault, from which the others start faster.
     """
@@ -178,6 +178,9 @@ def moved_by_fault(case: Case, state: PlantState, sound: Solution | None = None)
         failure = moving(solution)
         if failure is not None:
             return Failure(condition=Condition.BARRED, data={**failure.data, **fault_data(fault)})
+        failure = over_rating(solution)
+        if failure is not None:
+            return replace(failure, data={**failure.data, **fault_data(fault)})
     return None
 
 

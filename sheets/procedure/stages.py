@@ -85,6 +85,7 @@ def _isolate(job: Job, rig: Rig, kind: StageKind) -> Stage:
         rig.fitted = dict(job.gauges)
         for gauge, test_point in rig.fitted.items():
             rig.say(StepKind.FIT_GAUGE, gauge, test_point=test_point)
+        _one_each(rig)
     _verify_zero(job, rig, first=first, vented=bool(vents))
     if not first:
         _put_back(job, rig, [valve for valve in circuit.positions if valve not in vents])
@@ -97,6 +98,21 @@ def _isolate(job: Job, rig: Rig, kind: StageKind) -> Stage:
             rig.say(StepKind.REMOVE_GAUGE, gauge, test_point=test_point)
         _put_back(job, rig, sorted(vents))
     return Stage(kind=kind, powered=False, adjuster="", steps=rig.take_steps())
+
+
+def _one_each(rig: Rig) -> None:
+    """A coupling takes one gauge."""
+    for test_point in dict.fromkeys(rig.fitted.values()):
+        here = [gauge for gauge, point in rig.fitted.items() if point == test_point]
+        if len(here) > 1:
+            rig.findings.append(
+                Finding(
+                    code="two_gauges_one_coupling",
+                    severity=Severity.REFUSED,
+                    subject=test_point,
+                    data={"other": " and ".join(here)},
+                )
+            )
 
 
 def _verify_zero(job: Job, rig: Rig, *, first: bool, vented: bool) -> None:

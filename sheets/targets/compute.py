@@ -14,7 +14,7 @@ from sheets.machine.model import Machine
 from sheets.machine.parts import FixedPump, LoadSensingControl, ReliefValve, VariablePump
 from sheets.machine.screws import Screw, screws_of
 from sheets.machine.site import Policies
-from sheets.targets.demand import Demand, idle_loads, work_demands
+from sheets.targets.demand import Demand, idle_loads, undescribed_loads, work_demands
 from sheets.targets.rules import (
     compensator_needed_bar,
     relief_capacity,
@@ -60,6 +60,7 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
     trial_bar, limits = _trial(screws, differences)
     demands = work_demands(machine, circuit, trial_bar, limits)
     findings += idle_loads(machine, circuit, trial_bar)
+    findings += undescribed_loads(machine)
 
     for line in lines:
         if line.limit is None and not line.reliefs:

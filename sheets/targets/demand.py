@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
-from itertools import islice, product
+from itertools import chain, islice, product
 
 from sheets.amounts import Amount, Finding, Severity
 from sheets.circuit.model import Circuit
@@ -14,7 +14,7 @@ from sheets.machine.model import Machine
 from sheets.machine.parts import Cylinder, DirectionalValve, FixedPump, HydraulicMotor, VariablePump
 
 _MOST_POSITIONS = 1024
-"""Sets of spool positions that are tried for a load; beyond them nothing is said about it."""
+"""Sets of spool positions that are tried for a load."""
 _BATCH = 256
 
 
@@ -85,22 +85,24 @@ def idle_loads(machine: Machine, circuit: Circuit, settings_bar: Mapping[str, fl
     """Refuses loads that no spool position moves, though every limit stands at the end of its range.
 
     ``settings_bar`` as for ``work_demands``. Such a load can't be what the pump is set for: the load, the
-    nets or what is said of an LS port is wrong, and no work pressure is known. Nothing is said where there
-    are too many sets of positions to look at all, or where a state isn't established.
+    nets or what is said of an LS port is wrong, and no work pressure is known. Single spools are tried first.
+    Where there are too many sets of positions to look at, or a state isn't established, a load that nothing
+    moved so far isn't known to move, and is refused as that.
     """
     left = dict(_loads(machine))
     running = circuit.rest_state(settings_bar)
     for drive in circuit.drives:
         running = running.driven(drive, on=True)
     spools = [id_ for id_, part in machine.parts.items() if isinstance(part, DirectionalValve)]
-    sets = product(*(circuit.positions[id_] for id_ in spools))
+    sets = chain(_singles(circuit, spools), product(*(circuit.positions[id_] for id_ in spools)))
     if not spools:
         return ()
-    tried = 0
+    tried, code = 0, "load_never_moves"
     while left and (batch := list(islice(sets, _BATCH))):
         tried += len(batch)
         if tried > _MOST_POSITIONS:
-            return ()
+            code = "load_not_known_to_move"
+            break
         states: list[PlantState] = []
         for positions in batch:
             state = running
@@ -108,22 +110,49 @@ def idle_loads(machine: Machine, circuit: Circuit, settings_bar: Mapping[str, fl
                 state = state.moved(spool, position)
             states.append(state)
         solved = solve(circuit, states)
-        if not solved.established.all():
-            return ()
         for index in range(len(batch)):
             solution = solved.one(index)
+            if not solution.established:
+                code = "load_not_known_to_move"
+                continue
             for actuator in solution.moving:
                 turns = isinstance(machine.parts[actuator], HydraulicMotor)
                 left.pop((actuator, turns or solution.speeds[actuator] > 0.0), None)
     return tuple(
         Finding(
-            code="load_never_moves",
+            code=code,
             severity=Severity.REFUSED,
             subject=actuator,
             data={"load": load, "sense": sense},
         )
         for (actuator, _), (load, sense) in left.items()
     )
+
+
+def _singles(circuit: Circuit, spools: list[str]) -> Iterator[tuple[str, ...]]:
+    """Positions with one spool shifted and the others at rest."""
+    rest = tuple(circuit.positions[id_][0] for id_ in spools)
+    for place, id_ in enumerate(spools):
+        for position in circuit.positions[id_][1:]:
+            yield (*rest[:place], position, *rest[place + 1 :])
+
+
+def undescribed_loads(machine: Machine) -> tuple[Finding, ...]:
+    """Refuses a held-up load that no part describes, and one declared absent although a part has it."""
+    described = [
+        id_
+        for id_, part in machine.parts.items()
+        if (isinstance(part, Cylinder) and part.weight_kn > 0.0)
+        or (isinstance(part, HydraulicMotor) and part.driving_torque_nm > 0.0)
+    ]
+    absent = [source for source in machine.absent if "suspended" in source.casefold()]
+    if machine.load_is_held_up and not described:
+        code, subject = "load_not_described", machine.tag
+    elif absent and (described or machine.load_is_held_up):
+        code, subject = "load_declared_absent", ", ".join(described)
+    else:
+        return ()
+    return (Finding(code=code, severity=Severity.REFUSED, subject=subject, data={}),)
 
 
 def _loads(machine: Machine) -> Iterator[tuple[tuple[str, bool], tuple[Amount, str]]]:

@@ -388,3 +388,10 @@ def test_other_samples_and_papers_are_issued_and_good(root: Path, tmp_path: Path
         matter = pipeline.steps(pipeline.check(works.folder / sample.name))
         works.issue(matter, file, layout=pipeline.layout_named("Letter"))
     assert words(works.verify(file)) == ("good", "good", "good")
+
+
+def test_a_draft_never_takes_the_place_of_an_issued_pack(works: Works, job: Matter) -> None:
+    before = works.pack.read_bytes()
+    with pytest.raises(InputError, match="issued pack stands there"):
+        pipeline.write_pack(job, works.pack, paper="A4", only=())
+    assert works.pack.read_bytes() == before
