@@ -97,11 +97,11 @@ def idle_loads(machine: Machine, circuit: Circuit, settings_bar: Mapping[str, fl
     sets = chain(_singles(circuit, spools), product(*(circuit.positions[id_] for id_ in spools)))
     if not spools:
         return ()
-    tried, code = 0, "load_never_moves"
+    tried, established = 0, True
     while left and (batch := list(islice(sets, _BATCH))):
         tried += len(batch)
         if tried > _MOST_POSITIONS:
-            code = "load_not_known_to_move"
+            established = False
             break
         states: list[PlantState] = []
         for positions in batch:
@@ -113,20 +113,21 @@ def idle_loads(machine: Machine, circuit: Circuit, settings_bar: Mapping[str, fl
         for index in range(len(batch)):
             solution = solved.one(index)
             if not solution.established:
-                code = "load_not_known_to_move"
+                established = False
                 continue
             for actuator in solution.moving:
                 turns = isinstance(machine.parts[actuator], HydraulicMotor)
                 left.pop((actuator, turns or solution.speeds[actuator] > 0.0), None)
     return tuple(
-        Finding(
-            code=code,
-            severity=Severity.REFUSED,
-            subject=actuator,
-            data={"load": load, "sense": sense},
-        )
+        _unmoved(actuator, {"load": load, "sense": sense}, established=established)
         for (actuator, _), (load, sense) in left.items()
     )
+
+
+def _unmoved(actuator: str, data: Mapping[str, Amount | str], *, established: bool) -> Finding:
+    if established:
+        return Finding(code="load_never_moves", severity=Severity.REFUSED, subject=actuator, data=data)
+    return Finding(code="load_not_known_to_move", severity=Severity.REFUSED, subject=actuator, data=data)
 
 
 def _singles(circuit: Circuit, spools: list[str]) -> Iterator[tuple[str, ...]]:
@@ -147,12 +148,12 @@ def undescribed_loads(machine: Machine) -> tuple[Finding, ...]:
     ]
     absent = [source for source in machine.absent if "suspended" in source.casefold()]
     if machine.load_is_held_up and not described:
-        code, subject = "load_not_described", machine.tag
-    elif absent and (described or machine.load_is_held_up):
-        code, subject = "load_declared_absent", ", ".join(described)
-    else:
-        return ()
-    return (Finding(code=code, severity=Severity.REFUSED, subject=subject, data={}),)
+        nothing = Finding(code="load_not_described", severity=Severity.REFUSED, subject=machine.tag, data={})
+        return (nothing,)
+    if absent and described:
+        subject = ", ".join(described)
+        return (Finding(code="load_declared_absent", severity=Severity.REFUSED, subject=subject, data={}),)
+    return ()
 
 
 def _loads(machine: Machine) -> Iterator[tuple[tuple[str, bool], tuple[Amount, str]]]:

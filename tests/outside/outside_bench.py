@@ -81,7 +81,7 @@ energy:
       action: turn to OFF
       lock: padlock through the handle
     verify: a qualified person tests for absence of voltage
-controls: {{start: [], stop: [], emergency stop: []}}
+controls: {{start: [{{name: start, where: bench}}], stop: [{{name: stop, where: bench}}], emergency stop: []}}
 absent: []
 """
 
