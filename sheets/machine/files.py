@@ -55,6 +55,20 @@ def _is_machine_file(file: Path) -> bool:
 _NAME_ANOTHER: Final = "Name a file with -o, in a folder that exists and that you may write to."
 
 
+def bytes_of(file: Path) -> bytes:
+    """What a file holds. Raises InputError if it can't be read."""
+    try:
+        return file.read_bytes()
+    except OSError as error:
+        raise InputError(
+            Problem(
+                where=str(file),
+                what=f"The file can't be read: {error.strerror}.",
+                fix="Look at the name of the file and whether you may read it.",
+            )
+        ) from None
+
+
 def write_pdf(target: Path, data: bytes) -> None:
     """Writes a PDF aside and moves it into place, so that nothing half-written is left.
 

@@ -7,7 +7,7 @@ from datetime import datetime
 from pathlib import Path
 
 from sheets.errors import InputError, Problem, RefusedError, quoted
-from sheets.machine.files import aside_of, write_aside
+from sheets.machine.files import aside_of, bytes_of, write_aside
 from sheets.machine.loading import load_site
 from sheets.pages.attached import attachments_in
 from sheets.pages.compose.matter import Matter
@@ -88,7 +88,7 @@ def sign(
 
 def reject(file: Path, *, register_file: Path, by: str, reason: str, when: datetime) -> Revision:
     """Ends an issue between its signatures, with a reason. Raises RefusedError once it is issued."""
-    context = context_of(_bytes_of(file))
+    context = context_of(bytes_of(file))
     with open_register(register_file) as register:
         return registered.reject(register, context.record_id, reason=reason, by=by, when=when)
 
@@ -111,14 +111,14 @@ def _taken_up(file: Path, register: Register) -> bytes:
     """The file; or what the register was told of and didn't come into its place, which it gets now."""
     aside = aside_of(file)
     if not aside.is_file():
-        return _bytes_of(file)
+        return bytes_of(file)
     data = aside.read_bytes()
     try:
         revision = revision_of(register, context_of(data).record_id)
     except InputError:
-        return _bytes_of(file)  # left over from before the register was told
+        return bytes_of(file)  # left over from before the register was told
     if not revision.signatures or revision.signatures[-1].file_digest != file_digest(data):
-        return _bytes_of(file)
+        return bytes_of(file)
     put_in_place(file)
     return data
 
@@ -182,16 +182,3 @@ def _check_known(data: bytes, known: str) -> None:
             fix="Sign the file as the last signer left it, or reject it and issue it anew.",
         )
     )
-
-
-def _bytes_of(file: Path) -> bytes:
-    try:
-        return file.read_bytes()
-    except OSError as error:
-        raise InputError(
-            Problem(
-                where=str(file),
-                what=f"The file can't be read: {error.strerror}.",
-                fix="Look at the name of the file and whether you may read it.",
-            )
-        ) from None

@@ -16,6 +16,7 @@ from typing import Any
 
 from sheets import ENGINE
 from sheets.errors import ExitStatus, InputError, JamnutError, Problem
+from sheets.machine.files import bytes_of
 from sheets.machine.loading import Sources, load_site
 from sheets.pages.attached import attachments_in
 from sheets.pages.compose.matter import Matter
@@ -111,7 +112,7 @@ def verify(
     ``code``: what a reader found in the code of a page, to be held against the file. Raises InputError for a
     file, a site or a register that can't be read at all.
     """
-    data = _bytes_of(file)
+    data = bytes_of(file)
     site = load_site(site_file).site if site_file is not None else None
     folder = site_file.parent if site_file is not None else Path()
     held = attachments_in(data)
@@ -262,19 +263,6 @@ def _registered(currency: Currency | None, data: bytes) -> datetime | None:
     if revision is None or revision.issue is None or revision.issue.file_digest != file_digest(data):
         return None
     return revision.issue.at
-
-
-def _bytes_of(file: Path) -> bytes:
-    try:
-        return file.read_bytes()
-    except OSError as error:
-        raise InputError(
-            Problem(
-                where=str(file),
-                what=f"The file can't be read: {error.strerror}.",
-                fix="Look at the name of the file and whether you may read it.",
-            )
-        ) from None
 
 
 def verify_text(one: Verification) -> Iterator[str]:

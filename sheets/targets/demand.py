@@ -10,6 +10,7 @@ from sheets.amounts import Amount, Finding, Severity
 from sheets.circuit.model import Circuit
 from sheets.circuit.plant import PlantState
 from sheets.circuit.solver import solve
+from sheets.energy.held import held_loads
 from sheets.machine.model import Machine
 from sheets.machine.parts import Cylinder, DirectionalValve, FixedPump, HydraulicMotor, VariablePump
 
@@ -140,12 +141,7 @@ def _singles(circuit: Circuit, spools: list[str]) -> Iterator[tuple[str, ...]]:
 
 def undescribed_loads(machine: Machine) -> tuple[Finding, ...]:
     """Refuses a held-up load that no part describes, and one declared absent although a part has it."""
-    described = [
-        id_
-        for id_, part in machine.parts.items()
-        if (isinstance(part, Cylinder) and part.weight_kn > 0.0)
-        or (isinstance(part, HydraulicMotor) and part.driving_torque_nm > 0.0)
-    ]
+    described = held_loads(machine)
     absent = [source for source in machine.absent if "suspended" in source.casefold()]
     if machine.load_is_held_up and not described:
         nothing = Finding(code="load_not_described", severity=Severity.REFUSED, subject=machine.tag, data={})

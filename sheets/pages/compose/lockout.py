@@ -6,8 +6,8 @@ from collections.abc import Sequence
 from itertools import groupby
 
 from sheets.amounts import Amount, bar
+from sheets.energy.held import held_loads
 from sheets.hazards.assess import shut_in_bar
-from sheets.machine.parts import Cylinder, HydraulicMotor
 from sheets.pages.compose.common import first_aid
 from sheets.pages.compose.matter import Matter, page_step
 from sheets.pages.document import (
@@ -150,13 +150,7 @@ def _row(spoken: SpokenStep) -> Step:
 
 def _blocking(matter: Matter) -> tuple[Step, ...]:
     rows = []
-    for id_, part in matter.machine.parts.items():
-        if isinstance(part, Cylinder) and part.weight_kn > 0.0:
-            amount = Amount(value=part.weight_kn, quantity="force_kn")
-        elif isinstance(part, HydraulicMotor) and part.driving_torque_nm > 0.0:
-            amount = Amount(value=part.driving_torque_nm, quantity="torque_nm")
-        else:
-            continue
+    for id_, (part, amount) in held_loads(matter.machine).items():
         rows.append(
             Step(
                 number="",
