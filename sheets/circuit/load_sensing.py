@@ -63,22 +63,21 @@ def differential_at_flow(
     return standby_bar - width_bar * flow_lpm / full_flow_lpm
 
 
-def standby_of(machine: Machine, part_id: str) -> float | None:
+def standby_of(machine: Machine, part_id: str, *, width_bar: float) -> float | None:
     """Standby in bar that the maker of a pump requires: its setting, or what follows from its differential.
 
-    None where neither is given, or where the differential stands without a width: policy gives no width for
-    a value that only a maker can give. Raises InputError where the two can't be true of this pump, KeyError
-    for no such part.
+    ``width_bar``: from full stroke to no net flow, from the plate or by policy. By policy the standby is no
+    known value, so it isn't held against the adjuster's range: whoever asks must say so. None where the
+    maker gives neither. Raises InputError where what is given can't be true of this pump, KeyError for no
+    such part.
     """
     part = machine.parts[part_id]
     control = part.load_sensing if isinstance(part, VariablePump) else None
     if not isinstance(part, VariablePump) or control is None:
         return None
-    if control.setting_bar is not None:
-        return control.setting_bar
     differential_bar, flow_lpm = control.differential_bar, control.differential_flow_lpm
-    if differential_bar is None or flow_lpm is None or control.width_bar is None:
-        return None
+    if differential_bar is None or flow_lpm is None:
+        return control.setting_bar
     full_flow_lpm = control_flow(machine, part_id, part)
     where = f"parts, {part_id}, load sensing"
     if flow_lpm > full_flow_lpm:
@@ -89,13 +88,16 @@ def standby_of(machine: Machine, part_id: str) -> float | None:
                 fix="Write the flow at which the maker states the differential, at this drive's speed.",
             )
         )
+    if control.setting_bar is not None:
+        return control.setting_bar
     standby_bar = standby_from_differential(
         differential_bar=differential_bar,
         flow_lpm=flow_lpm,
-        width_bar=control.width_bar,
+        width_bar=width_bar,
         full_flow_lpm=full_flow_lpm,
     )
-    _within_reach(control, standby_bar, where=f"{where}, differential")
+    if control.width_bar is not None:
+        _within_reach(control, standby_bar, where=f"{where}, differential")
     return standby_bar
 
 

@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 from itertools import pairwise
 
 from sheets.amounts import Derivation, Finding, Severity, bar, lpm, ratio
-from sheets.circuit.load_sensing import standby_from_differential
+from sheets.circuit.load_sensing import standby_of
 from sheets.circuit.model import AdjusterSite, Circuit, Node
 from sheets.circuit.reach import joined_at_rest, loaded_with
 from sheets.machine.model import Machine
@@ -53,7 +53,7 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
     findings: list[Finding] = []
     settings: dict[str, Setting] = {}
     differences = {
-        line.difference: _difference(line.difference, sites[line.difference], screws, policies)
+        line.difference: _difference(machine, sites[line.difference], screws, policies)
         for line in lines
         if line.difference is not None
     }
@@ -144,37 +144,34 @@ def _given(adjuster: str, screws: Mapping[str, Screw], policies: Policies) -> Se
 
 
 def _difference(
-    adjuster: str, site: AdjusterSite, screws: Mapping[str, Screw], policies: Policies
+    machine: Machine, site: AdjusterSite, screws: Mapping[str, Screw], policies: Policies
 ) -> Setting | Finding:
     """The standby of a load-sensing control: given, or found from a differential at a flow.
 
     Without the control's width the standby isn't known: then the differential is read at its own flow.
+    Raises InputError where the differential can't be true of this pump.
     """
-    screw = screws[adjuster].adjuster
-    if not isinstance(screw, LoadSensingControl) or screw.setting_bar is not None:
-        return _given(adjuster, screws, policies)
-    if screw.differential_bar is None or screw.differential_flow_lpm is None:
-        return _missing(adjuster)
-    standby_bar = standby_from_differential(
-        differential_bar=screw.differential_bar,
-        flow_lpm=screw.differential_flow_lpm,
-        width_bar=site.width_bar,
-        full_flow_lpm=site.width_flow_lpm,
-    )
+    screw = screws[site.id].adjuster
+    standby_bar = standby_of(machine, site.part, width_bar=site.width_bar)
+    if standby_bar is None or standby_bar == screw.setting_bar or not isinstance(screw, LoadSensingControl):
+        return _given(site.id, screws, policies)
+    differential_bar, flow_lpm = screw.differential_bar, screw.differential_flow_lpm
+    if differential_bar is None or flow_lpm is None:
+        return _missing(site.id)
     on_plate = screw.width_bar is not None
     derivation = Derivation(
         result_name="standby",
         formula="differential + width × flow / full flow",
         inputs=(
-            ("differential", bar(screw.differential_bar), screw.given_by or "given"),
+            ("differential", bar(differential_bar), screw.given_by or "given"),
             ("width", bar(site.width_bar), "plate" if on_plate else "policy"),
-            ("flow", lpm(screw.differential_flow_lpm), "given with the differential"),
+            ("flow", lpm(flow_lpm), "given with the differential"),
             ("full flow", lpm(site.width_flow_lpm), "plate"),
         ),
         result=bar(standby_bar),
     )
-    setting = _setting(adjuster, screws, standby_bar, Origin.GIVEN, policies, derivations=(derivation,))
-    return setting if on_plate else replace(setting, at_flow_lpm=screw.differential_flow_lpm)
+    setting = _setting(site.id, screws, standby_bar, Origin.GIVEN, policies, derivations=(derivation,))
+    return setting if on_plate else replace(setting, at_flow_lpm=flow_lpm)
 
 
 def _setting(

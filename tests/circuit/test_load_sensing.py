@@ -64,7 +64,7 @@ def test_standby_is_the_differential_and_the_share_of_the_width_that_its_flow_ta
 @pytest.mark.parametrize("pump", [{}, {"displacement_stop_cm3": 20.0}])
 def test_pump_set_to_that_standby_holds_the_differential_at_its_flow(pump: dict[str, float]):
     machine = throttled(pump=pump)
-    standby_bar = standby_of(machine, "PU1")
+    standby_bar = standby_of(machine, "PU1", width_bar=5.0)
     assert standby_bar == pytest.approx(STANDBY_BAR)
     circuit = build_circuit(machine)
     solution = solve_one(circuit, running(circuit, standby=standby_bar))
@@ -78,18 +78,25 @@ def test_pump_set_to_that_standby_holds_the_differential_at_its_flow(pump: dict[
     ) == pytest.approx(24.0)
 
 
-def test_a_given_standby_stands_and_without_a_width_nothing_is_guessed():
-    assert standby_of(throttled(setting_bar=30.0), "PU1") == 30.0
-    assert standby_of(throttled(width_bar=None), "PU1") is None
+def test_a_given_standby_stands_and_no_value_is_none():
+    assert standby_of(throttled(setting_bar=30.0), "PU1", width_bar=5.0) == 30.0
     nothing = {"differential_bar": None, "differential_flow_lpm": None, "given_by": None}
-    assert standby_of(throttled(**nothing), "PU1") is None
-    assert standby_of(throttled(), "CY1") is None
+    assert standby_of(throttled(**nothing), "PU1", width_bar=5.0) is None
+    assert standby_of(throttled(), "CY1", width_bar=5.0) is None
+
+
+def test_a_policy_width_is_not_held_against_the_range():
+    # 25.85 bar by a width that nobody gives; the range ends at 25 bar. With the width on the plate: refused.
+    unknown = throttled(width_bar=None, highest_bar=25.0)
+    assert standby_of(unknown, "PU1", width_bar=5.0) == pytest.approx(STANDBY_BAR)
 
 
 @pytest.mark.parametrize(
     ("changes", "where", "what"),
     [
         ({"differential_flow_lpm": 54.1}, "differential flow", "54"),
+        ({"differential_flow_lpm": 54.1, "width_bar": None}, "differential flow", "54"),
+        ({"differential_flow_lpm": 54.1, "setting_bar": 30.0}, "differential flow", "54"),
         ({"highest_bar": 25.0}, "differential", "25.9"),
         ({"lowest_bar": 26.0}, "differential", "25.9"),
     ],
@@ -98,7 +105,7 @@ def test_a_differential_that_this_pump_cannot_have_is_refused(
     changes: dict[str, float], where: str, what: str
 ):
     with pytest.raises(InputError) as refused:
-        standby_of(throttled(**changes), "PU1")
+        standby_of(throttled(**changes), "PU1", width_bar=5.0)
     (problem,) = refused.value.problems
     assert problem.where == f"parts, PU1, load sensing, {where}"
     assert what in problem.what

@@ -5,6 +5,7 @@ from collections.abc import Callable
 import pytest
 
 from sheets.amounts import Severity
+from sheets.errors import InputError
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline import Described, targets
 from sheets.targets.settings import Origin
@@ -99,3 +100,20 @@ def test_relief_of_a_compensator_without_a_value_is_not_guessed(changed: Callabl
     found = targets(changed("clay_mixer", (COMPENSATOR, ""), (RELIEF, ""), text))
     assert {finding.subject for finding in found.refusals} == {"PU1.compensator", "RV1"}
     assert {finding.code for finding in found.refusals} == {"value_not_given"}
+
+
+def test_a_differential_at_more_than_the_pump_gives_is_refused(changed: Callable[..., Described]) -> None:
+    # The pump gives 71 cm³ · 1475 rpm · 0.95 = 99.5 L/min at the most.
+    standby = (
+        "      setting: 27 bar                  # standby: LS at tank, no flow\n"
+        "      given by: machine manual, sheet 4\n"
+    )
+    source = "      given by: machine manual, sheet 4\n"
+    with pytest.raises(InputError, match=r"99\.5 L/min"):
+        targets(
+            changed(
+                "clay_mixer",
+                (standby, source),
+                ("differential flow: 60 L/min", "differential flow: 100 L/min"),
+            )
+        )
