@@ -14,7 +14,7 @@ from sheets.machine.model import Machine
 from sheets.machine.parts import FixedPump, LoadSensingControl, ReliefValve, VariablePump
 from sheets.machine.screws import Screw, screws_of
 from sheets.machine.site import Policies
-from sheets.targets.demand import Demand, idle_loads, undescribed_loads, work_demands
+from sheets.targets.demand import Demand, undescribed_loads, work_of
 from sheets.targets.rules import (
     compensator_needed_bar,
     relief_capacity,
@@ -58,8 +58,9 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
         if line.difference is not None
     }
     trial_bar, limits = _trial(screws, differences)
-    demands = work_demands(machine, circuit, trial_bar, limits)
-    findings += idle_loads(machine, circuit, trial_bar)
+    work = work_of(machine, circuit, trial_bar, limits)
+    demands = work.demands
+    findings += work.findings
     findings += undescribed_loads(machine)
 
     for line in lines:
@@ -237,7 +238,7 @@ def _compensator(
                     (
                         "pump pressure",
                         bar(worst.pump_pressure_bar),
-                        f"solver, {worst.actuator} with {worst.valve} at {worst.position}",
+                        f"solver, {worst.actuator} with {worst.by}",
                     ),
                     ("reserve", ratio(policies.reserve_ratio), "policy"),
                 ),
