@@ -18,11 +18,10 @@ if TYPE_CHECKING:
 FILE = click.argument("file", type=click.Path(path_type=Path), metavar="FILE")
 REGISTER = click.option(
     "--register",
-    "register_file",
-    type=click.Path(path_type=Path),
-    metavar="FILE",
+    "register_at",
+    metavar="FILE|URL",
     required=True,
-    help="The register; the first issue makes it.",
+    help="The register: a file, or a PostgreSQL database by URL; the first issue makes it.",
 )
 PASSPHRASES = click.option(
     "--passphrases",
@@ -107,7 +106,7 @@ def issue(
     site: Path | None,
     task: str,
     part: str | None,
-    register_file: Path,
+    register_at: str,
     passphrases: Path | None,
     output: Path | None,
     paper: Literal["A4", "Letter"],
@@ -140,7 +139,7 @@ def issue(
         output or Path(f"{described.machine.tag}.pdf"),
         signings=[pipeline.Signing(meaning=meaning, name=name, key=key) for meaning, name, key in people],
         passphrase=lambda key: _passphrase(passphrases, key),
-        register_file=register_file,
+        register_at=register_at,
         site_folder=(site or machine).parent,
         when=now(),
         random_bytes=secrets.token_bytes,
@@ -157,9 +156,7 @@ def issue(
 @click.option("--site", type=click.Path(path_type=Path), required=True, metavar="FILE", help="Site file.")
 @REGISTER
 @PASSPHRASES
-def sign(
-    file: Path, meaning: str, key: Path, site: Path, register_file: Path, passphrases: Path | None
-) -> None:
+def sign(file: Path, meaning: str, key: Path, site: Path, register_at: str, passphrases: Path | None) -> None:
     """Sign an issued pack for the next of the persons named on it; the last signature commits it.
 
     \b
@@ -173,7 +170,7 @@ def sign(
         pipeline.Signing(meaning=meaning, key=key),
         site_file=site,
         passphrase=lambda one: _passphrase(passphrases, one),
-        register_file=register_file,
+        register_at=register_at,
         when=now(),
     )
     show(pipeline.issued_text(issued))
@@ -184,7 +181,7 @@ def sign(
 @REGISTER
 @click.option("--by", required=True, metavar="NAME", help="Who rejects it.")
 @click.option("--reason", required=True, metavar="TEXT")
-def reject(file: Path, register_file: Path, by: str, reason: str) -> None:
+def reject(file: Path, register_at: str, by: str, reason: str) -> None:
     """Reject a pack between its signatures, with a reason; its revision ends there.
 
     \b
@@ -193,7 +190,7 @@ def reject(file: Path, register_file: Path, by: str, reason: str) -> None:
     """
     from sheets import pipeline
 
-    ended = pipeline.reject(file, register_file=register_file, by=by, reason=reason, when=now())
+    ended = pipeline.reject(file, register_at=register_at, by=by, reason=reason, when=now())
     show([f"revision {ended.number} of {ended.document} is {ended.state.value}"])
 
 
@@ -202,15 +199,14 @@ def reject(file: Path, register_file: Path, by: str, reason: str) -> None:
 @SITE
 @click.option(
     "--register",
-    "register_file",
-    type=click.Path(path_type=Path),
-    metavar="FILE",
+    "register_at",
+    metavar="FILE|URL",
     help="The register, if within reach.",
 )
 @click.option("--code", metavar="TEXT", help="What a reader found in the code of a page: is it this file's?")
 @AS_JSON
 def verify(
-    files: tuple[Path, ...], site: Path | None, register_file: Path | None, code: str | None, as_json: bool
+    files: tuple[Path, ...], site: Path | None, register_at: str | None, code: str | None, as_json: bool
 ) -> None:
     """Judge packs three ways apart: signatures, content, and whether they are current.
 
@@ -227,7 +223,7 @@ def verify(
     for file in files:
         tell(f"making {file} again from what travels in it")
         try:
-            one = pipeline.verify(file, site_file=site, register_file=register_file, now=now(), code=code)
+            one = pipeline.verify(file, site_file=site, register_at=register_at, now=now(), code=code)
         except JamnutError as error:  # one file that can't be read keeps nothing from the others
             statuses.append(error.status)
             found.append(pipeline.verify_failed_json(file, error))

@@ -105,7 +105,7 @@ def demo(
             for meaning, key in zip(("prepared", "checked", "approved"), ring.signers, strict=True)
         ),
         passphrase=lambda _: PASSPHRASE,
-        register_file=register,
+        register_at=register,
         site_folder=folder,
         when=when,
         random_bytes=random_bytes,

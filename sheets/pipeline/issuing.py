@@ -28,8 +28,9 @@ from sheets.pipeline.persons import Named, Signing, check_people, check_trusted,
 from sheets.pipeline.printing import printed, whole_content
 from sheets.register.finding import revision_of
 from sheets.register.issuing import Reservation, commit, reserve, sign_event, void
+from sheets.register.opening import Place, create_register, is_there, open_register
 from sheets.register.revisions import Revision, RevisionState, Signer
-from sheets.register.store import Register, create_register, open_register
+from sheets.register.store import Register
 from sheets.seal.canonical import canonical_bytes, digest
 from sheets.seal.sign import SigningField, sign_field, signing_fields
 
@@ -54,7 +55,7 @@ def issue(
     *,
     signings: Sequence[Signing],
     passphrase: Callable[[Path], str],
-    register_file: Path,
+    register_at: Place,
     site_folder: Path,
     when: datetime,
     random_bytes: Callable[[int], bytes],
@@ -78,7 +79,7 @@ def issue(
     if not ink:
         check_trusted(people, trust_of(site, site_folder))
     by = people[0].name
-    with _register(register_file, by, when) as register:
+    with _register(register_at, by, when) as register:
         reservation = reserve(
             register,
             document=matter.machine.document,
@@ -306,5 +307,5 @@ def zone_of(site: Site) -> ZoneInfo:
         ) from None
 
 
-def _register(file: Path, by: str, when: datetime) -> Register:
-    return open_register(file) if file.exists() else create_register(file, by=by, when=when)
+def _register(at: Place, by: str, when: datetime) -> Register:
+    return open_register(at) if is_there(at) else create_register(at, by=by, when=when)

@@ -25,8 +25,9 @@ from sheets.pipeline.persons import Named, Signing, check_trusted, named_by, tru
 from sheets.pipeline.verifying import remade_with_digest
 from sheets.register import issuing as registered
 from sheets.register.finding import revision_of
+from sheets.register.opening import Place, open_register
 from sheets.register.revisions import Revision, RevisionState, Signer
-from sheets.register.store import Register, open_register
+from sheets.register.store import Register
 from sheets.seal.sign import signing_fields
 
 
@@ -36,7 +37,7 @@ def sign(
     *,
     site_file: Path,
     passphrase: Callable[[Path], str],
-    register_file: Path,
+    register_at: Place,
     when: datetime,
 ) -> Issued:
     """Signs a pack for one more of the persons named on it; the last of them issues it.
@@ -47,7 +48,7 @@ def sign(
 
     Raises RefusedError if it isn't this person's turn, InputError if the file isn't as it was made.
     """
-    with open_register(register_file) as register:
+    with open_register(register_at) as register:
         data = _taken_up(file, register)
         context = context_of(data)
         revision = revision_of(register, context.record_id)
@@ -86,10 +87,10 @@ def sign(
     )
 
 
-def reject(file: Path, *, register_file: Path, by: str, reason: str, when: datetime) -> Revision:
+def reject(file: Path, *, register_at: Place, by: str, reason: str, when: datetime) -> Revision:
     """Ends an issue between its signatures, with a reason. Raises RefusedError once it is issued."""
     context = context_of(bytes_of(file))
-    with open_register(register_file) as register:
+    with open_register(register_at) as register:
         return registered.reject(register, context.record_id, reason=reason, by=by, when=when)
 
 

@@ -37,7 +37,7 @@ from sheets.pipeline.issuing import file_digest
 from sheets.pipeline.persons import time_trust_of, trust_of
 from sheets.pipeline.printing import Content, printed, whole_content
 from sheets.register.currency import Currency, Standing, currency_of
-from sheets.register.store import open_register
+from sheets.register.opening import Place, open_register
 from sheets.seal.canonical import digest
 from sheets.seal.signatures import judge_signatures
 from sheets.seal.signatures_report import Cause, Judgement, Reason, SignatureReport, SignaturesReport, worst
@@ -105,7 +105,7 @@ class Verification:
 
 
 def verify(
-    file: Path, *, site_file: Path | None, register_file: Path | None, now: datetime, code: str | None = None
+    file: Path, *, site_file: Path | None, register_at: Place | None, now: datetime, code: str | None = None
 ) -> Verification:
     """Judges one file. Trust comes from the site file of whoever verifies, never from the pack itself.
 
@@ -117,7 +117,7 @@ def verify(
     folder = site_file.parent if site_file is not None else Path()
     held = attachments_in(data)
     issue = issue_in(held)
-    currency = _currency(issue, held, data, register_file)
+    currency = _currency(issue, held, data, register_at)
     signatures = _as_named(
         judge_signatures(
             data,
@@ -228,14 +228,14 @@ def remade_with_digest(data: bytes) -> tuple[Matter, str]:
 
 
 def _currency(
-    issue: IssueContext | None, held: Mapping[str, bytes], data: bytes, register_file: Path | None
+    issue: IssueContext | None, held: Mapping[str, bytes], data: bytes, register_at: Place | None
 ) -> CurrencyReport:
     """What the register says of this record; one that it doesn't know may stand in another register."""
     if issue is None:
         return CurrencyReport(judgement=Judgement.NOT_ESTABLISHED, reason="no_issue")
-    if register_file is None:
+    if register_at is None:
         return CurrencyReport(judgement=Judgement.NOT_ESTABLISHED, reason="no_register")
-    with open_register(register_file, read_only=True) as register:
+    with open_register(register_at, read_only=True) as register:
         found = currency_of(register, issue.record_id)
     if found.standing is Standing.NOT_ESTABLISHED:
         return CurrencyReport(judgement=Judgement.NOT_ESTABLISHED, reason="broken_register", currency=found)

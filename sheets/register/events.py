@@ -13,20 +13,26 @@ from typing import Final
 from sheets.errors import InputError, Problem
 from sheets.register.form import canonical
 
-FORMAT: Final = 1
-"""Of the register. A reader refuses a higher one, since it can't know what the events there mean."""
-MARK: Final = f"jamnut register {FORMAT}"
-"""Begins what is hashed, so that no other list of texts has the same hash."""
+FORMAT: Final = 2
+"""Of the register's tables and kinds of event. A reader refuses a higher one, and never reads a lower one
+as if it were this: it is migrated first, by name."""
+MARK: Final = "jamnut register 1"
+"""Begins what is hashed, so that no other list of texts has the same hash. It stays over all formats: an
+event keeps its hash."""
 NO_EVENT: Final = "0" * 64
 """What the first event names as the hash of the one before."""
 FIRST: Final = 1
 
 
 class EventKind(StrEnum):
-    """What happened."""
+    """What happened. What the data of each say stands in the module named beside its group."""
 
+    # The register itself (opening.py, migrating.py)
     OPENED = "opened"
-    """The register itself: always the first event, and only that."""
+    """Always the first event, and only that."""
+    MIGRATED = "migrated"
+
+    # Revisions (revisions.py)
     RESERVED = "reserved"
     SIGNED = "signed"
     ISSUED = "issued"
@@ -34,8 +40,53 @@ class EventKind(StrEnum):
     REJECTED = "rejected"
     WITHDRAWN = "withdrawn"
 
+    # Paper that hangs somewhere (copies.py)
+    COPY_HUNG = "copy hung"
+    COPY_TAKEN_DOWN = "copy taken down"
+    TAG_POSTED = "tag posted"
 
-REVISION_KINDS: Final = frozenset(EventKind) - {EventKind.OPENED}
+    # Work at a machine (jobs.py, acts.py)
+    JOB_OPENED = "job opened"
+    JOB_ENDED = "job ended"
+    TOLD = "people told"
+    LOCK_PUT_ON = "lock put on"
+    LOCK_TAKEN_OFF = "lock taken off"
+    ZERO_READ = "zero read"
+    WINDOW_OPENED = "powered window opened"
+    WINDOW_CLOSED = "powered window closed"
+
+    # What was read (readings.py, deviations.py)
+    READ = "read"
+    READING_STRUCK = "reading struck"
+    DEVIATION_NOTED = "deviation noted"
+    DEVIATION_ACCEPTED = "deviation accepted"
+    DEVIATION_CORRECTED = "deviation corrected"
+    OUT_OF_SERVICE = "out of service"
+    IN_SERVICE = "in service"
+
+    # With what (instruments.py)
+    INSTRUMENT_LISTED = "instrument listed"
+    INSTRUMENT_FOUND_BAD = "instrument found bad"
+
+    # By whom (people.py)
+    AUTHORISED = "authorised"
+    AUTHORISATION_ENDED = "authorisation ended"
+    TRAINED = "trained"
+
+    # Looked at once a year (inspections.py)
+    INSPECTED = "inspected"
+
+
+REVISION_KINDS: Final = frozenset(
+    {
+        EventKind.RESERVED,
+        EventKind.SIGNED,
+        EventKind.ISSUED,
+        EventKind.VOIDED,
+        EventKind.REJECTED,
+        EventKind.WITHDRAWN,
+    }
+)
 """Those from which the revisions of a document follow."""
 
 

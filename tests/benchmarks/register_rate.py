@@ -21,7 +21,8 @@ from sheets.register.chain import check_chain
 from sheets.register.currency import currency_of
 from sheets.register.events import Entry, EventKind
 from sheets.register.issuing import reserve
-from sheets.register.store import Register, create_register
+from sheets.register.opening import create_register
+from sheets.register.store import Register
 
 NOON = datetime(2031, 3, 4, 12, tzinfo=UTC)
 EVENTS = 300

@@ -198,7 +198,7 @@ def test_a_target_that_is_no_pdf_stays(works: Works, job: Matter) -> None:
 def test_a_register_that_is_missing_is_made_and_another_machine_s_document_refused(
     works: Works, job: Matter
 ) -> None:
-    made = works.issue(job, register_file=works.folder / "new.db")
+    made = works.issue(job, register_at=works.folder / "new.db")
     assert (made.revision, made.waiting) == ("1", ())
     other = replace(job, machine=job.machine.model_copy(update={"tag": "PU-99"}))
     before = works.files()

@@ -161,7 +161,7 @@ def test_what_is_no_issued_pack_is_not_signed(waiting: Works) -> None:
         with pytest.raises(InputError, match=says):
             waiting.sign("checked")
         with pytest.raises(InputError, match=says):
-            pipeline.reject(waiting.pack, register_file=waiting.register, by=BRAM, reason="no", when=LATER)
+            pipeline.reject(waiting.pack, register_at=waiting.register, by=BRAM, reason="no", when=LATER)
     waiting.pack.unlink()
     with pytest.raises(InputError, match="can't be read"):
         waiting.sign("checked")
@@ -173,7 +173,7 @@ def test_what_is_no_issued_pack_is_not_signed(waiting: Works) -> None:
 def test_a_rejected_pack_ends_there(waiting: Works) -> None:
     waiting.sign("checked")
     ended = pipeline.reject(
-        waiting.pack, register_file=waiting.register, by=CLEO, reason="plate of RV1 is another", when=LATER
+        waiting.pack, register_at=waiting.register, by=CLEO, reason="plate of RV1 is another", when=LATER
     )
     assert (ended.number, ended.state, ended.ended_by) == (2, RevisionState.REJECTED, CLEO)
     found = waiting.verify()
@@ -189,7 +189,7 @@ def test_a_rejected_pack_ends_there(waiting: Works) -> None:
 def test_an_issued_pack_is_neither_rejected_nor_signed(works: Works) -> None:
     before = works.files()
     with pytest.raises(RefusedError, match="It is issued"):
-        pipeline.reject(works.pack, register_file=works.register, by=BRAM, reason="late", when=LATER)
+        pipeline.reject(works.pack, register_at=works.register, by=BRAM, reason="late", when=LATER)
     with pytest.raises(RefusedError, match="It is issued; nobody signs it any more"):
         works.sign("checked")
     assert works.files() == before

@@ -70,19 +70,19 @@ def test_a_superseded_copy_names_the_current_revision(works: Works) -> None:
 
 
 def test_what_no_register_says_is_not_established(issued: Works, root: Path, tmp_path: Path) -> None:
-    found = issued.verify(register_file=None)
+    found = issued.verify(register_at=None)
     assert words(found) == ("good", "good", "not established")
     assert found.status is ExitStatus.NOT_ESTABLISHED
     assert "No register was asked" in told(found)
 
     sample = root / "sample_machines" / "kiln_pusher.yaml"
     other = pipeline.demo(sample, tmp_path / "other", when=WHEN, random_bytes=Chance(8))
-    found = issued.verify(register_file=other.register)
+    found = issued.verify(register_at=other.register)
     assert words(found) == ("good", "good", "not established")
     assert "doesn't know this record" in told(found)
 
     with pytest.raises(InputError, match="no register there"):
-        issued.verify(register_file=tmp_path / "none.db")
+        issued.verify(register_at=tmp_path / "none.db")
     assert not (tmp_path / "none.db").exists()
 
 
@@ -162,7 +162,7 @@ def test_time_servers_are_judged_by_their_own_list(works: Works, monkeypatch: py
 def test_after_the_end_of_certificates_the_register_still_knows(issued: Works) -> None:
     late = LATER + timedelta(days=4000)
     assert words(issued.verify(now=late)) == ("good", "good", "good")
-    found = issued.verify(now=late, register_file=None)
+    found = issued.verify(now=late, register_at=None)
     assert words(found) == ("not established", "good", "not established")
 
 

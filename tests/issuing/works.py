@@ -16,8 +16,8 @@ from sheets.pipeline.persons import Signing
 from sheets.pipeline.verifying import Verification
 from sheets.register.chain import check_chain
 from sheets.register.finding import document_revisions
+from sheets.register.opening import open_register
 from sheets.register.revisions import Revision
-from sheets.register.store import open_register
 
 WHEN = datetime(2026, 12, 1, 9, 30, tzinfo=UTC)
 LATER = WHEN + timedelta(hours=1)
@@ -79,7 +79,7 @@ class Works:
         given: dict[str, object] = {
             "signings": [self.signing(meaning, who) for meaning, who in people.items() if who],  # type: ignore[arg-type]  # names
             "passphrase": passphrase,
-            "register_file": self.register,
+            "register_at": self.register,
             "site_folder": self.folder,
             "when": LATER,
             "random_bytes": Chance(2),
@@ -92,7 +92,7 @@ class Works:
         given: dict[str, object] = {
             "site_file": self.site,
             "passphrase": passphrase,
-            "register_file": self.register,
+            "register_at": self.register,
             "when": LATER + timedelta(minutes=5 * MEANINGS.index(meaning)),
             **other,
         }
@@ -101,7 +101,7 @@ class Works:
     def verify(self, file: Path | None = None, **other: object) -> Verification:
         given: dict[str, object] = {
             "site_file": self.site,
-            "register_file": self.register,
+            "register_at": self.register,
             "now": LATER + timedelta(days=1),
             **other,
         }

@@ -10,8 +10,9 @@ import pytest
 from register_bench import CONTENT, FILE, MACHINE, NOON, at, unguarded
 
 from sheets.register.issuing import Reservation, commit, reserve, sign_event
+from sheets.register.opening import create_register
 from sheets.register.revisions import Revision, Signer
-from sheets.register.store import Register, create_register
+from sheets.register.store import Register
 
 
 @pytest.fixture

@@ -56,7 +56,7 @@ def test_lines_hold_all_that_an_independent_check_needs(
         "signed",
         "issued",
     ]
-    assert json.loads(lines[0])["data"] == {"format": 1}
+    assert json.loads(lines[0])["data"] == {"format": 2}
     assert json.loads(lines[1])["time"] == "2031-03-04T12:01:00.000000Z"
     assert json.loads(lines[4])["record_id"] == revision.record_id
     assert list(json_lines(register, after=3)) == lines[3:]

@@ -29,8 +29,9 @@ from sheets.register.issuing import (
     void_left_over,
     withdraw,
 )
+from sheets.register.opening import create_register
 from sheets.register.revisions import Revision, RevisionState, Signer, current
-from sheets.register.store import Register, create_register
+from sheets.register.store import Register
 
 SIGNERS = (Signer(meaning="prepared", name="Ines Kurz"), Signer(meaning="approved", name="Olaf Brenner"))
 

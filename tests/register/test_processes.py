@@ -17,15 +17,16 @@ from sheets.errors import InputError
 from sheets.register.chain import check_chain
 from sheets.register.finding import document_revisions, revision_of
 from sheets.register.issuing import LEFT_OVER, void_left_over
+from sheets.register.opening import open_register
 from sheets.register.revisions import RevisionState
-from sheets.register.store import Register, open_register
+from sheets.register.store import Register
 
 WORKER = """
 import os, sys
 from datetime import UTC, datetime
 from pathlib import Path
 from sheets.register.issuing import reserve
-from sheets.register.store import open_register
+from sheets.register.opening import open_register
 
 path, count, document, machine = sys.argv[1:]
 with open_register(Path(path), wait_s=60) as register:
@@ -97,7 +98,7 @@ import os, sys
 from datetime import UTC, datetime
 from pathlib import Path
 from sheets.register.events import Entry, EventKind
-from sheets.register.store import open_register
+from sheets.register.opening import open_register
 
 with open_register(Path(sys.argv[1])) as register, register.writing() as writer:
     writer._connection.exec_driver_sql("PRAGMA cache_size = 5")  # so that pages reach the file before the end

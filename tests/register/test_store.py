@@ -17,8 +17,10 @@ from sheets.register.currency import Standing, currency_of
 from sheets.register.events import Entry, EventKind
 from sheets.register.finding import document_revisions
 from sheets.register.issuing import Reservation
+from sheets.register.opening import create_register, open_register
 from sheets.register.revisions import Revision
-from sheets.register.store import APPLICATION_ID, LARGEST_DATA, Register, create_register, open_register
+from sheets.register.sqlite import APPLICATION_ID
+from sheets.register.store import LARGEST_DATA, Register
 
 
 def entry(who: str = "Ines Kurz", **data: object) -> Entry:
@@ -120,9 +122,9 @@ def test_another_programs_database(path: Path) -> None:
 def test_a_newer_format_is_refused(register: Register, path: Path) -> None:
     register.close()
     with sqlite3.connect(path) as database:
-        database.execute("PRAGMA user_version = 2")
+        database.execute("PRAGMA user_version = 3")
     database.close()
-    with pytest.raises(InputError, match="format 2; this version reads up to format 1"):
+    with pytest.raises(InputError, match="format 3; this version reads up to format 2"):
         open_register(path)
 
 
