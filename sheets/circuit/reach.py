@@ -49,13 +49,15 @@ def open_ways(machine: Machine, circuit: Circuit, positions: Mapping[str, str]) 
                 yield OpenWay(part=id_, start=start, end=end, one_way=isinstance(part, CheckValve))
 
 
-def joined_at_rest(machine: Machine, circuit: Circuit, node: int) -> frozenset[int]:
+def joined_at_rest(machine: Machine, circuit: Circuit, node: int, *, shut: str = "") -> frozenset[int]:
     """Nodes that a line valve at rest, a check valve or a filter joins with a node.
 
     Spools don't count, and neither do throttles: what stands behind one may limit its own line, never the
-    node before it.
+    node before it. ``shut``: a hand valve that is closed, whatever its rest.
     """
     rest = {valve: positions[0] for valve, positions in circuit.positions.items()}
+    if shut:
+        rest[shut] = "closed"
     reached, front = {node}, [node]
     ways = [
         way

@@ -253,6 +253,24 @@ def _wrongly_fed(survey: Survey, supply: Supply, consumer: str, at: tuple[str | 
         )
 
 
+def isolators(survey: Survey) -> Iterator[Flaw]:
+    """The words on a plate lead to one device: two with the same can't be told apart."""
+    first: dict[str, str] = {}
+    for id, supply in survey.energy.items():
+        other = first.setdefault(" ".join(supply.isolator.plate.casefold().split()), id)
+        if other == id:
+            continue
+        here, there = supply.isolator, survey.energy[other].isolator
+        if here == there and here.shared:
+            continue
+        yield Flaw(
+            at=("energy", id, "isolator", "plate"),
+            what=f"The isolator of {other} has the same plate, {quoted(here.plate)}.",
+            fix="Write the words of its own plate; where one device cuts both supplies, describe it in both "
+            "with the same words and shared: yes.",
+        )
+
+
 def gauges(survey: Survey) -> Iterator[Flaw]:
     """A gauge is fixed on a net or fitted at test points, and not both."""
     points = [id for id, part in survey.parts.items() if isinstance(part, TestPoint)]
@@ -299,6 +317,7 @@ CHECKS: Final[tuple[Callable[[Survey], Iterator[Flaw]], ...]] = (
     load_sensing_ports,
     drives,
     supplies,
+    isolators,
     gauges,
     reservoir,
 )

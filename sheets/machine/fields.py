@@ -125,7 +125,10 @@ NewtonMetre = Annotated[float, Quantity(unit="N·m", example="400 N m", least=0.
 PositiveNewtonMetre = Annotated[float, Quantity(unit="N·m", example="400 N m", above=0.0)]
 Rpm = Annotated[float, Quantity(unit="rpm", example="1450 rpm", above=0.0)]
 Millimetre = Annotated[float, Quantity(unit="mm", example="63 mm", above=0.0)]
-Celsius = Annotated[float, Quantity(unit="°C", example="50 °C", least=-60.0, most=250.0)]
+OilCelsius = Annotated[float, Quantity(unit="°C", example="65 °C", least=-40.0, most=120.0)]
+"""Of oil in a reservoir; no unit works with oil hotter than that, whatever its fluid."""
+SettingCelsius = Annotated[float, Quantity(unit="°C", example="50 °C", least=-40.0, most=100.0)]
+"""Of oil while somebody turns a screw."""
 Second = Annotated[float, Quantity(unit="s", example="10 s", least=0.0)]
 Volt = Annotated[float, Quantity(unit="V", example="400 V", above=0.0)]
 Ratio = Annotated[float, Quantity(unit="", example="0.93", above=0.0, most=1.0)]
@@ -136,6 +139,8 @@ Percent = Annotated[float, Quantity(unit="%", example="0.25", above=0.0, most=10
 """A percentage, with or without its sign: an accuracy class of 0.25."""
 
 Text = Annotated[str, Wording()]
+SaidText = Annotated[str, Wording(must_say=True)]
+"""A text that somebody acts by: none and its like are refused."""
 YesNo = Annotated[bool, YesOrNo()]
 FormatNumber = Annotated[int, FormatOne()]
 IsoDate = Annotated[date, Day()]

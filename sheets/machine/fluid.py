@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from sheets.machine.fields import Celsius, Entry, Text
+from sheets.machine.fields import Entry, OilCelsius, SettingCelsius, Text
 from sheets.machine.flaws import Flaw
 
 MINERAL_OIL = "mineral oil"
@@ -17,12 +17,17 @@ class Fluid(Entry):
     """For example mineral oil. The policy temperatures hold for mineral oil only."""
     grade: Text
     """ISO VG grade, for example ISO VG 46."""
-    lowest_setting_temperature_c: Celsius | None = None
+    lowest_setting_temperature_c: SettingCelsius | None = None
     """Settings are made in this oil temperature window; policy for mineral oil, if left out."""
-    highest_setting_temperature_c: Celsius | None = None
+    highest_setting_temperature_c: SettingCelsius | None = None
     """Upper end of that window."""
-    limit_temperature_c: Celsius
+    limit_temperature_c: OilCelsius
     """Above this the work stops."""
+
+    def setting_window_c(self, *, lowest_c: float, highest_c: float) -> tuple[float, float]:
+        """Oil temperatures between which settings are made, in °C; the two given are the policy's."""
+        lowest, highest = self.lowest_setting_temperature_c, self.highest_setting_temperature_c
+        return lowest_c if lowest is None else lowest, highest_c if highest is None else highest
 
     def contradictions(self) -> Iterator[Flaw]:
         yield from super().contradictions()

@@ -21,6 +21,7 @@ from sheets.machine.model import Machine, Supply
 from sheets.machine.parts import AnyGauge, Part
 from sheets.machine.reporting import flaws_of
 from sheets.machine.site import Site
+from sheets.machine.site_checks import site_check
 from sheets.machine.walkdown import Walkdown
 
 MOST_PROBLEMS: Final = 50
@@ -76,10 +77,13 @@ class Sources:
     walkdown: bytes | None
 
 
-def load_machine(path: Path) -> LoadedMachine:
-    """Read a machine file. Raises InputError with every problem in it, in the order of its lines."""
+def load_machine(path: Path, site: Site | None = None) -> LoadedMachine:
+    """Read a machine file. Raises InputError with every problem in it, in the order of its lines.
+
+    ``site``: of the works in which it stands, where there is one; both have to fit together.
+    """
     source = _bytes_of(path)
-    return LoadedMachine(machine=parse_machine(source, path.name), source=source, name=path.name)
+    return LoadedMachine(machine=parse_machine(source, path.name, site), source=source, name=path.name)
 
 
 def load_site(path: Path) -> LoadedSite:
@@ -88,9 +92,14 @@ def load_site(path: Path) -> LoadedSite:
     return LoadedSite(site=parse_site(source, path.name), source=source, name=path.name)
 
 
-def parse_machine(text: bytes, name: str) -> Machine:
-    """The machine in that text; ``name`` stands in the problems. Raises InputError."""
-    return _parsed(text, name, Machine, lambda machine: cross_check(Survey.of(machine)), _holed_survey)
+def parse_machine(text: bytes, name: str, site: Site | None = None) -> Machine:
+    """The machine in that text; ``name`` stands in the problems, ``site`` as above. Raises InputError."""
+
+    def check(machine: Machine) -> Iterator[Flaw]:
+        yield from cross_check(Survey.of(machine))
+        yield from site_check(machine, site)
+
+    return _parsed(text, name, Machine, check, _holed_survey)
 
 
 def parse_site(text: bytes, name: str) -> Site:

@@ -7,7 +7,17 @@ from typing import Annotated, Literal
 
 from pydantic import Field
 
-from sheets.machine.fields import Entry, FormatNumber, Identifier, IsoDate, PortRef, Text, Volt, YesNo
+from sheets.machine.fields import (
+    Entry,
+    FormatNumber,
+    Identifier,
+    IsoDate,
+    PortRef,
+    SaidText,
+    Text,
+    Volt,
+    YesNo,
+)
 from sheets.machine.flaws import Flaw
 from sheets.machine.isolating import ELECTRICAL, IsolatorKind
 from sheets.machine.parts import AnyGauge, Fluid, Part
@@ -16,16 +26,18 @@ from sheets.machine.parts import AnyGauge, Fluid, Part
 class Isolator(Entry):
     """A device that physically prevents the transmission of energy, and takes a lock."""
 
-    plate: Text
+    plate: SaidText
     """The words on its plate; printed as they stand, never translated."""
     kind: IsolatorKind
     """What it is. A device of the control circuit is refused."""
-    where: Text
+    where: SaidText
     """Where it is to be found."""
-    action: Text
+    action: SaidText
     """What to do with it: turn to OFF."""
-    lock: Text
+    lock: SaidText
     """Where the lock goes."""
+    shared: YesNo = False
+    """Yes where this one device cuts another supply too; each of them says so, in the same words."""
     inside_panel: YesNo = False
     """Yes where it is behind a door that only a qualified person opens."""
 
@@ -41,7 +53,7 @@ class Supply(Entry):
     """Parts that it feeds."""
     isolator: Isolator
     """What isolates it."""
-    verify: Text
+    verify: SaidText
     """How to verify that it is dead, and by whom."""
 
     def contradictions(self) -> Iterator[Flaw]:
@@ -130,3 +142,15 @@ class Machine(Entry):
     """Sources that somebody looked for and didn't find; printed as such. May be empty, but not left out."""
     load_is_held_up: YesNo = False
     """Yes if a load could fall or turn by itself when the pressure goes."""
+
+    @property
+    def isolated(self) -> tuple[str, ...]:
+        """A supply for each isolating device: the first of those that share it."""
+        isolators = [supply.isolator for supply in self.energy.values()]
+        return tuple(id for place, id in enumerate(self.energy) if isolators[place] not in isolators[:place])
+
+    def fed_through(self, isolator: Isolator) -> tuple[str, ...]:
+        """Parts that an isolating device cuts off, over all supplies that share it."""
+        return tuple(
+            part for supply in self.energy.values() if supply.isolator == isolator for part in supply.feeds
+        )

@@ -7,13 +7,13 @@ from typing import Annotated, Literal, get_args
 
 from sheets.machine.fields import (
     Bar,
-    Celsius,
     Entry,
     FormatNumber,
     PositiveBar,
     Quantity,
     Ratio,
-    Second,
+    SaidText,
+    SettingCelsius,
     Text,
     YesNo,
 )
@@ -21,6 +21,8 @@ from sheets.machine.flaws import Flaw
 from sheets.machine.words import Name
 
 AccuracyRatio = Annotated[float, Quantity(unit="", example="3", least=1.0, most=20.0)]
+TrySecond = Annotated[float, Quantity(unit="s", example="60 s", least=5.0, most=600.0)]
+"""Nobody turns and reads in less, and all power of the drive goes into the oil meanwhile."""
 RecordAddress = Annotated[
     str,
     Name(
@@ -68,11 +70,11 @@ class Policies(Entry):
     """Opening pressure of a pilot operated relief over its setting."""
     pilot_closing_ratio: Ratio = 0.90
     """Closing pressure of a pilot operated relief over its setting."""
-    longest_try_s: Second = 60.0
+    longest_try_s: TrySecond = 60.0
     """Longest time of one try over a relief."""
-    lowest_setting_temperature_c: Celsius = 45.0
+    lowest_setting_temperature_c: SettingCelsius = 45.0
     """Lower end of the oil temperature window for settings; mineral oil only."""
-    highest_setting_temperature_c: Celsius = 55.0
+    highest_setting_temperature_c: SettingCelsius = 55.0
     """Upper end of that window."""
     lockout_always: YesNo = False
     """Lock out for every task, also where nothing is fitted or opened."""
@@ -153,9 +155,9 @@ class Site(Entry):
     """Web address of the record page; the code on each page begins with it."""
     zone: Text = "UTC"
     """Time zone of the works, as on paper: an IANA name such as Europe/Lisbon."""
-    planner_telephone: Text
+    planner_telephone: SaidText
     """Whom a technician calls about a sheet."""
-    emergency_telephone: Text
+    emergency_telephone: SaidText
     """Whom anybody calls after an accident."""
     hospital: Text = ""
     """Where an injection injury is treated, in the words for the card."""

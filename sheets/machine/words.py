@@ -6,13 +6,18 @@ import re
 from collections.abc import Callable
 from dataclasses import dataclass
 from datetime import date
-from typing import Any
+from typing import Any, Final
 
 from pydantic import GetCoreSchemaHandler, GetJsonSchemaHandler
 from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import CoreSchema, PydanticCustomError, core_schema
 
 from sheets.errors import nearest, quoted
+
+_SAYS_NOTHING: Final = re.compile(
+    r"(?:none|no|yes|nothing|nil|null|n\.?\s?/?\s?a\.?|not applicable|not available|not known|unknown|any|"
+    r"tb[acd]|to be \w+|to ?do|later|see above|\W*|x+)\W*"
+)
 
 
 def wrong(what: str, fix: str) -> PydanticCustomError:
@@ -58,9 +63,16 @@ class Wording(Reader):
 
     longest: int = 300
     example: str = "a text"
+    must_say: bool = False
+    """Whether a word that says nothing, such as none or n/a, is refused."""
 
     def read(self, given: object) -> str:
         text = text_of(given, self.example)
+        if self.must_say and _SAYS_NOTHING.fullmatch(text.casefold()):
+            raise wrong(
+                f"{quoted(text)} says nothing, and somebody has to work from it.",
+                "Look at the machine and write what is there; what isn't there can't be relied on.",
+            )
         if len(text) > self.longest:
             raise wrong(
                 f"The text has {len(text)} characters; at most {self.longest} have room.",

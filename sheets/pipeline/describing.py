@@ -38,6 +38,8 @@ class Described:
     circuit: Circuit
     sources: Sources
     walkdown: Walkdown | None = None
+    site_name: str = ""
+    """Name of the site file, where there was one."""
 
     @property
     def policies(self) -> Policies:
@@ -49,8 +51,8 @@ def check(machine_file: Path, site_file: Path | None = None, today: date | None 
 
     ``today`` only refuses walk-down answers from the future. Raises InputError.
     """
-    loaded = load_machine(machine_file)
     site = _site(machine_file, site_file)
+    loaded = load_machine(machine_file, site.site if site else None)
     walked = walkdown_beside(machine_file, loaded.machine, today)
     return _described(
         loaded.machine,
@@ -61,13 +63,14 @@ def check(machine_file: Path, site_file: Path | None = None, today: date | None 
             site=site.source if site else None,
             walkdown=walked.source if walked else None,
         ),
+        site_name=site.name if site else "",
     )
 
 
 def check_sources(sources: Sources) -> Described:
     """The same from the files as they travel in a pack. Raises InputError."""
-    machine = parse_machine(sources.machine, "machine file in the pack")
     site = parse_site(sources.site, "site file in the pack") if sources.site is not None else None
+    machine = parse_machine(sources.machine, "machine file in the pack", site)
     walked = (
         parse_walkdown(sources.walkdown, "walk-down in the pack", machine=machine, today=None)
         if sources.walkdown is not None
@@ -76,7 +79,9 @@ def check_sources(sources: Sources) -> Described:
     return _described(machine, site, walked, sources)
 
 
-def _described(machine: Machine, site: Site | None, walked: Walkdown | None, sources: Sources) -> Described:
+def _described(
+    machine: Machine, site: Site | None, walked: Walkdown | None, sources: Sources, *, site_name: str = ""
+) -> Described:
     policies = site.policies if site else Policies()
     ends = both_ends(
         machine,
@@ -86,7 +91,9 @@ def _described(machine: Machine, site: Site | None, walked: Walkdown | None, sou
     )
     # Where the maker's drawing shows no bleed, outlet pressure reaches a port that is cut off: the last end.
     # Where nobody has looked, the search refuses every state in which the end matters.
-    return Described(machine=machine, site=site, circuit=ends[-1], sources=sources, walkdown=walked)
+    return Described(
+        machine=machine, site=site, circuit=ends[-1], sources=sources, walkdown=walked, site_name=site_name
+    )
 
 
 def _site(machine_file: Path, site_file: Path | None) -> LoadedSite | None:
@@ -102,11 +109,11 @@ def walkdown_beside(machine_file: Path, machine: Machine, today: date | None) ->
 
 
 def check_text(described: Described) -> Iterator[str]:
-    return machine_lines(described.machine)
+    return machine_lines(described.machine, described.site, described.site_name)
 
 
 def check_json(described: Described) -> dict[str, Json]:
-    return machine_json(described.machine)
+    return machine_json(described.machine, described.site, described.site_name)
 
 
 def speaker_of(described: Described) -> Speaker:

@@ -147,6 +147,7 @@ def _judge(
         rating_bar=min(readings.rating_bar, gauge.rating_bar),
         gauge_error_bar=error,
         graduation_bar=graduation,
+        range_bar=gauge.range_bar,
     )
     target_bar, low_bar, high_bar = (
         as_set_bar(reading_bar=reading, setting_bar=level, graduation_bar=graduation)

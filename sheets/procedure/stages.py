@@ -72,7 +72,7 @@ def _isolate(job: Job, rig: Rig, kind: StageKind) -> Stage:
         _stop_service(job, rig)
     else:
         _stop(job, rig)
-    for supply in machine.energy:
+    for supply in machine.isolated:
         rig.say(StepKind.ISOLATE, supply)
     trapped = find_trapped(machine, circuit, rig.state.positions)
     vents = {relief.valve for relief in trapped.reliefs if relief.stays}
@@ -244,7 +244,7 @@ def _open_window(job: Job, rig: Rig) -> None:
         rig.say(StepKind.REMOVE_LOCKS)
     rig.say(StepKind.TELL_AFTER)
     if job.locked:
-        for supply in job.case.machine.energy:
+        for supply in job.case.machine.isolated:
             rig.say(StepKind.RESTORE_SUPPLY, supply)
 
 
@@ -455,7 +455,7 @@ def _return(job: Job, rig: Rig) -> Stage:
         rig.say(StepKind.REMOVE_LOCKS)
     rig.say(StepKind.TELL_AFTER)
     if job.locked:
-        for supply in job.case.machine.energy:
+        for supply in job.case.machine.isolated:
             rig.say(StepKind.RESTORE_SUPPLY, supply)
     _start(job, rig)
     rig.say(StepKind.WATCH)

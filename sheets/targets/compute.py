@@ -15,6 +15,7 @@ from sheets.machine.parts import FixedPump, LoadSensingControl, ReliefValve, Var
 from sheets.machine.screws import Screw, screws_of
 from sheets.machine.site import Policies
 from sheets.targets.demand import Demand, undescribed_loads, work_of
+from sheets.targets.guarding import reliefs_cut_off
 from sheets.targets.rules import (
     compensator_needed_bar,
     relief_capacity,
@@ -66,6 +67,9 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
     for line in lines:
         if line.limit is None and not line.reliefs:
             findings.append(Finding(code="nothing_limits", severity=Severity.REFUSED, subject=line.pump))
+        findings += reliefs_cut_off(
+            machine, circuit, pump=line.pump, reliefs=line.reliefs, controlled=line.limit is not None
+        )
         if line.difference is not None:
             _settle(settings, findings, differences[line.difference])
         if line.limit is not None:

@@ -83,14 +83,18 @@ def reading_window(
     return ReadingWindow(low_bar=first, high_bar=last, too_coarse=count < 3)
 
 
-def never_exceed_bar(*, rating_bar: float, gauge_error_bar: float, graduation_bar: float) -> float:
+def never_exceed_bar(
+    *, rating_bar: float, gauge_error_bar: float, graduation_bar: float, range_bar: float
+) -> float:
     """The reading that must never be passed, in bar, on a graduation.
 
     ``rating_bar``: lowest rating in reach; ``gauge_error_bar``: largest error of the gauge;
-    ``graduation_bar``: its smallest division or step. The true pressure
-    may stand above the reading by that error. Source: rule of this project.
+    ``graduation_bar``: its smallest division or step; ``range_bar``: the end of its scale, beyond which it
+    shows nothing more. The true pressure may stand above the reading by that error. Source: rule of this
+    project.
     """
-    return math.floor((rating_bar - gauge_error_bar) / graduation_bar + 1e-6) * graduation_bar
+    most_bar = min(rating_bar - gauge_error_bar, range_bar)
+    return math.floor(most_bar / graduation_bar + 1e-6) * graduation_bar
 
 
 def accuracy_ratio(*, half_window_bar: float, gauge_error_bar: float) -> float:

@@ -9,6 +9,7 @@ from sheets.circuit.plant import Adjust
 from sheets.circuit.verdict import Verdict
 from sheets.errors import Problem
 from sheets.machine.model import Machine
+from sheets.machine.site import Site
 from sheets.procedure.answers import NotFound, NotInUse, TestState
 from sheets.procedure.changes import Change
 from sheets.procedure.steps import Procedure, Reading
@@ -25,8 +26,8 @@ def rounded(value: float) -> float:
     return round(value, 6)
 
 
-def machine_json(machine: Machine) -> dict[str, Json]:
-    """Identity and counts of a machine file."""
+def machine_json(machine: Machine, site: Site | None = None, site_name: str = "") -> dict[str, Json]:
+    """Identity and counts of a machine file, and the site file that was taken with it."""
     return {
         "format": FORMAT,
         "tag": machine.tag,
@@ -37,6 +38,7 @@ def machine_json(machine: Machine) -> dict[str, Json]:
         "nets": len(machine.nets),
         "gauges": len(machine.gauges),
         "energy_sources": len(machine.energy),
+        "site": {"file": site_name, "plant": site.plant} if site is not None else None,
     }
 
 

@@ -195,7 +195,7 @@ class Speaker:
                 "where": supply.isolator.where,
                 "lock": supply.isolator.lock,
                 "voltage": self.figures.amount(Amount(value=supply.voltage_v, quantity="voltage_v")),
-                "feeds": ", ".join(supply.feeds),
+                "feeds": ", ".join(machine.fed_through(supply.isolator)),
             }
         screw = self.screws.get(step.subject)
         if screw is not None:
@@ -242,11 +242,10 @@ class Speaker:
 
     def oil_window(self) -> tuple[str, str]:
         """Oil temperatures between which settings are made."""
-        fluid = self.machine.fluid
-        low = fluid.lowest_setting_temperature_c
-        high = fluid.highest_setting_temperature_c
-        low = self.policies.lowest_setting_temperature_c if low is None else low
-        high = self.policies.highest_setting_temperature_c if high is None else high
+        low, high = self.machine.fluid.setting_window_c(
+            lowest_c=self.policies.lowest_setting_temperature_c,
+            highest_c=self.policies.highest_setting_temperature_c,
+        )
         text = [self.figures.amount(Amount(value=value, quantity="temperature_c")) for value in (low, high)]
         return text[0], text[1]
 

@@ -7,6 +7,7 @@ from collections.abc import Iterable, Iterator, Mapping
 from sheets.amounts import Finding, Severity
 from sheets.errors import Problem
 from sheets.machine.model import Machine
+from sheets.machine.site import Site
 from sheets.procedure.steps import Procedure
 from sheets.targets.settings import Targets
 from sheets.wording.findings import say_finding, say_not_in_use
@@ -20,12 +21,22 @@ _WORD = {
 }
 
 
-def machine_lines(machine: Machine) -> Iterator[str]:
-    """One line that the file is good, with what it holds."""
+def machine_lines(machine: Machine, site: Site | None = None, site_name: str = "") -> Iterator[str]:
+    """That the file is good, with what it holds, and which site file was taken with it."""
     yield (
-        f"{machine.tag} {machine.name}: good, {len(machine.parts)} parts, {len(machine.nets)} nets, "
-        f"{len(machine.gauges)} gauges, machine data of {machine.dated.isoformat()}"
+        f"{machine.tag} {machine.name}: good, {counted(len(machine.parts), 'part')}, "
+        f"{counted(len(machine.nets), 'net')}, {counted(len(machine.gauges), 'gauge')}, "
+        f"machine data of {machine.dated.isoformat()}"
     )
+    if site is not None:
+        yield f"with the site file {site_name} of {site.plant}"
+    else:
+        yield "without a site file: policy figures are the project's own"
+
+
+def counted(count: int, thing: str) -> str:
+    """A number of things: ``1 gauge``, ``2 gauges``."""
+    return f"{count} {thing}" if count == 1 else f"{count} {thing}s"
 
 
 def finding_lines(speaker: Speaker, findings: Iterable[Finding]) -> Iterator[str]:

@@ -95,6 +95,7 @@ def test_names_in_the_data_of_check(run: Callable[..., object], sample: Path) ->
     assert (done.status, done.err) == (0, "")
     data = json.loads(done.out)
     names = {"format", "tag", "name", "document", "dated", "parts", "nets", "gauges", "energy_sources"}
+    names |= {"site"}
     assert set(data) == names
     assert data["format"] == 1
 

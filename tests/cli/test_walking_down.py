@@ -86,7 +86,8 @@ def test_a_changed_policy_voids_an_acceptance(run: Callable[..., object], file: 
     run("walkdown", file, "--by", "A", "--all", "--accept", "RV1", *DAY)
     site = tmp_path / "other.yaml"
     site.write_text(
-        "format: 1\nplant: P\nplanner telephone: 1\nemergency telephone: 2\npolicies: {gap: 6 bar}\n"
+        "format: 1\nplant: Brackwater Tileworks\nplanner telephone: 1\nemergency telephone: 2\n"
+        "policies: {gap: 6 bar}\n"
     )
 
     done = run("steps", file, "--site", site)

@@ -113,6 +113,8 @@ def test_widening_up_to_the_ceiling_itself() -> None:
 @pytest.mark.parametrize(
     ("rating", "error", "graduation", "expected"),
     [
+        (315.0, 1.0, 2.0, 300.0),  # the scale ends at 300 bar
+        (315.0, 1.0, 7.0, 294.0),  # and its last division lies below its end
         (250.0, 1.0, 2.0, 248.0),  # 249 lies between two divisions
         (250.0, 0.2, 0.1, 249.8),
         (250.0, 0.625, 2.0, 248.0),
@@ -122,14 +124,18 @@ def test_widening_up_to_the_ceiling_itself() -> None:
     ],
 )
 def test_never_exceed(rating: float, error: float, graduation: float, expected: float) -> None:
-    found = never_exceed_bar(rating_bar=rating, gauge_error_bar=error, graduation_bar=graduation)
+    found = never_exceed_bar(
+        rating_bar=rating, gauge_error_bar=error, graduation_bar=graduation, range_bar=300.0
+    )
     assert found == pytest.approx(expected)
     assert found + error <= rating + 1e-9  # the true pressure may stand above by the error
 
 
 def test_never_exceed_in_psi() -> None:
     psi = 0.0689475729316836
-    found = never_exceed_bar(rating_bar=4000 * psi, gauge_error_bar=12.5 * psi, graduation_bar=20 * psi)
+    found = never_exceed_bar(
+        rating_bar=4000 * psi, gauge_error_bar=12.5 * psi, graduation_bar=20 * psi, range_bar=5000 * psi
+    )
     assert found / psi == pytest.approx(3980)
 
 
