@@ -82,8 +82,8 @@ def work(described: Described) -> Work:
 def test_a_load_that_stalls_alone_counts_where_it_moves(changed: Changed) -> None:
     # HM1: 480 N m / 0.9 · 20π / 400 = 83.8 bar; HM2: 91.67 / 0.9 · 20π / 160 = 40 bar. DV1 alone:
     # p = p/2 + 27 at the stall, 54 bar: it stands. Both: A = (p + load)/2, so LS = p/2 + 30.9, and the pump
-    # holds p − LS = 27 − 3·q/60 with q = 60·√((p − 83.8)/48) + 20·√((p − 40)/48): p = 109.1 bar. Signals and what
-    # HM1 leaks take up to 5 L/min more over DV1, which is up to 2 bar.
+    # holds p − LS = 27 − 3·q/60 with q = 60·√((p − 83.8)/48) + 20·√((p − 40)/48): p = 109.1 bar. Signals and
+    # what HM1 leaks take up to 5 L/min more over DV1, which is up to 2 bar.
     found = work(bank(changed, 480))
     assert found.findings == ()
     (worst, *_) = [demand for demand in found.demands if demand.actuator == "HM1"]
