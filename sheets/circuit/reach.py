@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
-from sheets.circuit.model import TANK, Circuit
+from sheets.circuit.model import TANK, Circuit, Node
 from sheets.machine.model import Machine
 from sheets.machine.parts import (
     CheckValve,
@@ -14,7 +14,6 @@ from sheets.machine.parts import (
     FlowPath,
     HandValve,
     Orifice,
-    ReliefValve,
 )
 
 
@@ -74,17 +73,33 @@ def joined_at_rest(machine: Machine, circuit: Circuit, node: int, *, shut: str =
     return frozenset(reached)
 
 
-def loaded_with(machine: Machine, circuit: Circuit, node: int) -> frozenset[int]:
+def weakest_loaded(
+    machine: Machine, circuit: Circuit, node: int, *, set_bar: float, reliefs_bar: Mapping[str, float]
+) -> Node:
+    """The node of the lowest rating among those that come to the pressure of a node in service.
+
+    ``set_bar``: what that node is set to, in bar; ``reliefs_bar``: setting of each relief that has one, in
+    bar. A relief that is set lower guards what lies behind it: from there on its own setting is what must
+    suit the ratings. One that is set higher, or to nobody knows what, guards nothing.
+    """
+    guarded = frozenset(
+        circuit.node_of[f"{id_}.P"]
+        for id_ in circuit.reliefs.ids
+        if id_ in reliefs_bar and reliefs_bar[id_] < set_bar
+    )
+    loaded = sorted(_loaded_with(machine, circuit, node, guarded=guarded))
+    return min((circuit.nodes[index] for index in loaded), key=lambda each: each.rating_bar)
+
+
+def _loaded_with(
+    machine: Machine, circuit: Circuit, node: int, *, guarded: frozenset[int] = frozenset()
+) -> frozenset[int]:
     """Nodes that can come to stand at the pressure of a node, itself included, while the machine works.
 
     Line valves at rest, filters, orifices and checks in their own direction lead on, and so does a spool in
-    each of its positions, between any two ports but T. The node of another relief valve ends the way: from
-    there on, that relief's own setting is what must suit the ratings.
+    each of its positions, between any two ports but T. A node in ``guarded`` ends the way.
     """
     rest = {valve: positions[0] for valve, positions in circuit.positions.items()}
-    relieved = {
-        circuit.node_of[f"{id_}.P"] for id_, part in machine.parts.items() if isinstance(part, ReliefValve)
-    }
     ways = [
         way
         for way in open_ways(machine, circuit, rest)
@@ -111,7 +126,7 @@ def loaded_with(machine: Machine, circuit: Circuit, node: int) -> frozenset[int]
             if way.end == here and not way.one_way:
                 ends.append(way.start)
             for end in ends:
-                if end not in reached | relieved | {TANK}:
+                if end not in reached | guarded | {TANK}:
                     reached.add(end)
                     front.append(end)
     return frozenset(reached)

@@ -86,7 +86,9 @@ class Readings:
     worst: tuple[Worst, ...]
     """Of every node, with the screw at its stop, after one slip, with one fault."""
     rating_bar: float
-    """Lowest rating in reach."""
+    """Lowest rating that the pressure comes to, in the state and in service."""
+    rated_by: str
+    """Part that has it."""
     floor_bar: float
     ceiling_bar: float
     """Bounds of a widened window."""
@@ -170,7 +172,13 @@ def _judge(
     if never < window.high_bar + graduation - 1e-9:
         return Failure(
             condition=Condition.SEEN,
-            data={**data, "never_exceed": bar(never), "top": bar(window.high_bar)},
+            data={
+                **data,
+                "never_exceed": bar(never),
+                "top": bar(window.high_bar),
+                "part": readings.rated_by if readings.rating_bar <= gauge.rating_bar else id_,
+                "rating": bar(min(readings.rating_bar, gauge.rating_bar)),
+            },
         )
     achieved = accuracy_ratio(half_window_bar=window.half_width_bar, gauge_error_bar=error)
     if achieved < 1.0:

@@ -6,7 +6,9 @@ from dataclasses import replace
 
 from sheets.amounts import Amount, Finding
 from sheets.circuit.faults import CAN_MOVE, CAN_RAISE, Fault, FaultKind, faults_of, solve_faults
+from sheets.circuit.model import Node
 from sheets.circuit.plant import Adjust, MoveValve, PlantState
+from sheets.circuit.reach import weakest_loaded
 from sheets.circuit.solution import Solution
 from sheets.circuit.solver import solve
 from sheets.machine.parts import HandValve
@@ -201,6 +203,9 @@ def _gauge(
 ) -> GaugeChoice | Failure:
     node = case.site(setting.adjuster).controlled_node
     reading_bar = target.pressures_bar[node]
+    weakest = min(
+        _in_service(case, setting), _here(case, target, reading_bar), key=lambda one: one.rating_bar
+    )
     return choose_gauge(
         case.machine,
         case.circuit,
@@ -213,15 +218,30 @@ def _gauge(
             low_bar=low.pressures_bar[node],
             high_bar=top.pressures_bar[node],
             worst=_worst(case, state, stop, setting),
-            rating_bar=min(
-                here.rating_bar
-                for here, pressure_bar in zip(case.circuit.nodes, target.pressures_bar, strict=True)
-                if pressure_bar >= _REACH_SHARE * reading_bar
-            ),
+            rating_bar=weakest.rating_bar,
+            rated_by=weakest.rated_by,
             floor_bar=low.pressures_bar[node] - setting.low_bar + setting.floor_bar,
             ceiling_bar=top.pressures_bar[node] - setting.high_bar + setting.ceiling_bar,
         ),
     )
+
+
+def _in_service(case: Case, setting: Setting) -> Node:
+    """The weakest node that the set pressure comes to once the barriers stand at rest again."""
+    return weakest_loaded(
+        case.machine,
+        case.circuit,
+        case.site(setting.adjuster).controlled_node,
+        set_bar=setting.target_bar,
+        reliefs_bar=case.targets.settings_bar(),
+    )
+
+
+def _here(case: Case, target: Solution, reading_bar: float) -> Node:
+    """The weakest node in reach in the test state itself."""
+    nodes = zip(case.circuit.nodes, target.pressures_bar, strict=True)
+    reached = (node for node, pressure_bar in nodes if pressure_bar >= _REACH_SHARE * reading_bar)
+    return min(reached, key=lambda node: node.rating_bar)
 
 
 def _worst(case: Case, state: PlantState, stop: Solution, setting: Setting) -> tuple[Worst, ...]:

@@ -8,8 +8,8 @@ from itertools import pairwise
 
 from sheets.amounts import Derivation, Finding, Severity, bar, lpm, ratio
 from sheets.circuit.load_sensing import standby_of
-from sheets.circuit.model import AdjusterSite, Circuit, Node
-from sheets.circuit.reach import joined_at_rest, loaded_with
+from sheets.circuit.model import AdjusterSite, Circuit
+from sheets.circuit.reach import joined_at_rest, weakest_loaded
 from sheets.machine.model import Machine
 from sheets.machine.parts import FixedPump, LoadSensingControl, ReliefValve, VariablePump
 from sheets.machine.screws import Screw, screws_of
@@ -85,7 +85,7 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
         if id_ not in settings and not any(finding.subject == id_ for finding in findings):
             _settle(settings, findings, _given(id_, screws, policies))
     for id_, setting in list(settings.items()):
-        checked = _within_rating(setting, sites[id_], machine, circuit)
+        checked = _within_rating(setting, sites[id_], machine, circuit, settings)
         settings[id_] = replace(setting, findings=setting.findings + checked)
         findings.extend(checked)
     ordered = {id_: settings[id_] for id_ in screws if id_ in settings}
@@ -317,8 +317,15 @@ def _relief(
         )
         target_bar = max(bottom_bar / (1.0 - policies.window_ratio), bottom_bar + policies.window_minimum_bar)
         if closing_is_policy:
-            rating_bar = _weakest(machine, circuit, circuit.node_of[f"{relief}.P"]).rating_bar
-            target_bar = _under_rating(target_bar, rating_bar, below.target_bar, policies)
+            given_bar = {id_: one.adjuster.setting_bar for id_, one in screws.items()}
+            weakest = weakest_loaded(
+                machine,
+                circuit,
+                circuit.node_of[f"{relief}.P"],
+                set_bar=target_bar,
+                reliefs_bar={id_: value for id_, value in given_bar.items() if value is not None},
+            )
+            target_bar = _under_rating(target_bar, weakest.rating_bar, below.target_bar, policies)
         origin = Origin.COMPUTED
     else:
         target_bar, origin = screw.setting_bar, Origin.GIVEN
@@ -398,17 +405,21 @@ def _ratio(plate: float | None, policy: float) -> tuple[float, bool]:
     return (policy, True) if plate is None else (plate, False)
 
 
-def _weakest(machine: Machine, circuit: Circuit, node: int) -> Node:
-    """The node of the lowest rating among those that come to the pressure of a node."""
-    loaded = sorted(loaded_with(machine, circuit, node))
-    return min((circuit.nodes[index] for index in loaded), key=lambda each: each.rating_bar)
-
-
 def _within_rating(
-    setting: Setting, site: AdjusterSite, machine: Machine, circuit: Circuit
+    setting: Setting,
+    site: AdjusterSite,
+    machine: Machine,
+    circuit: Circuit,
+    settings: Mapping[str, Setting],
 ) -> tuple[Finding, ...]:
     """A setting must lie under every rating that its pressure comes to, window and all."""
-    node = _weakest(machine, circuit, site.controlled_node)
+    node = weakest_loaded(
+        machine,
+        circuit,
+        site.controlled_node,
+        set_bar=setting.target_bar,
+        reliefs_bar={id_: other.target_bar for id_, other in settings.items()},
+    )
     if setting.high_bar <= node.rating_bar:
         return ()
     return (
