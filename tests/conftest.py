@@ -1,10 +1,12 @@
 """What all tests share: the project's folder, the three sample machines, and changed copies of them."""
 
+import contextlib
 import os
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from functools import lru_cache
 from pathlib import Path
 
+import postgres_server
 import pytest
 
 from sheets.pages.compose.matter import Matter
@@ -81,3 +83,14 @@ def refused(changed: Callable[..., Described]) -> Callable[..., Matter]:
         return steps(changed(name, *replacements))
 
     return compute
+
+
+@pytest.fixture(scope="session")
+def postgres() -> Iterator[postgres_server.Server]:
+    """A PostgreSQL server; where none is installed, its tests are passed over by name."""
+    with contextlib.ExitStack() as stack:
+        try:
+            server = stack.enter_context(postgres_server.running())
+        except LookupError as missing:
+            pytest.skip(str(missing))
+        yield server

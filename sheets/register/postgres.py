@@ -13,7 +13,7 @@ from sqlalchemy import create_engine, event
 from sqlalchemy.engine import URL, Connection, make_url
 from sqlalchemy.exc import ArgumentError, DBAPIError, OperationalError
 
-from sheets.errors import InputError, Problem
+from sheets.errors import InputError, Problem, quoted
 from sheets.register.database import BUSY, DISK, Database
 from sheets.register.events import NO_EVENT
 
@@ -74,7 +74,7 @@ class PostgresDatabase(Database):
         try:
             self.engine = create_engine(
                 url.set(drivername="postgresql+psycopg"),
-                connect_args={"connect_timeout": max(2, round(wait_s)), "prepare_threshold": None},
+                connect_args={"connect_timeout": max(2, round(wait_s)), "client_encoding": "UTF8"},
             )
         except ImportError:
             raise InputError(
@@ -162,7 +162,10 @@ class PostgresDatabase(Database):
             return None
         state = getattr(error.orig, "sqlstate", None)
         if state is None and isinstance(error, OperationalError):
-            state = "08"  # psycopg itself couldn't connect, or lost the server
+            # psycopg itself couldn't connect, or lost the server; the end of what it says tells why, without password
+            why = str(error.orig).strip().rsplit("\n", 1)[-1].rsplit("FATAL:  ", 1)[-1]
+            what, fix = _SAYINGS["08"]
+            return Problem(where=self.where, what=f"{what} {quoted(why)}", fix=fix)
         for begins, (what, fix) in _SAYINGS.items():
             if str(state).startswith(begins):
                 return Problem(where=self.where, what=what, fix=fix)
@@ -198,7 +201,6 @@ _SAYINGS: Final = {
     "55P03": BUSY,
     "25006": ("The register was opened for reading only.", "Open it for writing."),
     "42501": _FORBIDDEN,
-    "3D000": ("There is no database of that name.", "Make it first, with encoding UTF8, or correct the URL."),
     "53": DISK,
     "58": DISK,
     "XX": DISK,

@@ -100,6 +100,16 @@ class View:
 class Writer(View):
     """The one writer: what it read stays true until it has written."""
 
+    def __init__(self, connection: Connection) -> None:
+        super().__init__(connection)
+        self._end: tuple[int, str] | None = None
+
+    def last(self) -> tuple[int, str]:
+        """As of any view; read once, since nobody else writes meanwhile."""
+        if self._end is None:
+            self._end = super().last()
+        return self._end
+
     def append(self, entry: Entry) -> Event:
         """Adds an event. Raises InputError for a text that can't stand in one."""
         sequence, previous = self.last()
@@ -134,6 +144,7 @@ class Writer(View):
         The guards of the database refuse it anywhere but at the end of the chain.
         """
         self._connection.execute(EVENTS.insert(), vars(event))
+        self._end = event.sequence, event.hash
 
 
 def _named(what: str, text: str) -> str:

@@ -10,19 +10,39 @@ import pytest
 from register_bench import CONTENT, FILE, MACHINE, NOON, at, unguarded
 
 from sheets.register.issuing import Reservation, commit, reserve, sign_event
-from sheets.register.opening import create_register
+from sheets.register.opening import Place, create_register
 from sheets.register.revisions import Revision, Signer
 from sheets.register.store import Register
+
+DATABASES = ("SQLite", "PostgreSQL")
+
+
+def pytest_generate_tests(metafunc: pytest.Metafunc) -> None:
+    """Every test of a register runs on both databases, but for one that is about the file itself."""
+    if "database" in metafunc.fixturenames:
+        names = DATABASES[:1] if "path" in metafunc.fixturenames else DATABASES
+        metafunc.parametrize("database", names)
 
 
 @pytest.fixture
 def path(tmp_path: Path) -> Path:
+    """The file of a register; a test that asks for it is about SQLite only."""
     return tmp_path / "plant.register"
 
 
 @pytest.fixture
-def register(path: Path) -> Iterator[Register]:
-    with create_register(path, by="Ines Kurz", when=NOON) as made:
+def place(database: str, tmp_path: Path, request: pytest.FixtureRequest) -> Iterator[Place]:
+    """Where a register may be made."""
+    if database == "PostgreSQL":
+        with request.getfixturevalue("postgres").fresh() as url:
+            yield url
+    else:
+        yield tmp_path / "plant.register"
+
+
+@pytest.fixture
+def register(place: Place) -> Iterator[Register]:
+    with create_register(place, by="Ines Kurz", when=NOON) as made:
         yield made
 
 
@@ -81,12 +101,12 @@ def issue(register: Register, hold: Callable[..., Reservation]) -> Callable[...,
 
 
 @pytest.fixture
-def meddle(path: Path) -> Callable[..., None]:
+def meddle(place: Place) -> Callable[..., None]:
     """Another program that takes the guards off, runs its statements, and puts the guards back."""
 
     def meddled(*statements: str, **values: object) -> None:
-        with unguarded(path) as database:
+        with unguarded(place) as database:
             for statement in statements:
-                database.execute(statement, values)
+                database.run(statement, **values)
 
     return meddled

@@ -2,15 +2,14 @@
 
 from __future__ import annotations
 
-import sqlite3
 from collections.abc import Callable
-from pathlib import Path
 
 import pytest
-from register_bench import FIELDS, rehash, told_hash
+from register_bench import FIELDS, Meddler, rehash, told_hash
 
 from sheets.errors import InputError
 from sheets.register.chain import Anchor, Break, check_chain
+from sheets.register.opening import Place
 from sheets.register.revisions import Revision
 from sheets.register.store import Register
 
@@ -35,11 +34,10 @@ def test_a_whole_chain_holds_and_says_whether_an_anchor_was_seen(register: Regis
 
 
 @pytest.mark.usefixtures("kept")
-def test_hashes_are_those_of_the_description(path: Path) -> None:
-    with sqlite3.connect(path) as database:
-        for *row, found in database.execute(f"SELECT {FIELDS}, hash FROM events"):
+def test_hashes_are_those_of_the_description(place: Place) -> None:
+    with Meddler(place) as database:
+        for *row, found in database.run(f"SELECT {FIELDS}, hash FROM events"):
             assert found == told_hash(tuple(row))
-    database.close()
 
 
 MEDDLING = {
@@ -66,7 +64,11 @@ MEDDLING = {
         Break.CHANGED,
         3,
     ),
-    "hash changed": (["UPDATE events SET hash = lower(hex(zeroblob(32)))"], Break.CHANGED, 1),
+    "hash changed": (
+        ["UPDATE events SET hash = 'none'"],
+        Break.CHANGED,
+        1,
+    ),
     "appended with a wrong hash": (
         [
             "INSERT INTO events SELECT 10, time, who, kind, machine, document, record_id, data, hash,"
@@ -75,13 +77,12 @@ MEDDLING = {
         Break.CHANGED,
         10,
     ),
-    "bytes for text": (["UPDATE events SET who = x'31' WHERE sequence = 6"], Break.UNREADABLE, 6),
-    "bytes that aren't UTF-8": (
-        ["UPDATE events SET who = CAST(x'ff80' AS TEXT) WHERE sequence = 6"],
-        Break.UNREADABLE,
-        6,
-    ),
 }
+UNTYPED = {
+    "bytes for text": "x'31'",
+    "bytes that aren't UTF-8": "CAST(x'ff80' AS TEXT)",
+}
+"""What SQLite keeps and PostgreSQL doesn't."""
 
 
 @pytest.mark.usefixtures("kept")
@@ -99,14 +100,23 @@ def test_the_first_broken_event_is_named(
     assert not verdict.holds
 
 
+@pytest.mark.usefixtures("kept", "path")
+@pytest.mark.parametrize("value", UNTYPED.values(), ids=UNTYPED.keys())
+def test_an_event_that_is_no_text_is_named(
+    register: Register, meddle: Callable[..., None], value: str
+) -> None:
+    meddle(f"UPDATE events SET who = {value} WHERE sequence = 6")
+    verdict = check_chain(register)
+    assert (verdict.broken, verdict.broken_at) == (Break.UNREADABLE, 6)
+
+
 @pytest.mark.usefixtures("kept")
 def test_an_event_with_a_right_hash_on_another_one_is_unlinked(
-    register: Register, path: Path, meddle: Callable[..., None]
+    register: Register, place: Place, meddle: Callable[..., None]
 ) -> None:
-    meddle("UPDATE events SET previous = lower(hex(randomblob(32))) WHERE sequence = 5")
-    with sqlite3.connect(path) as database:
-        (row,) = database.execute(f"SELECT {FIELDS} FROM events WHERE sequence = 5")
-    database.close()
+    meddle("UPDATE events SET previous = 'none' WHERE sequence = 5")
+    with Meddler(place) as database:
+        (row,) = database.run(f"SELECT {FIELDS} FROM events WHERE sequence = 5")
     meddle("UPDATE events SET hash = :hash WHERE sequence = 5", hash=told_hash(row))
     verdict = check_chain(register)
     assert (verdict.broken, verdict.broken_at) == (Break.UNLINKED, 5)
@@ -114,10 +124,10 @@ def test_an_event_with_a_right_hash_on_another_one_is_unlinked(
 
 @pytest.mark.usefixtures("kept")
 def test_a_second_opening_breaks_the_chain(
-    register: Register, path: Path, meddle: Callable[..., None]
+    register: Register, place: Place, meddle: Callable[..., None]
 ) -> None:
     meddle("UPDATE events SET kind = 'opened' WHERE sequence = 5")
-    rehash(path, 5)
+    rehash(place, 5)
     verdict = check_chain(register)
     assert (verdict.broken, verdict.broken_at) == (Break.NOT_OPENED, 5)
 
@@ -133,10 +143,10 @@ def test_only_the_anchor_shows_an_end_that_was_cut_off(
 
 
 def test_only_the_anchor_shows_a_chain_that_was_written_anew(
-    register: Register, kept: Anchor, path: Path, meddle: Callable[..., None]
+    register: Register, kept: Anchor, place: Place, meddle: Callable[..., None]
 ) -> None:
     meddle("UPDATE events SET who = 'Olaf Brenner' WHERE sequence = 3")
-    rehash(path, 3)
+    rehash(place, 3)
     assert check_chain(register).holds
     verdict = check_chain(register, kept)
     assert (verdict.broken, verdict.broken_at) == (Break.REWRITTEN, 9)

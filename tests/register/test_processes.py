@@ -17,19 +17,18 @@ from sheets.errors import InputError
 from sheets.register.chain import check_chain
 from sheets.register.finding import document_revisions, revision_of
 from sheets.register.issuing import LEFT_OVER, void_left_over
-from sheets.register.opening import open_register
+from sheets.register.opening import Place, open_register
 from sheets.register.revisions import RevisionState
 from sheets.register.store import Register
 
 WORKER = """
 import os, sys
 from datetime import UTC, datetime
-from pathlib import Path
 from sheets.register.issuing import reserve
 from sheets.register.opening import open_register
 
-path, count, document, machine = sys.argv[1:]
-with open_register(Path(path), wait_s=60) as register:
+place, count, document, machine = sys.argv[1:]
+with open_register(place, wait_s=120) as register:
     print("ready", flush=True)
     sys.stdin.readline()
     for _ in range(int(count)):
@@ -39,9 +38,9 @@ with open_register(Path(path), wait_s=60) as register:
 """
 
 
-def start(root: Path, path: Path, count: int) -> subprocess.Popen[str]:
+def start(root: Path, place: Place, count: int) -> subprocess.Popen[str]:
     return subprocess.Popen(
-        [sys.executable, "-c", WORKER, str(path), str(count), "WI-204", "KP-2"],
+        [sys.executable, "-c", WORKER, str(place), str(count), "WI-204", "KP-2"],
         stdin=subprocess.PIPE,
         stdout=subprocess.PIPE,
         text=True,
@@ -55,40 +54,45 @@ def go(worker: subprocess.Popen[str]) -> None:
     worker.stdin.flush()
 
 
-def test_two_programs_never_hold_the_same_revision(register: Register, path: Path, root: Path) -> None:
-    workers = [start(root, path, 40) for _ in range(2)]
+WRITERS, EACH = 8, 15
+
+
+def test_eight_programs_never_hold_the_same_revision(register: Register, place: Place, root: Path) -> None:
+    workers = [start(root, place, EACH) for _ in range(WRITERS)]
     for worker in workers:
         go(worker)
-    told = [line.split() for worker in workers for line in worker.communicate(timeout=120)[0].splitlines()]
-    assert [worker.returncode for worker in workers] == [0, 0]
+    told = [line.split() for worker in workers for line in worker.communicate(timeout=240)[0].splitlines()]
+    assert [worker.returncode for worker in workers] == [0] * WRITERS
     numbers = sorted(int(number) for number, _ in told)
-    assert numbers == list(range(1, 81))
+    assert numbers == list(range(1, WRITERS * EACH + 1))
     revisions = document_revisions(register, "WI-204")
     assert {str(one.number): one.record_id for one in revisions} == dict(told)
-    assert [one.state for one in revisions] == [RevisionState.VOID] * 79 + [RevisionState.RESERVED]
+    assert [one.state for one in revisions] == [RevisionState.VOID] * (WRITERS * EACH - 1) + [
+        RevisionState.RESERVED
+    ]
     assert check_chain(register).holds
 
 
 def test_a_program_killed_while_it_reserves_loses_nothing_acknowledged(
-    register: Register, path: Path, root: Path
+    register: Register, place: Place, root: Path
 ) -> None:
     register.close()
     chance = Random()
     told: dict[str, int] = {}
     for _ in range(8):
-        worker = start(root, path, 100_000)
+        worker = start(root, place, 100_000)
         go(worker)
         time.sleep(chance.uniform(0.002, 0.12))
         worker.send_signal(signal.SIGKILL)
         output, _ = worker.communicate(timeout=60)
         lines = output.split("\n")[:-1]  # the last piece isn't a whole line: not acknowledged
         told |= {record_id: int(number) for number, record_id in (line.split() for line in lines)}
-        with open_register(path) as opened:
+        with open_register(place) as opened:
             assert check_chain(opened).holds
             kept = {one.record_id: one.number for one in document_revisions(opened, "WI-204")}
             assert told.items() <= kept.items()
     assert told
-    with open_register(path) as opened:
+    with open_register(place) as opened:
         (left,) = void_left_over(opened, reserved_before=at(90), by="Ines Kurz", when=NOON)
         assert revision_of(opened, left.record_id).reason == LEFT_OVER
 

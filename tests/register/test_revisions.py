@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
-from pathlib import Path
 
 import pytest
 from register_bench import rehash
@@ -13,6 +12,7 @@ from sheets.errors import InputError
 from sheets.register.currency import Standing, currency_of
 from sheets.register.events import Event
 from sheets.register.issuing import Reservation
+from sheets.register.opening import Place
 from sheets.register.revisions import revisions_from
 from sheets.register.store import Register
 
@@ -66,12 +66,12 @@ def test_kinds_of_other_purposes_are_passed_over(reserved: Event) -> None:
 
 
 def test_a_record_id_of_two_documents_names_neither(
-    register: Register, hold: Callable[..., Reservation], meddle: Callable[..., None], path: Path
+    register: Register, hold: Callable[..., Reservation], meddle: Callable[..., None], place: Place
 ) -> None:
     held = hold("WI-1")
     hold("WI-2")
     meddle("UPDATE events SET record_id = :same WHERE kind = 'reserved'", same=held.record_id)
-    rehash(path, 1)
+    rehash(place, 1)
     currency = currency_of(register, held.record_id)
     assert currency.standing is Standing.NOT_ESTABLISHED
     assert "event 3" in currency.trouble
