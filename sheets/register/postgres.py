@@ -162,7 +162,7 @@ class PostgresDatabase(Database):
             return None
         state = getattr(error.orig, "sqlstate", None)
         if state is None and isinstance(error, OperationalError):
-            # psycopg itself couldn't connect, or lost the server; the end of what it says tells why, without password
+            # psycopg couldn't connect, or lost the server; the end of what it says tells why, no password
             why = str(error.orig).strip().rsplit("\n", 1)[-1].rsplit("FATAL:  ", 1)[-1]
             what, fix = _SAYINGS["08"]
             return Problem(where=self.where, what=f"{what} {quoted(why)}", fix=fix)
