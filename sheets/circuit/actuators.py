@@ -46,8 +46,11 @@ class Actuators:
     swept_a, swept_b : L/min per m/s for a cylinder, L/min per rev/min for a motor
         6·A for an area in cm²; V/1000 for a displacement in cm³. Force times speed is pressure times flow,
         so the same figure turns pressure into force.
-    resists_forward_bar, resists_backward_bar : bar
-        Load and friction against each sense, over the larger side: the dead band.
+    load_forward_bar, load_backward_bar : bar
+        Work load and the friction that comes with it, against each sense, over the larger side. Only while
+        the state is ``loaded``: an idle machine doesn't press on anything.
+    friction_bar : bar
+        Friction of what pushes by itself (a weight), against both senses. It is always there.
     drives_bar : bar
         What pushes in the positive sense by itself (a weight), over the larger side; negative for backward.
     case_leakage, cross_leakage : L/min/bar
@@ -56,7 +59,8 @@ class Actuators:
     Returns
     -------
     speed : m/s or rev/min
-        q/swept of the larger side, with q = (ramp(f − forward) − ramp(−f − backward))/c and the surplus
+        q/swept of the larger side, with q = (ramp(f − forward) − ramp(−f − backward))/c, the dead band of
+        load and friction, and the surplus
         f = (p_A·swept_a − p_B·swept_b)/larger + drives. Nothing into a stop.
     flow : L/min
         speed·swept at each side.
@@ -71,8 +75,9 @@ class Actuators:
     case: Ints
     swept_a: Floats
     swept_b: Floats
-    resists_forward_bar: Floats
-    resists_backward_bar: Floats
+    load_forward_bar: Floats
+    load_backward_bar: Floats
+    friction_bar: Floats
     drives_bar: Floats
     case_leakage: Floats
     cross_leakage: Floats
@@ -92,8 +97,9 @@ class Actuators:
         p_a, p_b = pressures_bar[:, self.node_a], pressures_bar[:, self.node_b]
         surplus = (p_a * self.swept_a - p_b * self.swept_b) / fixed.larger + self.drives_bar
         bend = LEAST_FORCE_BEND_BAR * widening
-        forward, by_forward = ramp(x=surplus - self.resists_forward_bar, width=bend)
-        backward, by_backward = ramp(x=-surplus - self.resists_backward_bar, width=bend)
+        resists_forward, resists_backward = state.once(self, "resists", lambda: self._resists(state))
+        forward, by_forward = ramp(x=surplus - resists_forward, width=bend)
+        backward, by_backward = ramp(x=-surplus - resists_backward, width=bend)
         swept_flow = (forward * state.may_extend - backward * state.may_retract) / DAMPING_BAR_PER_LPM
 
         inflow = fixed.moves * swept_flow[:, :, None]
@@ -119,6 +125,14 @@ class Actuators:
             slopes=by_pressures,
             adjusters=NO_ADJUSTERS,
             setting_slopes=NO_SLOPES,
+        )
+
+    def _resists(self, state: StateArrays) -> tuple[Floats, Floats]:
+        """[B, actuators] the dead band against each sense, in bar over the larger side."""
+        acts = state.loaded[:, None]
+        return (
+            acts * self.load_forward_bar + self.friction_bar,
+            acts * self.load_backward_bar + self.friction_bar,
         )
 
     @cached_property

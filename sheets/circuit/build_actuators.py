@@ -30,8 +30,9 @@ def build_actuators(machine: Machine, book: NodeBook, *, reference_flow_lpm: flo
         case=rows.index("case"),
         swept_a=rows.floats("swept_a"),
         swept_b=rows.floats("swept_b"),
-        resists_forward_bar=rows.floats("forward"),
-        resists_backward_bar=rows.floats("backward"),
+        load_forward_bar=rows.floats("forward"),
+        load_backward_bar=rows.floats("backward"),
+        friction_bar=rows.floats("friction"),
         drives_bar=rows.floats("drives"),
         case_leakage=rows.floats("case_leakage"),
         cross_leakage=rows.floats("cross_leakage"),
@@ -43,7 +44,6 @@ def _add_cylinder(rows: Rows, part_id: str, part: Cylinder, book: NodeBook) -> N
     swept_a = swept_by_area(bore_mm=part.bore_mm)
     # Force in kN times speed in m/s is power in kW; pressure times flow is 600 times that in bar·L/min.
     bar_of_kn = BAR_LPM_OF_KW / swept_a
-    friction_kn = (1.0 / part.force_efficiency - 1.0) * part.weight_kn
     sign = 1.0 if part.weight_drives == "extending" else -1.0
     rows.add(
         id=part_id,
@@ -52,8 +52,9 @@ def _add_cylinder(rows: Rows, part_id: str, part: Cylinder, book: NodeBook) -> N
         case=TANK,
         swept_a=swept_a,
         swept_b=swept_by_area(bore_mm=part.bore_mm, rod_mm=part.rod_mm),
-        forward=(part.extending_load_kn / part.force_efficiency + friction_kn) * bar_of_kn,
-        backward=(part.retracting_load_kn / part.force_efficiency + friction_kn) * bar_of_kn,
+        forward=part.extending_load_kn / part.force_efficiency * bar_of_kn,
+        backward=part.retracting_load_kn / part.force_efficiency * bar_of_kn,
+        friction=(1.0 / part.force_efficiency - 1.0) * part.weight_kn * bar_of_kn,
         drives=sign * part.weight_kn * bar_of_kn,
         case_leakage=0.0,
         cross_leakage=0.0,
@@ -66,8 +67,7 @@ def _add_motor(
 ) -> None:
     swept = part.displacement_cm3 / 1000.0
     bar_of_nm = pressure_of_torque(torque_nm=1.0, displacement_cm3=part.displacement_cm3)
-    friction_nm = (1.0 / part.mechanical_efficiency - 1.0) * part.driving_torque_nm
-    resists = (part.load_torque_nm / part.mechanical_efficiency + friction_nm) * bar_of_nm
+    load_bar = part.load_torque_nm / part.mechanical_efficiency * bar_of_nm
     sign = 1.0 if part.driving_torque_turns == "forward" else -1.0
     at_rating_lpm = part.leakage_at_rating_lpm
     if at_rating_lpm is None:
@@ -81,8 +81,9 @@ def _add_motor(
         case=TANK if case is None else case,
         swept_a=swept,
         swept_b=swept,
-        forward=resists,
-        backward=resists,
+        forward=load_bar,
+        backward=load_bar,
+        friction=(1.0 / part.mechanical_efficiency - 1.0) * part.driving_torque_nm * bar_of_nm,
         drives=sign * part.driving_torque_nm * bar_of_nm,
         case_leakage=0.0 if case is None else leakage,
         cross_leakage=leakage if case is None else 0.0,

@@ -28,6 +28,8 @@ class PlantState:
     """Pressure that each node had before: the memory of groups that are cut off."""
     travel: Mapping[str, Travel]
     """Actuator id to where it stands."""
+    loaded: bool = True
+    """Whether the work loads of the file act. At work they do; an idle machine may have none of them."""
 
     def moved(self, valve: str, position: str) -> PlantState:
         """The same state with one valve in another position."""
@@ -40,6 +42,10 @@ class PlantState:
     def driven(self, drive: str, *, on: bool) -> PlantState:
         """The same state with one drive started or stopped."""
         return replace(self, running=self.running | {drive} if on else self.running - {drive})
+
+    def unloaded(self) -> PlantState:
+        """The same state without the work loads: nothing but weights and oil acts on the actuators."""
+        return replace(self, loaded=False)
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -112,6 +112,7 @@ def as_arrays(circuit: Circuit, states: Sequence[PlantState]) -> StateArrays:
         ),
         may_extend=np.array(travels, dtype=object).T.reshape(shape) != "far stop",
         may_retract=np.array(travels, dtype=object).T.reshape(shape) != "near stop",
+        loaded=np.array([state.loaded for state in states], dtype=np.bool_),
     )
 
 

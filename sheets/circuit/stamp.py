@@ -35,6 +35,8 @@ class StateArrays:
     """[B, actuators] not at the far stop."""
     may_retract: Bools
     """[B, actuators] not at the near stop."""
+    loaded: Bools
+    """[B] whether the work loads act."""
     _once: dict[tuple[int, str], Any] = field(default_factory=dict, init=False, repr=False, compare=False)
 
     def take(self, rows: Ints) -> StateArrays:
@@ -52,6 +54,7 @@ class StateArrays:
             held_bar=self.held_bar[rows],
             may_extend=self.may_extend[rows],
             may_retract=self.may_retract[rows],
+            loaded=self.loaded[rows],
         )
 
     def once(self, family: object, name: str, find: Callable[[], _T]) -> _T:

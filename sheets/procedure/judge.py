@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import replace
 
 from sheets.amounts import Amount, Finding
 from sheets.circuit.faults import CAN_MOVE, CAN_RAISE, Fault, FaultKind, faults_of, solve_faults
-from sheets.circuit.model import Node
+from sheets.circuit.model import AdjusterSite, Node
 from sheets.circuit.plant import Adjust, MoveValve, PlantState
 from sheets.circuit.reach import weakest_loaded
 from sheets.circuit.solution import Solution
@@ -40,7 +41,9 @@ def judge(case: Case, candidate: Candidate, adjuster: str) -> TestState | Failur
     """The test state that a candidate is for an adjuster, or the first condition that fails.
 
     With the adjuster at the bottom of its window, at its target, at the top and at its stop; then with single
-    faults. Where only the stop fails, the adjuster that stands out of the way may instead stand just ahead.
+    faults; each with the work loads of the file and without them, since a machine that stands for setting
+    may press on nothing, and then no load holds it. Where only the stop fails, the adjuster that stands out
+    of the way may instead stand just ahead.
     """
     outcome = _judge(case, candidate, adjuster)
     if isinstance(outcome, Failure) and outcome.condition is Condition.WITHIN:
@@ -78,21 +81,15 @@ def _judge(case: Case, candidate: Candidate, adjuster: str) -> TestState | Failu
     site, setting = case.site(adjuster), case.targets.settings[adjuster]
     state = apply(case.base, candidate.changes)
     levels = (setting.low_bar, setting.target_bar, setting.high_bar)
-    solved = solve(
-        case.circuit, [state.adjusted(adjuster, level) for level in (*levels, site.highest_bar)], effects=True
-    )
-    low, target, top, stop = (solved.one(index) for index in range(4))
-    for solution, level in zip((low, target, top), levels, strict=True):
-        failure = first_failure(solution, site, level, case.trusted_ports)
-        if failure is not None:
-            return failure
+    standing = [state.adjusted(adjuster, level) for level in (*levels, site.highest_bar)]
+    solved = solve(case.circuit, [*standing, *(one.unloaded() for one in standing)], effects=True)
+    low, target, top, stop, *idle = (solved.one(index) for index in range(2 * len(standing)))
     failure = (
-        _at_another_flow(setting, target)
+        _at_its_levels((low, target, top), levels, case, site)
+        or _at_another_flow(setting, target)
         or _too_much_through(case, candidate, target)
-        or unestablished(stop, case.trusted_ports)
-        or moving(stop)
-        or starved(stop)
-        or over_rating(stop)
+        or _at_its_stop(stop, case)
+        or without_load(_at_its_levels(idle[:-1], levels, case, site) or _at_its_stop(idle[-1], case))
         or moved_by_fault(case, state, target)
     )
     if failure is not None:
@@ -104,6 +101,27 @@ def _judge(case: Case, candidate: Candidate, adjuster: str) -> TestState | Failu
     if isinstance(gauge, Failure):
         return gauge
     return _found(case, candidate, adjuster, target, gauge, load)
+
+
+def _at_its_levels(
+    solutions: Sequence[Solution], levels: Sequence[float], case: Case, site: AdjusterSite
+) -> Failure | None:
+    """The first condition that fails at the bottom, the middle or the top of the window."""
+    for solution, level_bar in zip(solutions, levels, strict=True):
+        failure = first_failure(solution, site, level_bar, case.trusted_ports)
+        if failure is not None:
+            return failure
+    return None
+
+
+def _at_its_stop(stop: Solution, case: Case) -> Failure | None:
+    """The first condition that fails with the screw at its stop; nothing needs to follow it there."""
+    return unestablished(stop, case.trusted_ports) or moving(stop) or starved(stop) or over_rating(stop)
+
+
+def without_load(failure: Failure | None) -> Failure | None:
+    """A failure of the state without work loads, said so."""
+    return None if failure is None else replace(failure, data={**failure.data, "idle": "idle"})
 
 
 def _found(
@@ -169,8 +187,14 @@ def _too_much_through(case: Case, candidate: Candidate, target: Solution) -> Fai
 def moved_by_fault(case: Case, state: PlantState, sound: Solution | None = None) -> Failure | None:
     """What moves, or passes a rating, when one spool sticks or leaks, or one coil is dead.
 
-    ``sound`` is the solution of the state without a fault, from which the others start faster.
+    With the work loads of the file, then without them: a light load moves sooner, and the oil that a piston
+    shuts in rises farther. ``sound`` is the solution of the state without a fault, from which the others
+    start faster.
     """
+    return _moved_by_fault(case, state, sound) or without_load(_moved_by_fault(case, state.unloaded(), sound))
+
+
+def _moved_by_fault(case: Case, state: PlantState, sound: Solution | None) -> Failure | None:
     faults = faults_of(case.machine, case.circuit, state, kinds=CAN_MOVE)
     start_bar = sound.pressures_bar if sound is not None else None
     solutions = solve_faults(case.circuit, state, faults, start_bar=start_bar)
@@ -251,32 +275,10 @@ def _worst(case: Case, state: PlantState, stop: Solution, setting: Setting) -> t
     counted: its pressure is approached slowly, with a stop rule. States that aren't established count as
     beyond every gauge.
     """
-    slips = [
-        (state.moved(valve, other), {"slip": "valve", "valve": valve, "position": other})
-        for valve, positions in case.circuit.positions.items()
-        for other in positions
-        if other != state.positions[valve]
-    ]
-    slips += [
-        (state.adjusted(site.id, site.highest_bar), {"slip": "screw", "adjuster": site.id})
-        for site in case.circuit.adjusters
-    ]
-    solved = solve(case.circuit, [slip for slip, _ in slips])
-    faults = [
-        fault
-        for fault in faults_of(case.machine, case.circuit, state, kinds=CAN_RAISE)
-        if not (fault.kind is FaultKind.RELIEF_STUCK_SHUT and fault.part == setting.part)
-    ]
-    caused = [
-        (stop, {"slip": "screw", "adjuster": setting.adjuster}),
-        *((solved.one(index), cause) for index, (_, cause) in enumerate(slips)),
-        *(
-            (solution, {"slip": "fault", "valve": fault.part, "fault": fault.kind.value})
-            for fault, solution in zip(
-                faults, solve_faults(case.circuit, state, faults, start_bar=stop.pressures_bar), strict=True
-            )
-        ),
-    ]
+    caused = [(stop, {"slip": "screw", "adjuster": setting.adjuster})]
+    for standing in (state, state.unloaded()):
+        caused += _after_slips(case, standing)
+        caused += _with_faults(case, standing, stop, setting)
     return tuple(
         max(
             (
@@ -292,6 +294,38 @@ def _worst(case: Case, state: PlantState, stop: Solution, setting: Setting) -> t
     )
 
 
+_Caused = tuple[Solution, dict[str, str]]
+"""A solved state with the slip or fault that made it."""
+
+
+def _after_slips(case: Case, state: PlantState) -> list[_Caused]:
+    slips = [
+        (state.moved(valve, other), {"slip": "valve", "valve": valve, "position": other})
+        for valve, positions in case.circuit.positions.items()
+        for other in positions
+        if other != state.positions[valve]
+    ]
+    slips += [
+        (state.adjusted(site.id, site.highest_bar), {"slip": "screw", "adjuster": site.id})
+        for site in case.circuit.adjusters
+    ]
+    solved = solve(case.circuit, [slip for slip, _ in slips])
+    return [(solved.one(index), cause) for index, (_, cause) in enumerate(slips)]
+
+
+def _with_faults(case: Case, state: PlantState, stop: Solution, setting: Setting) -> list[_Caused]:
+    faults = [
+        fault
+        for fault in faults_of(case.machine, case.circuit, state, kinds=CAN_RAISE)
+        if not (fault.kind is FaultKind.RELIEF_STUCK_SHUT and fault.part == setting.part)
+    ]
+    solutions = solve_faults(case.circuit, state, faults, start_bar=stop.pressures_bar)
+    return [
+        (solution, {"slip": "fault", "valve": fault.part, "fault": fault.kind.value})
+        for fault, solution in zip(faults, solutions, strict=True)
+    ]
+
+
 def reasons_of(case: Case, candidate: Candidate, adjuster: str) -> tuple[tuple[Change, Failure], ...]:
     """Takes each change away alone and names what then fails, with one fault and at the screw's stop too."""
     if not candidate.changes:
@@ -304,6 +338,7 @@ def reasons_of(case: Case, candidate: Candidate, adjuster: str) -> tuple[tuple[C
     ]
     states = [apply(case.base, one.changes) for one in lesser]
     solved = solve(case.circuit, states, effects=True)
+    idle = solve(case.circuit, [state.unloaded() for state in states], effects=True)
     reasons: list[tuple[Change, Failure]] = []
     for index, left_out in enumerate(candidate.changes):
         solution = solved.one(index)
@@ -312,6 +347,7 @@ def reasons_of(case: Case, candidate: Candidate, adjuster: str) -> tuple[tuple[C
             first_failure(solution, site, setting.target_bar, case.trusted_ports)
             or _at_another_flow(setting, solution)
             or _too_much_through(case, lesser[index], solution)
+            or without_load(first_failure(idle.one(index), site, setting.target_bar, case.trusted_ports))
             or moved_by_fault(case, states[index])
             or _judge(case, lesser[index], adjuster)
         )

@@ -6,7 +6,7 @@ The procedure is taken as it is printed: its actions, its readings, its order. H
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from sheets.amounts import Finding, Severity, bar
 from sheets.circuit.model import Circuit
@@ -46,6 +46,8 @@ class Start:
     """The printed readings were computed from this start."""
     in_service: bool = False
     """The drives run when the job begins, so that lines hold pressure once they stop."""
+    loaded: bool = True
+    """The work loads of the file act throughout; without them whatever isn't blocked moves."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -83,7 +85,8 @@ class Replay:
 def starts_of(circuit: Circuit, targets: Targets) -> tuple[Start, ...]:
     """All at target, standing and in service; all backed out; each one alone at the end of its range.
 
-    Nobody knows how screws stand before they are read, so the steps must hold from all of these.
+    Nobody knows how screws stand before they are read, nor whether work is left in the machine: so the steps
+    must hold from all of these, each with the work loads and without.
     """
     at_target = {site.id: site.highest_bar for site in circuit.adjusters} | targets.settings_bar()
     all_out = {site.id: site.lowest_bar for site in circuit.adjusters}
@@ -100,7 +103,7 @@ def starts_of(circuit: Circuit, targets: Targets) -> tuple[Start, ...]:
         )
         for site in circuit.adjusters
     ]
-    return tuple(starts)
+    return (*starts, *(replace(start, name=f"{start.name}, no work load", loaded=False) for start in starts))
 
 
 def replay(
@@ -282,7 +285,7 @@ class _Runner:
 
 def _standing(circuit: Circuit, start: Start) -> PlantState:
     """The plant before the job: valves at rest, settings of the start, drives as it says."""
-    state = circuit.rest_state(start.settings_bar)
+    state = replace(circuit.rest_state(start.settings_bar), loaded=start.loaded)
     for drive in circuit.drives if start.in_service else ():
         state = state.driven(drive, on=True)
     return state

@@ -90,7 +90,7 @@ def test_motor_leaks_what_its_volumetric_efficiency_leaves_at_its_rating():
     assert stamp.inflow_lpm[0, 0] == pytest.approx([-5.4, 0.0, 5.4])  # held by its load, so it only leaks
     assert circuit.actuators.swept_a[0] == 0.2
     # 2000 N·m on 200 cm³: 2000·20π/200 bar
-    assert circuit.actuators.resists_forward_bar[0] == pytest.approx(628.3185, rel=1e-6)
+    assert circuit.actuators.load_forward_bar[0] == pytest.approx(628.3185, rel=1e-6)
 
 
 def every_law() -> tuple[object, StateArrays, np.ndarray]:

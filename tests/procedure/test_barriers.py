@@ -311,9 +311,9 @@ def test_differential_without_width_and_without_a_way_at_that_flow(changed: Chan
 
 def test_differential_without_width_is_read_at_its_flow(changed: Changed) -> None:
     # The bypass takes 65 L/min at 28 bar, so 65 · √(24/28) = 60.2 L/min at 24 bar. With LS at tank the outlet
-    # is the differential: 24 bar at 60 L/min, whatever the width; nothing moves. Nor with a stuck spool, with
-    # HV1 and HV2 open: the load signal sends the pump to full stroke, and the bypass takes all of it at
-    # 28 · (99.5/65)² = 66 bar; the mixer asks for 111.7 bar.
+    # is the differential: 24 bar at 60 L/min, whatever the width. With a stuck spool and HV1, HV2 open, the
+    # load signal sends the pump to full stroke, and the bypass takes it at 28 · (99.5/65)² = 66 bar. At
+    # work the mixer asks for 111.7 bar and would stay; with an empty drum it turns, so both valves are shut.
     matter = steps(changed("clay_mixer", STANDBY, *bypass(65, 28)))
     setting = matter.targets.settings["PU1.load sensing"]
     state = found(matter, "PU1.load sensing")
@@ -321,7 +321,10 @@ def test_differential_without_width_is_read_at_its_flow(changed: Changed) -> Non
     assert setting.at_flow_lpm == 60.0
     all_of_it_bar = 28 * (FULL_LPM / 65) ** 2
     assert all_of_it_bar < 640 / 0.9 * 20 * math.pi / 400
-    assert set(state.changes) == {MoveValve(valve="HV9", position="open")}
+    assert set(state.changes) == {MoveValve(valve="HV9", position="open"), *shut("HV1", "HV2")}
+    for valve in ("HV1", "HV2"):
+        without = dict(state.reasons)[MoveValve(valve=valve, position="closed")]
+        assert (without.condition, without.data["idle"]) == (Condition.BARRED, "idle")
     flow_lpm = 65 * math.sqrt(state.reading_bar / 28)
     assert flow_lpm == pytest.approx(60.0, abs=0.5)
     assert state.reading_bar == pytest.approx(24.0, abs=0.1)

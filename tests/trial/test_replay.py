@@ -9,7 +9,7 @@ import pytest
 
 import sheets
 from sheets.amounts import Severity, bar
-from sheets.circuit.plant import Adjust, MoveValve
+from sheets.circuit.plant import Adjust, MoveValve, StartDrive
 from sheets.circuit.verdict import Verdict
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline import Described, steps
@@ -69,13 +69,15 @@ def test_every_step_is_traced_up_to_where_a_run_stops(any_sample: Matter) -> Non
 
 
 def test_starts_of_a_machine(clay_mixer: Matter) -> None:
-    # Two as printed, all out, and each of three adjusters at its stop.
+    # Two as printed, all out, and each of three adjusters at its stop; each with the work loads and without.
     starts = {start.name: start for start in starts_of(clay_mixer.circuit, clay_mixer.targets)}
     target = {"RV1": 206.0, "PU1.compensator": 176.0, "PU1.load sensing": 27.0}
 
-    assert len(starts) == 6
-    assert {name for name, start in starts.items() if start.as_printed} == {"all at target", "in service"}
-    assert {name for name, start in starts.items() if start.in_service} == {"in service"}
+    assert len(starts) == 12
+    loaded = {name: start for name, start in starts.items() if start.loaded}
+    assert {f"{name}, no work load" for name in loaded} == starts.keys() - loaded.keys()
+    assert {name for name, start in loaded.items() if start.as_printed} == {"all at target", "in service"}
+    assert {name for name, start in loaded.items() if start.in_service} == {"in service"}
     assert starts["all at target"].settings_bar == starts["in service"].settings_bar == target
     assert starts["all backed out"].settings_bar == {
         "RV1": 50.0,
@@ -85,12 +87,12 @@ def test_starts_of_a_machine(clay_mixer: Matter) -> None:
     assert starts["RV1 at its stop"].settings_bar == {**target, "RV1": 230.0}
 
 
-def run_of(matter: Matter, name: str) -> Run:
-    return next(run for run in matter.replay.runs if run.start.name == name)
+def run_of(result: Replay, name: str) -> Run:
+    return next(run for run in result.runs if run.start.name == name)
 
 
 def stop_of(matter: Matter, name: str) -> tuple[StageKind, StepKind, str] | None:
-    where = run_of(matter, name).stopped_at
+    where = run_of(matter.replay, name).stopped_at
     if where is None:
         return None
     stage = matter.procedure.stages[where[0]]
@@ -238,6 +240,18 @@ def test_lever_held_without_a_hand_valve(clay_mixer: Matter) -> None:
     refused_for(result, Invariant.STILL, "HM1")
     first = printed(result).violations[0]
     assert wrong.stages[first.stage].steps[first.step].kind is StepKind.HOLD_VALVE
+
+
+def test_a_load_that_may_not_be_there_holds_nothing(clay_mixer: Matter) -> None:
+    # The lever in mix when the pump starts, its lines open. The compensator backed out to 40 bar doesn't turn
+    # a full drum, which takes 111.7 bar; it turns an empty one.
+    wrong = edited(clay_mixer.procedure, StageKind.DEADHEAD, without(StepKind.SET_VALVE, "HV1"))
+    lever = MoveValve(valve="DV1", position="mix")
+    start = step_with(StepKind.START, "M1", actions=(lever, StartDrive(drive="M1")))
+    result = again(clay_mixer, edited(wrong, StageKind.AS_FOUND, start))
+    at_work, idle = run_of(result, "all backed out"), run_of(result, "all backed out, no work load")
+    assert Invariant.STILL not in {one.invariant for one in at_work.violations}
+    assert (Invariant.STILL, "HM1") in {(one.invariant, one.subject) for one in idle.violations}
 
 
 def test_vent_left_shut(clay_mixer: Matter) -> None:

@@ -144,7 +144,8 @@ def test_c_differential_without_width_needs_its_flow(refused: Refused) -> None:
 
 def test_c_differential_is_read_over_a_still_way_to_tank(refused: Refused) -> None:
     # A bleed for 75 L/min at 37.5 bar passes 60 L/min at 37.5 · (60/75)² = 24 bar. Should the spool stick in
-    # mix, the pump's 100 L/min come to 37.5 · (100/75)² = 67 bar there; the mixer needs 111.7 bar and stays.
+    # mix, the pump's 100 L/min come to 37.5 · (100/75)² = 67 bar there. At work the mixer needs 111.7 bar,
+    # and would stay; an empty one turns, so its lines are shut.
     matter = refused(
         "clay_mixer",
         NO_WIDTH,
@@ -156,7 +157,7 @@ def test_c_differential_is_read_over_a_still_way_to_tank(refused: Refused) -> No
     found = state(matter, "PU1.load sensing")
 
     assert_good(matter)
-    assert moves(found) == {("BV1", "open")}
+    assert moves(found) == {("BV1", "open"), ("HV1", "closed"), ("HV2", "closed")}
     assert found.reading_bar == pytest.approx(24.0, abs=0.01)
     assert matter.targets.settings["PU1.load sensing"].at_flow_lpm == 60.0
 
