@@ -59,31 +59,28 @@ class _Facts:
     machine: Machine
     actuators: tuple[str, ...]
     states: Mapping[str, TestState]
-    highest_bar: float
-    """What may be shut in after the drive stops: the highest end of a range, or the rating below it."""
-    never_exceed_bar: float
+    pressure: Amount | str
+    """Highest that the limits let come anywhere; empty where that isn't known."""
     longest_try_s: float
 
 
-def shut_in_bar(circuit: Circuit) -> float:
-    """Highest pressure that the adjusters allow anywhere, at most the rating there; bar."""
-    return max(
-        (min(site.highest_bar, circuit.nodes[site.controlled_node].rating_bar) for site in circuit.adjusters),
-        default=0.0,
-    )
-
-
 def assess(
-    machine: Machine, circuit: Circuit, procedure: Procedure, policies: Policies
+    machine: Machine,
+    circuit: Circuit,
+    procedure: Procedure,
+    policies: Policies,
+    shut_in_bar: Sequence[float] | None,
 ) -> dict[tuple[int, int], tuple[Hazard, ...]]:
-    """Hazards by stage and step number, both from 0; each kind once a stage, at its first step."""
+    """Hazards by stage and step number, both from 0; each kind once a stage, at its first step.
+
+    ``shut_in_bar``: highest pressure that may come to each node, in bar; None where that isn't known.
+    """
     states = procedure.search.found()
     facts = _Facts(
         machine=machine,
         actuators=circuit.actuators.ids,
         states=states,
-        highest_bar=shut_in_bar(circuit),
-        never_exceed_bar=min((state.gauge.never_exceed_bar for state in states.values()), default=0.0),
+        pressure="" if shut_in_bar is None else bar(max(shut_in_bar)),
         longest_try_s=policies.longest_try_s,
     )
     found: dict[tuple[int, int], tuple[Hazard, ...]] = {}
@@ -121,10 +118,10 @@ def _of_step(facts: _Facts, stage: Stage, step: Step, heat_kw: float) -> tuple[H
             volts = Amount(value=voltage_v, quantity="voltage_v")
             return (Hazard(kind=HazardKind.ELECTRICITY, signal="DANGER", data={"voltage": volts}),)
         case StepKind.OPEN_VENT:
-            data: dict[str, Amount | str] = {"pressure": bar(facts.highest_bar)}
+            data: dict[str, Amount | str] = {"pressure": facts.pressure}
             return (Hazard(kind=HazardKind.RELIEVING, signal="WARNING", data=data),)
         case StepKind.WORK_LEVER:
-            data = {"pressure": bar(facts.highest_bar), "moves": _all_moves(facts)}
+            data = {"pressure": facts.pressure, "moves": _all_moves(facts)}
             return (Hazard(kind=HazardKind.SETTLING, signal="WARNING", data=data),)
         case StepKind.START:
             data = {"drive": step.subject, "moves": _all_moves(facts)}
@@ -150,7 +147,7 @@ def _under_pressure(facts: _Facts, step: Step, heat_kw: float) -> tuple[Hazard, 
         return ()
     hazards = []
     if max(step.trace.pressures_bar) >= INJECTION_BAR:
-        data = {"pressure": bar(facts.never_exceed_bar)}
+        data = {"pressure": facts.pressure}
         hazards.append(Hazard(kind=HazardKind.INJECTION, signal="WARNING", data=data))
     if heat_kw >= HEAT_KW and (step.kind in _PRESSURISING or step.trace.relief_kw >= HEAT_KW):
         hazards.append(_heat(facts, heat_kw))

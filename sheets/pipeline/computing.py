@@ -7,6 +7,7 @@ from collections.abc import Iterator
 from sheets import ENGINE
 from sheets.amounts import Finding
 from sheets.circuit.verdict import Verdict
+from sheets.energy.shut_in import shut_in_bar
 from sheets.errors import ExitStatus, Problem
 from sheets.hazards.assess import assess
 from sheets.machine.walking import walkdown_state
@@ -40,6 +41,7 @@ def steps(described: Described, task: Task = Task()) -> Matter:  # noqa: B008 --
     found = targets(described)
     case = Case(described.machine, described.circuit, found, described.policies)
     procedure = make_procedure(case, task)
+    most_bar = shut_in_bar(described.machine, described.circuit)
     return Matter(
         replay=replay(
             described.machine,
@@ -55,7 +57,8 @@ def steps(described: Described, task: Task = Task()) -> Matter:  # noqa: B008 --
         circuit=described.circuit,
         targets=found,
         procedure=procedure,
-        hazards=assess(described.machine, described.circuit, procedure, described.policies),
+        hazards=assess(described.machine, described.circuit, procedure, described.policies, most_bar),
+        shut_in_bar=most_bar,
         speaker=Speaker(described.machine, described.circuit, described.policies, procedure.search.found()),
         engine=str(ENGINE),
         walkdown=walked(described, found),

@@ -136,6 +136,9 @@ class Speaker:
 
     def warning(self, hazard: Hazard) -> SpokenWarning:
         values = {key: self.figures.amount(value) for key, value in hazard.data.items()}
+        most = hazard.data.get("pressure")
+        if isinstance(most, Amount):
+            values["pressure"] = self.figures.pressure(most.value, up=True)
         values |= {"stop": self.stop, "high": self.oil_window()[1]}
         return SpokenWarning(
             signal=hazard.signal,

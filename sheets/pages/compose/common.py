@@ -9,16 +9,13 @@ from sheets.pages.document import Emphasis
 def first_aid(matter: Matter) -> Emphasis:
     """What to do when oil goes under the skin."""
     fluid = matter.machine.fluid
-    pressure_bar = min(
-        (state.gauge.never_exceed_bar for state in matter.procedure.search.found().values()), default=0.0
-    )
-    site = matter.site
+    site, most_bar = matter.site, matter.shut_in_bar
     return Emphasis(
         lead=matter.text("first_aid_lead"),
         lines=(
             matter.text(
                 "first_aid_line",
-                pressure=matter.figures.pressure(pressure_bar),
+                pressure="" if most_bar is None else matter.figures.pressure(max(most_bar), up=True),
                 fluid=f"{fluid.kind} {fluid.grade}",
                 hospital=site.hospital if site else "",
             ),

@@ -5,9 +5,8 @@ from __future__ import annotations
 from collections.abc import Sequence
 from itertools import groupby
 
-from sheets.amounts import Amount, bar
+from sheets.amounts import Amount
 from sheets.energy.held import held_loads
-from sheets.hazards.assess import shut_in_bar
 from sheets.pages.compose.common import first_aid
 from sheets.pages.compose.matter import Matter, page_step
 from sheets.pages.document import (
@@ -197,7 +196,6 @@ def _people(matter: Matter) -> Table:
 
 def _trapped(matter: Matter) -> Table:
     """Every line that can hold pressure, how it is relieved, and where this job verifies that."""
-    top_bar = shut_in_bar(matter.circuit)
     read = {
         str(step.data["test_point"])
         for stage in matter.procedure.stages
@@ -213,11 +211,13 @@ def _trapped(matter: Matter) -> Table:
             how = matter.speaker.part(volume.relieved_by)
         else:
             how = matter.text("no_relief")
-        most_bar = min(top_bar, node.rating_bar)
+        known_bar = matter.shut_in_bar
         rows.append(
             (
                 node.name,
-                matter.figures.amount(bar(most_bar)),
+                matter.figures.pressure(known_bar[volume.node], up=True)
+                if known_bar is not None
+                else matter.text("not_known"),
                 how,
                 ", ".join(point for point in volume.test_points if point in read)
                 or matter.text("not_verified"),

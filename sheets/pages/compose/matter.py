@@ -33,6 +33,8 @@ class Matter:
     procedure: Procedure
     replay: Replay
     hazards: Mapping[tuple[int, int], tuple[Hazard, ...]]
+    shut_in_bar: tuple[float, ...] | None
+    """Highest pressure that may stand in each line when the drive stops, by node; None: not known."""
     speaker: Speaker
     engine: str
     walkdown: WalkdownState | None = None
