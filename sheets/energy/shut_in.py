@@ -2,27 +2,19 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from dataclasses import replace
-from itertools import islice, product
 
 import numpy as np
 
+from sheets.circuit.extremes import resistances, solve_every_set
 from sheets.circuit.fault_edits import throttled_way
 from sheets.circuit.faults import CLOGGED_SHARE
 from sheets.circuit.model import Circuit
-from sheets.circuit.plant import PlantState
-from sheets.circuit.solver import solve
 from sheets.machine.model import Machine
-from sheets.machine.parts import DirectionalValve, Filter
+from sheets.machine.parts import Filter
 
-MOST_STATES = 8192
-"""States that are solved; a machine that has more gets no figure."""
-_BATCH = 256
 _DIGITS = 2
 """After the point: what the solver is good for, so that rounding up takes no dust for pressure."""
-_JAMMED_BAR = 1e6
-"""Resistance of an actuator that nothing moves."""
 
 
 def shut_in_bar(machine: Machine, circuit: Circuit) -> tuple[float, ...] | None:
@@ -35,35 +27,18 @@ def shut_in_bar(machine: Machine, circuit: Circuit) -> tuple[float, ...] | None:
     also with every filter clogged, which raises what lies before it. Where a state isn't established or there
     are too many, nothing is known.
     """
-    spools = [id_ for id_, part in machine.parts.items() if isinstance(part, DirectionalValve)]
     variants = [
-        one for resisting in _resisting(_tight(circuit)) for one in (resisting, _clogged(machine, resisting))
+        one for resisting in resistances(_tight(circuit)) for one in (resisting, _clogged(machine, resisting))
     ]
-    sets = 1
-    for spool in spools:
-        sets *= len(circuit.positions[spool])
-    if sets * len(variants) > MOST_STATES:
+    batches = solve_every_set(machine, variants, {site.id: site.highest_bar for site in circuit.adjusters})
+    if batches is None:
         return None
     highest_bar = np.zeros(len(circuit.nodes))
-    for variant in variants:
-        states = _states(variant, spools)
-        while batch := list(islice(states, _BATCH)):
-            solved = solve(variant, batch)
-            if not solved.established.all():
-                return None
-            highest_bar = np.maximum(highest_bar, solved.pressures_bar.max(axis=0))
+    for solved in batches:
+        if not solved.established.all():
+            return None
+        highest_bar = np.maximum(highest_bar, solved.pressures_bar.max(axis=0))
     return tuple(np.round(highest_bar, _DIGITS).tolist())
-
-
-def _states(circuit: Circuit, spools: list[str]) -> Iterator[PlantState]:
-    running = circuit.rest_state({site.id: site.highest_bar for site in circuit.adjusters})
-    for drive in circuit.drives:
-        running = running.driven(drive, on=True)
-    for positions in product(*(circuit.positions[id_] for id_ in spools)):
-        state = running
-        for spool, position in zip(spools, positions, strict=True):
-            state = state.moved(spool, position)
-        yield state
 
 
 def _tight(circuit: Circuit) -> Circuit:
@@ -86,17 +61,6 @@ def _tight(circuit: Circuit) -> Circuit:
             cross_leakage=np.zeros_like(actuators.cross_leakage),
         ),
     )
-
-
-def _resisting(circuit: Circuit) -> Iterator[Circuit]:
-    count = len(circuit.actuators.ids)
-    jammed = np.full(count, _JAMMED_BAR)
-    rows = [jammed, np.zeros(count)] if count else [jammed]
-    if count > 1:
-        rows += [np.where(np.arange(count) == free, 0.0, _JAMMED_BAR) for free in range(count)]
-    for resists in rows:
-        actuators = replace(circuit.actuators, resists_forward_bar=resists, resists_backward_bar=resists)
-        yield replace(circuit, actuators=actuators)
 
 
 def _clogged(machine: Machine, circuit: Circuit) -> Circuit:

@@ -51,6 +51,6 @@ def test_a_return_line_with_its_filter_clogged(changed: Changed) -> None:
 
 
 def test_too_many_sets_of_positions_are_not_known(changed: Changed, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr("sheets.energy.shut_in.MOST_STATES", 11)
+    monkeypatch.setattr("sheets.circuit.extremes.MOST_STATES", 11)
     described = changed("clay_mixer")  # 3 positions, jammed and free, sound and clogged: 12
     assert shut_in_bar(described.machine, described.circuit) is None
