@@ -10,14 +10,16 @@ from dataclasses import replace
 from itertools import permutations
 
 from sheets.amounts import Amount, Finding, Severity, bar
-from sheets.circuit.plant import Adjust, MoveValve, PlantAction, StartDrive, StopDrive
-from sheets.circuit.solver import solve_one
+from sheets.circuit.plant import Adjust, MoveValve, PlantAction, PlantState, StartDrive, StopDrive
+from sheets.circuit.solution import Solution
+from sheets.circuit.solver import solve, solve_one
 from sheets.energy.trapped import Trapped, find_trapped
 from sheets.machine.parts import HandValve
 from sheets.procedure.answers import TestState
 from sheets.procedure.conditions import Failure, moving, over_rating, starved, unestablished
 from sheets.procedure.gauges import error_bar
 from sheets.procedure.job import Job, shows
+from sheets.procedure.judge import without_load
 from sheets.procedure.rig import Rig
 from sheets.procedure.steps import Stage, StageKind, StepKind
 from sheets.procedure.task import TaskKind
@@ -229,11 +231,21 @@ def _otherwise(job: Job, valve: str, position: str) -> Failure | None:
     """What harm a start does with this valve alone elsewhere, everything else at rest."""
     for other in job.case.circuit.positions[valve]:
         if other != position:
-            solution = solve_one(job.case.circuit, job.case.base.moved(valve, other))
-            failure = moving(solution) or starved(solution) or over_rating(solution)
+            failure = _harm(job, job.case.base.moved(valve, other))
             if failure is not None:
                 return failure
     return None
+
+
+def _harm(job: Job, state: PlantState) -> Failure | None:
+    """What moves, runs dry or passes a rating in a state, with the work loads of the file or without."""
+    solved = solve(job.case.circuit, [state, state.unloaded()])
+    at_work, idle = solved.one(0), solved.one(1)
+    return _harm_in(at_work) or without_load(_harm_in(idle))
+
+
+def _harm_in(solution: Solution) -> Failure | None:
+    return moving(solution) or starved(solution) or over_rating(solution)
 
 
 def _open_window(job: Job, rig: Rig) -> None:
@@ -285,13 +297,7 @@ def _gentlest(job: Job, rig: Rig, moves: list[MoveValve]) -> list[MoveValve]:
         state = rig.state
         for move in order:
             state = state.moved(move.valve, move.position)
-            solution = solve_one(job.case.circuit, state)
-            if (
-                unestablished(solution, job.case.trusted_ports)
-                or moving(solution)
-                or starved(solution)
-                or over_rating(solution)
-            ):
+            if unestablished(solve_one(job.case.circuit, state), job.case.trusted_ports) or _harm(job, state):
                 break
         else:
             return list(order)
