@@ -14,8 +14,8 @@ from typing import TYPE_CHECKING, Literal
 import click
 
 from sheets import __version__
+from sheets.cli import issuing, people
 from sheets.cli.common import AS_JSON, MACHINE, MACHINES, PART, SITE, TASK, leave, show, tell, today, wrong
-from sheets.cli.issuing import COMMANDS
 from sheets.errors import ExitStatus, JamnutError, gravest
 
 if TYPE_CHECKING:
@@ -316,7 +316,7 @@ def _keep_traceback() -> str:
     return kept.name
 
 
-for command in COMMANDS:
+for command in (*issuing.COMMANDS, *people.COMMANDS):
     main.add_command(command)
 
 

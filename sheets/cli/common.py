@@ -40,6 +40,14 @@ TASK = click.option(
 )
 PART = click.option("--part", metavar="ID", help="The part that was replaced, for --task replace.")
 
+REGISTER = click.option(
+    "--register",
+    "register_at",
+    metavar="FILE|URL",
+    required=True,
+    help="The register: a file, or a PostgreSQL database by URL; the first issue makes it.",
+)
+
 
 def today() -> date:
     """The only look at a calendar; it refuses answers from the future and dates new ones."""
@@ -49,6 +57,13 @@ def today() -> date:
 def now() -> datetime:
     """The only look at a clock, in UTC."""
     return datetime.now(UTC)
+
+
+def day(where: str, text: str | None) -> date:
+    """A day that somebody wrote, or today. Raises InputError; ``where`` names the option."""
+    from sheets import pipeline
+
+    return today() if text is None else pipeline.day_of(where, text)
 
 
 def wrong(where: str, what: str, fix: str) -> InputError:

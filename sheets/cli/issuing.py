@@ -9,20 +9,26 @@ from typing import TYPE_CHECKING, Literal
 
 import click
 
-from sheets.cli.common import AS_JSON, MACHINE, PART, SITE, TASK, leave, now, show, tell, today, wrong
+from sheets.cli.common import (
+    AS_JSON,
+    MACHINE,
+    PART,
+    REGISTER,
+    SITE,
+    TASK,
+    leave,
+    now,
+    show,
+    tell,
+    today,
+    wrong,
+)
 from sheets.errors import ExitStatus, JamnutError, gravest
 
 if TYPE_CHECKING:
     from sheets.pipeline import Json
 
 FILE = click.argument("file", type=click.Path(path_type=Path), metavar="FILE")
-REGISTER = click.option(
-    "--register",
-    "register_at",
-    metavar="FILE|URL",
-    required=True,
-    help="The register: a file, or a PostgreSQL database by URL; the first issue makes it.",
-)
 PASSPHRASES = click.option(
     "--passphrases",
     type=click.Path(path_type=Path),

@@ -15,6 +15,12 @@ if TYPE_CHECKING:
     from sheets.machine.answering import Answers as Answers
     from sheets.machine.files import machine_files as machine_files
     from sheets.machine.walking import WalkdownState as WalkdownState
+    from sheets.pipeline.authorising import authorise as authorise
+    from sheets.pipeline.authorising import end_authorisation as end_authorisation
+    from sheets.pipeline.authorising import people as people
+    from sheets.pipeline.authorising import people_json as people_json
+    from sheets.pipeline.authorising import people_text as people_text
+    from sheets.pipeline.authorising import train as train
     from sheets.pipeline.comparing import diff as diff
     from sheets.pipeline.comparing import diff_json as diff_json
     from sheets.pipeline.comparing import diff_text as diff_text
@@ -36,6 +42,11 @@ if TYPE_CHECKING:
     from sheets.pipeline.describing import check as check
     from sheets.pipeline.describing import check_json as check_json
     from sheets.pipeline.describing import check_text as check_text
+    from sheets.pipeline.gauging import gauge_found_bad as gauge_found_bad
+    from sheets.pipeline.gauging import instruments as instruments
+    from sheets.pipeline.gauging import instruments_json as instruments_json
+    from sheets.pipeline.gauging import instruments_text as instruments_text
+    from sheets.pipeline.gauging import list_gauge as list_gauge
     from sheets.pipeline.issuing import issue as issue
     from sheets.pipeline.issuing import issued_text as issued_text
     from sheets.pipeline.keying import keys as keys
@@ -64,6 +75,7 @@ if TYPE_CHECKING:
     from sheets.pipeline.walking import walkdown_standing as walkdown_standing
     from sheets.pipeline.walking import walkdown_text_lines as walkdown_text_lines
     from sheets.pipeline.walking import write_walkdown as write_walkdown
+    from sheets.register.saying import day_of as day_of
     from sheets.wording.as_json import Json as Json
     from sheets.wording.summary import Outcome as Outcome
     from sheets.wording.summary import broken as broken
@@ -125,6 +137,19 @@ _CONTENTS: Final[dict[str, str]] = {
     "verify_failed_json": "pipeline.verifying",
     "verify_json": "pipeline.verifying",
     "verify_text": "pipeline.verifying",
+    # who works with what
+    "day_of": "register.saying",
+    "people": "pipeline.authorising",
+    "people_json": "pipeline.authorising",
+    "people_text": "pipeline.authorising",
+    "authorise": "pipeline.authorising",
+    "end_authorisation": "pipeline.authorising",
+    "train": "pipeline.authorising",
+    "instruments": "pipeline.gauging",
+    "instruments_json": "pipeline.gauging",
+    "instruments_text": "pipeline.gauging",
+    "list_gauge": "pipeline.gauging",
+    "gauge_found_bad": "pipeline.gauging",
     # many machines at once
     "machine_files": "machine.files",
     "Writing": "pipeline.many",

@@ -99,7 +99,7 @@ def usable(view: View, given: str, *, day: date) -> Instrument:
             Problem(
                 where=where,
                 what="No gauge with this number is listed.",
-                fix="List it with its certificate and due date: jamnut instrument.",
+                fix="List it with its certificate and due date: jamnut instruments.",
             )
         )
     if found.bad is not None:

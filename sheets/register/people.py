@@ -76,6 +76,12 @@ def names(view: View) -> tuple[str, ...]:
     return tuple(sorted(known))
 
 
+def subjects(view: View) -> tuple[str, ...]:
+    """Everything that anybody was ever authorised for or trained in."""
+    known = {one.said.what for one in told(view, Authorised)} | {one.said.what for one in told(view, Trained)}
+    return tuple(sorted(known))
+
+
 def person_on(view: View, name: str, day: date) -> PersonOn:
     """A person as of one day, whenever the register was told."""
     ended = [one.said for one in told(view, AuthorisationEnded, saying=name) if one.said.name == name]

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import hashlib
-import unicodedata
 from collections.abc import Iterable
 from dataclasses import dataclass
 
@@ -11,6 +10,7 @@ from cryptography import x509
 from cryptography.hazmat.primitives.serialization import Encoding, PublicFormat
 
 from sheets.errors import InputError, Problem
+from sheets.names import same_person
 from sheets.seal.keys import common_name
 from sheets.seal.signatures_report import ALWAYS_NEEDED, ROLES
 
@@ -25,7 +25,7 @@ class Person:
 
     def same_as(self, other: Person) -> bool:
         """One key, or one name whatever its spaces and capitals: either means one person."""
-        return self.key == other.key or _folded(self.name) == _folded(other.name)
+        return self.key == other.key or same_person(self.name, other.name)
 
 
 def person_of(certificate: x509.Certificate) -> Person:
@@ -51,10 +51,6 @@ def clash(role: str, person: Person, before: Iterable[tuple[str, Person]]) -> st
     """What to say if the person signed in another role before; else nothing."""
     for other_role, other in before:
         if person.same_as(other):
-            by = "name" if _folded(person.name) == _folded(other.name) else "key"
+            by = "name" if same_person(person.name, other.name) else "key"
             return f"{person.name} signed as {other_role} and as {role}: one person by {by}, in two roles."
     return ""
-
-
-def _folded(name: str) -> str:
-    return " ".join(unicodedata.normalize("NFKC", name).casefold().split())

@@ -30,7 +30,7 @@ RANKS = (
     "pages",
 )
 """Stages in their order: a later one may import an earlier one, never the other way."""
-LEAVES = {"sheets", "errors", "amounts", "crockford", "quantities", "resources"}
+LEAVES = {"sheets", "errors", "amounts", "crockford", "names", "quantities", "resources"}
 """Importable by all; they import each other only. The first is the package's own __init__."""
 BRANCHES = {"register", "seal"}
 """Get plain values: they import leaves only, and only the pipeline imports them."""
