@@ -114,9 +114,10 @@ def table_pieces(table: Table, width: float, signing: Signing) -> list[Piece]:
         rows.append(
             row_piece(table, edges, texts, least, key=f"{table.title} {index}", last=index == total - 1)
         )
+    unsigned = unsigned_piece(edges, blank, signing)
     for index in range(len(table.rows), total):
         if table.signed and signing.draft:
-            rows.append(unsigned_piece(edges, blank, signing) if index == len(table.rows) else hollow(blank))
+            rows.append(unsigned if index == len(table.rows) else hollow(blank))
         else:
             rows.append(
                 row_piece(table, edges, (), blank, key=f"{table.title} {index}", last=index == total - 1)
@@ -126,7 +127,9 @@ def table_pieces(table: Table, width: float, signing: Signing) -> list[Piece]:
     if not rows:
         return [replace(first, space_before=4 * MM)]
     pieces = [joined(first, rows[0], space_before=4 * MM)]
-    pieces.extend(replace(row, fresh=joined(again, row, space_before=0.0)) for row in rows[1:])
+    for row in rows[1:]:
+        at_the_top = row if row.name else unsigned  # a page begun by room without ink says what it is for
+        pieces.append(replace(row, fresh=joined(again, at_the_top, space_before=0.0)))
     return pieces
 
 
