@@ -47,6 +47,11 @@ if TYPE_CHECKING:
     from sheets.pipeline.gauging import instruments_json as instruments_json
     from sheets.pipeline.gauging import instruments_text as instruments_text
     from sheets.pipeline.gauging import list_gauge as list_gauge
+    from sheets.pipeline.inspecting import inspect as inspect
+    from sheets.pipeline.inspecting import inspected_text as inspected_text
+    from sheets.pipeline.inspecting import inspections_json as inspections_json
+    from sheets.pipeline.inspecting import inspections_on as inspections_on
+    from sheets.pipeline.inspecting import inspections_text as inspections_text
     from sheets.pipeline.issuing import issue as issue
     from sheets.pipeline.issuing import issued_text as issued_text
     from sheets.pipeline.keying import keys as keys
@@ -150,6 +155,12 @@ _CONTENTS: Final[dict[str, str]] = {
     "instruments_text": "pipeline.gauging",
     "list_gauge": "pipeline.gauging",
     "gauge_found_bad": "pipeline.gauging",
+    # what an auditor asks
+    "inspect": "pipeline.inspecting",
+    "inspected_text": "pipeline.inspecting",
+    "inspections_json": "pipeline.inspecting",
+    "inspections_on": "pipeline.inspecting",
+    "inspections_text": "pipeline.inspecting",
     # many machines at once
     "machine_files": "machine.files",
     "Writing": "pipeline.many",

@@ -38,12 +38,15 @@ class DeviationNoted(Said):
     KIND: ClassVar[EventKind] = EventKind.DEVIATION_NOTED
 
     job: int
+    """Event of the job in which it was noted; 0 for one that an inspection found."""
     kind: DeviationKind
     what: str
     row: int = 0
     """Row of the record sheet; 0 where it is about none."""
     reading: int = 0
     """Event of the reading as left that it is about; 0 where a person noted it."""
+    inspection: int = 0
+    """Event of the inspection that found it; 0 for none."""
     by: str
     on: date
 

@@ -1,4 +1,4 @@
-"""Commands that tell the register of people and instruments, and ask it, as a person types them."""
+"""Commands that tell the register of people, instruments and inspections, and ask it, as typed."""
 
 from __future__ import annotations
 
@@ -12,8 +12,12 @@ from pathlib import Path
 import pytest
 
 from sheets import cli
-from sheets.cli import common, people
-from sheets.register.opening import create_register
+from sheets.cli import auditing, common, people
+from sheets.register.acts import WindowOpened
+from sheets.register.issuing import commit, reserve
+from sheets.register.opening import create_register, open_register
+from sheets.register.revisions import Signer
+from sheets.register.saying import tell
 
 NOW = datetime(2026, 12, 1, 12, 0, tzinfo=UTC)
 REGISTER = ("--register", "demonstration/register.db")
@@ -32,7 +36,7 @@ def _stage(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     (tmp_path / "demonstration").mkdir()
     create_register(tmp_path / "demonstration" / "register.db", by="Edda Fenn", when=NOW).close()
     monkeypatch.setattr(common, "today", lambda: date(2026, 12, 1))
-    for module in (people,):
+    for module in (people, auditing):
         monkeypatch.setattr(module, "now", lambda: NOW)
         monkeypatch.setattr(module, "today", lambda: date(2026, 12, 1))
 
@@ -85,6 +89,9 @@ def test_people_as_data(run: Callable[..., object]) -> None:
         ("instruments", "BT-1", "--certificate", "C-1", "--due", "2027-01-01", "--by", "Edda Fenn"),
         ("instruments", "BT-1", "--certificate", "C-1", "--bad", "sticks"),
         ("instruments", "BT-1", "--bad", "sticks", "--by", "Edda Fenn"),
+        ("inspect", "WI-0142"),
+        ("inspect", "--inspector", "Edda Fenn"),
+        ("inspect", "WI-0142", "--with", "Ada Quarrow"),
     ],
 )
 def test_what_is_left_out_or_unknown_is_wrong_input(
@@ -109,3 +116,74 @@ def test_a_gauge_and_what_hangs_on_it(run: Callable[..., object]) -> None:
     done = run("instruments", "17", *REGISTER, *bad)
     assert "found bad on 2026-12-01 by Edda Fenn: sticks at 90 bar (event 3)" in done.out
     assert run("instruments", "17", *REGISTER, *bad).status == 1
+
+
+@pytest.fixture
+def issued(tmp_path: Path) -> str:
+    """An issued revision of the demonstration's document; gives its record id."""
+    with open_register(tmp_path / "demonstration" / "register.db") as register:
+        held = reserve(
+            register,
+            document="WI-0142",
+            machine="PU-07",
+            by="Ada Quarrow",
+            when=NOW,
+            random_bytes=lambda length: bytes(range(length)),
+        )
+        commit(
+            register,
+            held.record_id,
+            content_digest="0123456789ABCDEF",
+            file_digest="ab" * 32,
+            machine_digest="FEDCBA9876543210",
+            engine=1,
+            signers=[Signer(meaning="prepared", name="Ada Quarrow")],
+            by="Ada Quarrow",
+            when=NOW,
+            ink=True,
+        )
+    return held.record_id
+
+
+def test_the_last_inspection_and_whether_it_was_independent(
+    run: Callable[..., object], issued: str, tmp_path: Path
+) -> None:
+    done = run("inspect", *REGISTER)
+    assert done.status == 0
+    assert done.out.splitlines()[-1].split()[:5] == ["WI-0142", "PU-07", "1", "never", "2027-12-01"]
+    assert run("inspect", *REGISTER, "--on", "2027-12-02").status == 1
+    assert "OVERDUE by 1 day" in run("inspect", *REGISTER, "--on", "2027-12-02").out
+
+    refused = run(*example("inspect"))
+    assert refused.status == 1
+    assert "doesn't know them as authorised" in refused.err
+    lockout = ("--authorise", "lockout", "--since", "2026-01-12", "--by", "Gita Stoll")
+    assert run("people", "Edda Fenn", *REGISTER, *lockout).status == 0
+    done = run(*example("inspect"), "--deviation", "tag of Q1 unreadable")
+    assert done.err == ""
+    assert done.out.splitlines() == [
+        "event 5: revision 1 of WI-0142 inspected",
+        "open: 1 deviation, 6",
+    ]
+    shown = run("inspect", "PU-07", *REGISTER)
+    assert shown.status == 0
+    assert "    inspector: Edda Fenn, not a user of it" in shown.out.splitlines()
+    assert "    included: Ada Quarrow, Bram Tolliver" in shown.out.splitlines()
+    assert "    deviation 6, open: tag of Q1 unreadable" in shown.out.splitlines()
+
+    # a sheet that is transcribed afterwards shows that the inspector used the procedure
+    with open_register(tmp_path / "demonstration" / "register.db") as register, register.writing() as writer:
+        used = WindowOpened(
+            job=1, people=("Edda Fenn",), where="at the lever", minutes=5, by="Edda Fenn", on=NOW.date()
+        )
+        told = {"machine": "PU-07", "document": "WI-0142", "record_id": issued}
+        tell(writer, used, who="Ada Quarrow", when=NOW, **told)
+    shown = run("inspect", issued, *REGISTER)
+    assert shown.status == 1
+    assert "    inspector: Edda Fenn, NOT INDEPENDENT: used it in events 7" in shown.out.splitlines()
+    (clock,) = json.loads(run("inspect", *REGISTER, "--json").out)["clocks"]
+    assert (clock["last"]["independent"], clock["last"]["against"], clock["due"]) == (
+        False,
+        [7],
+        "2027-12-01",
+    )

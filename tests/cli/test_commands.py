@@ -20,7 +20,7 @@ from click.testing import CliRunner
 
 from sheets import cli, pipeline
 from sheets.circuit.solver import solve_one
-from sheets.cli import issuing, people
+from sheets.cli import auditing, issuing, people
 from sheets.errors import (
     GRAVITY,
     ExitStatus,
@@ -35,7 +35,7 @@ from sheets.pages.look import PAPERS
 
 COMMANDS = dict(cli.main.commands)
 VERBS = sorted(COMMANDS)
-ISSUING = {command.name for command in (*issuing.COMMANDS, *people.COMMANDS)}
+ISSUING = {command.name for command in (*issuing.COMMANDS, *people.COMMANDS, *auditing.COMMANDS)}
 """Their examples stand on a demonstration site: test_issuing_commands.py and test_asking_commands.py."""
 
 
