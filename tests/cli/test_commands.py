@@ -264,7 +264,7 @@ def test_readme_commands_can_be_read(root: Path) -> None:
         for machine in machines if verb not in {"new", "diff", *ISSUING - {"demo"}} else ():
             assert machine.name in ("MACHINE", "PU-03.yaml") or (root / machine).is_file()
         read += 1
-    assert read > len(VERBS)
+    assert read > len(set(VERBS) - ISSUING)
 
 
 def test_readme_tells_the_statuses(root: Path) -> None:
