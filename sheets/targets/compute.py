@@ -14,6 +14,7 @@ from sheets.machine.model import Machine
 from sheets.machine.parts import FixedPump, LoadSensingControl, ReliefValve, VariablePump
 from sheets.machine.screws import Screw, screws_of
 from sheets.machine.site import Policies
+from sheets.targets.capacity import capacity_findings
 from sheets.targets.demand import Demand, undescribed_loads, work_of
 from sheets.targets.guarding import reliefs_cut_off
 from sheets.targets.rules import (
@@ -88,6 +89,7 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
         checked = _within_rating(setting, sites[id_], machine, circuit, settings)
         settings[id_] = replace(setting, findings=setting.findings + checked)
         findings.extend(checked)
+    findings.extend(capacity_findings(machine, circuit, settings))
     ordered = {id_: settings[id_] for id_ in screws if id_ in settings}
     return Targets(settings=_apart(ordered, lines), findings=tuple(findings))
 
