@@ -14,7 +14,15 @@ from sheets.amounts import Amount, Finding, Severity
 from sheets.circuit.build import build_circuit
 from sheets.circuit.plant import MoveValve
 from sheets.machine.model import Machine
-from sheets.machine.parts import DirectionalValve, FlowPath, Part, Pump, VariablePump
+from sheets.machine.parts import (
+    DirectionalValve,
+    FlowPath,
+    HydraulicMotor,
+    LoadSensingControl,
+    Part,
+    Pump,
+    VariablePump,
+)
 from sheets.machine.site import Policies
 from sheets.procedure.answers import NotFound, NotInUse, TestState
 from sheets.procedure.case import Case
@@ -46,8 +54,11 @@ def unmeasured(machine: Machine) -> tuple[Unmeasured, ...]:
 def _of_part(id_: str, part: Part) -> Iterator[Unmeasured]:
     if isinstance(part, FlowPath | DirectionalValve):
         yield Unmeasured(part=id_, field="rated flow", skewed=partial(_times, "rated_flow_lpm"))
-    if isinstance(part, Pump):
+    if isinstance(part, Pump) or (isinstance(part, HydraulicMotor) and part.leakage_at_rating_lpm is None):
         yield Unmeasured(part=id_, field="volumetric efficiency", skewed=_leakage)
+    if isinstance(part, HydraulicMotor) and part.leakage_at_rating_lpm is not None:
+        leaks = partial(_times, "leakage_at_rating_lpm")
+        yield Unmeasured(part=id_, field="leakage at its rating", skewed=leaks)
     if isinstance(part, VariablePump):
         yield Unmeasured(part=id_, field="width of its controls", skewed=_widths)
 
@@ -57,7 +68,7 @@ def _times(field: str, part: Part, share: float) -> Part:
 
 
 def _leakage(part: Part, share: float) -> Part:
-    if not isinstance(part, Pump):
+    if not isinstance(part, Pump | HydraulicMotor):
         return part
     leaks = (1.0 - part.volumetric_efficiency) * (1.0 + share)
     return part.model_copy(update={"volumetric_efficiency": 1.0 - leaks})
@@ -66,11 +77,26 @@ def _leakage(part: Part, share: float) -> Part:
 def _widths(part: Part, share: float) -> Part:
     if not isinstance(part, VariablePump):
         return part
-    compensator = part.compensator
-    if compensator.width_bar is None:
-        return part
-    wider = compensator.model_copy(update={"width_bar": compensator.width_bar * (1.0 + share)})
-    return part.model_copy(update={"compensator": wider})
+    compensator, load_sensing = part.compensator, part.load_sensing
+    if compensator.width_bar is not None:
+        wider_bar = compensator.width_bar * (1.0 + share)
+        compensator = compensator.model_copy(update={"width_bar": wider_bar})
+    if load_sensing is not None:
+        load_sensing = load_sensing.model_copy(update=_signal_width(load_sensing, share))
+    return part.model_copy(update={"compensator": compensator, "load_sensing": load_sensing})
+
+
+def _signal_width(control: LoadSensingControl, share: float) -> dict[str, float]:
+    """What makes the width of a load-sensing control another one.
+
+    Where standby and differential give it, the differential lies that much further below the standby.
+    """
+    if control.width_bar is not None:
+        return {"width_bar": control.width_bar * (1.0 + share)}
+    if control.setting_bar is not None and control.differential_bar is not None:
+        below_bar = (control.setting_bar - control.differential_bar) * (1.0 + share)
+        return {"differential_bar": max(control.setting_bar - below_bar, 0.0)}
+    return {}
 
 
 def skew_findings(machine: Machine, policies: Policies) -> tuple[Finding, ...]:

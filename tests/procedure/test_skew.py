@@ -22,12 +22,13 @@ def test_samples_hang_on_no_unmeasured_value(changed: Changed, name: str) -> Non
 
 
 def test_what_is_skewed(clay_mixer: Matter) -> None:
-    # Valves and the filter by their flow, the pump by its leakage and its width; no gauge, hose or cylinder.
+    # Valves and the filter by their flow, pump and motor by leakage, the pump by its widths; no gauge.
     named = {(value.part, value.field) for value in unmeasured(clay_mixer.machine)}
     flows = {"HV1", "HV2", "HV3", "BV1", "DV1", "FR1"}
     assert named == {(part, "rated flow") for part in flows} | {
         ("PU1", "volumetric efficiency"),
         ("PU1", "width of its controls"),
+        ("HM1", "volumetric efficiency"),
     }
 
 
@@ -44,6 +45,34 @@ def test_skewed_by_a_tenth_of_the_value(clay_mixer: Matter) -> None:
     wider = skewed["PU1", "width of its controls"]
     assert isinstance(wider, VariablePump)
     assert wider.compensator.width_bar == pytest.approx(4.4)
+    # Standby 27 and 24 bar at 60 L/min: the 3 bar between them become 3.3, and so grows the width.
+    assert wider.load_sensing is not None
+    assert wider.load_sensing.differential_bar == pytest.approx(23.7)
+    # HM1 leaks 6 %: a tenth more is 6.6 %.
+    assert skewed["HM1", "volumetric efficiency"].model_dump()["volumetric_efficiency"] == pytest.approx(
+        0.934
+    )
+
+
+def test_a_width_and_a_leakage_on_the_plate_are_skewed_themselves(
+    clay_mixer: Matter, glaze_press: Matter
+) -> None:
+    # The press gives the width of its load-sensing control: 60 psi, 4.137 bar.
+    pump = glaze_press.machine.parts["PU1"]
+    (widths,) = [one for one in unmeasured(glaze_press.machine) if one.field == "width of its controls"]
+    wider = widths.skewed(pump, 0.1)
+    assert isinstance(pump, VariablePump)
+    assert isinstance(wider, VariablePump)
+    assert pump.load_sensing is not None
+    assert wider.load_sensing is not None
+    assert wider.load_sensing.width_bar == pytest.approx(60 * 0.0689476 * 1.1, rel=1e-5)
+    assert wider.load_sensing.setting_bar == pump.load_sensing.setting_bar
+
+    motor = clay_mixer.machine.parts["HM1"].model_copy(update={"leakage_at_rating_lpm": 5.0})
+    machine = clay_mixer.machine.model_copy(update={"parts": {"HM1": motor}})
+    (leakage,) = unmeasured(machine)
+    assert leakage.field == "leakage at its rating"
+    assert leakage.skewed(motor, -0.1).model_dump()["leakage_at_rating_lpm"] == pytest.approx(4.5)
 
 
 def test_a_drive_that_just_carries_names_the_pumps_leakage(changed: Changed) -> None:
