@@ -48,6 +48,17 @@ class TestState:
 
 
 @dataclass(frozen=True, kw_only=True)
+class Guard:
+    """What a relief still protects that no sound state shows."""
+
+    pumps: tuple[str, ...]
+    """Those of which a control stuck at full stroke would let it open."""
+    setting_bar: float
+    given_by: str
+    """Empty where the setting was computed."""
+
+
+@dataclass(frozen=True, kw_only=True)
 class NotInUse:
     """An adjuster that no state answers to: it gets no step, no tag and no refusal."""
 
@@ -55,6 +66,8 @@ class NotInUse:
     by_law: bool
     """Its control sees the same pressure on both its sides; else every state was tried."""
     states: int
+    guard: Guard | None = None
+    """Where it still protects: then it isn't set here, but it isn't idle either."""
 
 
 @dataclass(frozen=True, kw_only=True)

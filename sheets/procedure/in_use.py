@@ -1,16 +1,21 @@
-"""Which adjusters can govern a pressure at all: one that can is never called 'not in use'."""
+"""Which adjusters can govern at all: one that can is never called 'not in use'. And which only protect."""
 
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from itertools import islice, product
 
+from sheets.circuit.extremes import resistances, solve_every_set
+from sheets.circuit.faults import FaultKind, every_fault, faulty_circuit
 from sheets.circuit.model import AdjusterSite, Circuit
 from sheets.circuit.plant import PlantState
 from sheets.circuit.solver import solve
+from sheets.machine.model import Machine
 
 STILL_EFFECT = 1e-6
 """Effect below which a reading doesn't answer at all."""
+OPEN_LPM = 0.1
+"""A relief that passes more has opened."""
 _BATCH = 256
 
 
@@ -40,6 +45,28 @@ def ever_governs(
         if (abs(solved.effects[:, place, site.controlled_node]) > STILL_EFFECT).any():
             return True
     return False
+
+
+def guarded_pumps(machine: Machine, circuit: Circuit, base: PlantState, adjuster: str) -> tuple[str, ...]:
+    """Pumps of which a control stuck at full stroke lets a relief open, wherever the spools stand.
+
+    The adjusters stand as in ``base``, line valves at rest, the actuators jammed or free. Empty for an
+    adjuster that is no relief's. Where that isn't established it may open, so the pump is named.
+    """
+    site = next(site for site in circuit.adjusters if site.id == adjuster)
+    if site.part not in circuit.reliefs.ids:
+        return ()
+    row = circuit.reliefs.ids.index(site.part)
+    pumps = []
+    for fault in every_fault(machine, circuit, kinds=frozenset({FaultKind.CONTROL_STUCK})):
+        variants = list(resistances(faulty_circuit(circuit, fault)))
+        batches = solve_every_set(machine, variants, base.settings_bar)
+        if batches is None or any(
+            not solved.established.all() or (solved.relief_flows_lpm[:, row] > OPEN_LPM).any()
+            for solved in batches
+        ):
+            pumps.append(fault.part)
+    return tuple(pumps)
 
 
 def _states(circuit: Circuit, base: PlantState, site: AdjusterSite) -> Iterator[PlantState]:

@@ -10,11 +10,11 @@ from sheets.circuit.model import AdjusterSite
 from sheets.circuit.solution import Solution
 from sheets.circuit.solver import solve
 from sheets.circuit.verdict import Verdict
-from sheets.procedure.answers import NearMiss, NotFound, NotInUse, Search, TestState
+from sheets.procedure.answers import Guard, NearMiss, NotFound, NotInUse, Search, TestState
 from sheets.procedure.case import Case
 from sheets.procedure.changes import Candidate, Change, apply, candidates, possible_options
 from sheets.procedure.conditions import Condition, Failure, first_failure
-from sheets.procedure.in_use import STILL_EFFECT, ever_governs
+from sheets.procedure.in_use import STILL_EFFECT, ever_governs, guarded_pumps
 from sheets.procedure.judge import judge
 from sheets.targets.settings import Setting
 
@@ -94,7 +94,9 @@ def find_test_states(case: Case) -> Search:
             and not one.responded
             and not ever_governs(case.circuit, case.base, id_, case.trusted_ports)
         ):
-            answers[id_] = NotInUse(adjuster=id_, by_law=id_ in by_law, states=states)
+            answers[id_] = NotInUse(
+                adjuster=id_, by_law=id_ in by_law, states=states, guard=_guard(case, one.setting)
+            )
         else:
             answers[id_] = NotFound(
                 adjuster=id_,
@@ -103,6 +105,11 @@ def find_test_states(case: Case) -> Search:
                 near_misses=one.near_misses(),
             )
     return Search(answers=answers, states=states)
+
+
+def _guard(case: Case, setting: Setting) -> Guard | None:
+    pumps = guarded_pumps(case.machine, case.circuit, case.base, setting.adjuster)
+    return Guard(pumps=pumps, setting_bar=setting.target_bar, given_by=setting.given_by) if pumps else None
 
 
 def _try_batch(case: Case, batch: Sequence[Candidate], open_ones: Sequence[_Wanted]) -> None:

@@ -157,7 +157,13 @@ def _answer(answer: TestState | NotInUse | NotFound) -> dict[str, Json]:
                 "accuracy_ratio": rounded(answer.gauge.accuracy_ratio),
             }
         case NotInUse():
-            return {"adjuster": answer.adjuster, "answer": "not in use", "by_law": answer.by_law}
+            guards = answer.guard.pumps if answer.guard else ()
+            return {
+                "adjuster": answer.adjuster,
+                "answer": "protects only" if guards else "not in use",
+                "by_law": answer.by_law,
+                "guards": list(guards),
+            }
         case NotFound():
             return {
                 "adjuster": answer.adjuster,

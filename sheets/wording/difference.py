@@ -204,7 +204,7 @@ def _state(side: Side, answer: TestState | NotInUse | NotFound) -> str:
     say = Sentences(side.machine.language, "texts.j2")
     match answer:
         case NotInUse():
-            return "not in use"
+            return "protects only" if answer.guard else "not in use"
         case NotFound():
             return f"{answer.verdict.value}: {answer.failure.condition.value}"
         case TestState():

@@ -76,13 +76,20 @@ def say_not_in_use(speaker: Speaker, procedure: Procedure, only: str = "") -> tu
     """Adjusters that no state answers to, each with the reason; ``only`` narrows it to one."""
     sentences = Sentences(speaker.machine.language, "findings.j2")
     return tuple(
-        capital(
-            sentences.say(
-                "not_in_use_by_law" if answer.by_law else "not_in_use_by_search",
-                subject=speaker.adjuster(answer.adjuster),
-                states=str(answer.states),
-            )
-        )
+        capital(_not_in_use(speaker, sentences, answer))
         for answer in procedure.search.answers.values()
         if isinstance(answer, NotInUse) and only in ("", answer.adjuster)
+    )
+
+
+def _not_in_use(speaker: Speaker, sentences: Sentences, answer: NotInUse) -> str:
+    values = {"subject": speaker.adjuster(answer.adjuster), "states": str(answer.states)}
+    if answer.guard is None:
+        return sentences.say("not_in_use_by_law" if answer.by_law else "not_in_use_by_search", **values)
+    return sentences.say(
+        "not_in_use_but_guards",
+        **values,
+        pumps=", ".join(answer.guard.pumps),
+        setting=speaker.figures.pressure(answer.guard.setting_bar),
+        given_by=answer.guard.given_by,
     )

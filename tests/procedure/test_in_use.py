@@ -47,11 +47,41 @@ def test_relief_of_a_line_that_never_rises(changed: Callable[..., Described]) ->
 
     assert isinstance(answer, NotInUse)
     assert not answer.by_law
+    assert answer.guard is None
     assert matter.procedure.verdict is Verdict.ESTABLISHED
     assert matter.procedure.order.sequence == ("RV1",)
     (sentence,) = say_not_in_use(matter.speaker, matter.procedure)
     assert "RV2" in sentence
     assert str(answer.states) in sentence
+
+
+def test_relief_that_only_protects_is_not_called_unused(changed: Callable[..., Described]) -> None:
+    # The LS port drains inside, so the pump holds its standby of 300 psi whatever it is asked for, and RV1 at
+    # 3300 psi is never reached; its range begins at 800. With the control stuck, the pump's 75 L/min leave by
+    # RV1 alone. Loads that 300 psi move: 20.7 bar · 78.5 cm² = 16 kN.
+    inside = (
+        "      port not connected: {}          # maker's drawing: joined to the outlet inside the control\n"
+    )
+    loads = "    extending load: {} kN\n    retracting load: {} kN\n"
+    matter = steps(
+        changed(
+            "glaze_press",
+            (inside.format("fed"), inside.format("drained")),
+            (loads.format(100, 20), loads.format(5, 2)),
+        )
+    )
+    answer = matter.procedure.search.answers["RV1"]
+    assert isinstance(answer, NotInUse)
+    assert answer.guard is not None
+    assert answer.guard.pumps == ("PU1",)
+    sentence = next(one for one in say_not_in_use(matter.speaker, matter.procedure) if "RV1" in one)
+    assert "isn't in use" not in sentence
+    for told in ("protects only", "PU1", "3300 psi", "press maker's sheet"):
+        assert told in sentence
+
+    unused = matter.procedure.search.answers["PU1.compensator"]
+    assert isinstance(unused, NotInUse)
+    assert unused.guard is None
 
 
 def test_relief_that_governs_only_with_its_screw_out(changed: Callable[..., Described]) -> None:
