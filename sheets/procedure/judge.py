@@ -227,9 +227,10 @@ def _gauge(
 ) -> GaugeChoice | Failure:
     node = case.site(setting.adjuster).controlled_node
     reading_bar = target.pressures_bar[node]
-    weakest = min(
-        _in_service(case, setting), _here(case, target, reading_bar), key=lambda one: one.rating_bar
-    )
+    weakest = _here(case, target, reading_bar)
+    # A setting that is itself over a rating in service is refused as that, not again with each state.
+    if all(finding.code != "setting_over_rating" for finding in setting.findings):
+        weakest = min(weakest, _in_service(case, setting), key=lambda one: one.rating_bar)
     return choose_gauge(
         case.machine,
         case.circuit,
