@@ -1,10 +1,13 @@
-"""Commands of what an auditor asks: inspections."""
+"""Commands of what an auditor asks: inspections, the whole bundle."""
 
 from __future__ import annotations
 
+from pathlib import Path
+from typing import Literal
+
 import click
 
-from sheets.cli.common import AS_JSON, REGISTER, day, leave, now, show, today, wrong
+from sheets.cli.common import ANCHORS, AS_JSON, REGISTER, day, leave, now, show, today, wrong
 
 
 @click.command()
@@ -65,4 +68,23 @@ def inspect(
     show(pipeline.inspected_text(made, left))
 
 
-COMMANDS = (inspect,)
+@click.command()
+@click.argument("file", type=click.Path(path_type=Path), metavar="FILE")
+@REGISTER
+@ANCHORS
+@click.option("--paper", type=click.Choice(["A4", "Letter"]), default="A4", show_default=True)
+def audit(file: Path, register_at: str, anchors: tuple[str, ...], paper: Literal["A4", "Letter"]) -> None:
+    """Write what the register says today: one PDF, and each of its lists as CSV beside it.
+
+    Machines, revisions, inspections due and done, copies, deviations, instruments and people; each line
+    names the event that it follows from.
+
+    Example: jamnut audit demonstration/audit.pdf --register demonstration/register.db
+    """
+    from sheets import pipeline
+
+    made = pipeline.audit(register_at, file, anchors=anchors, day=today(), paper=paper)
+    show(pipeline.audit_text(made))
+
+
+COMMANDS = (inspect, audit)

@@ -48,6 +48,10 @@ REGISTER = click.option(
     help="The register: a file, or a PostgreSQL database by URL; the first issue makes it.",
 )
 
+ANCHORS = click.option(
+    "--anchor", "anchors", multiple=True, metavar="TEXT", help="An anchor that was kept outside."
+)
+
 
 def today() -> date:
     """The only look at a calendar; it refuses answers from the future and dates new ones."""

@@ -112,6 +112,22 @@ def glyph(character: str, weight: Weight) -> tuple[Source, float]:
     )
 
 
+def coded(text: str) -> str:
+    """A text in which each character without a glyph stands as its code: [U+738B].
+
+    For what people told a register: a record is shown, whatever stands in it.
+    """
+    return "".join(_coded(character) for character in settle(text))
+
+
+def _coded(character: str) -> str:
+    try:
+        glyph(character, Weight.REGULAR)
+    except InputError:
+        return f"[U+{ord(character):04X}]"
+    return character
+
+
 @lru_cache(maxsize=8192)
 def spans(text: str, weight: Weight) -> tuple[Span, ...]:
     """Cut a text into spans, one source each. Text that looks like markup stays what it is."""

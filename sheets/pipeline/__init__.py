@@ -15,6 +15,8 @@ if TYPE_CHECKING:
     from sheets.machine.answering import Answers as Answers
     from sheets.machine.files import machine_files as machine_files
     from sheets.machine.walking import WalkdownState as WalkdownState
+    from sheets.pipeline.auditing import audit as audit
+    from sheets.pipeline.auditing import audit_text as audit_text
     from sheets.pipeline.authorising import authorise as authorise
     from sheets.pipeline.authorising import end_authorisation as end_authorisation
     from sheets.pipeline.authorising import people as people
@@ -156,6 +158,8 @@ _CONTENTS: Final[dict[str, str]] = {
     "list_gauge": "pipeline.gauging",
     "gauge_found_bad": "pipeline.gauging",
     # what an auditor asks
+    "audit": "pipeline.auditing",
+    "audit_text": "pipeline.auditing",
     "inspect": "pipeline.inspecting",
     "inspected_text": "pipeline.inspecting",
     "inspections_json": "pipeline.inspecting",

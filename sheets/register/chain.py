@@ -31,8 +31,8 @@ class Anchor:
 
     @classmethod
     def read(cls, text: str) -> Self:
-        """An anchor from its text. Raises InputError."""
-        found = _ANCHOR.fullmatch(text.strip())
+        """An anchor from its text, blanks or not. Raises InputError."""
+        found = _ANCHOR.fullmatch("".join(text.split()))
         if found is None:
             raise InputError(
                 Problem(

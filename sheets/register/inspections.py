@@ -68,6 +68,10 @@ class Inspection:
         return self.told.said
 
     @property
+    def number(self) -> int:
+        return self.told.sequence
+
+    @property
     def against(self) -> tuple[int, ...]:
         """Events in which the inspector used the procedure that they inspected."""
         return used_by(self.users, self.said.inspector)
@@ -101,6 +105,8 @@ class Clock:
     """The current one."""
     first_issued: date
     """In UTC."""
+    issued_sequence: int
+    """Of the event that tells of that issue."""
     last: Inspection | None
     due: date
     """Last day on which it isn't overdue."""
@@ -140,16 +146,17 @@ def clock_of(view: View, document: str) -> Clock | None:
     newest = current(revisions)
     if newest is None:
         return None
-    first = min(one.issue.at.date() for one in revisions if one.issue is not None)
+    first = min((one.issue for one in revisions if one.issue is not None), key=lambda one: one.sequence)
     done = inspections(view, document=document)
     last = done[-1] if done else None
     return Clock(
         document=document,
         machine=newest.machine,
         revision=newest.number,
-        first_issued=first,
+        first_issued=first.at.date(),
+        issued_sequence=first.sequence,
         last=last,
-        due=year_after(last.said.on if last is not None else first),
+        due=year_after(last.said.on if last is not None else first.at.date()),
     )
 
 

@@ -60,6 +60,8 @@ class Issue:
     """Signed by hand on paper: the register knows the names only."""
     by: str
     at: datetime
+    sequence: int
+    """Of the event that tells it."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -74,12 +76,16 @@ class Revision:
     state: RevisionState
     reserved_by: str
     reserved_at: datetime
+    reserved_sequence: int
+    """Of the event that gave out its number."""
     signatures: tuple[Signature, ...] = ()
     issue: Issue | None = None
     superseded_by: int | None = None
     ended_by: str = ""
     """Who made it void, rejected or withdrew it."""
     ended_at: datetime | None = None
+    ended_sequence: int = 0
+    """Of the event that ended it; 0 while none did."""
     reason: str = ""
 
 
@@ -158,6 +164,7 @@ def _reserved(before: Sequence[Revision], event: Event) -> Revision:
         state=RevisionState.RESERVED,
         reserved_by=event.who,
         reserved_at=event.when,
+        reserved_sequence=event.sequence,
     )
 
 
@@ -177,6 +184,7 @@ def _after(revision: Revision, kind: EventKind, event: Event) -> Revision:
         state=_ENDS[kind],
         ended_by=event.who,
         ended_at=event.when,
+        ended_sequence=event.sequence,
         reason=_text(event, event.facts, "reason"),
     )
 
@@ -206,6 +214,7 @@ def _issue(event: Event) -> Issue:
         ink=ink,
         by=event.who,
         at=event.when,
+        sequence=event.sequence,
     )
 
 

@@ -187,3 +187,17 @@ def test_the_last_inspection_and_whether_it_was_independent(
         [7],
         "2027-12-01",
     )
+
+
+@pytest.mark.usefixtures("issued")
+def test_the_bundle(run: Callable[..., object], tmp_path: Path) -> None:
+    done = run(*example("audit"))
+    assert (done.status, done.err) == (0, "")
+    first, *lists, anchor = done.out.splitlines()
+    assert first.startswith("demonstration/audit.pdf: written, content ")
+    assert "demonstration/audit-machines.csv: 1 line" in lists
+    assert (tmp_path / "demonstration" / "audit.pdf").read_bytes().startswith(b"%PDF-")
+    given = ("--anchor", anchor.removeprefix("anchor to keep outside: "))
+    assert run(*example("audit"), *given).status == 0
+    wrong = run(*example("audit"), "--anchor", given[1][:-1] + ("0" if given[1][-1] != "0" else "1"))
+    assert wrong.status == 3

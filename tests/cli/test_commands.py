@@ -330,6 +330,10 @@ def test_a_bug_keeps_its_traceback_in_a_file(
         "sign": (variant(), "--as", "checked", "--key", variant(), *site, *register),
         "reject": (variant(), "--by", "A. Person", "--reason", "none", *register),
         "verify": (variant(), *site, *register),
+        "people": register,
+        "instruments": register,
+        "inspect": ("WI-0142", *register, "--inspector", "A. Person"),
+        "audit": (tmp_path / "audit.pdf", *register),
     }
 
     done = run(verb, *arguments.get(verb, (variant(),)))
