@@ -153,6 +153,8 @@ class Site(Entry):
     """Name of the works."""
     record_address: RecordAddress | None = None
     """Web address of the record page; the code on each page begins with it."""
+    record_page_open: YesNo = True
+    """Whether anybody who reaches the record page may read it; with no, only who has signed in."""
     zone: Text = "UTC"
     """Time zone of the works, as on paper: an IANA name such as Europe/Lisbon."""
     planner_telephone: SaidText

@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING, Any, Final
 from sheets.errors import InputError, Problem
 
 if TYPE_CHECKING:
+    from sheets.crockford import as_printed as as_printed
     from sheets.machine.answering import Answers as Answers
     from sheets.machine.files import machine_files as machine_files
     from sheets.machine.walking import WalkdownState as WalkdownState
@@ -57,6 +58,10 @@ if TYPE_CHECKING:
     from sheets.pipeline.issuing import issue as issue
     from sheets.pipeline.issuing import issued_text as issued_text
     from sheets.pipeline.keying import keys as keys
+    from sheets.pipeline.looking import Paper as Paper
+    from sheets.pipeline.looking import RecordLook as RecordLook
+    from sheets.pipeline.looking import look_at_file as look_at_file
+    from sheets.pipeline.looking import look_at_record as look_at_record
     from sheets.pipeline.many import Writing as Writing
     from sheets.pipeline.many import outcome_of_check as outcome_of_check
     from sheets.pipeline.many import outcome_of_pack as outcome_of_pack
@@ -68,6 +73,9 @@ if TYPE_CHECKING:
     from sheets.pipeline.printing import layout_named as layout_named
     from sheets.pipeline.printing import pack as pack
     from sheets.pipeline.printing import write_pack as write_pack
+    from sheets.pipeline.reading_room import DeskSettings as DeskSettings
+    from sheets.pipeline.reading_room import ReadingRoom as ReadingRoom
+    from sheets.pipeline.serving import serve as serve
     from sheets.pipeline.signing import reject as reject
     from sheets.pipeline.signing import sign as sign
     from sheets.pipeline.starting import new as new
@@ -88,6 +96,8 @@ if TYPE_CHECKING:
     from sheets.wording.summary import broken as broken
     from sheets.wording.summary import summary_json as summary_json
     from sheets.wording.summary import summary_lines as summary_lines
+    from sheets.wording.web import web_page as web_page
+    from sheets.wording.web import web_style as web_style
 
 _CONTENTS: Final[dict[str, str]] = {
     # read a machine
@@ -165,6 +175,17 @@ _CONTENTS: Final[dict[str, str]] = {
     "inspections_json": "pipeline.inspecting",
     "inspections_on": "pipeline.inspecting",
     "inspections_text": "pipeline.inspecting",
+    # show it on a screen
+    "as_printed": "crockford",
+    "DeskSettings": "pipeline.reading_room",
+    "serve": "pipeline.serving",
+    "ReadingRoom": "pipeline.reading_room",
+    "Paper": "pipeline.looking",
+    "RecordLook": "pipeline.looking",
+    "look_at_record": "pipeline.looking",
+    "look_at_file": "pipeline.looking",
+    "web_page": "wording.web",
+    "web_style": "wording.web",
     # many machines at once
     "machine_files": "machine.files",
     "Writing": "pipeline.many",

@@ -62,23 +62,27 @@ def currency_of(register: Register, key: str, *anchors: Anchor) -> Currency:
     superseded the paper. Key as printed or as typed; one that can't be a record id or digest is unknown.
     """
     with register.reading() as view:
-        chain = chain_in(view, anchors)
-        if not chain.holds:
-            return Currency(standing=Standing.NOT_ESTABLISHED, chain=chain)
-        try:
-            found = _matching(view, key)
-            if not found:
-                return Currency(standing=Standing.UNKNOWN, chain=chain)
-            newest = found[-1]
-            return Currency(
-                standing=_STANDINGS[newest.state],
-                revision=newest,
-                current=current(revisions_in(view, newest.document)),
-                alike=tuple(found[:-1]),
-                chain=chain,
-            )
-        except InputError as error:
-            return Currency(standing=Standing.NOT_ESTABLISHED, chain=chain, trouble=str(error))
+        return currency_in(view, chain_in(view, anchors), key)
+
+
+def currency_in(view: View, chain: ChainVerdict, key: str) -> Currency:
+    """The same within a view that is open already, whose whole chain was judged; ``key`` as there."""
+    if not chain.holds:
+        return Currency(standing=Standing.NOT_ESTABLISHED, chain=chain)
+    try:
+        found = _matching(view, key)
+        if not found:
+            return Currency(standing=Standing.UNKNOWN, chain=chain)
+        newest = found[-1]
+        return Currency(
+            standing=_STANDINGS[newest.state],
+            revision=newest,
+            current=current(revisions_in(view, newest.document)),
+            alike=tuple(found[:-1]),
+            chain=chain,
+        )
+    except InputError as error:
+        return Currency(standing=Standing.NOT_ESTABLISHED, chain=chain, trouble=str(error))
 
 
 def _matching(view: View, key: str) -> list[Revision]:

@@ -20,7 +20,7 @@ from click.testing import CliRunner
 
 from sheets import cli, pipeline
 from sheets.circuit.solver import solve_one
-from sheets.cli import auditing, issuing, people
+from sheets.cli import auditing, issuing, people, serving
 from sheets.errors import (
     GRAVITY,
     ExitStatus,
@@ -35,8 +35,11 @@ from sheets.pages.look import PAPERS
 
 COMMANDS = dict(cli.main.commands)
 VERBS = sorted(COMMANDS)
-ISSUING = {command.name for command in (*issuing.COMMANDS, *people.COMMANDS, *auditing.COMMANDS)}
-"""Their examples stand on a demonstration site: test_issuing_commands.py and test_asking_commands.py."""
+ISSUING = {
+    command.name for command in (*issuing.COMMANDS, *people.COMMANDS, *auditing.COMMANDS, *serving.COMMANDS)
+}
+"""Their examples stand on a demonstration site: test_issuing_commands.py, test_asking_commands.py and
+test_serving.py."""
 
 
 def readme(root: Path) -> str:
@@ -334,6 +337,7 @@ def test_a_bug_keeps_its_traceback_in_a_file(
         "instruments": register,
         "inspect": ("WI-0142", *register, "--inspector", "A. Person"),
         "audit": (tmp_path / "audit.pdf", *register),
+        "serve": (tmp_path, *register),
     }
 
     done = run(verb, *arguments.get(verb, (variant(),)))

@@ -14,7 +14,7 @@ from pathlib import Path
 import pytest
 
 SAMPLE = "glaze_press.yaml"
-KEPT = {".py", ".yaml", ".json", ".j2", ".png"}
+KEPT = {".py", ".yaml", ".json", ".j2", ".png", ".html", ".css"}
 """Endings of what people wrote; the rest beside it was made by running something."""
 PROGRAMS = "Scripts" if os.name == "nt" else "bin"
 

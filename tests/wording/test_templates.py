@@ -16,7 +16,9 @@ from sheets.trial.invariants import Invariant
 from sheets.wording.sentences import Sentences
 
 PACKAGE = Path(sheets.__file__).parent
-TEMPLATES = sorted((resource_folder("templates") / "en").glob("*.j2"))
+TEMPLATES = sorted(
+    file for ending in ("*.j2", "desk/*.html") for file in (resource_folder("templates") / "en").glob(ending)
+)
 
 
 def finding_codes() -> set[str]:

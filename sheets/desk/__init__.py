@@ -1,0 +1,1 @@
+"""The record page: what the register says of a paper, one scan away. Server-made pages without scripts."""
