@@ -107,6 +107,8 @@ def keys(folder: Path, authority: str, persons: tuple[str, ...], passphrases: Pa
 @click.option("--checked", metavar="KEY|NAME", help="The same for who checked it; a name signs later.")
 @click.option("--approved", metavar="KEY|NAME", help="The same for who approves it; a name signs later.")
 @click.option("--ink", is_flag=True, help="No keys: boxes to sign on paper; code and digest all the same.")
+@click.option("--reason", default="", metavar="TEXT", help="Why it takes the place of the current revision.")
+@click.option("--reviewed", default="", metavar="NAME", help="Who judged what changed; else who checks it.")
 def issue(
     machine: Path,
     site: Path | None,
@@ -120,6 +122,8 @@ def issue(
     checked: str | None,
     approved: str | None,
     ink: bool,
+    reason: str,
+    reviewed: str,
 ) -> None:
     """Issue a pack: reserve a revision, print, sign, write, commit.
 
@@ -151,6 +155,8 @@ def issue(
         random_bytes=secrets.token_bytes,
         layout=pipeline.layout_named(paper),
         ink=ink,
+        reason=reason,
+        reviewer=reviewed,
     )
     show(pipeline.issued_text(issued))
 

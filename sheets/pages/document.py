@@ -246,6 +246,9 @@ class PageWords:
     issued: str = "issued"
     state: str = "state"
     changes: str = "changes"
+    more_changes: str = "and {count} more, which travel in this file and stand in the register"
+    reason: str = "reason"
+    reviewed: str = "reviewed by"
     target: str = "target"
     accept: str = "accept"
     never_exceed: str = "never exceed"
@@ -285,6 +288,11 @@ class IssueContext:
     signers: tuple[tuple[str, str], ...] = ()
     """Meaning and name: prepared, checked, approved."""
     changes: tuple[str, ...] = ()
+    """What changed since the revision before, one line each; the title block prints as many as fit."""
+    reason: str = ""
+    """Why it takes the place of the revision before."""
+    reviewer: str = ""
+    """Who judged what changed."""
     as_left: tuple[tuple[str, str], ...] = ()
     """Adjuster and as-left line for its tag."""
 

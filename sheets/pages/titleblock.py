@@ -18,6 +18,8 @@ SPLIT = 0.6
 LABEL_COLUMN = 19 * MM
 SIGN_WIDTH = 52 * MM
 CHANGES_LEFT = 32 * MM
+CHANGES_MOST = 8
+"""So many are printed: the cover has one page."""
 PAD = 2 * MM
 STRONG = tuple(style(size, Weight.SEMIBOLD) for size in (12, 11, 10, 9))
 
@@ -84,7 +86,12 @@ def changed(ink: Ink, words: PageWords, issue: IssueContext, top: float, width: 
     with ink.inside(element("P", "changes")):
         ink.lines(PAD, top + PAD, (words.changes,), LABEL)
     bottom = top + PAD
-    for index, change in enumerate(issue.changes):
+    lines = [*issue.changes[:CHANGES_MOST]]
+    if len(issue.changes) > CHANGES_MOST:
+        lines.append(words.more_changes.format(count=len(issue.changes) - CHANGES_MOST))
+    if issue.reason:
+        lines.insert(0, f"{words.reason}: {issue.reason}; {words.reviewed} {issue.reviewer}")
+    for index, change in enumerate(lines):
         with ink.inside(element("P", index)):
             bottom = ink.lines(CHANGES_LEFT, bottom, wrap(change, BODY, width - CHANGES_LEFT - PAD), BODY)
     return bottom + PAD * 0.6

@@ -8,8 +8,9 @@ from __future__ import annotations
 
 import contextlib
 import hashlib
+import json
 from collections.abc import Callable, Iterator, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import datetime
 from pathlib import Path
 from typing import Final
@@ -20,16 +21,20 @@ from sheets.errors import InputError, JamnutError, Problem, RefusedError, quoted
 from sheets.machine.files import aside_of, check_pdf_target, move_aside, write_aside
 from sheets.machine.site import Site
 from sheets.pages.archive import archive_flaws
+from sheets.pages.attached import attachments_in
 from sheets.pages.compose.matter import Matter
 from sheets.pages.document import IssueContext, Layout
 from sheets.pages.stamp import stamp_pdf
+from sheets.pipeline.attaching import JOB_NAME, layout_of
+from sheets.pipeline.changing import changes_since, hold_changed, hold_reason
 from sheets.pipeline.computing import issuable
+from sheets.pipeline.keeping import kept_of
 from sheets.pipeline.persons import Named, Signing, check_people, check_trusted, named_by, trust_of
-from sheets.pipeline.printing import printed, whole_content
-from sheets.register.finding import revision_of
+from sheets.pipeline.printing import Content, printed, whole_content
+from sheets.register.finding import document_revisions, revision_of
 from sheets.register.issuing import Reservation, commit, reserve, sign_event, void
 from sheets.register.opening import Place, create_register, is_there, open_register
-from sheets.register.revisions import Revision, RevisionState, Signer
+from sheets.register.revisions import Revision, RevisionState, Signer, current
 from sheets.register.store import Register
 from sheets.seal.canonical import canonical_bytes, digest
 from sheets.seal.sign import SigningField, sign_field, signing_fields
@@ -61,11 +66,15 @@ def issue(
     random_bytes: Callable[[int], bytes],
     layout: Layout,
     ink: bool = False,
+    reason: str = "",
+    reviewer: str = "",
 ) -> Issued:
     """Issues the pack of a job, or begins to: with keys for some signatures, the others come by `sign`.
 
-    ``site_folder`` is that of the site file, from where its trust list is read. Raises InputError and
-    RefusedError with everything that stands against it, before a revision is reserved.
+    ``site_folder`` is that of the site file, from where its trust list is read. ``reason``: why it takes the
+    place of the current revision, if there is one; ``reviewer``: who judged what changed, without one who
+    checks it, or else approves it. Raises InputError and RefusedError with everything that stands against
+    it, before a revision is reserved.
     """
     said = whole_content(matter)  # a job that doesn't hold says why
     against = issuable(matter)
@@ -80,6 +89,10 @@ def issue(
         check_trusted(people, trust_of(site, site_folder))
     by = people[0].name
     with _register(register_at, by, when) as register:
+        before = current(document_revisions(register, matter.machine.document))
+        hold_changed(before, said.digest)
+        hold_reason(before, reason)
+        changes = _changes(before, matter, said.data)
         reservation = reserve(
             register,
             document=matter.machine.document,
@@ -90,7 +103,13 @@ def issue(
         )
         record_id = reservation.record_id
         try:
-            context = _context(site, zone, reservation, people, when)
+            _hold_before(before, reservation)
+            context = replace(
+                _context(site, zone, reservation, people, when),
+                changes=changes,
+                reason=reason,
+                reviewer=(reviewer or _reviewer(people)) if changes else "",
+            )
             data = printed(said, matter, layout, context, fillable=not ink)
             hold_archive_form(data)
             fields = {} if ink else signing_fields(data)
@@ -106,7 +125,7 @@ def issue(
                 tell_signed(register, record_id, one, made, when=when)
             if not waiting:
                 signers = tuple(Signer(meaning=one.meaning, name=one.name) for one in people)
-                commit_pack(register, record_id, matter, data, said.digest, signers, when=when, ink=ink)
+                commit_pack(register, context, matter, data, said, signers, when=when, ink=ink)
         except BaseException as error:
             break_off(register, record_id, target, error, by=by, when=when)
             raise
@@ -256,20 +275,21 @@ def tell_signed(register: Register, record_id: str, one: Named, made: str, *, wh
 
 def commit_pack(
     register: Register,
-    record_id: str,
+    context: IssueContext,
     matter: Matter,
     data: bytes,
-    content_digest: str,
+    said: Content,
     signers: tuple[Signer, ...],
     *,
     when: datetime,
     ink: bool,
 ) -> None:
-    """The register has it as issued from here on. ``content_digest`` is the printed one."""
+    """The register has it as issued from here on, and keeps what it was made from and what it says."""
+    layout = layout_of(json.loads(attachments_in(data)[JOB_NAME]))
     commit(
         register,
-        record_id,
-        content_digest=content_digest,
+        context.record_id,
+        content_digest=said.digest,
         file_digest=file_digest(data),
         machine_digest=machine_digest(matter),
         engine=ENGINE,
@@ -277,6 +297,40 @@ def commit_pack(
         by=signers[-1].name,
         when=when,
         ink=ink,
+        kept=kept_of(
+            matter,
+            layout,
+            said.data,
+            changes=context.changes,
+            reason=context.reason,
+            reviewer=context.reviewer,
+        ),
+    )
+
+
+def _changes(before: Revision | None, matter: Matter, content: bytes) -> tuple[str, ...]:
+    if before is None or before.issue is None:
+        return ()
+    if before.issue.kept is None:
+        return ("not known: the register kept nothing of the revision before",)
+    return changes_since(before.issue.kept, matter, content)
+
+
+def _reviewer(people: Sequence[Named]) -> str:
+    by_meaning = {one.meaning: one.name for one in people}
+    return by_meaning.get("checked") or by_meaning.get("approved") or people[-1].name
+
+
+def _hold_before(before: Revision | None, reservation: Reservation) -> None:
+    """The list of changes is against the current revision. Raises RefusedError if another came meanwhile."""
+    if (before and before.record_id) == (reservation.before and reservation.before.record_id):
+        return
+    raise RefusedError(
+        Problem(
+            where=f"document {quoted(reservation.document)}",
+            what="Another program issued a revision meanwhile.",
+            fix="Issue again: the list of what changed is then against that one.",
+        )
     )
 
 

@@ -22,7 +22,7 @@ from sheets.pipeline.issuing import (
     tell_signed,
 )
 from sheets.pipeline.persons import Named, Signing, check_trusted, named_by, trust_of
-from sheets.pipeline.verifying import remade_with_digest
+from sheets.pipeline.verifying import remade_with_content
 from sheets.register import issuing as registered
 from sheets.register.finding import revision_of
 from sheets.register.opening import Place, open_register
@@ -61,7 +61,7 @@ def sign(
         if not told:
             _check_unsigned(revision, person)
         _check_known(data, last.file_digest if last else "")
-        made, printed = remade_with_digest(data)
+        made, said = remade_with_content(data)
         if told:  # and something broke off behind it
             signed = data
         else:
@@ -75,14 +75,14 @@ def sign(
         waiting = tuple(name for name, field in signing_fields(signed).items() if not field.signed)
         if not waiting and revision.state is RevisionState.RESERVED:
             signers = tuple(Signer(meaning=meaning, name=name) for meaning, name in context.signers)
-            commit_pack(register, context.record_id, made, signed, printed, signers, when=when, ink=False)
+            commit_pack(register, context, made, signed, said, signers, when=when, ink=False)
         if signed is not data:
             put_in_place(file)
     return Issued(
         file=file,
         revision=context.revision,
         record_id=context.record_id,
-        digest=printed,
+        digest=said.digest,
         waiting=waiting,
     )
 

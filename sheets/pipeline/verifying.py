@@ -212,8 +212,8 @@ def remade(held: Mapping[str, bytes], job: Mapping[str, Any]) -> Matter:
     return steps(described, task_of(described, job["task"], job["part"] or None))
 
 
-def remade_with_digest(data: bytes) -> tuple[Matter, str]:
-    """The job of a pack and the digest of its content. Raises InputError where it isn't what was made."""
+def remade_with_content(data: bytes) -> tuple[Matter, Content]:
+    """The job of a pack and its content. Raises InputError where it isn't what was made."""
     held = attachments_in(data)
     report = judge_content(data, held, only_signed=True)  # signing judges what was added since
     if report.judgement is not Judgement.GOOD:
@@ -224,7 +224,8 @@ def remade_with_digest(data: bytes) -> tuple[Matter, str]:
                 fix="See what jamnut verify says of it, and issue it anew.",
             )
         )
-    return remade(held, json.loads(held[JOB_NAME])), report.printed
+    made = remade(held, json.loads(held[JOB_NAME]))
+    return made, whole_content(made)
 
 
 def _currency(

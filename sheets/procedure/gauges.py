@@ -39,6 +39,10 @@ class GaugeChoice:
     graduation_bar: float
     accuracy_ratio: float
     findings: tuple[Finding, ...]
+    floor_bar: float
+    """A reading below it lies outside the order of limits: in a neighbour's window, or under the work."""
+    ceiling_bar: float
+    """A reading above it does: in a neighbour's window, or past the end of the adjuster's range."""
 
     @property
     def port(self) -> str:
@@ -213,6 +217,8 @@ def _judge(
         graduation_bar=graduation,
         accuracy_ratio=achieved,
         findings=tuple(findings),
+        floor_bar=readings.floor_bar,
+        ceiling_bar=readings.ceiling_bar,
     )
 
 

@@ -182,10 +182,19 @@ class Rig:
 
         With an adjuster backed out, anything from zero up is right: its lowest setting isn't a known figure.
         """
-        half_bar = max(AS_FOUND_SHARE * expected_bar, AS_FOUND_LEAST_BAR)
-        low_bar = math.floor((expected_bar - half_bar) / graduation + _DUST) * graduation
-        high_bar = math.ceil((expected_bar + half_bar) / graduation - _DUST) * graduation
-        return (0.0 if self.backed_out else max(0.0, low_bar)), high_bar
+        low_bar, high_bar = as_found_band(expected_bar=expected_bar, graduation_bar=graduation)
+        return (0.0 if self.backed_out else low_bar), high_bar
+
+
+def as_found_band(*, expected_bar: float, graduation_bar: float) -> tuple[float, float]:
+    """Readings outside which a setting as found has a cause that is looked for before anyone adjusts.
+
+    Both in bar, outward to graduations. Policy: a share of what is expected, or a least figure.
+    """
+    half_bar = max(AS_FOUND_SHARE * expected_bar, AS_FOUND_LEAST_BAR)
+    low_bar = math.floor((expected_bar - half_bar) / graduation_bar + _DUST) * graduation_bar
+    high_bar = math.ceil((expected_bar + half_bar) / graduation_bar - _DUST) * graduation_bar
+    return max(0.0, low_bar), high_bar
 
 
 def _governor(solution: Solution, node: int) -> str:

@@ -16,6 +16,7 @@ from sheets.errors import Problem, RefusedError, quoted
 from sheets.register.events import REVISION_KINDS, Entry, EventKind
 from sheets.register.finding import found_in, revisions_in
 from sheets.register.form import LONGEST_REASON, RECORD_ID, digest_text, name_text
+from sheets.register.kept import Kept
 from sheets.register.revisions import (
     FROM_STATE,
     Revision,
@@ -25,6 +26,7 @@ from sheets.register.revisions import (
     open_one,
     revisions_from,
 )
+from sheets.register.saying import data_of
 from sheets.register.store import Register, Writer
 
 _ID_BYTES: Final = 7
@@ -125,11 +127,13 @@ def commit(
     by: str,
     when: datetime,
     ink: bool = False,
+    kept: Kept | None = None,
 ) -> Revision:
     """Makes a reserved revision the current one; the one before it is superseded.
 
     ``engine`` is the number of the engine that made the content. ``signers`` are those of the recorded
     signatures, in any order; for ``ink`` those who will sign on paper, and no signature is recorded.
+    ``kept`` is what the pack was made from and what it says; without it no reading can be judged.
 
     Raises RefusedError if the revision isn't open, or signers and recorded signatures differ: then nothing is
     issued, and the file must not be left where it could be taken for issued.
@@ -144,6 +148,7 @@ def commit(
         "ink": ink,
         "machine": digest_text("digest of the machine file", machine_digest),
         "signers": [{"meaning": one.meaning, "name": one.name} for one in signers],
+        **({} if kept is None else {"kept": data_of(kept)}),
     }
     with register.writing() as writer:
         revision = _open(writer, record_id, EventKind.ISSUED)

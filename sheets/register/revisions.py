@@ -10,6 +10,8 @@ from types import MappingProxyType
 from typing import Final
 
 from sheets.register.events import REVISION_KINDS, Event, EventKind, contradiction
+from sheets.register.kept import Kept
+from sheets.register.saying import value_of
 
 
 class RevisionState(Enum):
@@ -58,6 +60,8 @@ class Issue:
     signers: tuple[Signer, ...]
     ink: bool
     """Signed by hand on paper: the register knows the names only."""
+    kept: Kept | None
+    """What the pack was made from and what it says; None for an issue that didn't keep it."""
     by: str
     at: datetime
     sequence: int
@@ -212,10 +216,22 @@ def _issue(event: Event) -> Issue:
         engine=engine,
         signers=tuple(_signer(event, one) for one in signers),
         ink=ink,
+        kept=_kept(event, facts.get("kept")),
         by=event.who,
         at=event.when,
         sequence=event.sequence,
     )
+
+
+def _kept(event: Event, data: object) -> Kept | None:
+    if data is None:
+        return None
+    try:
+        if isinstance(data, dict):
+            return value_of(Kept, data)
+    except ValueError as error:
+        raise contradiction(event.sequence, f"what it keeps can't be read: {error}") from None
+    raise contradiction(event.sequence, "what it keeps can't be read")
 
 
 def _signer(event: Event, one: object) -> Signer:

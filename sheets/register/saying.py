@@ -26,6 +26,9 @@ class Said:
     KIND: ClassVar[EventKind]
 
 
+LONG: Final = "long"
+"""Marks, in the metadata of a field, a text of any length and any lines: a file that is kept as it was."""
+
 S = TypeVar("S", bound=Said)
 V = TypeVar("V")
 
@@ -139,6 +142,8 @@ def _fields(kind: type[object]) -> dict[str, tuple[Any, bool]]:
 def _plain(value: object, one: Field[Any]) -> object:
     if isinstance(value, Enum):
         return value.value
+    if isinstance(value, str) and one.metadata.get(LONG):
+        return value
     if isinstance(value, str):
         may_be_empty = one.default == "" and not value
         return value if may_be_empty else name_text(_called(one.name), value, longest=LONGEST_REASON)

@@ -19,7 +19,8 @@ from sheets.register.database import Database
 from sheets.register.events import FIRST, NO_EVENT, Entry, Event, contradiction, hash_of
 from sheets.register.form import LONGEST_NAME, canonical, name_text, utc_text
 
-LARGEST_DATA: Final = 1_000_000
+LARGEST_DATA: Final = 8_000_000
+"""An issue keeps three files of at most 1 MB each, with some characters written as two."""
 _PAGE: Final = 1000
 
 _TEXTS: Final = ("time", "who", "kind", "machine", "document", "record_id", "data", "previous", "hash")

@@ -79,7 +79,7 @@ def differences(old: Side, new: Side) -> Differing:
     """All changes, by section, in the order of the old file with what is new behind it."""
     units = new.machine.units
     found = [
-        *_file(old.machine, new.machine, units),
+        *file_changes(old.machine, new.machine, units),
         *_compare("targets", _targets(old, units), _targets(new, units)),
         *_compare("windows", _windows(old, units), _windows(new, units)),
         *_compare("test states", _states(old), _states(new)),
@@ -102,7 +102,8 @@ def _compare(section: str, old: Texts, new: Texts) -> Iterator[Change]:
 # What is written
 
 
-def _file(old: Machine, new: Machine, units: Units) -> Iterator[Change]:
+def file_changes(old: Machine, new: Machine, units: Units) -> Iterator[Change]:
+    """What is written otherwise, in those units."""
     before, after = ({leaf.path: leaf for leaf in leaves(machine)} for machine in (old, new))
     there = [{path[:2] for path in side if path[0] in _FILE_SECTIONS} for side in (before, after)]
     told: set[tuple[str, ...]] = set()
@@ -303,13 +304,7 @@ def difference_lines(differing: Differing) -> Iterator[str]:
                 yield ""
             section = change.section
             yield section
-        place = ", ".join(change.place)
-        if change.old is None:
-            yield f"  + {place}: {change.new}"
-        elif change.new is None:
-            yield f"  - {place}: {change.old}"
-        else:
-            yield f"    {place}: {change.old} → {change.new}"
+        yield change_line(change)
     if not section:
         yield "Nothing differs: what is written, computed, done and read is the same."
     for name, side in (("old", differing.old), ("new", differing.new)):
@@ -319,6 +314,16 @@ def difference_lines(differing: Differing) -> Iterator[str]:
                 yield ""
                 yield f"{name} file, {one.severity.value}: {what}"
                 yield f"    {fix}"
+
+
+def change_line(change: Change) -> str:
+    """One change, without its section."""
+    place = ", ".join(change.place)
+    if change.old is None:
+        return f"  + {place}: {change.new}"
+    if change.new is None:
+        return f"  - {place}: {change.old}"
+    return f"    {place}: {change.old} → {change.new}"
 
 
 def difference_json(differing: Differing) -> dict[str, Json]:

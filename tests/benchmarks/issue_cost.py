@@ -15,6 +15,7 @@ import time
 from collections.abc import Callable
 from dataclasses import dataclass
 from datetime import UTC, datetime
+from itertools import count
 from pathlib import Path
 
 sys.path.insert(0, str(Path(__file__).parents[1] / "issuing"))
@@ -49,11 +50,16 @@ def acts_at(folder: Path, name: str) -> dict[str, Callable[[], object]]:
     pipeline.demo(sample, folder / "works", when=WHEN, random_bytes=Chance(1))
     works = Works(folder / "works")
     matter = pipeline.steps(pipeline.check(works.folder / sample.name))
-    target, chance = folder / "pack.pdf", Chance(2)
+    target, chance, number = folder / "pack.pdf", Chance(2), count()
     return {
         "unsigned": lambda: pipeline.write_pack(matter, target, paper="A4", only=()),
-        "ink": lambda: works.issue(matter, target, ink=True, random_bytes=chance),
-        "three signatures": lambda: works.issue(matter, target, random_bytes=chance),
+        # Only what has changed is issued again, so each goes into a register of its own.
+        "ink": lambda: works.issue(
+            matter, target, ink=True, random_bytes=chance, register_at=folder / f"{next(number)}.db"
+        ),
+        "three signatures": lambda: works.issue(
+            matter, target, random_bytes=chance, register_at=folder / f"{next(number)}.db"
+        ),
     }
 
 

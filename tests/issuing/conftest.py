@@ -11,6 +11,8 @@ from works import WHEN, Chance, Works
 from sheets import pipeline
 from sheets.pages.compose.matter import Matter
 
+BEFORE, AFTER = "name: Kiln-car pusher power unit", "name: Kiln-car pusher, power unit"
+
 
 @pytest.fixture(scope="session")
 def issued(root: Path, tmp_path_factory: pytest.TempPathFactory) -> Works:
@@ -20,12 +22,16 @@ def issued(root: Path, tmp_path_factory: pytest.TempPathFactory) -> Works:
         root / "sample_machines" / "kiln_pusher.yaml", folder, when=WHEN, random_bytes=Chance(1)
     )
     assert made.issued.waiting == ()
+    # The machine file goes on from there: only what has changed can be issued again.
+    machine = Works(folder).machine
+    text = machine.read_text(encoding="utf-8")
+    machine.write_text(text.replace(BEFORE, AFTER), encoding="utf-8")
     return Works(folder)
 
 
 @pytest.fixture(scope="session")
 def job(issued: Works) -> Matter:
-    """The job of that site, ready to be issued again."""
+    """The job of that site, changed in its name, ready to be issued again."""
     return pipeline.steps(pipeline.check(issued.machine))
 
 

@@ -84,6 +84,7 @@ class Works:
             "when": LATER,
             "random_bytes": Chance(2),
             "layout": Layout(),
+            "reason": "a name was wrong",
             **other,
         }
         return pipeline.issue(matter, target or self.pack, **given)
