@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING, Literal
 import click
 
 from sheets import __version__
-from sheets.cli import auditing, issuing, people, serving
+from sheets.cli import auditing, issuing, people, recording, registering, serving, tagging
 from sheets.cli.common import AS_JSON, MACHINE, MACHINES, PART, SITE, TASK, leave, show, tell, today, wrong
 from sheets.errors import ExitStatus, JamnutError, gravest
 
@@ -316,8 +316,9 @@ def _keep_traceback() -> str:
     return kept.name
 
 
-for command in (*issuing.COMMANDS, *people.COMMANDS, *auditing.COMMANDS, *serving.COMMANDS):
-    main.add_command(command)
+for module in (issuing, registering, recording, tagging, people, auditing, serving):
+    for command in module.COMMANDS:
+        main.add_command(command)
 
 
 def entry() -> None:

@@ -39,7 +39,6 @@ TASK = click.option(
     help="Read only; read and set; set after commissioning; set one part after its replacement.",
 )
 PART = click.option("--part", metavar="ID", help="The part that was replaced, for --task replace.")
-
 REGISTER = click.option(
     "--register",
     "register_at",
@@ -47,6 +46,8 @@ REGISTER = click.option(
     required=True,
     help="The register: a file, or a PostgreSQL database by URL; the first issue makes it.",
 )
+BY = click.option("--by", required=True, metavar="NAME", help="Who it is, by name.")
+ON = click.option("--on", "on", metavar="DATE", help="The day, year first; today without it.")
 
 ANCHORS = click.option(
     "--anchor", "anchors", multiple=True, metavar="TEXT", help="An anchor that was kept outside."

@@ -130,7 +130,7 @@ def issue(
     With the keys of a demonstration the passphrase is: demonstration only
 
     \b
-    Example: jamnut issue demonstration/clay_mixer.yaml --register demonstration/register.db \\
+    Example: jamnut issue demonstration/clay_mixer.yaml --register first.db \\
         --prepared demonstration/keys/ada-quarrow.p12 --checked "Bram Tolliver" --approved "Cleo Harnett"
     """
     from sheets import pipeline
@@ -173,7 +173,7 @@ def sign(file: Path, meaning: str, key: Path, site: Path, register_at: str, pass
 
     \b
     Example: jamnut sign PU-07.pdf --as checked --key demonstration/keys/bram-tolliver.p12 \\
-        --site demonstration/site.yaml --register demonstration/register.db
+        --site demonstration/site.yaml --register first.db
     """
     from sheets import pipeline
 
@@ -197,7 +197,7 @@ def reject(file: Path, register_at: str, by: str, reason: str) -> None:
     """Reject a pack between its signatures, with a reason; its revision ends there.
 
     \b
-    Example: jamnut reject PU-07.pdf --register demonstration/register.db \\
+    Example: jamnut reject PU-07.pdf --register first.db \\
         --by "Bram Tolliver" --reason "wrong plate"
     """
     from sheets import pipeline

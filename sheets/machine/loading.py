@@ -19,6 +19,7 @@ from sheets.machine.fields import Entry, Identifier, PortRef
 from sheets.machine.flaws import Flaw
 from sheets.machine.model import Machine, Supply
 from sheets.machine.parts import AnyGauge, Part
+from sheets.machine.record import RecordFile
 from sheets.machine.reporting import flaws_of
 from sheets.machine.site import Site
 from sheets.machine.site_checks import site_check
@@ -135,6 +136,16 @@ def parse_walkdown(text: bytes, name: str, *, machine: Machine, today: date | No
             yield from walkdown.dates_after(today)
 
     return _parsed(text, name, Walkdown, check, lambda _: None)
+
+
+def load_record(path: Path) -> RecordFile:
+    """Read a record file. Raises InputError with every problem in it, in the order of its lines."""
+    return parse_record(_bytes_of(path), path.name)
+
+
+def parse_record(text: bytes, name: str) -> RecordFile:
+    """The record in that text; ``name`` stands in the problems. Raises InputError."""
+    return _parsed(text, name, RecordFile, lambda _: (), lambda _: None)
 
 
 def _bytes_of(path: Path) -> bytes:

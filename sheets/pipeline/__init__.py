@@ -75,11 +75,32 @@ if TYPE_CHECKING:
     from sheets.pipeline.printing import write_pack as write_pack
     from sheets.pipeline.reading_room import DeskSettings as DeskSettings
     from sheets.pipeline.reading_room import ReadingRoom as ReadingRoom
+    from sheets.pipeline.recording import end as end
+    from sheets.pipeline.recording import record as record
+    from sheets.pipeline.recording import record_answers as record_answers
+    from sheets.pipeline.recording import record_rows as record_rows
+    from sheets.pipeline.recording import recorded_text as recorded_text
+    from sheets.pipeline.recording import settle as settle
+    from sheets.pipeline.recording import strike as strike
+    from sheets.pipeline.registering import backup as backup
+    from sheets.pipeline.registering import check_register as check_register
+    from sheets.pipeline.registering import check_register_text as check_register_text
+    from sheets.pipeline.registering import copies as copies
+    from sheets.pipeline.registering import copies_text as copies_text
+    from sheets.pipeline.registering import export as export
+    from sheets.pipeline.registering import hang as hang
+    from sheets.pipeline.registering import history as history
+    from sheets.pipeline.registering import migrate as migrate
+    from sheets.pipeline.registering import restore as restore
+    from sheets.pipeline.registering import take_down as take_down
+    from sheets.pipeline.registering import withdraw as withdraw
     from sheets.pipeline.serving import serve as serve
     from sheets.pipeline.signing import reject as reject
     from sheets.pipeline.signing import sign as sign
     from sheets.pipeline.starting import new as new
     from sheets.pipeline.starting import starter_kinds as starter_kinds
+    from sheets.pipeline.tagging import post as post
+    from sheets.pipeline.tagging import tags as tags
     from sheets.pipeline.verifying import verify as verify
     from sheets.pipeline.verifying import verify_failed_json as verify_failed_json
     from sheets.pipeline.verifying import verify_json as verify_json
@@ -186,6 +207,29 @@ _CONTENTS: Final[dict[str, str]] = {
     "look_at_file": "pipeline.looking",
     "web_page": "wording.web",
     "web_style": "wording.web",
+    # ask the register
+    "backup": "pipeline.registering",
+    "check_register": "pipeline.registering",
+    "check_register_text": "pipeline.registering",
+    "copies": "pipeline.registering",
+    "copies_text": "pipeline.registering",
+    "export": "pipeline.registering",
+    "hang": "pipeline.registering",
+    "history": "pipeline.registering",
+    "migrate": "pipeline.registering",
+    "restore": "pipeline.registering",
+    "take_down": "pipeline.registering",
+    "withdraw": "pipeline.registering",
+    # record what was found and left, with what, and what hangs
+    "end": "pipeline.recording",
+    "record": "pipeline.recording",
+    "record_answers": "pipeline.recording",
+    "record_rows": "pipeline.recording",
+    "recorded_text": "pipeline.recording",
+    "settle": "pipeline.recording",
+    "strike": "pipeline.recording",
+    "post": "pipeline.tagging",
+    "tags": "pipeline.tagging",
     # many machines at once
     "machine_files": "machine.files",
     "Writing": "pipeline.many",

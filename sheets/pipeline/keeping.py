@@ -39,6 +39,8 @@ def kept_of(
         reason=reason,
         reviewer=reviewer,
         changes=changes,
+        unit=matter.figures.pressure_unit,
+        zero_limit=_limit(matter.figures.in_unit(matter.speaker.policies.zero_limit_bar), up=False),
         machine=sources.machine.decode(),
         site=(sources.site or b"").decode(),
         walkdown=(sources.walkdown or b"").decode(),

@@ -103,7 +103,7 @@ def write_pack(
     RefusedError or NotEstablishedError where nothing may be printed.
     """
     said = whole_content(matter)
-    _keep_issued(target)
+    keep_issued(target)
     layout = layout_named(paper, only)
     pages = place(said.document, layout, digest=said.digest)
     attachments = attachments_of(matter, layout, said.data)
@@ -111,8 +111,8 @@ def write_pack(
     return Written(pages=len(pages), digest=said.digest)
 
 
-def _keep_issued(target: Path) -> None:
-    """A draft never takes the place of an issued pack. Raises InputError."""
+def keep_issued(target: Path) -> None:
+    """Nothing takes the place of an issued pack but another. Raises InputError."""
     try:
         held = attachments_in(target.read_bytes())
     except (OSError, InputError):

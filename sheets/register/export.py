@@ -1,11 +1,32 @@
-"""The register as text, for whoever reads it without this program: one event a line."""
+"""The register as text, for whoever reads it without this program; a backup is made of it, too."""
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+import csv
+import io
+import json
+from collections.abc import Iterable, Iterator
+from typing import Final
 
+from sheets.errors import InputError, Problem
+from sheets.register.chain import Anchor
+from sheets.register.events import Event, hash_of
 from sheets.register.form import canonical
-from sheets.register.store import Register
+from sheets.register.opening import Place, make_register
+from sheets.register.store import Register, View, Writer
+
+COLUMNS: Final = (
+    "sequence",
+    "time",
+    "who",
+    "kind",
+    "machine",
+    "document",
+    "record_id",
+    "data",
+    "previous",
+    "hash",
+)
 
 
 def json_lines(register: Register, *, after: int = 0) -> Iterator[str]:
@@ -15,5 +36,79 @@ def json_lines(register: Register, *, after: int = 0) -> Iterator[str]:
     read.
     """
     with register.reading() as view:
+        yield from lines_of(view, after=after)
+
+
+def lines_of(view: View, *, after: int = 0) -> Iterator[str]:
+    """The same of a view that is open already, beginning ``after`` a sequence number."""
+    for event in view.events(after=after):
+        yield canonical({**vars(event), "data": event.facts}) + "\n"
+
+
+def csv_lines(register: Register, *, after: int = 0) -> Iterator[str]:
+    """Events as CSV (RFC 4180) with a head, beginning ``after`` a sequence number; data as JSON in one field.
+
+    A field that a spreadsheet would take for a formula gets an apostrophe before it.
+    """
+    with register.reading() as view:
+        yield _row(COLUMNS)
         for event in view.events(after=after):
-            yield canonical({**vars(event), "data": event.facts}) + "\n"
+            yield _row([_plain(str(getattr(event, name))) for name in COLUMNS])
+
+
+def _row(fields: Iterable[str]) -> str:
+    text = io.StringIO()
+    csv.writer(text).writerow(fields)
+    return text.getvalue()
+
+
+def _plain(text: str) -> str:
+    return f"'{text}" if text[:1] in ("=", "+", "-", "@") else text
+
+
+def restore_lines(lines: Iterable[str], place: Place, *, anchors: Iterable[Anchor] = ()) -> Anchor:
+    """Makes a new register of a backup's lines, hashes and all; gives its last event as an anchor.
+
+    Every line is checked before it is written: its form, its hash, its place in the chain. Raises InputError
+    for the first that doesn't hold or disagrees with one of the ``anchors``; then nothing is made.
+    """
+    wanted = {anchor.sequence: anchor.hash for anchor in anchors}
+    last: list[Event] = []
+
+    def fill(writer: Writer) -> None:
+        for number, line in enumerate(lines, start=1):
+            event = _event(line, number)
+            sequence, previous = writer.last()
+            if (event.sequence, event.previous) != (sequence + 1, previous):
+                raise _broken(number, "it doesn't follow on the event before it")
+            if event.hash != hash_of(event):
+                raise _broken(number, "its hash isn't the hash of what it says")
+            if wanted.get(number, event.hash) != event.hash:
+                raise _broken(number, "its hash isn't the one of the anchor")
+            writer.copy(event)
+            last[:] = [event]
+        if not last or max(wanted, default=0) > last[0].sequence:
+            raise _broken(len(last), "the backup ends there, before the anchor or before it began")
+
+    make_register(place, fill).close()
+    return Anchor(sequence=last[0].sequence, hash=last[0].hash)
+
+
+def _event(line: str, number: int) -> Event:
+    try:
+        known = json.loads(line)
+        if set(known) != set(COLUMNS) or canonical(known) + "\n" != line:
+            raise _broken(number, "it isn't as a backup writes it")
+        return Event(**{**known, "data": canonical(known["data"])})
+    except (ValueError, TypeError, RecursionError):
+        raise _broken(number, "it can't be read") from None
+
+
+def _broken(number: int, what: str) -> InputError:
+    return InputError(
+        Problem(
+            where=f"backup, line {number}",
+            what=f"The backup is damaged or was changed: {what}.",
+            fix="Take another backup. Nothing was made.",
+        )
+    )

@@ -27,6 +27,10 @@ class Kept:
     """Who judged what changed."""
     changes: tuple[str, ...] = ()
     """What changed since the revision before: targets, parts, steps, one line each."""
+    unit: str
+    """In which pressures are printed."""
+    zero_limit: str
+    """The highest reading that counts as zero, digits in ``unit``."""
     machine: str = field(metadata=_FILE)
     """The machine file as it stood."""
     site: str = field(default="", metadata=_FILE)

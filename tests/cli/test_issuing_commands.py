@@ -78,9 +78,9 @@ def test_the_examples_run_one_after_the_other(run: Callable[..., object], tmp_pa
 
     done = run(*example("issue"))
     assert (done.status, done.err) == (0, "")
-    assert "PU-07.pdf: revision 2" in done.out
+    assert "PU-07.pdf: revision 1" in done.out
     assert "not issued yet; still to sign: checked, approved" in done.out
-    assert verified(run, "PU-07.pdf").status == 1
+    assert verified(run, "PU-07.pdf").status == 3  # it stands in another register
 
     done = run(*example("sign"))
     assert (done.status, done.err) == (0, "")
@@ -88,7 +88,7 @@ def test_the_examples_run_one_after_the_other(run: Callable[..., object], tmp_pa
 
     done = run(*example("reject"))
     number = pipeline.check(tmp_path / "demonstration" / "clay_mixer.yaml").machine.document
-    assert (done.status, done.out) == (0, f"revision 2 of {number} is rejected\n")
+    assert (done.status, done.out) == (0, f"revision 1 of {number} is rejected\n")
     done = run(*example("sign"))
     assert done.status == 1
     assert "It is rejected" in done.err
@@ -187,11 +187,14 @@ def test_nobody_named_is_wrong_input(run: Callable[..., object]) -> None:
 
 def test_issue_for_ink(run: Callable[..., object]) -> None:
     people = ("--prepared", "Ada Quarrow", "--checked", "Bram Tolliver", "--approved", "Cleo Harnett")
-    register = ("--register", "demonstration/register.db")
-    done = run("issue", "demonstration/clay_mixer.yaml", *register, *people, "--ink", "-o", "ink.pdf")
+    command = ("issue", "demonstration/clay_mixer.yaml", *people, "--ink", "-o", "ink.pdf", "--register")
+    done = run(*command, "demonstration/register.db", "--reason", "in ink")
+    assert done.status == 1
+    assert "Nothing has changed since revision 1" in done.err
+    done = run(*command, "ink.db")
     assert (done.status, done.err) == (0, "")
     assert done.out.splitlines()[-1] == "issued"
-    done = verified(run, "ink.pdf")
+    done = run("verify", "ink.pdf", *DEMONSTRATION[1:], "ink.db")
     assert done.status == 3
     assert "Signatures: not established" in done.out
     assert "Currency: good" in done.out

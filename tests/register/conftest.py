@@ -7,7 +7,8 @@ from pathlib import Path
 from random import Random
 
 import pytest
-from register_bench import CONTENT, FILE, MACHINE, NOON, at, unguarded
+from recording_bench import Bench
+from register_bench import CONTENT, FILE, KEPT, MACHINE, NOON, at, unguarded
 
 from sheets.register.issuing import Reservation, commit, reserve, sign_event
 from sheets.register.opening import Place, create_register
@@ -95,6 +96,7 @@ def issue(register: Register, hold: Callable[..., Reservation]) -> Callable[...,
             signers=signers,
             by="Ines Kurz",
             when=at(3),
+            kept=KEPT,
         )
 
     return issued
@@ -110,3 +112,9 @@ def meddle(place: Place) -> Callable[..., None]:
                 database.run(statement, **values)
 
     return meddled
+
+
+@pytest.fixture
+def bench(register: Register, issue: Callable[..., Revision]) -> Bench:
+    """A job from an issued revision, with a gauge that is due today."""
+    return Bench(register, issue())

@@ -13,12 +13,62 @@ from typing import Any, Self
 
 import psycopg
 
+from sheets.register.kept import Kept
 from sheets.register.opening import Place, is_url
+from sheets.register.rows import Row
 
 NOON = datetime(2031, 3, 4, 12, tzinfo=UTC)
 CONTENT, MACHINE = "0123456789ABCDEF", "FEDCBA9876543210"
 FILE = "ab" * 32
 FIELDS = "sequence, time, who, kind, machine, document, record_id, data, previous"
+
+
+KEPT = Kept(
+    rows=(
+        Row(
+            row=1,
+            adjuster="RV1",
+            called="RV1",
+            gauge="G1",
+            test_point="TP1",
+            unit="bar",
+            target="206",
+            low="202",
+            high="210",
+            never_exceed="250",
+            ladder_low="198",
+            ladder_high="230",
+            drift_low="185",
+            drift_high="227",
+            gauge_error="2.50",
+        ),
+        Row(
+            row=2,
+            adjuster="PU1.compensator",
+            called="PU1, compensator",
+            gauge="G1",
+            test_point="TP1",
+            unit="bar",
+            target="190",
+            low="186",
+            high="194",
+            never_exceed="250",
+            ladder_low="150",
+            ladder_high="202",
+            drift_low="171",
+            drift_high="209",
+            gauge_error="2.50",
+        ),
+    ),
+    task="set",
+    paper="A4",
+    unit="bar",
+    zero_limit="2.00",
+    machine="format: 1\n",
+    content="{}",
+)
+"""Two rows as a sheet prints them. What is read lies, for the relief, in its window from 202 to 210, in the
+order of limits from 198 to 230, and under 250."""
 
 
 def at(minutes: int) -> datetime:
