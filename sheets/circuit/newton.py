@@ -1,4 +1,5 @@
-"""Newton's method on a batch of states: damped, then by pseudo-time, then with wide bends made narrow.
+"""Newton's method on a batch of states: with bounded steps, then damped, then by pseudo-time, then with wide
+bends made narrow.
 
 Every state goes its own way; what a state becomes never hangs on which others are solved beside it.
 """
@@ -24,6 +25,10 @@ TRIALS_TOGETHER: Final = 64
 FEW: Final = 4
 """So few states cost the same with slopes as without, so what a trial gave is kept for the next step."""
 ARMIJO: Final = 1e-4
+BOUNDED_STEPS: Final = 60
+FIRST_BOUND_BAR: Final = 50.0
+BOUND_AFTER_TURN: Final = 0.5
+BOUND_AFTER_ADVANCE: Final = 1.2
 NEWTON_STEPS: Final = 80
 TIME_STEPS: Final = 400
 FIRST_TIME_STEP: Final = 0.1
@@ -96,7 +101,7 @@ def acceptable(
 
 def find(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Found:
     """Pressures of a batch, from a start: [B, N]."""
-    first = _damped(circuit, state, start_bar, widening=1.0)
+    first = _by_bounded_steps(circuit, state, start_bar)
     if np.all(first.accepted):
         return first
     pressures_bar, accepted = first.pressures_bar, first.accepted
@@ -105,11 +110,48 @@ def find(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Found:
         pressures_bar[rows] = found.pressures_bar
         accepted[rows] = found.accepted
 
-    for attempt in (_by_pseudo_time, _by_narrowing):
+    for attempt in (_by_damping, _by_pseudo_time, _by_narrowing):
         left = np.flatnonzero(~accepted)
         if left.size:
             put(left, attempt(circuit, state.take(left), start_bar[left]))
     return Found(pressures_bar=pressures_bar, accepted=accepted)
+
+
+def _by_bounded_steps(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Found:
+    """Whole steps up to a bound, whatever the residual; a step that turns back halves the bound.
+
+    Across a sharp bend a residual that must fall lets only the tiniest steps pass, and a whole step swings to
+    and fro. Bounded ones close in on the bend from both sides, until Newton's own step is the smaller one.
+    """
+    pressures_bar = start_bar.copy()
+    accepted = np.zeros(len(pressures_bar), dtype=np.bool_)
+    bound_bar = np.full(len(pressures_bar), FIRST_BOUND_BAR)
+    before_bar = np.zeros((len(pressures_bar), pressures_bar.shape[1] - 1))
+    active = np.arange(len(pressures_bar))
+    for _ in range(BOUNDED_STEPS):
+        here = pressures_bar[active]
+        at = balance(circuit, state.take(active), here)
+        slopes = jacobian(circuit, at)
+        step_bar = newton_step(slopes, at)
+        done = acceptable(circuit, at, slopes, here, step_bar)
+        accepted[active[done]] = True
+        if done.all() and len(active) == len(pressures_bar):
+            return Found(pressures_bar=pressures_bar, accepted=accepted, last=at)
+        going = np.flatnonzero(~done & np.isfinite(step_bar).all(axis=1))
+        if not going.size:
+            break
+        active, step_bar = active[going], step_bar[going]
+        along = (step_bar * before_bar[active]).sum(axis=1)
+        bound_bar[active] *= np.where(along < 0.0, BOUND_AFTER_TURN, BOUND_AFTER_ADVANCE)
+        longest = np.abs(step_bar).max(axis=1, initial=0.0)
+        step_bar *= (bound_bar[active] / np.maximum(longest, bound_bar[active]))[:, None]
+        before_bar[active] = step_bar
+        pressures_bar[active, 1:] += step_bar
+    return Found(pressures_bar=pressures_bar, accepted=accepted)
+
+
+def _by_damping(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Found:
+    return _damped(circuit, state, start_bar, widening=1.0)
 
 
 def _by_pseudo_time(circuit: Circuit, state: StateArrays, start_bar: Floats) -> Found:

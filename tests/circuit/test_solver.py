@@ -106,7 +106,7 @@ def test_a_state_that_is_not_established_shows_no_figures(monkeypatch: pytest.Mo
     )
     state = circuit.rest_state({"PU1.compensator": 200.0, "RV1": 250.0}).driven("M1", on=True)
     assert solve_one(circuit, state).established
-    for limit in ("NEWTON_STEPS", "TIME_STEPS"):
+    for limit in ("BOUNDED_STEPS", "NEWTON_STEPS", "TIME_STEPS"):
         monkeypatch.setattr(newton, limit, 1)
     solution = solve_one(circuit, state)
     assert not solution.established
@@ -116,12 +116,12 @@ def test_a_state_that_is_not_established_shows_no_figures(monkeypatch: pytest.Mo
     assert caught.value.problems[0].fix
 
 
-def test_the_second_and_third_method_find_what_the_first_finds(
+def test_the_other_methods_find_what_the_first_finds(
     circuit: Circuit, remembering: list[PlantState], monkeypatch: pytest.MonkeyPatch
 ):
     states = remembering[:40]
     own = solve(circuit, states)
-    for attempt in (newton._by_pseudo_time, newton._by_narrowing):
+    for attempt in (newton._by_damping, newton._by_pseudo_time, newton._by_narrowing):
         monkeypatch.setattr("sheets.circuit.solver.find", attempt)
         other = solve(circuit, states)
         both = other.established

@@ -131,7 +131,7 @@ def test_no_solution_is_its_own_outcome_and_the_memory_is_not_overwritten(
     press: Circuit, monkeypatch: pytest.MonkeyPatch
 ):
     state = press.rest_state({"PU1.compensator": 160.0})
-    for limit in ("NEWTON_STEPS", "TIME_STEPS"):
+    for limit in ("BOUNDED_STEPS", "NEWTON_STEPS", "TIME_STEPS"):
         monkeypatch.setattr(newton, limit, 1)
     step = take_step(press, state, StartDrive(drive="M1"))
     assert step.outcome is Outcome.NOT_ESTABLISHED
