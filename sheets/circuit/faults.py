@@ -26,7 +26,7 @@ from sheets.circuit.fault_edits import (
 from sheets.circuit.model import Circuit
 from sheets.circuit.plant import PlantState
 from sheets.circuit.smooth import conductance
-from sheets.circuit.solution import BatchSolution, Solution
+from sheets.circuit.solution import Solution
 from sheets.circuit.solver import solve
 from sheets.machine.model import Machine
 from sheets.machine.parts import (
@@ -69,6 +69,8 @@ CAN_MOVE: Final = frozenset({FaultKind.SPOOL_STUCK, FaultKind.SPOOL_LEAKING, Fau
 CAN_RAISE: Final = frozenset({FaultKind.CONTROL_STUCK, FaultKind.RELIEF_STUCK_SHUT, FaultKind.BLEED_PLUGGED})
 """Kinds that can raise a pressure."""
 ALL_KINDS: Final = frozenset(FaultKind)
+_IN_THE_STATE: Final = frozenset({FaultKind.SPOOL_STUCK, FaultKind.COIL_DEAD})
+"""Kinds that change where a spool stands, and leave the circuit as it is."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -149,7 +151,7 @@ def faulty_circuit(circuit: Circuit, fault: Fault) -> Circuit:
             return replace(circuit, ways=throttled_way(circuit.ways, fault.part, factor=fault.amount))
         case FaultKind.PUMP_WORN:
             return replace(circuit, pumps=worn_pump(circuit.pumps, fault.part, more_leakage=fault.amount))
-        case FaultKind.SPOOL_STUCK | FaultKind.COIL_DEAD:
+        case FaultKind.SPOOL_STUCK | FaultKind.COIL_DEAD:  # _IN_THE_STATE
             return circuit
 
 
@@ -181,29 +183,37 @@ def solve_faults(
     """Solutions of a state under each fault alone, in their order; each follows from the state's pressures.
 
     ``start_bar``: by node, where to start the iteration, for speed only: the solution without a fault is
-    mostly near. Faults that leave the circuit as it is are solved in one batch, equal states once.
+    mostly near.
     """
+    start = state.pressures_bar if start_bar is None else start_bar
+    return solve_under_faults(circuit, [(state, fault, start) for fault in faults], effects=effects)
 
-    def solved(changed: Circuit, faulty: Sequence[PlantState]) -> BatchSolution:
-        start = None if start_bar is None else np.tile(np.asarray(start_bar), (len(faulty), 1))
-        return solve(changed, faulty, start=start, effects=effects)
 
+def solve_under_faults(
+    circuit: Circuit,
+    asked: Sequence[tuple[PlantState, Fault, Sequence[float]]],
+    *,
+    effects: bool = False,
+) -> tuple[Solution, ...]:
+    """The same for many states, each with its own fault and where to start from.
+
+    What stands in the same circuit is solved in one batch, so a fault costs little more in many states than
+    in one.
+    """
+    changed: dict[Fault | None, Circuit] = {}
+    batches: dict[Fault | None, list[int]] = {}
+    for index, (_, fault, _) in enumerate(asked):
+        key = None if fault.kind in _IN_THE_STATE else fault
+        if key not in changed:
+            changed[key] = faulty_circuit(circuit, fault)
+        batches.setdefault(key, []).append(index)
     found: dict[int, Solution] = {}
-    states: list[PlantState] = []
-    places: list[tuple[int, int]] = []
-    for index, fault in enumerate(faults):
-        changed, faulty = under_fault(circuit, state, fault)
-        if changed is not circuit:
-            found[index] = solved(changed, [faulty]).one(0)
-            continue
-        if faulty not in states:
-            states.append(faulty)
-        places.append((index, states.index(faulty)))
-    if states:
-        batch = solved(circuit, states)
-        ones = [batch.one(row) for row in range(len(states))]
-        found.update((index, ones[row]) for index, row in places)
-    return tuple(found[index] for index in range(len(faults)))
+    for key, places in batches.items():
+        states = [faulty_state(circuit, asked[place][0], asked[place][1]) for place in places]
+        start = np.array([asked[place][2] for place in places], dtype=np.float64)
+        batch = solve(changed[key], states, start=start, effects=effects)
+        found.update((place, batch.one(row)) for row, place in enumerate(places))
+    return tuple(found[index] for index in range(len(asked)))
 
 
 def _of_part(machine: Machine, circuit: Circuit, part_id: str, part: Part) -> Iterator[Fault]:

@@ -15,7 +15,21 @@ import click
 
 from sheets import __version__
 from sheets.cli import auditing, issuing, people, recording, registering, serving, tagging
-from sheets.cli.common import AS_JSON, MACHINE, MACHINES, PART, SITE, TASK, leave, show, tell, today, wrong
+from sheets.cli.common import (
+    AS_JSON,
+    MACHINE,
+    MACHINES,
+    PART,
+    SEARCHING,
+    SITE,
+    TASK,
+    leave,
+    show,
+    tell,
+    today,
+    watching,
+    wrong,
+)
 from sheets.errors import ExitStatus, JamnutError, gravest
 
 if TYPE_CHECKING:
@@ -105,11 +119,14 @@ def steps(
         return
     described = pipeline.check(machines[0], site, today())
     wanted = pipeline.task_of(described, task, part)
-    tell("finding the state in which each adjuster can be set")
     if skew:
-        show(pipeline.skew_text(described))
+        with watching("looking at plate values a tenth out") as watch:
+            found = pipeline.skew(described, watch)
+        show(pipeline.skew_text(described, found))
+        leave(pipeline.skew_status(found))
         return
-    matter = pipeline.steps(described, wanted)
+    with watching(SEARCHING) as watch:
+        matter = pipeline.steps(described, wanted, watch)
     if why is not None:
         show(pipeline.why_text(matter, why))
         leave(pipeline.status_of(matter.targets, matter.procedure, matter.replay))
@@ -159,8 +176,8 @@ def pack(
         return
     described = pipeline.check(machines[0], site, today())
     wanted = pipeline.task_of(described, task, part)
-    tell("finding the state in which each adjuster can be set")
-    matter = pipeline.steps(described, wanted)
+    with watching(SEARCHING) as watch:
+        matter = pipeline.steps(described, wanted, watch)
     tell("placing and drawing the pages")
     target = output or Path(pipeline.draft_name(described.machine))
     written = pipeline.write_pack(matter, target, paper=paper, only=only)

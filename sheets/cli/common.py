@@ -5,6 +5,8 @@ from __future__ import annotations
 import io
 import json
 import sys
+import time
+from contextlib import contextmanager
 from datetime import UTC, date, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -14,7 +16,7 @@ import click
 from sheets.errors import ExitStatus, InputError, Problem
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable
+    from collections.abc import Callable, Iterable, Iterator
 
     from sheets.pipeline import Json
 
@@ -89,6 +91,34 @@ def tell(doing: str) -> None:
     """Progress, for a person who waits at a terminal."""
     if sys.stderr.isatty():
         click.echo(f"… {doing}", err=True)
+
+
+SEARCHING = "finding the state in which each adjuster can be set"
+QUIET_S = 1.0
+"""Who waits no longer than this is told no more; then it is told as often."""
+
+
+@contextmanager
+def watching(doing: str) -> Iterator[Callable[[int, int], None]]:
+    """Progress of counted work, in one line that is written anew, for a person who waits at a terminal."""
+    tell(doing)
+    told_s = time.monotonic()
+    shown = 0
+
+    def watch(done: int, most: int) -> None:
+        nonlocal told_s, shown
+        if not sys.stderr.isatty() or time.monotonic() - told_s < QUIET_S:
+            return
+        told_s = time.monotonic()
+        text = f"… {done} states solved, at most {most}"
+        click.echo("\r" + text.ljust(shown), err=True, nl=False)
+        shown = len(text)
+
+    try:
+        yield watch
+    finally:
+        if shown:
+            click.echo(err=True)
 
 
 def leave(status: ExitStatus) -> None:

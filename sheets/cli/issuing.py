@@ -14,6 +14,7 @@ from sheets.cli.common import (
     MACHINE,
     PART,
     REGISTER,
+    SEARCHING,
     SITE,
     TASK,
     leave,
@@ -21,6 +22,7 @@ from sheets.cli.common import (
     show,
     tell,
     today,
+    watching,
     wrong,
 )
 from sheets.errors import ExitStatus, JamnutError, gravest
@@ -141,8 +143,8 @@ def issue(
         raise wrong("--prepared", "Nobody is named.", "Name who prepared, checked and approves the pack.")
     described = pipeline.check(machine, site, today())
     wanted = pipeline.task_of(described, task, part)
-    tell("finding the state in which each adjuster can be set")
-    matter = pipeline.steps(described, wanted)
+    with watching(SEARCHING) as watch:
+        matter = pipeline.steps(described, wanted, watch)
     tell("placing, drawing and signing the pages")
     issued = pipeline.issue(
         matter,

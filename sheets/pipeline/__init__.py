@@ -29,6 +29,8 @@ if TYPE_CHECKING:
     from sheets.pipeline.comparing import diff_text as diff_text
     from sheets.pipeline.computing import issuable as issuable
     from sheets.pipeline.computing import issuable_text as issuable_text
+    from sheets.pipeline.computing import skew as skew
+    from sheets.pipeline.computing import skew_status as skew_status
     from sheets.pipeline.computing import skew_text as skew_text
     from sheets.pipeline.computing import status_of as status_of
     from sheets.pipeline.computing import steps as steps
@@ -147,6 +149,8 @@ _CONTENTS: Final[dict[str, str]] = {
     "steps_json": "pipeline.computing",
     "steps_text": "pipeline.computing",
     "why_text": "pipeline.computing",
+    "skew": "pipeline.computing",
+    "skew_status": "pipeline.computing",
     "skew_text": "pipeline.computing",
     "status_of": "pipeline.computing",
     "issuable": "pipeline.computing",

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from sheets import ENGINE
-from sheets.amounts import Finding
+from sheets.amounts import Finding, Severity
 from sheets.circuit.verdict import Verdict
 from sheets.energy.shut_in import shut_in_bar
 from sheets.errors import ExitStatus, Problem
@@ -16,9 +16,11 @@ from sheets.pipeline.describing import Described, speaker_of
 from sheets.pipeline.walking import walked
 from sheets.procedure.case import Case
 from sheets.procedure.plan import make_procedure
+from sheets.procedure.search import WORK_LIMIT
 from sheets.procedure.skew import skew_findings
 from sheets.procedure.steps import Procedure
 from sheets.procedure.task import Task, named_task
+from sheets.procedure.work import Watch, Work, unwatched
 from sheets.targets.compute import compute_targets
 from sheets.targets.settings import Targets
 from sheets.trial.replay import Replay, findings_of, replay
@@ -36,11 +38,18 @@ def targets(described: Described) -> Targets:
     return compute_targets(described.machine, described.circuit, described.policies)
 
 
-def steps(described: Described, task: Task = Task()) -> Matter:  # noqa: B008 -- a frozen value
-    """The procedure in words, with hazards; refusals are findings of its targets, procedure and replay."""
+def steps(
+    described: Described,
+    task: Task = Task(),  # noqa: B008 -- a frozen value
+    watch: Watch = unwatched,
+) -> Matter:
+    """The procedure in words, with hazards; refusals are findings of its targets, procedure and replay.
+
+    ``watch`` is told how many states the search has solved, and how many it may.
+    """
     found = targets(described)
     case = Case(described.machine, described.circuit, found, described.policies)
-    procedure = make_procedure(case, task)
+    procedure = make_procedure(case, task, watch)
     most_bar = shut_in_bar(described.machine, described.circuit)
     return Matter(
         replay=replay(
@@ -75,9 +84,19 @@ def why_text(matter: Matter, adjuster: str) -> Iterator[str]:
     return why_lines(matter.speaker, matter.procedure, adjuster)
 
 
-def skew_text(described: Described) -> Iterator[str]:
+def skew(described: Described, watch: Watch = unwatched) -> tuple[Finding, ...]:
     """Plate values on which order or states hang; takes seconds, since each skew is a search."""
-    return skew_lines(speaker_of(described), skew_findings(described.machine, described.policies))
+    return skew_findings(described.machine, described.policies, Work(WORK_LIMIT, watch))
+
+
+def skew_text(described: Described, found: tuple[Finding, ...]) -> Iterator[str]:
+    return skew_lines(speaker_of(described), found)
+
+
+def skew_status(found: tuple[Finding, ...]) -> ExitStatus:
+    """Not established where not every value was looked at."""
+    open_ones = any(finding.severity is Severity.NOT_ESTABLISHED for finding in found)
+    return ExitStatus.NOT_ESTABLISHED if open_ones else ExitStatus.GOOD
 
 
 def issuable(matter: Matter) -> tuple[Problem, ...]:

@@ -98,6 +98,8 @@ class Search:
     answers: Mapping[str, TestState | NotInUse | NotFound]
     states: int
     """Sets of changes that were solved."""
+    limit: int
+    """States that might be solved in all; what wasn't found by then is not found within the limit."""
 
     def found(self) -> dict[str, TestState]:
         return {id_: answer for id_, answer in self.answers.items() if isinstance(answer, TestState)}

@@ -9,8 +9,8 @@ from sheets.circuit.extremes import resistances, solve_every_set
 from sheets.circuit.faults import FaultKind, every_fault, faulty_circuit
 from sheets.circuit.model import AdjusterSite, Circuit
 from sheets.circuit.plant import PlantState
-from sheets.circuit.solver import solve
 from sheets.machine.model import Machine
+from sheets.procedure.work import ALL, Work
 
 STILL_EFFECT = 1e-6
 """Effect below which a reading doesn't answer at all."""
@@ -20,8 +20,12 @@ _BATCH = 256
 
 
 def ever_governs(
-    circuit: Circuit, base: PlantState, adjuster: str, trusted_ports: frozenset[str] = frozenset()
-) -> bool:
+    circuit: Circuit,
+    base: PlantState,
+    adjuster: str,
+    trusted_ports: frozenset[str] = frozenset(),
+    work: Work | None = None,
+) -> bool | None:
     """Whether the adjuster's reading answers to it in any state that no opened line makes.
 
     Valves stand in every combination of their positions, the adjuster at both ends and the middle of its
@@ -29,15 +33,18 @@ def ever_governs(
     highest or all at the lowest end. States that move or aren't fit for setting count too: what governs
     there is in use. So does a state that isn't established, since nobody knows what governs it; nor does
     anybody where leakage alone decides the LS port of the adjuster's own pump, unless that is one of the
-    ``trusted_ports``.
+    ``trusted_ports``. None where the work was spent before every state was looked at: then nobody knows.
     """
+    work = work or Work(ALL)
     place = next(index for index, site in enumerate(circuit.adjusters) if site.id == adjuster)
     site = circuit.adjusters[place]
     states = _states(circuit, base, site)
     own_port = f"{site.part}.X"
     doubtful = [id_ == site.part and own_port not in trusted_ports for id_ in circuit.pumps.ids]
     while batch := list(islice(states, _BATCH)):
-        solved = solve(circuit, batch, effects=True)
+        if work.spent:
+            return None
+        solved = work.solve(circuit, batch, effects=True)
         if solved.effects is None or not solved.established.all():
             return True
         if solved.loose_signals[:, doubtful].any():

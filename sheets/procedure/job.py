@@ -12,7 +12,7 @@ from sheets.procedure.answers import TestState
 from sheets.procedure.case import Case
 from sheets.procedure.changes import apply
 from sheets.procedure.conditions import first_failure, over_rating, unestablished
-from sheets.procedure.judge import moved_by_fault
+from sheets.procedure.faulted import moved_by_fault
 from sheets.procedure.task import Task, TaskKind
 
 _STUCK_FACTOR = 5.0

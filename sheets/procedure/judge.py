@@ -3,15 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 from sheets.amounts import Amount, Finding
-from sheets.circuit.faults import CAN_MOVE, CAN_RAISE, Fault, FaultKind, faults_of, solve_faults
 from sheets.circuit.model import AdjusterSite, Node
 from sheets.circuit.plant import Adjust, MoveValve, PlantState
 from sheets.circuit.reach import weakest_loaded
 from sheets.circuit.solution import Solution
-from sheets.circuit.solver import solve
 from sheets.machine.parts import HandValve
 from sheets.procedure.answers import TestState
 from sheets.procedure.case import Case
@@ -27,8 +25,11 @@ from sheets.procedure.conditions import (
     starved,
     unestablished,
 )
+from sheets.procedure.faulted import moved_by_faults, without_load
 from sheets.procedure.gauges import GaugeChoice, Readings, Worst, choose_gauge
 from sheets.procedure.load import drive_findings
+from sheets.procedure.slips import worst_of
+from sheets.procedure.work import Work
 from sheets.targets.settings import Setting
 
 _REACH_SHARE = 0.9
@@ -37,21 +38,67 @@ FLOW_SHARE = 0.10
 """Policy: a reading that belongs to a stated flow is taken within this share of it."""
 
 
-def judge(case: Case, candidate: Candidate, adjuster: str) -> TestState | Failure:
-    """The test state that a candidate is for an adjuster, or the first condition that fails.
+@dataclass(frozen=True, kw_only=True)
+class Finalist:
+    """A candidate that is worth judging for an adjuster."""
+
+    candidate: Candidate
+    start_bar: tuple[float, ...]
+    """Pressures near its own at the target, where solving begins."""
+
+
+@dataclass(frozen=True, kw_only=True)
+class Serving:
+    """A candidate that holds all conditions for an adjuster, with what is then read."""
+
+    candidate: Candidate
+    target: Solution
+    gauge: GaugeChoice
+    load: tuple[Finding, ...]
+
+
+@dataclass(frozen=True, kw_only=True)
+class _Levels:
+    """One finalist with the adjuster at the bottom of its window, at its target, at the top, at its stop."""
+
+    finalist: Finalist
+    state: PlantState
+    low: Solution
+    target: Solution
+    top: Solution
+    stop: Solution
+    idle: tuple[Solution, Solution, Solution, Solution]
+    """The same four without the work loads."""
+
+
+def judge(
+    case: Case,
+    finalists: Sequence[Finalist],
+    adjuster: str,
+    work: Work,
+    *,
+    worth: Sequence[bool] = (),
+) -> list[Serving | Failure]:
+    """Whether each finalist serves an adjuster, or the first condition that fails; solved together.
 
     With the adjuster at the bottom of its window, at its target, at the top and at its stop; then with single
     faults; each with the work loads of the file and without them, since a machine that stands for setting
     may press on nothing, and then no load holds it. Where only the stop fails, the adjuster that stands out
     of the way may instead stand just ahead.
+    ``worth`` says of each finalist whether faults are tried on it even if no gauge shows it; all without it.
     """
-    outcome = _judge(case, candidate, adjuster)
-    if isinstance(outcome, Failure) and outcome.condition is Condition.WITHIN:
-        for ahead in _just_ahead(case, candidate, adjuster):
-            other = _judge(case, ahead, adjuster)
-            if isinstance(other, TestState):
-                return other
-    return outcome
+    outcomes = _judge(case, finalists, adjuster, work, worth)
+    nearer = [
+        (index, replace(finalist, candidate=ahead))
+        for index, (finalist, outcome) in enumerate(zip(finalists, outcomes, strict=True))
+        if isinstance(outcome, Failure) and outcome.condition is Condition.WITHIN
+        for ahead in _just_ahead(case, finalist.candidate, adjuster)
+    ]
+    others = _judge(case, [ahead for _, ahead in nearer], adjuster, work) if nearer else []
+    for (index, _), other in zip(nearer, others, strict=True):
+        if isinstance(other, Serving) and isinstance(outcomes[index], Failure):
+            outcomes[index] = other
+    return outcomes
 
 
 def _just_ahead(case: Case, candidate: Candidate, adjuster: str) -> list[Candidate]:
@@ -77,30 +124,88 @@ def _just_ahead(case: Case, candidate: Candidate, adjuster: str) -> list[Candida
     return found
 
 
-def _judge(case: Case, candidate: Candidate, adjuster: str) -> TestState | Failure:
-    site, setting = case.site(adjuster), case.targets.settings[adjuster]
-    state = apply(case.base, candidate.changes)
-    levels = (setting.low_bar, setting.target_bar, setting.high_bar)
-    standing = [state.adjusted(adjuster, level) for level in (*levels, site.highest_bar)]
-    solved = solve(case.circuit, [*standing, *(one.unloaded() for one in standing)], effects=True)
-    low, target, top, stop, *idle = (solved.one(index) for index in range(2 * len(standing)))
-    failure = (
-        _at_its_levels((low, target, top), levels, case, site)
-        or _at_another_flow(setting, target)
-        or _too_much_through(case, candidate, target)
-        or _at_its_stop(stop, case)
-        or without_load(_at_its_levels(idle[:-1], levels, case, site) or _at_its_stop(idle[-1], case))
-        or moved_by_fault(case, state, target)
+def _judge(
+    case: Case,
+    finalists: Sequence[Finalist],
+    adjuster: str,
+    work: Work,
+    worth: Sequence[bool] = (),
+) -> list[Serving | Failure]:
+    setting = case.targets.settings[adjuster]
+    solved = _solved_levels(case, finalists, adjuster, work)
+    outcomes: dict[int, Serving | Failure] = {}
+    for index, one in enumerate(solved):
+        failure = _fails_at_levels(case, one, setting)
+        # What a gauge shows takes no solving, so it goes first; what is then said is still what fails first.
+        if failure is None and worth and not worth[index]:
+            gauge = _gauge(case, setting, one, _at_stop(one, setting))
+            failure = gauge if isinstance(gauge, Failure) else None
+        if failure is not None:
+            outcomes[index] = failure
+    left = [index for index in range(len(solved)) if index not in outcomes]
+    faults = moved_by_faults(case, [(solved[index].state, solved[index].target) for index in left], work)
+    for index, failure in zip(left, faults, strict=True):
+        one = solved[index]
+        load = failure or drive_findings(
+            case.machine, at_target=one.target, at_top=one.top, adjuster=adjuster
+        )
+        if isinstance(load, Failure):
+            outcomes[index] = load
+            continue
+        gauge = _gauge(case, setting, one, _at_stop(one, setting))
+        if not isinstance(gauge, Failure):
+            gauge = _gauge(case, setting, one, worst_of(case, one.state, one.stop, setting, work))
+        outcomes[index] = (
+            gauge
+            if isinstance(gauge, Failure)
+            else Serving(candidate=one.finalist.candidate, target=one.target, gauge=gauge, load=load)
+        )
+    return [outcomes[index] for index in range(len(solved))]
+
+
+def _solved_levels(case: Case, finalists: Sequence[Finalist], adjuster: str, work: Work) -> list[_Levels]:
+    setting = case.targets.settings[adjuster]
+    levels = (setting.low_bar, setting.target_bar, setting.high_bar, case.site(adjuster).highest_bar)
+    states = [apply(case.base, finalist.candidate.changes) for finalist in finalists]
+    solved = work.solve(
+        case.circuit,
+        [
+            standing.adjusted(adjuster, level)
+            for state in states
+            for standing in (state, state.unloaded())
+            for level in levels
+        ],
+        start_bar=[finalist.start_bar for finalist in finalists for _ in (*levels, *levels)],
+        effects=True,
     )
-    if failure is not None:
-        return failure
-    load = drive_findings(case.machine, at_target=target, at_top=top, adjuster=adjuster)
-    if isinstance(load, Failure):
-        return load
-    gauge = _gauge(case, state, setting, low=low, target=target, top=top, stop=stop)
-    if isinstance(gauge, Failure):
-        return gauge
-    return _found(case, candidate, adjuster, target, gauge, load)
+    found = []
+    for index, (finalist, state) in enumerate(zip(finalists, states, strict=True)):
+        low, target, top, stop, *idle = (solved.one(8 * index + place) for place in range(8))
+        found.append(
+            _Levels(
+                finalist=finalist,
+                state=state,
+                low=low,
+                target=target,
+                top=top,
+                stop=stop,
+                idle=(idle[0], idle[1], idle[2], idle[3]),
+            )
+        )
+    return found
+
+
+def _fails_at_levels(case: Case, one: _Levels, setting: Setting) -> Failure | None:
+    """What fails without any fault, the gauge left out."""
+    levels = (setting.low_bar, setting.target_bar, setting.high_bar)
+    site = case.site(setting.adjuster)
+    return (
+        _at_its_levels((one.low, one.target, one.top), levels, case, site)
+        or _at_another_flow(setting, one.target)
+        or _too_much_through(case, one.finalist.candidate, one.target)
+        or _at_its_stop(one.stop, case)
+        or without_load(_at_its_levels(one.idle[:3], levels, case, site) or _at_its_stop(one.idle[3], case))
+    )
 
 
 def _at_its_levels(
@@ -119,32 +224,20 @@ def _at_its_stop(stop: Solution, case: Case) -> Failure | None:
     return unestablished(stop, case.trusted_ports) or moving(stop) or starved(stop) or over_rating(stop)
 
 
-def without_load(failure: Failure | None) -> Failure | None:
-    """A failure of the state without work loads, said so."""
-    return None if failure is None else replace(failure, data={**failure.data, "idle": "idle"})
-
-
-def _found(
-    case: Case,
-    candidate: Candidate,
-    adjuster: str,
-    target: Solution,
-    gauge: GaugeChoice,
-    load: tuple[Finding, ...],
-) -> TestState:
-    site = case.site(adjuster)
-    seen = sight(target, site)
+def answer_of(case: Case, serving: Serving, adjuster: str, work: Work) -> TestState:
+    """A candidate that serves, as an answer: with its reading and the reason of each change."""
+    seen = sight(serving.target, case.site(adjuster))
     return TestState(
         adjuster=adjuster,
-        changes=candidate.changes,
-        cost=candidate.cost,
-        gauge=gauge,
+        changes=serving.candidate.changes,
+        cost=serving.candidate.cost,
+        gauge=serving.gauge,
         reading_bar=seen.reading_bar,
         flow_lpm=seen.flow_lpm,
         earlier=earlier_ones(seen),
-        reasons=reasons_of(case, candidate, adjuster),
+        reasons=reasons_of(case, serving.candidate, adjuster, work),
         near_misses=(),
-        findings=(*load, *gauge.findings),
+        findings=(*serving.load, *serving.gauge.findings),
     )
 
 
@@ -184,53 +277,13 @@ def _too_much_through(case: Case, candidate: Candidate, target: Solution) -> Fai
     return None
 
 
-def moved_by_fault(case: Case, state: PlantState, sound: Solution | None = None) -> Failure | None:
-    """What moves, or passes a rating, when one spool sticks or leaks, or one coil is dead.
-
-    With the work loads of the file, then without them: a light load moves sooner, and the oil that a piston
-    shuts in rises farther. ``sound`` is the solution of the state without a fault, from which the others
-    start faster.
-    """
-    return _moved_by_fault(case, state, sound) or without_load(_moved_by_fault(case, state.unloaded(), sound))
-
-
-def _moved_by_fault(case: Case, state: PlantState, sound: Solution | None) -> Failure | None:
-    faults = faults_of(case.machine, case.circuit, state, kinds=CAN_MOVE)
-    start_bar = sound.pressures_bar if sound is not None else None
-    solutions = solve_faults(case.circuit, state, faults, start_bar=start_bar)
-    for fault, solution in zip(faults, solutions, strict=True):
-        if not solution.established:
-            return Failure(condition=Condition.BARRED, data={"fault": fault.kind.value, "valve": fault.part})
-        failure = moving(solution)
-        if failure is not None:
-            return Failure(condition=Condition.BARRED, data={**failure.data, **fault_data(fault)})
-        failure = over_rating(solution)
-        if failure is not None:
-            return replace(failure, data={**failure.data, **fault_data(fault)})
-    return None
-
-
-def fault_data(fault: Fault) -> dict[str, Amount | str]:
-    """A fault as data of a failure."""
-    return {"fault": fault.kind.value, "valve": fault.part, "position": fault.position}
-
-
-def _gauge(
-    case: Case,
-    state: PlantState,
-    setting: Setting,
-    *,
-    low: Solution,
-    target: Solution,
-    top: Solution,
-    stop: Solution,
-) -> GaugeChoice | Failure:
+def _gauge(case: Case, setting: Setting, one: _Levels, worst: tuple[Worst, ...]) -> GaugeChoice | Failure:
     node = case.site(setting.adjuster).controlled_node
-    reading_bar = target.pressures_bar[node]
-    weakest = _here(case, target, reading_bar)
+    reading_bar = one.target.pressures_bar[node]
+    weakest = _here(case, one.target, reading_bar)
     # A setting that is itself over a rating in service is refused as that, not again with each state.
     if all(finding.code != "setting_over_rating" for finding in setting.findings):
-        weakest = min(weakest, _in_service(case, setting), key=lambda one: one.rating_bar)
+        weakest = min(weakest, _in_service(case, setting), key=lambda node: node.rating_bar)
     return choose_gauge(
         case.machine,
         case.circuit,
@@ -238,17 +291,23 @@ def _gauge(
         setting,
         Readings(
             node=node,
-            pressures_bar=target.pressures_bar,
+            pressures_bar=one.target.pressures_bar,
             target_bar=reading_bar,
-            low_bar=low.pressures_bar[node],
-            high_bar=top.pressures_bar[node],
-            worst=_worst(case, state, stop, setting),
+            low_bar=one.low.pressures_bar[node],
+            high_bar=one.top.pressures_bar[node],
+            worst=worst,
             rating_bar=weakest.rating_bar,
             rated_by=weakest.rated_by,
-            floor_bar=low.pressures_bar[node] - setting.low_bar + setting.floor_bar,
-            ceiling_bar=top.pressures_bar[node] - setting.high_bar + setting.ceiling_bar,
+            floor_bar=one.low.pressures_bar[node] - setting.low_bar + setting.floor_bar,
+            ceiling_bar=one.top.pressures_bar[node] - setting.high_bar + setting.ceiling_bar,
         ),
     )
+
+
+def _at_stop(one: _Levels, setting: Setting) -> tuple[Worst, ...]:
+    """Pressure at every node with the screw at its stop: what a gauge meets even without a slip or fault."""
+    cause = {"slip": "screw", "adjuster": setting.adjuster}
+    return tuple(Worst(pressure_bar=pressure_bar, cause=cause) for pressure_bar in one.stop.pressures_bar)
 
 
 def _in_service(case: Case, setting: Setting) -> Node:
@@ -269,65 +328,9 @@ def _here(case: Case, target: Solution, reading_bar: float) -> Node:
     return min(reached, key=lambda node: node.rating_bar)
 
 
-def _worst(case: Case, state: PlantState, stop: Solution, setting: Setting) -> tuple[Worst, ...]:
-    """Highest pressure at every node with the screw at its stop, after one slip, or with one fault.
-
-    Slips: one valve elsewhere, one screw at the end of its range. The valve that is set, stuck shut, isn't
-    counted: its pressure is approached slowly, with a stop rule. States that aren't established count as
-    beyond every gauge.
-    """
-    caused = [(stop, {"slip": "screw", "adjuster": setting.adjuster})]
-    for standing in (state, state.unloaded()):
-        caused += _after_slips(case, standing)
-        caused += _with_faults(case, standing, stop, setting)
-    return tuple(
-        max(
-            (
-                Worst(
-                    pressure_bar=solution.pressures_bar[node] if solution.established else float("inf"),
-                    cause=cause,
-                )
-                for solution, cause in caused
-            ),
-            key=lambda worst: worst.pressure_bar,
-        )
-        for node in range(len(case.circuit.nodes))
-    )
-
-
-_Caused = tuple[Solution, dict[str, str]]
-"""A solved state with the slip or fault that made it."""
-
-
-def _after_slips(case: Case, state: PlantState) -> list[_Caused]:
-    slips = [
-        (state.moved(valve, other), {"slip": "valve", "valve": valve, "position": other})
-        for valve, positions in case.circuit.positions.items()
-        for other in positions
-        if other != state.positions[valve]
-    ]
-    slips += [
-        (state.adjusted(site.id, site.highest_bar), {"slip": "screw", "adjuster": site.id})
-        for site in case.circuit.adjusters
-    ]
-    solved = solve(case.circuit, [slip for slip, _ in slips])
-    return [(solved.one(index), cause) for index, (_, cause) in enumerate(slips)]
-
-
-def _with_faults(case: Case, state: PlantState, stop: Solution, setting: Setting) -> list[_Caused]:
-    faults = [
-        fault
-        for fault in faults_of(case.machine, case.circuit, state, kinds=CAN_RAISE)
-        if not (fault.kind is FaultKind.RELIEF_STUCK_SHUT and fault.part == setting.part)
-    ]
-    solutions = solve_faults(case.circuit, state, faults, start_bar=stop.pressures_bar)
-    return [
-        (solution, {"slip": "fault", "valve": fault.part, "fault": fault.kind.value})
-        for fault, solution in zip(faults, solutions, strict=True)
-    ]
-
-
-def reasons_of(case: Case, candidate: Candidate, adjuster: str) -> tuple[tuple[Change, Failure], ...]:
+def reasons_of(
+    case: Case, candidate: Candidate, adjuster: str, work: Work
+) -> tuple[tuple[Change, Failure], ...]:
     """Takes each change away alone and names what then fails, with one fault and at the screw's stop too."""
     if not candidate.changes:
         return ()
@@ -338,8 +341,8 @@ def reasons_of(case: Case, candidate: Candidate, adjuster: str) -> tuple[tuple[C
         for left_out in candidate.changes
     ]
     states = [apply(case.base, one.changes) for one in lesser]
-    solved = solve(case.circuit, states, effects=True)
-    idle = solve(case.circuit, [state.unloaded() for state in states], effects=True)
+    solved = work.solve(case.circuit, states, effects=True)
+    idle = work.solve(case.circuit, [state.unloaded() for state in states], effects=True)
     reasons: list[tuple[Change, Failure]] = []
     for index, left_out in enumerate(candidate.changes):
         solution = solved.one(index)
@@ -349,8 +352,10 @@ def reasons_of(case: Case, candidate: Candidate, adjuster: str) -> tuple[tuple[C
             or _at_another_flow(setting, solution)
             or _too_much_through(case, lesser[index], solution)
             or without_load(first_failure(idle.one(index), site, setting.target_bar, case.trusted_ports))
-            or moved_by_fault(case, states[index])
-            or _judge(case, lesser[index], adjuster)
+            or moved_by_faults(case, [(states[index], solution)], work)[0]
+            or _judge(
+                case, [Finalist(candidate=lesser[index], start_bar=solution.pressures_bar)], adjuster, work
+            )[0]
         )
         if isinstance(outcome, Failure):
             reasons.append((left_out, outcome))

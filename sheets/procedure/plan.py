@@ -9,20 +9,27 @@ from sheets.procedure.answers import NotFound
 from sheets.procedure.case import Case
 from sheets.procedure.job import prepare
 from sheets.procedure.order import derive_order
-from sheets.procedure.search import find_test_states
+from sheets.procedure.search import WORK_LIMIT, find_test_states
 from sheets.procedure.stages import write_stages
 from sheets.procedure.steps import Procedure, Stage
 from sheets.procedure.task import Task, TaskKind
+from sheets.procedure.work import Watch, Work, unwatched
 
 
-def make_procedure(case: Case, task: Task) -> Procedure:
-    """Search, order, and write the stages; refusals are findings, and leave the stages empty."""
-    search = find_test_states(case)
+def make_procedure(case: Case, task: Task, watch: Watch = unwatched) -> Procedure:
+    """Search, order, and write the stages; refusals are findings, and leave the stages empty.
+
+    ``watch`` is told how far the search is.
+    """
+    search = find_test_states(case, Work(WORK_LIMIT, watch))
     found = search.found()
     order = derive_order(found, case.targets)
     lost = [answer for answer in search.answers.values() if isinstance(answer, NotFound)]
     findings = [*order.findings, *(finding for state in found.values() for finding in state.findings)]
-    findings += [_cannot_set(answer) for answer in lost]
+    findings += [
+        _cannot_set(answer) if answer.verdict is Verdict.REFUTED else _not_found(answer, search.limit)
+        for answer in lost
+    ]
     findings += _nothing_to_set(case, task, order.sequence)
     stages: tuple[Stage, ...] = ()
     against = [f for f in (*case.targets.findings, *findings) if f.severity is not Severity.WARNING]
@@ -63,9 +70,22 @@ def _cannot_set(answer: NotFound) -> Finding:
         code="cannot_be_set",
         severity=Severity.REFUSED,
         subject=answer.adjuster,
-        data={
-            **answer.failure.data,
-            "condition": answer.failure.condition.value,
-            "states": Amount(value=float(answer.states), quantity="count"),
-        },
+        data=_nearest(answer),
     )
+
+
+def _not_found(answer: NotFound, limit: int) -> Finding:
+    return Finding(
+        code="not_found_within_limit",
+        severity=Severity.REFUSED,
+        subject=answer.adjuster,
+        data={**_nearest(answer), "limit": Amount(value=float(limit), quantity="count")},
+    )
+
+
+def _nearest(answer: NotFound) -> dict[str, Amount | str]:
+    return {
+        **answer.failure.data,
+        "condition": answer.failure.condition.value,
+        "states": Amount(value=float(answer.states), quantity="count"),
+    }

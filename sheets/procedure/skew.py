@@ -27,7 +27,8 @@ from sheets.machine.site import Policies
 from sheets.procedure.answers import NotFound, NotInUse, TestState
 from sheets.procedure.case import Case
 from sheets.procedure.order import derive_order
-from sheets.procedure.search import find_test_states
+from sheets.procedure.search import WORK_LIMIT, find_test_states
+from sheets.procedure.work import Work
 from sheets.targets.compute import compute_targets
 
 SKEW = 0.10
@@ -99,21 +100,27 @@ def _signal_width(control: LoadSensingControl, share: float) -> dict[str, float]
     return {}
 
 
-def skew_findings(machine: Machine, policies: Policies) -> tuple[Finding, ...]:
+def skew_findings(machine: Machine, policies: Policies, work: Work | None = None) -> tuple[Finding, ...]:
     """Values that change the order or a state when they are a tenth higher or lower; none is the good answer.
 
-    All values of one kind are skewed together first; only where that changes something, each alone.
+    All values of one kind are skewed together first; only where that changes something, each alone. All
+    searches share ``work``; where it is spent, that not every value was looked at is a finding, too.
     """
-    sound = _answers(machine, policies)
+    work = work or Work(WORK_LIMIT)
+    sound = _answers(machine, policies, work)
     findings: list[Finding] = []
     kinds: dict[str, list[Unmeasured]] = {}
     for value in unmeasured(machine):
         kinds.setdefault(value.field, []).append(value)
     for share in (-SKEW, SKEW):
         for values in kinds.values():
-            if _answers(_with(machine, values, share), policies) == sound:
+            if work.spent or _answers(_with(machine, values, share), policies, work) == sound:
                 continue
-            alone = [value for value in values if _answers(_with(machine, [value], share), policies) != sound]
+            alone = [
+                value for value in values if _answers(_with(machine, [value], share), policies, work) != sound
+            ]
+            if work.spent:
+                continue  # what differs then may only be what wasn't found any more
             findings += [
                 Finding(
                     code="measure_first",
@@ -123,6 +130,15 @@ def skew_findings(machine: Machine, policies: Policies) -> tuple[Finding, ...]:
                 )
                 for value in (alone or values)
             ]
+    if work.spent:
+        findings.append(
+            Finding(
+                code="skew_not_finished",
+                severity=Severity.NOT_ESTABLISHED,
+                subject=machine.tag,
+                data={"limit": Amount(value=float(work.most), quantity="count")},
+            )
+        )
     return tuple(findings)
 
 
@@ -133,7 +149,7 @@ def _with(machine: Machine, values: list[Unmeasured], share: float) -> Machine:
     return machine.model_copy(update={"parts": parts})
 
 
-def _answers(machine: Machine, policies: Policies) -> Answers:
+def _answers(machine: Machine, policies: Policies, work: Work) -> Answers:
     """Order, and for each adjuster its state or what it is instead. How far 'ahead' stands doesn't count."""
     circuit = build_circuit(
         machine,
@@ -142,7 +158,7 @@ def _answers(machine: Machine, policies: Policies) -> Answers:
         control_width_bar=policies.compensator_width_bar,
     )
     case = Case(machine, circuit, compute_targets(machine, circuit, policies), policies)
-    search = find_test_states(case)
+    search = find_test_states(case, work)
     order = derive_order(search.found(), case.targets)
     return order.sequence, tuple((id_, _shape(answer)) for id_, answer in search.answers.items())
 

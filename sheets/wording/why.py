@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from sheets.circuit.plant import MoveValve
+from sheets.circuit.verdict import Verdict
 from sheets.errors import InputError, Problem, quoted
 from sheets.procedure.answers import NearMiss, NotFound, NotInUse, TestState
 from sheets.procedure.changes import Change
@@ -67,6 +68,7 @@ def why_lines(speaker: Speaker, procedure: Procedure, adjuster: str) -> Iterator
                 subject=speaker.adjuster(adjuster),
                 verdict=answer.verdict.value,
                 states=str(answer.states),
+                limit=str(procedure.search.limit) if answer.verdict is Verdict.NOT_FOUND else "",
             )
     if answer.near_misses:
         yield ""

@@ -29,7 +29,7 @@ from sheets.procedure.answers import NotInUse
 from sheets.procedure.case import Case
 from sheets.procedure.changes import apply
 from sheets.procedure.conditions import Condition
-from sheets.procedure.judge import moved_by_fault
+from sheets.procedure.faulted import moved_by_fault
 from sheets.wording.findings import say_finding
 
 Refused = Callable[..., Matter]
