@@ -5,9 +5,8 @@ from __future__ import annotations
 import io
 import json
 import sys
-import time
 from contextlib import contextmanager
-from datetime import UTC, date, datetime
+from datetime import UTC, date, datetime, timedelta
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -94,7 +93,7 @@ def tell(doing: str) -> None:
 
 
 SEARCHING = "finding the state in which each adjuster can be set"
-QUIET_S = 1.0
+QUIET = timedelta(seconds=1)
 """Who waits no longer than this is told no more; then it is told as often."""
 
 
@@ -102,14 +101,14 @@ QUIET_S = 1.0
 def watching(doing: str) -> Iterator[Callable[[int, int], None]]:
     """Progress of counted work, in one line that is written anew, for a person who waits at a terminal."""
     tell(doing)
-    told_s = time.monotonic()
+    told = now()
     shown = 0
 
     def watch(done: int, most: int) -> None:
-        nonlocal told_s, shown
-        if not sys.stderr.isatty() or time.monotonic() - told_s < QUIET_S:
+        nonlocal told, shown
+        if not sys.stderr.isatty() or now() - told < QUIET:
             return
-        told_s = time.monotonic()
+        told = now()
         text = f"… {done} states solved, at most {most}"
         click.echo("\r" + text.ljust(shown), err=True, nl=False)
         shown = len(text)
