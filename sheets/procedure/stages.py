@@ -17,9 +17,9 @@ from sheets.energy.trapped import Trapped, find_trapped
 from sheets.machine.parts import HandValve
 from sheets.procedure.answers import TestState
 from sheets.procedure.conditions import Failure, moving, over_rating, starved, unestablished
+from sheets.procedure.faulted import without_load
 from sheets.procedure.gauges import error_bar
 from sheets.procedure.job import Job, shows
-from sheets.procedure.judge import without_load
 from sheets.procedure.rig import Rig
 from sheets.procedure.steps import Stage, StageKind, StepKind
 from sheets.procedure.task import TaskKind
