@@ -64,8 +64,9 @@ def measured(name: str, case: Case, *, repeats: int) -> None:
     answers = ", ".join(f"{id_} {type(one).__name__}" for id_, one in answer.answers.items())
     print(
         f"{name}: {len(case.machine.parts)} parts, {count} unknowns, {answer.states} of {sets} sets of "
-        f"changes, {work.done} states, {took:.2f} s, {1000 * took / answer.states:.2f} ms a set, {took / bare:.1f} times the "
-        f"bare linear algebra of its {sum(shape[0] for shape in shapes)} solves\n    {answers}"
+        f"changes, {work.done} states, {took:.2f} s, {1000 * took / answer.states:.2f} ms a set, "
+        f"{took / bare:.1f} times the bare linear algebra of its {sum(shape[0] for shape in shapes)} solves\n"
+        f"    {answers}"
     )
 
 
