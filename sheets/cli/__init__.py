@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING, Literal
 import click
 
 from sheets import __version__
-from sheets.cli import auditing, issuing, people, recording, registering, serving, tagging
+from sheets.cli import asking, auditing, issuing, people, recording, registering, serving, tagging
 from sheets.cli.common import (
     AS_JSON,
     MACHINE,
@@ -333,7 +333,7 @@ def _keep_traceback() -> str:
     return kept.name
 
 
-for module in (issuing, registering, recording, tagging, people, auditing, serving):
+for module in (issuing, registering, recording, tagging, people, auditing, asking, serving):
     for command in module.COMMANDS:
         main.add_command(command)
 

@@ -16,6 +16,12 @@ if TYPE_CHECKING:
     from sheets.machine.answering import Answers as Answers
     from sheets.machine.files import machine_files as machine_files
     from sheets.machine.walking import WalkdownState as WalkdownState
+    from sheets.pipeline.asking import current as current
+    from sheets.pipeline.asking import current_text as current_text
+    from sheets.pipeline.asking import deviations as deviations
+    from sheets.pipeline.asking import deviations_text as deviations_text
+    from sheets.pipeline.asking import used as used
+    from sheets.pipeline.asking import used_text as used_text
     from sheets.pipeline.auditing import audit as audit
     from sheets.pipeline.auditing import audit_text as audit_text
     from sheets.pipeline.authorising import authorise as authorise
@@ -195,6 +201,12 @@ _CONTENTS: Final[dict[str, str]] = {
     # what an auditor asks
     "audit": "pipeline.auditing",
     "audit_text": "pipeline.auditing",
+    "current": "pipeline.asking",
+    "current_text": "pipeline.asking",
+    "deviations": "pipeline.asking",
+    "deviations_text": "pipeline.asking",
+    "used": "pipeline.asking",
+    "used_text": "pipeline.asking",
     "inspect": "pipeline.inspecting",
     "inspected_text": "pipeline.inspecting",
     "inspections_json": "pipeline.inspecting",

@@ -11,15 +11,15 @@ from pathlib import Path
 from typing import Final, Literal
 
 from sheets import ENGINE
-from sheets.errors import NotEstablishedError, Problem
 from sheets.machine.files import check_pdf_target, move_into_place, write_pdf
 from sheets.pages.attached import Attachment
 from sheets.pages.compose.audit import AuditList, audit_document
 from sheets.pages.document import Layout
 from sheets.pages.press import print_pack
 from sheets.pipeline.listing import lists_of
-from sheets.register.chain import Anchor, ChainVerdict, chain_in
-from sheets.register.opening import Place, open_register
+from sheets.pipeline.whole import whole_register
+from sheets.register.chain import Anchor, ChainVerdict
+from sheets.register.opening import Place
 from sheets.register.store import View
 from sheets.seal.canonical import canonical_bytes, digest
 from sheets.wording.terminal import counted
@@ -61,11 +61,10 @@ def audit(
     """
     check_pdf_target(target)
     known = [Anchor.read(text) for text in anchors]
-    with open_register(register_at, read_only=True) as register, register.reading() as view:
-        chain = chain_in(view, known)
-        last = _hold(chain)
-        lists = lists_of(view, day)
-        opened = _opened(view)
+    with whole_register(register_at, known) as whole:
+        chain, last = whole.chain, whole.last
+        lists = lists_of(whole.view, day)
+        opened = _opened(whole.view)
     document = audit_document(
         register=opened,
         day=day,
@@ -106,19 +105,6 @@ def audit_text(made: Audited) -> Iterator[str]:
     for file, one in zip(made.files[1:], made.lists, strict=True):
         yield f"{file}: {counted(len(one.rows), 'line')}"
     yield f"anchor to keep outside: {made.anchor}"
-
-
-def _hold(chain: ChainVerdict) -> Anchor:
-    if chain.broken is None and chain.last is not None:
-        return chain.last
-    what = chain.broken.value if chain.broken is not None else "it is empty"
-    raise NotEstablishedError(
-        Problem(
-            where=f"event {chain.broken_at} of the register",
-            what=f"The chain doesn't hold: {what}. Nothing can be told from this register.",
-            fix="Go back to a backup whose anchor was kept outside, and find out who wrote to it.",
-        )
-    )
 
 
 def _opened(view: View) -> str:

@@ -8,6 +8,7 @@ from datetime import date, datetime
 
 from sheets.errors import ExitStatus, InputError, Problem, nearest, quoted
 from sheets.names import folded, same_person
+from sheets.pipeline.whole import whole_register
 from sheets.register.listing_people import authorise as told_authorised
 from sheets.register.listing_people import end_authorisation as told_ended
 from sheets.register.listing_people import train as told_trained
@@ -39,7 +40,8 @@ def people(register_at: Place, *, on: date, name: str | None = None, may: str = 
 
     ``on``: the day, whenever the register was told. Raises InputError for a name that it doesn't know.
     """
-    with open_register(register_at, read_only=True) as register, register.reading() as view:
+    with whole_register(register_at) as whole:
+        view = whole.view
         known = names(view)
         wanted = known if name is None else tuple(one for one in known if same_person(one, name))
         if name is not None and not wanted:

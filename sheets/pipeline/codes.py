@@ -18,6 +18,24 @@ _PARTS: Final = re.compile(
 
 
 @dataclass(frozen=True, kw_only=True)
+class Scanned:
+    """What the code of a page says."""
+
+    record: str
+    content: str
+    """First characters of the content digest."""
+    revision: str
+
+
+def record_of_code(text: str) -> Scanned | None:
+    """What a reader found in a code, or None for a text that isn't of its form."""
+    found = _PARTS.fullmatch(text.strip())
+    if found is None:
+        return None
+    return Scanned(record=found["record"], content=found["content"], revision=found["revision"])
+
+
+@dataclass(frozen=True, kw_only=True)
 class Mismatch:
     """One part of a code that isn't the file's."""
 

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from datetime import date, datetime
 
 from sheets.errors import InputError, Problem
+from sheets.pipeline.whole import whole_register
 from sheets.register.acts import ZeroRead
 from sheets.register.instruments import Instrument, InstrumentListed
 from sheets.register.instruments import instruments as known_instruments
@@ -70,7 +71,8 @@ def instruments(register_at: Place, *, on: date, given: str | None = None) -> Ga
     ``on``: the day that due dates are held against; ``given``: serial number, or number at the works. Raises
     InputError for a gauge that isn't listed.
     """
-    with open_register(register_at, read_only=True) as register, register.reading() as view:
+    with whole_register(register_at) as whole:
+        view = whole.view
         if given is None:
             known = known_instruments(view)
             return GaugesOn(

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from datetime import date, datetime
 
 from sheets.errors import ExitStatus, InputError, Problem
+from sheets.pipeline.whole import whole_register
 from sheets.register.deviations import Deviation, deviations
 from sheets.register.finding import document_of, documents_in
 from sheets.register.inspecting import Telling
@@ -91,7 +92,8 @@ def inspections_on(register_at: Place, *, day: date, document: str | None = None
     """The year's clock as of a ``day``: of all documents with a current revision, or of one with all of its
     inspections. Raises InputError for a document that isn't known.
     """
-    with open_register(register_at, read_only=True) as register, register.reading() as view:
+    with whole_register(register_at) as whole:
+        view = whole.view
         named = None if document is None else document_of(view, document)[0].document
         wanted = documents_in(view) if named is None else (named,)
         clocks = tuple(clock for one in wanted if (clock := clock_of(view, one)) is not None)

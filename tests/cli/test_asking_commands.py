@@ -201,3 +201,16 @@ def test_the_bundle(run: Callable[..., object], tmp_path: Path) -> None:
     assert run(*example("audit"), *given).status == 0
     wrong = run(*example("audit"), "--anchor", given[1][:-1] + ("0" if given[1][-1] != "0" else "1"))
     assert wrong.status == 3
+
+
+def test_a_paper_in_hand(run: Callable[..., object], issued: str) -> None:
+    assert issued in example("current")
+    done = run(*example("current"))
+    assert (done.status, done.err) == (0, "")
+    assert done.out.startswith("current: revision 1 of WI-0142, machine PU-07\n")
+    assert run("current", "0000000000", *REGISTER).status == 3
+    done = run(*example("used"))
+    assert (done.status, done.err) == (0, "")
+    assert done.out.splitlines()[1] == "nothing was told to be used that day"
+    done = run(*example("deviations"))
+    assert (done.status, done.out, done.err) == (0, "0 deviations\n", "")

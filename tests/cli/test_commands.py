@@ -20,7 +20,7 @@ from click.testing import CliRunner
 
 from sheets import cli, pipeline
 from sheets.circuit.solver import solve_one
-from sheets.cli import auditing, issuing, people, recording, registering, serving, tagging
+from sheets.cli import asking, auditing, issuing, people, recording, registering, serving, tagging
 from sheets.errors import (
     GRAVITY,
     ExitStatus,
@@ -37,7 +37,7 @@ COMMANDS = dict(cli.main.commands)
 VERBS = sorted(COMMANDS)
 ISSUING = {
     command.name
-    for module in (issuing, registering, recording, tagging, people, auditing, serving)
+    for module in (issuing, registering, recording, tagging, people, auditing, asking, serving)
     for command in module.COMMANDS
 }
 """Their examples stand on a demonstration site: test_issuing_commands.py, test_register_commands.py,
@@ -343,6 +343,9 @@ def test_a_bug_keeps_its_traceback_in_a_file(
         "instruments": register,
         "inspect": ("WI-0142", *register, "--inspector", "A. Person"),
         "audit": (tmp_path / "audit.pdf", *register),
+        "current": ("0123456789", *register),
+        "used": ("WI-0142", "--on", "2026-12-01", *register),
+        "deviations": register,
         "serve": (tmp_path, *register),
         "record": (variant(), "--by", "A. Person", *register),
         "tags": ("0123456789", "-o", tmp_path / "tags.pdf", *register),
