@@ -22,6 +22,13 @@ IDLE_S = 5
     "--register", "register_at", required=True, metavar="FILE|URL", help="The register that it shows."
 )
 @click.option("--site", type=click.Path(path_type=Path), metavar="FILE", help="Site file.")
+@click.option(
+    "--users",
+    "users_file",
+    type=click.Path(path_type=Path),
+    metavar="FILE",
+    help="Who may sign in, from jamnut users; without it the page is read only.",
+)
 @click.option("--anchor", "anchors", multiple=True, metavar="TEXT", help="An anchor that was kept elsewhere.")
 @click.option("--host", default="127.0.0.1", show_default=True, metavar="ADDRESS", help="Where it listens.")
 @click.option("--port", type=click.IntRange(1, 65535), default=8417, show_default=True)
@@ -37,6 +44,7 @@ def serve(
     folder: Path,
     register_at: str,
     site: Path | None,
+    users_file: Path | None,
     anchors: tuple[str, ...],
     host: str,
     port: int,
@@ -74,6 +82,7 @@ def serve(
             register_at=register_at,
             site_file=site,
             files=folder,
+            users=users_file,
             anchors=anchors,
             secure=certificate is not None or bool(proxies),
             hosts=(host, *names),
@@ -101,4 +110,35 @@ def serve(
     )
 
 
-COMMANDS = (serve,)
+@click.command()
+@click.argument("file", type=click.Path(path_type=Path), metavar="FILE")
+@click.option("--person", metavar="NAME", help="One who may sign in, named as on the sheets.")
+@click.option(
+    "--role",
+    type=click.Choice(["reader", "technician", "approver"]),
+    default="reader",
+    show_default=True,
+    help="May read a closed page; record; accept what lies outside a window.",
+)
+@click.option("--remove", metavar="NAME", help="One who may no longer sign in.")
+def users(file: Path, person: str | None, role: str, remove: str | None) -> None:
+    """Say who may sign in at the record page; without options, list them. Asks for a password.
+
+    Example: jamnut users users.json --person "Dora Vell" --role technician
+    """
+    from sheets import pipeline
+
+    if person is not None and remove is not None:
+        raise wrong("--person, --remove", "One at a time.", "Name one of them.")
+    if person is not None:
+        password: str = click.prompt(
+            f"password of {person}", hide_input=True, confirmation_prompt=True, err=True
+        )
+        show([pipeline.set_user(file, name=person, role=role, password=password)])
+    elif remove is not None:
+        show([pipeline.remove_user(file, name=remove)])
+    else:
+        show(pipeline.users(file))
+
+
+COMMANDS = (serve, users)

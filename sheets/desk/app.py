@@ -2,24 +2,27 @@
 
 from __future__ import annotations
 
+import secrets
 from collections.abc import AsyncIterator, Callable
 from contextlib import asynccontextmanager
 from datetime import UTC, datetime
 from functools import partial
 from typing import Final
-from urllib.parse import urlsplit
+from urllib.parse import urlencode, urlsplit
 
 from starlette.applications import Starlette
 from starlette.exceptions import HTTPException
 from starlette.requests import Request
-from starlette.responses import Response
+from starlette.responses import RedirectResponse, Response
 from starlette.routing import Mount, Route
 
-from sheets.desk import reading
+from sheets.desk import reading, signing_in
+from sheets.desk.gatekeeping import Gatekeeper
 from sheets.desk.guard import Guard
-from sheets.desk.showing import Desk, bug, status_of
+from sheets.desk.sessions import Sessions
+from sheets.desk.showing import Desk, Visit, bug, status_of
 from sheets.errors import JamnutError, Problem
-from sheets.pipeline import DeskSettings, ReadingRoom
+from sheets.pipeline import DeskSettings, ReadingRoom, Role
 
 OWN_NAMES: Final = ("localhost", "127.0.0.1", "::1")
 
@@ -29,7 +32,11 @@ CLOSED: Final = Problem(
     fix="Sign in, or telephone the planner.",
 )
 
-View = Callable[[Desk, Request], Response]
+SIGN_IN: Final = Problem(where="", what="Nobody is signed in.", fix="Sign in, and fill in the form again.")
+ROLE: Final = Problem(where="", what="Your role doesn't reach this.", fix="Ask who keeps the users file.")
+FAST: Final = Problem(where="", what="That was too much in one minute.", fix="Wait a minute.")
+
+View = Callable[[Visit], Response]
 
 
 def clock() -> datetime:
@@ -41,11 +48,18 @@ def create(
     settings: DeskSettings,
     *,
     now: Callable[[], datetime] = clock,
+    random_text: Callable[[], str] = secrets.token_urlsafe,
 ) -> Guard:
     """The record page of a site. Raises InputError for settings that can't be used."""
     room = ReadingRoom(settings)
     address = urlsplit(room.site.record_address) if room.site and room.site.record_address else None
-    desk = Desk(room=room, now=now, base=address.path.rstrip("/") if address else "")
+    desk = Desk(
+        room=room,
+        now=now,
+        base=address.path.rstrip("/") if address else "",
+        sessions=Sessions(now, random_text),
+        gate=Gatekeeper(now, random_text),
+    )
     hosts = {*OWN_NAMES, *settings.hosts, *([address.hostname] if address and address.hostname else [])}
     routes = _routes(desk)
 
@@ -67,20 +81,59 @@ def create(
 
 
 def _routes(desk: Desk) -> list[Route]:
-    def at(path: str, view: View, *methods: str, open_: bool = False) -> Route:
+    def at(path: str, view: View, *, method: str = "GET", needs: Role | None = None) -> Route:
+        """A route for whoever may read, or for a role; a form only once, and from whom it was shown to."""
+
         def endpoint(request: Request) -> Response:
-            if not open_ and not desk.room.open_to_all:
-                return desk.problem(401, CLOSED)
-            return view(desk, request)
+            visit = Visit(desk, request)
+            refusal = _refusal(visit, needs, form=method == "POST")
+            return view(visit) if refusal is None else refusal
 
-        return Route(path, endpoint, methods=list(methods or ("GET",)), name=view.__name__)
+        return Route(path, endpoint, methods=[method], name=view.__name__)
 
-    return [
+    def always(path: str, view: View, *, method: str = "GET") -> Route:
+        def endpoint(request: Request) -> Response:
+            return view(Visit(desk, request))
+
+        return Route(path, endpoint, methods=[method], name=view.__name__)
+
+    routes = [
         at("/r/{record_id}", reading.record),
         at("/r/{record_id}/file", reading.file),
         at("/find", reading.find),
-        at("/look.css", reading.look_css, open_=True),
+        always("/look.css", reading.look_css),
     ]
+    if desk.room.settings.users is None:
+        return routes
+    return [
+        *routes,
+        always("/sign-in", signing_in.ask),
+        always("/sign-in", signing_in.sign_in, method="POST"),
+        at("/sign-out", signing_in.ask_out, needs=Role.READER),
+        at("/sign-out", signing_in.sign_out, method="POST", needs=Role.READER),
+    ]
+
+
+def _refusal(visit: Visit, needs: Role | None, *, form: bool) -> Response | None:
+    """What stands against a request, or None. A form's token is used up by it."""
+    desk = visit.desk
+    if visit.user is None and (needs is not None or not desk.room.open_to_all):
+        if desk.room.settings.users is None or form:
+            return visit.problem(401, CLOSED if needs is None else SIGN_IN)
+        path = visit.request.url.path
+        query = f"?{visit.request.url.query}" if visit.request.url.query else ""
+        to = urlencode({"to": f"{path}{query}"})
+        return RedirectResponse(f"{desk.base}/sign-in?{to}", status_code=303)
+    if needs is not None and not visit.may(needs):
+        return visit.problem(403, ROLE)
+    if form and visit.session is not None:
+        if not desk.sessions.take(visit.session, visit.said("form")):
+            return visit.problem(403, signing_in.STALE)
+        if wait_s := desk.sessions.writes.take(visit.token):
+            answer = visit.problem(429, FAST)
+            answer.headers["Retry-After"] = str(wait_s)
+            return answer
+    return None
 
 
 def _known(desk: Desk, request: Request, error: Exception) -> Response:

@@ -19,6 +19,8 @@ LARGEST_BODY: Final = 65_536
 LONGEST_BODY_S: Final = 20.0
 LARGEST_QUERY: Final = 2_048
 FORM: Final = "application/x-www-form-urlencoded"
+BODY: Final = "jamnut.body"
+"""Where a route finds the form that was read here."""
 METHODS: Final = ("GET", "HEAD", "POST")
 HEADERS: Final = {
     "Cache-Control": "no-store",
@@ -66,7 +68,7 @@ class Guard:
             if isinstance(body, int):
                 await _plain(body)(scope, receive, sending)
                 return
-            receive = _again(body, receive)
+            scope[BODY] = body
         await self.app(scope, receive, sending)
 
     def _refusal(self, scope: Scope) -> PlainTextResponse | None:
@@ -146,17 +148,3 @@ async def _body(receive: Receive) -> bytes | int:
                     return b"".join(parts)
     except TimeoutError:
         return 408
-
-
-def _again(body: bytes, receive: Receive) -> Receive:
-    """Gives the form that was read already, once."""
-    given = False
-
-    async def once() -> Message:
-        nonlocal given
-        if given:
-            return await receive()
-        given = True
-        return {"type": "http.request", "body": body, "more_body": False}
-
-    return once

@@ -5,11 +5,13 @@ from __future__ import annotations
 import logging
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Final
+from urllib.parse import parse_qsl
 
 from starlette.responses import HTMLResponse
 
 from sheets import pipeline
-from sheets.errors import ExitStatus, JamnutError, Problem
+from sheets.desk.guard import BODY
+from sheets.errors import ExitStatus, InputError, JamnutError, Problem
 
 if TYPE_CHECKING:
     from collections.abc import Callable
@@ -18,9 +20,12 @@ if TYPE_CHECKING:
     from starlette.requests import Request
     from starlette.responses import Response
 
-    from sheets.pipeline import ReadingRoom
+    from sheets.desk.gatekeeping import Gatekeeper
+    from sheets.desk.sessions import Session, Sessions
+    from sheets.pipeline import ReadingRoom, Role, User
 
 LOG: Final = logging.getLogger("jamnut.desk")
+MOST_FIELDS: Final = 60
 _HTTP: Final = {
     ExitStatus.WRONG_INPUT: 422,
     ExitStatus.REFUSED: 409,
@@ -53,8 +58,26 @@ class Desk:
     now: Callable[[], datetime]
     base: str
     """Path under which it is reached, without a closing slash: that of the site's record address."""
+    sessions: Sessions
+    gate: Gatekeeper
 
-    def page(self, name: str, *, status: int = 200, person: str = "", **values: object) -> Response:
+    @property
+    def secure(self) -> bool:
+        return self.room.settings.secure
+
+    @property
+    def cookie(self) -> str:
+        """Name of the cookie of a session; with this prefix a browser takes it from no other host."""
+        return "__Host-jamnut" if self.secure else "jamnut"
+
+    def users(self) -> tuple[User, ...]:
+        """Who may sign in, as the file says now. Raises InputError if it can't be read."""
+        file = self.room.settings.users
+        return pipeline.users_of(file) if file is not None else ()
+
+    def page(
+        self, template: str, /, *, status: int = 200, user: User | None = None, **values: object
+    ) -> Response:
         """The page of a template, with what every page has."""
         site = self.room.site
         local = self.now().astimezone(self.room.zone)
@@ -65,26 +88,97 @@ class Desk:
             "telephone": site.planner_telephone if site else "",
             "emergency": site.emergency_telephone if site else "",
             "at": f"{local:%Y-%m-%d %H:%M} {site.zone if site else 'UTC'}",
-            "person": person,
+            "person": user.name if user else "",
+            "role": user.role.value if user else "",
             "signing_in": self.room.settings.users is not None,
         }
-        return HTMLResponse(pipeline.web_page(name, frame | values), status_code=status)
+        return HTMLResponse(pipeline.web_page(template, frame | values), status_code=status)
 
-    def problem(self, status: int, *problems: Problem, person: str = "") -> Response:
+    def problem(self, status: int, *problems: Problem, user: User | None = None) -> Response:
         """A page that says why not."""
-        return self.page(
-            "problem",
-            status=status,
-            code=status,
-            person=person,
-            heading=_HEADINGS.get(status, "refused"),
-            problems=problems,
-        )
+        heading = _HEADINGS.get(status, "refused")
+        return self.page("problem", status=status, user=user, code=status, heading=heading, problems=problems)
 
     def unread(self, error: JamnutError) -> Response:
         """The register didn't answer: what is wrong with it is told to the log, not to the reader."""
         LOG.error("the register can't be read: %s", error)
         return self.problem(503, _UNREADABLE)
+
+
+class Visit:
+    """One request, with who makes it."""
+
+    def __init__(self, desk: Desk, request: Request) -> None:
+        self.desk, self.request = desk, request
+        self.token = self.cookie(desk.cookie)
+        self.session: Session | None = desk.sessions.find(self.token) if self.token else None
+        self.user: User | None = None
+        if self.session is not None:
+            # As the file says now: whoever was taken out, or got another password, is out at once.
+            self.user = next((one for one in desk.users() if one == self.session.user), None)
+        self._said = _form_of(request)
+
+    def cookie(self, name: str) -> str:
+        """What a cookie holds; empty without it."""
+        return self.request.cookies.get(name, "")
+
+    def said(self, name: str) -> str:
+        """A field of the form, without blanks around it; empty without it."""
+        return self._said.get(name, "").strip()
+
+    @property
+    def address(self) -> str:
+        """Where the request comes from."""
+        return self.request.client.host if self.request.client else ""
+
+    def may(self, role: Role) -> bool:
+        """Whether whoever asks is signed in as that, or more."""
+        return self.user is not None and self.user.role.reaches(role)
+
+    def local_path(self, wanted: str) -> str:
+        """A path of this page and no other site's; the list of machines for anything else."""
+        plain = wanted.isascii() and wanted.isprintable() and "\\" not in wanted
+        if plain and wanted.startswith(f"{self.desk.base}/") and not wanted.startswith("//"):
+            return wanted
+        return f"{self.desk.base}/"
+
+    def page(self, template: str, /, *, status: int = 200, **values: object) -> Response:
+        """As of the desk, for whoever asks."""
+        return self.desk.page(template, status=status, user=self.user, **values)
+
+    def problem(self, status: int, *problems: Problem) -> Response:
+        """As of the desk, for whoever asks."""
+        return self.desk.problem(status, *problems, user=self.user)
+
+    def form(self) -> str:
+        """A token for a form on the page that is being made."""
+        if self.session is None:
+            raise RuntimeError("a form is shown to who is signed in")
+        return self.desk.sessions.form(self.session)
+
+    def set_cookie(self, answer: Response, name: str, text: str) -> None:
+        """For this host and page, out of reach of scripts, and not sent along from other sites' forms."""
+        answer.set_cookie(name, text, path="/", secure=self.desk.secure, httponly=True, samesite="lax")
+
+
+def _form_of(request: Request) -> dict[str, str]:
+    """The fields of a form. Raises InputError for what no form of ours sends."""
+    body: bytes = request.scope.get(BODY, b"")
+    try:
+        pairs = parse_qsl(
+            body.decode("ascii"),
+            keep_blank_values=True,
+            strict_parsing=bool(body),
+            errors="strict",
+            max_num_fields=MOST_FIELDS,
+        )
+    except ValueError:
+        pairs = [("", "")] * 2
+    if len({name for name, _ in pairs}) < len(pairs):
+        raise InputError(
+            Problem(where="the form", what="It isn't one of this page.", fix="Go back, and load it again.")
+        )
+    return dict(pairs)
 
 
 def status_of(error: JamnutError) -> int:

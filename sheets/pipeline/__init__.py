@@ -22,6 +22,13 @@ if TYPE_CHECKING:
     from sheets.pipeline.asking import deviations_text as deviations_text
     from sheets.pipeline.asking import used as used
     from sheets.pipeline.asking import used_text as used_text
+    from sheets.pipeline.admitting import Role as Role
+    from sheets.pipeline.admitting import User as User
+    from sheets.pipeline.admitting import remove_user as remove_user
+    from sheets.pipeline.admitting import set_user as set_user
+    from sheets.pipeline.admitting import user_named as user_named
+    from sheets.pipeline.admitting import users as users
+    from sheets.pipeline.admitting import users_of as users_of
     from sheets.pipeline.auditing import audit as audit
     from sheets.pipeline.auditing import audit_text as audit_text
     from sheets.pipeline.authorising import authorise as authorise
@@ -213,6 +220,13 @@ _CONTENTS: Final[dict[str, str]] = {
     "inspections_on": "pipeline.inspecting",
     "inspections_text": "pipeline.inspecting",
     # show it on a screen
+    "Role": "pipeline.admitting",
+    "User": "pipeline.admitting",
+    "users": "pipeline.admitting",
+    "users_of": "pipeline.admitting",
+    "user_named": "pipeline.admitting",
+    "set_user": "pipeline.admitting",
+    "remove_user": "pipeline.admitting",
     "as_printed": "crockford",
     "DeskSettings": "pipeline.reading_room",
     "serve": "pipeline.serving",
@@ -272,6 +286,8 @@ _EXTRA: Final = (
     "sqlalchemy",
 )
 """Libraries of the extra named site: what stands behind a sheet needs them, a draft doesn't."""
+_PASSWORDS: Final = "argon2"
+"""The library of the extra named desk that isn't a server's."""
 
 
 def __getattr__(name: str) -> Any:  # whatever the module behind it holds
@@ -281,6 +297,14 @@ def __getattr__(name: str) -> Any:  # whatever the module behind it holds
         return getattr(import_module(f"sheets.{_CONTENTS[name]}"), name)
     except ImportError as error:
         missing = error.name or str(error)  # one of them tells the name in words only
+        if missing.startswith(_PASSWORDS):
+            raise InputError(
+                Problem(
+                    where="this installation",
+                    what=f"Signing in at the record page needs the library {_PASSWORDS}.",
+                    fix="Install it with the extra named desk: python -m pip install '.[desk]'",
+                )
+            ) from None
         library = next((one for one in _EXTRA if missing.startswith(one)), None)
         if library is None:
             raise

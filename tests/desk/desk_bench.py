@@ -61,6 +61,10 @@ class Bench:
         return self.folder / "plant.register"
 
     @property
+    def users(self) -> Path:
+        return self.folder / "users.json"
+
+    @property
     def site(self) -> Path:
         return self.folder / "site.yaml"
 

@@ -118,7 +118,7 @@ def test_a_folder_or_register_that_is_not_there(bench: Bench) -> None:
         pipeline.serve(bench.settings(register_at=bench.folder / "none"), host="127.0.0.1", port=1)
 
 
-@pytest.mark.parametrize("library", ["uvicorn", "starlette"])
+@pytest.mark.parametrize("library", ["uvicorn", "starlette", "argon2"])
 def test_an_installation_without_the_extra_says_how_to_get_it(library: str, bench: Bench, root: Path) -> None:
     source = f"import sys; sys.modules[{library!r}] = None; from sheets.cli import entry; entry()"
     done = subprocess.run(

@@ -44,7 +44,7 @@ GATE_IMPORTS = {"pipeline", "errors", "sheets"}
 ANYWHERE = None
 FENCES = {
     "asn1crypto": "seal",
-    "argon2": "desk",
+    "argon2": "seal",
     "click": "cli",
     "cryptography": "seal",
     "fontpkg_ibm_plex_sans": "pages",
@@ -84,7 +84,13 @@ IMPURE = {
     "uuid",
 }
 """Clock, environment, chance, network, processes: what would make one file give two papers."""
-SHARED = {"sheets.pipeline.kept_files", "sheets.pipeline.reading_room"}
+SHARED = {
+    "sheets.desk.limits",
+    "sheets.desk.sessions",
+    "sheets.desk.gatekeeping",
+    "sheets.pipeline.kept_files",
+    "sheets.pipeline.reading_room",
+}
 """Asked by several threads of one server at once."""
 CLOCK_CALLS = {"today", "now", "utcnow"}
 
