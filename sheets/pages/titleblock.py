@@ -18,8 +18,8 @@ SPLIT = 0.6
 LABEL_COLUMN = 19 * MM
 SIGN_WIDTH = 52 * MM
 CHANGES_LEFT = 32 * MM
-CHANGES_MOST = 8
-"""So many are printed: the cover has one page."""
+CHANGES_MOST = 5
+"""So many are printed, so that the block mostly stays on the first page."""
 PAD = 2 * MM
 STRONG = tuple(style(size, Weight.SEMIBOLD) for size in (12, 11, 10, 9))
 

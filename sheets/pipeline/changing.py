@@ -125,6 +125,10 @@ def _steps(old: Orders, new: Orders) -> Iterator[str]:
                     if lines != others:
                         yield f"step of '{place}': {order} Its lines changed."
                 continue
+            if b - a == d - c:
+                for (order, _), (other, _) in zip(was[a:b], now[c:d], strict=True):
+                    yield f"step of '{place}': {order} → {other}"
+                continue
             for order, _ in was[a:b]:
                 yield f"step gone from '{place}': {order}"
             for order, _ in now[c:d]:

@@ -49,7 +49,7 @@ def tags(record_id: str, target: Path, *, register_at: Place) -> tuple[str, ...]
         kept = kept_of_issue(revision)
         matter = remade(revision, kept)
         left = left_of(view, revision, matter)
-    issue = context(revision, matter, left)
+    issue = context(revision, kept, matter, left)
     said = whole_content(matter)
     layout = Layout(paper="Letter" if kept.paper == "Letter" else "A4", kinds=(SheetKind.TAGS,))
     pages = place(said.document, layout, issue, digest=said.digest)
@@ -151,7 +151,7 @@ def remade(revision: Revision, kept: Kept) -> Matter:
     return matter
 
 
-def context(revision: Revision, matter: Matter, left: dict[str, Left]) -> IssueContext:
+def context(revision: Revision, kept: Kept, matter: Matter, left: dict[str, Left]) -> IssueContext:
     """The issue of a pack as its pages carry it, with the values as left."""
     issue, site = revision.issue, matter.site
     if issue is None or site is None:
@@ -168,5 +168,8 @@ def context(revision: Revision, matter: Matter, left: dict[str, Left]) -> IssueC
         date=revision.reserved_at.astimezone(zone_of(site)).date().isoformat(),
         zone=site.zone,
         signers=tuple((one.meaning, one.name) for one in issue.signers),
+        changes=kept.changes,
+        reason=kept.reason,
+        reviewer=kept.reviewer,
         as_left=tuple((adjuster, one.line) for adjuster, one in left.items()),
     )

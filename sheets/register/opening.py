@@ -83,6 +83,7 @@ def open_register(place: Place, *, read_only: bool = False, wait_s: float = WAIT
     database = _present(place, read_only=read_only, wait_s=wait_s)
     try:
         with database.told(), database.engine.connect() as connection:
+            database.begin_view(connection)
             database.check_head(connection)
     except BaseException:
         database.engine.dispose()

@@ -7,6 +7,7 @@ copy made by hand would lack the last events.
 
 from __future__ import annotations
 
+import contextlib
 import sqlite3
 from collections.abc import Callable
 from functools import partial
@@ -61,11 +62,27 @@ class SqliteFile(Database):
     def __init__(self, path: Path, *, mode: str, wait_s: float) -> None:
         """``mode``: ro, rw, or rwc to make it; ``wait_s``: seconds that a writer waits for another one."""
         self.where = str(path)
+        self._path, self._mode, self._wait_s = path, mode, wait_s
         connect: Callable[[], sqlite3.Connection] = partial(_connect, path, mode=mode, wait_s=wait_s)
         self.engine = create_engine("sqlite://", creator=connect, poolclass=QueuePool)
 
     def begin_view(self, connection: Connection) -> None:
+        """Where a program was stopped while it wrote, its half is taken back: a reader alone can't."""
+        if self._mode == "ro" and self._left_half():
+            with contextlib.suppress(sqlite3.Error):  # in a folder that can't be written to, reading tells
+                writer = _connect(self._path, mode="rw", wait_s=self._wait_s)
+                try:
+                    writer.execute("SELECT count(*) FROM sqlite_master").fetchall()
+                finally:
+                    writer.close()
         connection.exec_driver_sql("BEGIN")
+
+    def _left_half(self) -> bool:
+        """Whether a journal stands beside the file: of a program that writes just now, or was stopped."""
+        try:
+            return self._path.with_name(f"{self._path.name}-journal").stat().st_size > 0
+        except OSError:
+            return False
 
     def begin_turn(self, connection: Connection) -> None:
         connection.exec_driver_sql("BEGIN IMMEDIATE")

@@ -13,7 +13,6 @@ from random import Random
 import pytest
 from register_bench import NOON, at
 
-from sheets.errors import InputError
 from sheets.register.chain import check_chain
 from sheets.register.finding import document_revisions, revision_of
 from sheets.register.issuing import LEFT_OVER, void_left_over
@@ -112,8 +111,9 @@ with open_register(Path(sys.argv[1])) as register, register.writing() as writer:
 """
 
 
-def test_half_a_transaction_in_the_file_is_taken_back_by_the_next_who_may_write(
-    register: Register, path: Path, root: Path
+@pytest.mark.parametrize("read_only", [True, False])
+def test_half_a_transaction_in_the_file_is_taken_back_by_the_next_who_opens_it(
+    register: Register, path: Path, root: Path, read_only: bool
 ) -> None:
     register.close()
     whole = path.read_bytes()
@@ -122,8 +122,18 @@ def test_half_a_transaction_in_the_file_is_taken_back_by_the_next_who_may_write(
     )
     assert done.returncode == 9
     assert path.read_bytes() != whole
-    with pytest.raises(InputError, match="stopped while it wrote"):
-        open_register(path, read_only=True)
-    with open_register(path) as opened:
+    with open_register(path, read_only=read_only) as opened:
         assert check_chain(opened).last.sequence == 1
     assert path.read_bytes() == whole
+
+
+def test_an_open_reader_goes_on_when_a_writer_was_stopped(register: Register, path: Path, root: Path) -> None:
+    """A page that shows the register stays up."""
+    with open_register(path, read_only=True) as reader:
+        assert check_chain(reader).holds
+        subprocess.run(
+            [sys.executable, "-c", STOPPED, str(path)],
+            env={**os.environ, "PYTHONPATH": str(root)},
+            check=False,
+        )
+        assert check_chain(reader).last.sequence == 1
