@@ -127,7 +127,8 @@ def test_half_a_transaction_in_the_file_is_taken_back_by_the_next_who_opens_it(
     assert path.read_bytes() == whole
 
 
-def test_an_open_reader_goes_on_when_a_writer_was_stopped(register: Register, path: Path, root: Path) -> None:
+@pytest.mark.usefixtures("register")
+def test_an_open_reader_goes_on_when_a_writer_was_stopped(path: Path, root: Path) -> None:
     """A page that shows the register stays up."""
     with open_register(path, read_only=True) as reader:
         assert check_chain(reader).holds
