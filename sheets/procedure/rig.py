@@ -41,11 +41,21 @@ class Rig:
         """Adjusters that stand anywhere below their range until they come up to their target."""
         self.fitted: dict[str, str] = {}
         """Gauge to the test point at which it is fitted."""
+        self.locks: set[str] = set()
+        """Hand valves that hang on a lock of this job."""
 
     def take_steps(self) -> tuple[Step, ...]:
         """The steps since the last call."""
         steps, self.steps = tuple(self.steps), []
         return steps
+
+    def turned(self, valve: str, *, lock: bool = False) -> dict[str, Amount | str]:
+        """What a step that turns a hand valve says of its lock: taken off before, put on after."""
+        off = valve in self.locks
+        self.locks.discard(valve)
+        if lock:
+            self.locks.add(valve)
+        return {"unlock": "yes" if off else "", "lock": "yes" if lock else ""}
 
     def say(self, kind: StepKind, subject: str = "", **data: Amount | str) -> None:
         """A step that doesn't act on the plant."""

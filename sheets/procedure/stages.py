@@ -13,6 +13,7 @@ from sheets.amounts import Amount, Finding, Severity, bar
 from sheets.circuit.plant import Adjust, MoveValve, PlantAction, PlantState, StartDrive, StopDrive
 from sheets.circuit.solution import Solution
 from sheets.circuit.solver import solve, solve_one
+from sheets.energy.held import held_loads
 from sheets.energy.trapped import Trapped, find_trapped
 from sheets.machine.parts import HandValve
 from sheets.procedure.answers import TestState
@@ -51,6 +52,9 @@ def write_stages(job: Job) -> tuple[tuple[Stage, ...], tuple[Finding, ...]]:
     if job.locked:
         stages.append(_isolate(job, rig, StageKind.LOCK_AGAIN))
     stages.append(_return(job, rig))
+    rig.findings += [
+        Finding(code="lock_left_on", severity=Severity.REFUSED, subject=valve) for valve in sorted(rig.locks)
+    ]
     return tuple(stages), tuple(rig.findings)
 
 
@@ -76,6 +80,8 @@ def _isolate(job: Job, rig: Rig, kind: StageKind) -> Stage:
         _stop(job, rig)
     for supply in machine.isolated:
         rig.say(StepKind.ISOLATE, supply)
+    for actuator, (_, amount) in held_loads(machine).items():
+        rig.say(StepKind.BLOCK, actuator, force=amount, again="" if first else "yes")
     trapped = find_trapped(machine, circuit, rig.state.positions)
     vents = {relief.valve for relief in trapped.reliefs if relief.stays}
     _relieve(job, rig, trapped)
@@ -152,10 +158,13 @@ def _relieve(job: Job, rig: Rig, trapped: Trapped) -> None:
         move = MoveValve(valve=relief.valve, position=relief.position)
         lines = ", ".join(job.case.circuit.nodes[node].name for node in relief.nodes)
         if relief.stays:
-            rig.do(StepKind.OPEN_VENT, relief.valve, move, data={"lines": lines})
+            part = job.case.machine.parts[relief.valve]
+            lock = isinstance(part, HandValve) and part.lockable and part.rest == "closed"
+            data: dict[str, Amount | str] = {"lines": lines, **rig.turned(relief.valve, lock=lock)}
+            rig.do(StepKind.OPEN_VENT, relief.valve, move, data=data)
         else:
             back = MoveValve(valve=relief.valve, position=rig.state.positions[relief.valve])
-            data = {"lines": lines, "position": relief.position}
+            data = {"lines": lines, "position": relief.position, "back": back.position}
             rig.do(StepKind.WORK_LEVER, relief.valve, move, back, data=data)
 
 
@@ -165,7 +174,7 @@ def _put_back(job: Job, rig: Rig, valves: list[str]) -> None:
         rest = job.case.circuit.positions[valve][0]
         if isinstance(job.case.machine.parts[valve], HandValve) and rig.state.positions[valve] != rest:
             move = MoveValve(valve=valve, position=rest)
-            data = {"position": rest, "back": "yes", "unlock": _lock(job, valve)}
+            data = {"position": rest, "back": "yes", **rig.turned(valve)}
             rig.do(StepKind.SET_VALVE, valve, move, data=data)
 
 
@@ -193,8 +202,7 @@ def _deadhead(job: Job, rig: Rig) -> Stage:
                 "position": position,
                 "back": "",
                 "vent": "" if lines_up else "yes",
-                "lock": _lock(job, valve) if lines_up else "",
-                "unlock": "" if lines_up else _lock(job, valve),
+                **rig.turned(valve, lock=lines_up and _takes_lock(job, valve)),
             }
             move = MoveValve(valve=valve, position=position)
             rig.do(StepKind.SET_VALVE, valve, move, reason=reason, data=data)
@@ -205,10 +213,10 @@ def _deadhead(job: Job, rig: Rig) -> Stage:
     return Stage(kind=StageKind.DEADHEAD, powered=not job.locked, adjuster="", steps=rig.take_steps())
 
 
-def _lock(job: Job, valve: str) -> str:
-    """``yes`` where a valve takes a lock and the job has locks."""
+def _takes_lock(job: Job, valve: str) -> bool:
+    """Whether a valve takes a lock and the job has locks."""
     part = job.case.machine.parts[valve]
-    return "yes" if job.locked and isinstance(part, HandValve) and part.lockable else ""
+    return job.locked and isinstance(part, HandValve) and part.lockable
 
 
 def _back_out(job: Job, rig: Rig, adjuster: str) -> None:
@@ -287,7 +295,7 @@ def _enter(job: Job, rig: Rig, state: TestState) -> None:
             change.valve,
             change,
             reason=reasons.get(change),
-            data={"position": change.position},
+            data={"position": change.position, **rig.turned(change.valve)},
         )
 
 
@@ -315,7 +323,7 @@ def _leave(job: Job, rig: Rig, state: TestState) -> None:
             StepKind.OPEN_AGAIN if by_hand else StepKind.LET_GO,
             change.valve,
             MoveValve(valve=change.valve, position=rest),
-            data={"position": rest},
+            data={"position": rest, **rig.turned(change.valve)},
         )
 
 
@@ -464,5 +472,7 @@ def _return(job: Job, rig: Rig) -> Stage:
         for supply in job.case.machine.isolated:
             rig.say(StepKind.RESTORE_SUPPLY, supply)
     _start(job, rig)
+    for actuator in held_loads(job.case.machine) if job.locked else ():
+        rig.say(StepKind.UNBLOCK, actuator)
     rig.say(StepKind.WATCH)
     return Stage(kind=StageKind.RETURN, powered=True, adjuster="", steps=rig.take_steps())

@@ -23,6 +23,7 @@ class StepKind(Enum):
     TELL_AFTER = "tell_after"
     PRESS_STOP = "press_stop"
     ISOLATE = "isolate"
+    BLOCK = "block"
     OPEN_VENT = "open_vent"
     WORK_LEVER = "work_lever"
     ATTEMPT_START = "attempt_start"
@@ -53,6 +54,7 @@ class StepKind(Enum):
     LOCK_NUT = "lock_nut"
     REMOVE_GAUGE = "remove_gauge"
     INSPECT = "inspect"
+    UNBLOCK = "unblock"
     WATCH = "watch"
 
 

@@ -11,7 +11,7 @@ from sheets.circuit.model import Circuit
 from sheets.circuit.plant import MoveValve
 from sheets.hazards.assess import Hazard, Signal
 from sheets.machine.model import Machine
-from sheets.machine.parts import DialGauge, DirectionalValve, ElectricMotor, HandValve
+from sheets.machine.parts import Cylinder, DialGauge, DirectionalValve, ElectricMotor, HydraulicMotor
 from sheets.machine.screws import screws_of
 from sheets.machine.site import Policies
 from sheets.procedure.answers import TestState
@@ -181,10 +181,11 @@ class Speaker:
         part = machine.parts.get(step.subject)
         if part is not None:
             values |= {"label": self.part(step.subject), "where": part.where}
-        if isinstance(part, HandValve):
-            values["lockable"] = "yes" if part.lockable and part.rest == "closed" else ""
+        if isinstance(part, Cylinder | HydraulicMotor):
+            values["moves"] = part.moves
         if isinstance(part, DirectionalValve):
             values["solenoid"] = self._solenoid(step.subject, part)
+            values["solenoids"] = ", ".join(dict.fromkeys(part.solenoids.values()))
         if isinstance(part, ElectricMotor):
             controls, stopping = machine.controls, step.kind is StepKind.PRESS_STOP
             name, places = ("stop", controls.stop) if stopping else ("start", controls.start)
@@ -289,6 +290,10 @@ class Speaker:
                 lines.append(f"{capital(values['where'])}.")
                 if step.data.get("vent"):
                     lines.append(say("close_vent"))
+                if values.get("solenoids"):
+                    lines.append(
+                        say("not_visible", position=values["position"], solenoids=values["solenoids"])
+                    )
             case StepKind.FIT_GAUGE | StepKind.REMOVE_GAUGE:
                 where = self.machine.parts[str(step.data["test_point"])].where
                 lines.append(say(f"{step.kind.value}_line", where=capital(where)))

@@ -22,6 +22,7 @@ PARAGRAPHS = {
     StepKind.TELL_BEFORE: "(c)(9)",
     StepKind.PRESS_STOP: "(d)(2)",
     StepKind.ISOLATE: "(d)(3)",  # and (d)(4): the lock goes on in the same row
+    StepKind.BLOCK: "(d)(5)",  # "restrained" there
     StepKind.OPEN_VENT: "(d)(5)",
     StepKind.WORK_LEVER: "(d)(5)",
     StepKind.ATTEMPT_START: "(d)(6)",
@@ -126,7 +127,7 @@ def test_printed_lockout_sheet_reads_in_that_order(any_sample: Matter) -> None:
         "Tell the affected people",
         "Stop M1 at",
         "Put your lock on",
-        {StepKind.OPEN_VENT: "slowly.", StepKind.WORK_LEVER: "and back, three times"}[relieving.kind],
+        {StepKind.OPEN_VENT: "slowly.", StepKind.WORK_LEVER: "three times to"}[relieving.kind],
         "Attempt to start",
         "is dead",
         "It shows 0",

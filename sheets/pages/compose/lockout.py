@@ -6,7 +6,6 @@ from collections.abc import Sequence
 from itertools import groupby
 
 from sheets.amounts import Amount
-from sheets.energy.held import held_loads
 from sheets.pages.compose.common import first_aid
 from sheets.pages.compose.matter import Matter, page_step
 from sheets.pages.document import (
@@ -29,6 +28,7 @@ _ACTS: dict[StepKind, str] = {
     StepKind.TELL_BEFORE: "stop",
     StepKind.PRESS_STOP: "stop",
     StepKind.ISOLATE: "isolate",
+    StepKind.BLOCK: "block",
     StepKind.OPEN_VENT: "relieve",
     StepKind.WORK_LEVER: "relieve",
     StepKind.ATTEMPT_START: "verify",
@@ -96,9 +96,10 @@ def _acts(matter: Matter, spoken: Sequence[SpokenStep]) -> list[tuple[str, tuple
     """Acts in the order in which the simulation did them; a new one wherever that order changes."""
     runs = [(act, tuple(_row(step) for step in run)) for act, run in groupby(spoken, _act)]
     verified = next((at for at, (act, _) in enumerate(runs) if act == "verify"), len(runs))
-    before: dict[str, tuple[Step, ...]] = {"block": _blocking(matter)}
+    before: dict[str, tuple[Step, ...]] = {}
     for act, rows in runs[:verified]:
         before[act] = (*before.get(act, ()), *rows)
+    before.setdefault("block", _nothing_held(matter))
     before["relieve"] = (*before.get("relieve", _nothing(matter)), *_not_relieved(matter))
     return [*((act, before.pop(act)) for act in _BEFORE_VERIFYING if act in before), *runs[verified:]]
 
@@ -132,7 +133,9 @@ def _row(spoken: SpokenStep) -> Step:
     match spoken.step.kind:
         case StepKind.ISOLATE:
             boxes = (Box(label="lock no.", size="short"), Box(label="owner", size="medium", signed=True))
-        case StepKind.OPEN_VENT if spoken.step.trace is not None:
+        case StepKind.BLOCK:
+            boxes = (Box(label="seen by", size="medium", signed=True),)
+        case StepKind.OPEN_VENT if spoken.step.data.get("lock"):
             boxes = (Box(label="lock no.", size="short"), Box(label="owner", size="medium", signed=True))
         case StepKind.TELL_BEFORE:
             boxes = (Box(label="time", size="short"), Box(label="by", size="medium", signed=True))
@@ -147,22 +150,7 @@ def _row(spoken: SpokenStep) -> Step:
     return page_step(spoken, number="", boxes=boxes)
 
 
-def _blocking(matter: Matter) -> tuple[Step, ...]:
-    rows = []
-    for id_, (part, amount) in held_loads(matter.machine).items():
-        rows.append(
-            Step(
-                number="",
-                order=matter.text("block_load", moves=part.moves, part=id_),
-                lines=(
-                    f"{capital(part.where)}. "
-                    + matter.text("block_load_line", force=matter.figures.amount(amount)),
-                ),
-                boxes=(Box(label="seen by", size="medium", signed=True),),
-            )
-        )
-    if rows:
-        return tuple(rows)
+def _nothing_held(matter: Matter) -> tuple[Step, ...]:
     return (
         Step(
             number="",
