@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import errno
 import functools
 import io
 import json
@@ -9,7 +10,7 @@ import sys
 import tempfile
 import traceback
 from pathlib import Path
-from typing import TYPE_CHECKING, Literal
+from typing import TYPE_CHECKING, Literal, NoReturn
 
 import click
 
@@ -37,6 +38,8 @@ if TYPE_CHECKING:
 
     from sheets.pipeline import Described, Outcome, WalkdownState
 
+_FULL = (errno.ENOSPC, errno.EDQUOT, errno.EFBIG, errno.EIO)
+"""What an output says that takes no more."""
 KINDS = ("cover", "instruction", "lockout", "record", "tags", "engineer")
 
 
@@ -119,16 +122,18 @@ def steps(
         return
     described = pipeline.check(machines[0], site, today())
     wanted = pipeline.task_of(described, task, part)
+    if why is not None and skew:
+        raise wrong("--why, --skew", "They are two questions.", "Ask one of them.")
     if skew:
         with watching("looking at plate values a tenth out") as watch:
             found = pipeline.skew(described, watch)
-        show(pipeline.skew_text(described, found))
+        show(pipeline.skew_json(described, found) if as_json else pipeline.skew_text(described, found))
         leave(pipeline.skew_status(found))
         return
     with watching(SEARCHING) as watch:
         matter = pipeline.steps(described, wanted, watch)
     if why is not None:
-        show(pipeline.why_text(matter, why))
+        show(pipeline.why_json(matter, why) if as_json else pipeline.why_text(matter, why))
         leave(pipeline.status_of(matter.targets, matter.procedure, matter.replay))
         return
     show(pipeline.steps_json(matter) if as_json else pipeline.steps_text(matter))
@@ -347,17 +352,35 @@ def entry() -> None:
     try:
         main.main(prog_name="jamnut", standalone_mode=False)
     except JamnutError as error:
-        click.echo(str(error), err=True)
+        click.echo("\n".join([str(error), *_notes(error)]), err=True)
         sys.exit(int(error.status))
     except click.exceptions.Exit as leaving:
         sys.exit(leaving.exit_code)
     except click.ClickException as error:
         error.show()
         sys.exit(int(ExitStatus.WRONG_INPUT))
-    except (click.Abort, KeyboardInterrupt):
-        click.echo("stopped; nothing was written", err=True)
+    except (click.Abort, KeyboardInterrupt) as error:
+        notes = _notes(error) or ["what was being made is not written"]
+        click.echo("\n".join(["stopped", *notes]), err=True)
         sys.exit(130)
+    except OSError as error:
+        if error.filename is not None or error.errno not in _FULL:
+            _bug()
+        sys.stdout = io.StringIO()  # nothing more goes there, not at the end of the process either
+        click.echo(f"The output can't be written: {error.strerror}. Write it elsewhere.", err=True)
+        sys.exit(int(ExitStatus.WRONG_INPUT))
     except Exception:  # noqa: BLE001 -- the last gate: whatever reaches it is a bug, and its traceback is kept
-        kept = _keep_traceback()
-        click.echo(f"This is a bug in jamnut, not in your file. Please report it with {kept}", err=True)
-        sys.exit(int(ExitStatus.BUG))
+        _bug()
+
+
+def _bug() -> NoReturn:
+    """Keeps the traceback of the exception at hand, and leaves."""
+    kept = _keep_traceback()
+    click.echo(f"This is a bug in jamnut, not in your file. Please report it with {kept}", err=True)
+    sys.exit(int(ExitStatus.BUG))
+
+
+def _notes(error: BaseException) -> list[str]:
+    """What was noted on an error, or on the one that it came from, for the person who sees it."""
+    behind = error.__cause__
+    return [*getattr(error, "__notes__", ()), *(getattr(behind, "__notes__", ()) if behind else ())]

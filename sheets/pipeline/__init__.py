@@ -16,12 +16,6 @@ if TYPE_CHECKING:
     from sheets.machine.answering import Answers as Answers
     from sheets.machine.files import machine_files as machine_files
     from sheets.machine.walking import WalkdownState as WalkdownState
-    from sheets.pipeline.asking import current as current
-    from sheets.pipeline.asking import current_text as current_text
-    from sheets.pipeline.asking import deviations as deviations
-    from sheets.pipeline.asking import deviations_text as deviations_text
-    from sheets.pipeline.asking import used as used
-    from sheets.pipeline.asking import used_text as used_text
     from sheets.pipeline.admitting import Role as Role
     from sheets.pipeline.admitting import User as User
     from sheets.pipeline.admitting import remove_user as remove_user
@@ -29,6 +23,12 @@ if TYPE_CHECKING:
     from sheets.pipeline.admitting import user_named as user_named
     from sheets.pipeline.admitting import users as users
     from sheets.pipeline.admitting import users_of as users_of
+    from sheets.pipeline.asking import current as current
+    from sheets.pipeline.asking import current_text as current_text
+    from sheets.pipeline.asking import deviations as deviations
+    from sheets.pipeline.asking import deviations_text as deviations_text
+    from sheets.pipeline.asking import used as used
+    from sheets.pipeline.asking import used_text as used_text
     from sheets.pipeline.auditing import audit as audit
     from sheets.pipeline.auditing import audit_text as audit_text
     from sheets.pipeline.authorising import authorise as authorise
@@ -43,6 +43,7 @@ if TYPE_CHECKING:
     from sheets.pipeline.computing import issuable as issuable
     from sheets.pipeline.computing import issuable_text as issuable_text
     from sheets.pipeline.computing import skew as skew
+    from sheets.pipeline.computing import skew_json as skew_json
     from sheets.pipeline.computing import skew_status as skew_status
     from sheets.pipeline.computing import skew_text as skew_text
     from sheets.pipeline.computing import status_of as status_of
@@ -53,6 +54,7 @@ if TYPE_CHECKING:
     from sheets.pipeline.computing import targets_json as targets_json
     from sheets.pipeline.computing import targets_text as targets_text
     from sheets.pipeline.computing import task_of as task_of
+    from sheets.pipeline.computing import why_json as why_json
     from sheets.pipeline.computing import why_text as why_text
     from sheets.pipeline.demonstrating import demo as demo
     from sheets.pipeline.demonstrating import demo_text as demo_text
@@ -161,6 +163,8 @@ _CONTENTS: Final[dict[str, str]] = {
     "steps": "pipeline.computing",
     "steps_json": "pipeline.computing",
     "steps_text": "pipeline.computing",
+    "skew_json": "pipeline.computing",
+    "why_json": "pipeline.computing",
     "why_text": "pipeline.computing",
     "skew": "pipeline.computing",
     "skew_status": "pipeline.computing",

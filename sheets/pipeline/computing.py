@@ -30,7 +30,7 @@ from sheets.wording.obstacles import obstacles
 from sheets.wording.steps import Speaker, SpokenStep
 from sheets.wording.terminal import note_lines, skew_lines, step_lines, target_lines
 from sheets.wording.walk_list import proposal_words
-from sheets.wording.why import why_lines
+from sheets.wording.why import why_data, why_lines
 
 
 def targets(described: Described) -> Targets:
@@ -84,6 +84,11 @@ def why_text(matter: Matter, adjuster: str) -> Iterator[str]:
     return why_lines(matter.speaker, matter.procedure, adjuster)
 
 
+def why_json(matter: Matter, adjuster: str) -> dict[str, Json]:
+    """The same as data. Raises InputError likewise."""
+    return why_data(matter.speaker, matter.procedure, adjuster)
+
+
 def skew(described: Described, watch: Watch = unwatched) -> tuple[Finding, ...]:
     """Plate values on which order or states hang; takes seconds, since each skew is a search."""
     return skew_findings(described.machine, described.policies, Work(WORK_LIMIT, watch))
@@ -91,6 +96,10 @@ def skew(described: Described, watch: Watch = unwatched) -> tuple[Finding, ...]:
 
 def skew_text(described: Described, found: tuple[Finding, ...]) -> Iterator[str]:
     return skew_lines(speaker_of(described), found)
+
+
+def skew_json(described: Described, found: tuple[Finding, ...]) -> dict[str, Json]:
+    return as_json.skew_json(speaker_of(described), found)
 
 
 def skew_status(found: tuple[Finding, ...]) -> ExitStatus:

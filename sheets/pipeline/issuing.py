@@ -18,7 +18,7 @@ from zoneinfo import ZoneInfo
 
 from sheets import ENGINE
 from sheets.errors import InputError, JamnutError, Problem, RefusedError, quoted
-from sheets.machine.files import aside_of, check_pdf_target, move_aside, write_aside
+from sheets.machine.files import aside_of, check_pdf_target, check_writable, move_aside, write_aside
 from sheets.machine.site import Site
 from sheets.pages.archive import archive_flaws
 from sheets.pages.attached import attachments_in
@@ -30,7 +30,7 @@ from sheets.pipeline.changing import changes_since, hold_changed, hold_reason
 from sheets.pipeline.computing import issuable
 from sheets.pipeline.keeping import kept_of
 from sheets.pipeline.persons import Named, Signing, check_people, check_trusted, named_by, trust_of
-from sheets.pipeline.printing import Content, printed, whole_content
+from sheets.pipeline.printing import Content, keep_issued, printed, whole_content
 from sheets.register.finding import document_revisions, revision_of
 from sheets.register.issuing import Reservation, commit, reserve, sign_event, void
 from sheets.register.opening import Place, create_register, is_there, open_register
@@ -87,6 +87,8 @@ def issue(
     check_people(site, people, ink=ink)
     if not ink:
         check_trusted(people, trust_of(site, site_folder))
+    keep_issued(target)
+    check_writable(target)
     by = people[0].name
     with _register(register_at, by, when) as register:
         before = current(document_revisions(register, matter.machine.document))
@@ -127,7 +129,11 @@ def issue(
                 signers = tuple(Signer(meaning=one.meaning, name=one.name) for one in people)
                 commit_pack(register, context, matter, data, said, signers, when=when, ink=ink)
         except BaseException as error:
-            break_off(register, record_id, target, error, by=by, when=when)
+            state = break_off(register, record_id, target, error, by=by, when=when)
+            error.add_note(
+                f"revision {reservation.number} of {matter.machine.document} was given out, and is {state}; "
+                "its number isn't used again"
+            )
             raise
         put_in_place(target)
     return Issued(
@@ -178,17 +184,21 @@ def hold_archive_form(data: bytes) -> None:
 
 def break_off(
     register: Register, record_id: str, target: Path, error: BaseException, *, by: str, when: datetime
-) -> None:
-    """Ends a revision that can't be finished, with the reason, and takes its file away.
+) -> str:
+    """Ends a revision that can't be finished, with the reason, takes its file away, and says how it stands.
 
     One that the register has as issued stays, and so does its file: it broke off too late to undo.
     """
+    state = "not ended in the register yet"
     with contextlib.suppress(JamnutError):  # what can't be made void now, the next issue makes void
         void(register, record_id, reason=_reason(error), by=by, when=when)
     with contextlib.suppress(JamnutError):
-        if revision_of(register, record_id).state is RevisionState.ISSUED:
-            return
+        now = revision_of(register, record_id).state
+        state = now.value
+        if now is RevisionState.ISSUED:
+            return f"issued, as {aside_of(target)}"
     aside_of(target).unlink(missing_ok=True)
+    return state
 
 
 def _reason(error: BaseException) -> str:

@@ -112,7 +112,7 @@ def write_pack(
 
 
 def keep_issued(target: Path) -> None:
-    """Nothing takes the place of an issued pack but another. Raises InputError."""
+    """Nothing that is printed takes the place of an issued pack. Raises InputError."""
     try:
         held = attachments_in(target.read_bytes())
     except (OSError, InputError):

@@ -7,7 +7,7 @@ from dataclasses import replace
 from pathlib import Path
 
 from sheets.machine.answering import Answers, answered
-from sheets.machine.files import move_into_place, walkdown_file
+from sheets.machine.files import held, move_into_place, walkdown_file
 from sheets.machine.walkdown import walkdown_text
 from sheets.machine.walking import (
     EntryState,
@@ -56,23 +56,24 @@ def write_walkdown(machine_file: Path, described: Described, answers: Answers) -
     """
     by, on = answers.signed(dated=described.machine.dated)
     found = _targets(described)
-    beside = walkdown_beside(machine_file, described.machine, answers.today)
-    now = replace(described, walkdown=beside.walkdown if beside else None)
-    computed_from = _computing_digest(now)
-    changed = with_answers(
-        now.walkdown,
-        now.machine,
-        answered(answers, now.walkdown, _entry_digests(now), by=by, on=on),
-        {
-            id_: accept(now.machine, found, id_, by=by, on=on, computed_from=computed_from)
-            for id_ in answers.accept
-        },
-    )
-    move_into_place(
-        walkdown_file(machine_file),
-        walkdown_text(changed).encode(),
-        fix="Look whether you may write into the folder of the machine file.",
-    )
+    with held(walkdown_file(machine_file)):  # another's answer between reading and writing would be lost
+        beside = walkdown_beside(machine_file, described.machine, answers.today)
+        now = replace(described, walkdown=beside.walkdown if beside else None)
+        computed_from = _computing_digest(now)
+        changed = with_answers(
+            now.walkdown,
+            now.machine,
+            answered(answers, now.walkdown, _entry_digests(now), by=by, on=on),
+            {
+                id_: accept(now.machine, found, id_, by=by, on=on, computed_from=computed_from)
+                for id_ in answers.accept
+            },
+        )
+        move_into_place(
+            walkdown_file(machine_file),
+            walkdown_text(changed).encode(),
+            fix="Look whether you may write into the folder of the machine file.",
+        )
     return walked(replace(now, walkdown=changed), found)
 
 

@@ -83,6 +83,15 @@ def _amount(amount: Amount) -> dict[str, Json]:
     return {"value": rounded(amount.value), "quantity": amount.quantity}
 
 
+def skew_json(speaker: Speaker, findings: Iterable[Finding]) -> dict[str, Json]:
+    """Plate values on which order or states hang."""
+    return {
+        "format": FORMAT,
+        "tag": speaker.machine.tag,
+        "findings": findings_json(speaker, findings),
+    }
+
+
 def findings_json(speaker: Speaker, findings: Iterable[Finding]) -> list[Json]:
     """Findings by code, with their words and figures."""
     found: list[Json] = []

@@ -106,6 +106,20 @@ class Figures:
                 break
         return f"{low_digits} to {high_digits} {unit}"
 
+    def limit_c(self, value_c: float) -> str:
+        """A highest temperature in whole degrees, never more than it is."""
+        return f"{number(math.floor(value_c + _DUST), decimals=0)} °C"
+
+    def inside_c(self, low_c: float, high_c: float) -> tuple[str, str]:
+        """Both ends of a window of temperatures, rounded inward; in tenths where degrees leave nothing."""
+        for decimals in (0, 1):
+            scale = 10.0**decimals
+            low = math.ceil(low_c * scale - _DUST) / scale
+            high = math.floor(high_c * scale + _DUST) / scale
+            if low < high:
+                break
+        return f"{number(low, decimals=decimals)} °C", f"{number(high, decimals=decimals)} °C"
+
     def in_unit(self, value_bar: float) -> float:
         """A pressure in the first unit, as a number for a drawn scale."""
         return round(to_unit(value_bar, self.pressure_unit), 6)

@@ -9,7 +9,7 @@ from dataclasses import dataclass
 from sheets.amounts import Amount
 from sheets.circuit.model import Circuit
 from sheets.circuit.plant import MoveValve
-from sheets.hazards.assess import Hazard, Signal
+from sheets.hazards.assess import Hazard, HazardKind, Signal
 from sheets.machine.model import Machine
 from sheets.machine.parts import Cylinder, DialGauge, DirectionalValve, ElectricMotor, HydraulicMotor
 from sheets.machine.screws import screws_of
@@ -20,6 +20,7 @@ from sheets.procedure.steps import Reading, Stage, StageKind, Step, StepKind
 from sheets.quantities import number
 from sheets.wording.figures import Figures
 from sheets.wording.sentences import Sentences
+from sheets.wording.turning import LARGEST, coarse_until_bar, step_of_turn
 
 
 def capital(text: str) -> str:
@@ -140,6 +141,8 @@ class Speaker:
         if isinstance(most, Amount):
             values["pressure"] = self.figures.pressure(most.value, up=True)
         values |= {"stop": self.stop, "high": self.oil_window()[1]}
+        if hazard.kind is HazardKind.HOT_OIL:
+            values["limit"] = self.oil_limit()
         return SpokenWarning(
             signal=hazard.signal,
             hazard=capital(self._hazards.say(f"{hazard.kind.value}_hazard", **values)),
@@ -233,6 +236,7 @@ class Speaker:
             values["window"] = self._accepted(step.subject)
         if step.kind is StepKind.COME_UP and step.reading:
             values["target"] = f"{self.target_digits(step.subject)} {self.figures.pressure_unit}"
+            values["steps"], values["near"] = self._turn_steps(step)
         if step.kind is StepKind.TURN_BELOW and step.reading:
             choice = self.found[step.subject].gauge
             values["below"] = self.figures.reading(choice.window.low_bar, choice.graduation_bar)
@@ -250,8 +254,11 @@ class Speaker:
             lowest_c=self.policies.lowest_setting_temperature_c,
             highest_c=self.policies.highest_setting_temperature_c,
         )
-        text = [self.figures.amount(Amount(value=value, quantity="temperature_c")) for value in (low, high)]
-        return text[0], text[1]
+        return self.figures.inside_c(low, high)
+
+    def oil_limit(self) -> str:
+        """Oil temperature above which the work stops, never printed higher than it is."""
+        return self.figures.limit_c(self.machine.fluid.limit_temperature_c)
 
     def _turns_of(self, adjuster: str, change: Amount | str | None) -> str:
         """Turns that a change takes, up to the next eighth and one eighth more; empty if nobody knows."""
@@ -326,8 +333,7 @@ class Speaker:
                 if values["tool"]:
                     lines.append(say("lock_nut_line", tool=values["tool"]))
             case StepKind.WARM_OIL:
-                limit = Amount(value=self.machine.fluid.limit_temperature_c, quantity="temperature_c")
-                lines.append(say("warm_oil_line", limit=self.figures.amount(limit)))
+                lines.append(say("warm_oil_line", limit=self.oil_limit()))
             case StepKind.HOLD_VALVE if values.get("solenoid"):
                 lines.append(say("solenoid_line"))
             case _:
@@ -348,12 +354,33 @@ class Speaker:
         elif not any(other.kind is StepKind.TURN_BELOW for other in stage.steps):
             lines.append(self._lines.say("wrong_screw", gauge=values["gauge"]))
         per_turn_bar = self.screws[step.subject].adjuster.per_turn_bar
-        if (
-            per_turn_bar is not None
-            and per_turn_bar / 4.0 > self.found[step.subject].gauge.window.half_width_bar
-        ):
-            lines.append(self._lines.say("eighths", change=self.figures.pressure(per_turn_bar / 4.0)))
+        if per_turn_bar is None:
+            lines.append(self._lines.say("step_change_unknown", gauge=values["gauge"]))
+        elif self._step_of_turn(step.subject) < LARGEST:
+            change = self.figures.pressure(LARGEST * per_turn_bar)
+            lines.append(self._lines.say("step_change", change=change))
         return lines
+
+    def _step_of_turn(self, adjuster: str) -> float:
+        return step_of_turn(
+            per_turn_bar=self.screws[adjuster].adjuster.per_turn_bar,
+            half_window_bar=self.found[adjuster].gauge.window.half_width_bar,
+        )
+
+    def _turn_steps(self, step: Step) -> tuple[str, str]:
+        """By what a screw comes up to its target; and from where, if far below it quarter turns will do."""
+        share, choice = self._step_of_turn(step.subject), self.found[step.subject].gauge
+        steps = self._names.say("turn_steps", step=f"{share:g}")
+        per_turn_bar = self.screws[step.subject].adjuster.per_turn_bar
+        if not step.data.get("from_out") or per_turn_bar is None or share == LARGEST:
+            return steps, ""
+        until_bar = coarse_until_bar(
+            low_bar=choice.window.low_bar, per_turn_bar=per_turn_bar, graduation_bar=choice.graduation_bar
+        )
+        if until_bar <= 0.0:
+            return steps, ""
+        short = self._names.say("turn_steps", step=f"{share:g}", short="yes")
+        return short, self.figures.reading(until_bar, choice.graduation_bar)
 
     def _expected(self, stage: Stage, step: Step, values: Mapping[str, str]) -> list[str]:
         """Reading after the step, and when to stop."""

@@ -6,6 +6,7 @@ from collections.abc import Iterator, Mapping
 from typing import Final
 
 from sheets.machine.fields import Entry
+from sheets.machine.gauges import Gauge
 from sheets.machine.leaves import Leaf, leaves
 from sheets.machine.model import Machine, Supply
 from sheets.machine.walking import AcceptanceState, AcceptedSetting, EntryState, WalkdownState, WalkedEntry
@@ -64,10 +65,20 @@ def _areas(machine: Machine, state: WalkdownState) -> dict[str, list[WalkedEntry
     for one in state.entries:
         thing = _thing(machine, one)
         if thing is not None and one.section != "whole":
-            where = thing.isolator.where if isinstance(thing, Supply) else str(getattr(thing, "where", ""))
-            area = where.split(",")[0].strip()
+            area = _where(machine, one, thing).split(",")[0].strip()
             found.setdefault(spelt.setdefault(area.casefold(), area), []).append(one)
     return found
+
+
+def _where(machine: Machine, one: WalkedEntry, thing: Entry) -> str:
+    """Where an entry is to be found; a gauge that is fixed on a line isn't in any box."""
+    if isinstance(thing, Supply):
+        return thing.isolator.where
+    if isinstance(thing, Gauge) and "where" not in thing.model_fields_set:
+        line = next((net for net, ports in machine.nets.items() if f"{one.id}.P" in ports), "")
+        if line:
+            return Sentences(machine.language, "walkdown.j2").say("fixed_gauge", line=line)
+    return str(getattr(thing, "where", ""))
 
 
 def _thing(machine: Machine, one: WalkedEntry) -> Entry | None:
@@ -88,7 +99,7 @@ def entry_lines(speaker: Speaker, one: WalkedEntry) -> Iterator[str]:
     """One entry: what it is and where, then what to read off it."""
     machine = speaker.machine
     thing = _thing(machine, one)
-    yield f"  {_BOX[one.state]} {_heading(one, thing)}{_said(one)}"
+    yield f"  {_BOX[one.state]} {_heading(machine, one, thing)}{_said(one)}"
     for line in _details(speaker, one, thing):
         yield f"      {line}"
 
@@ -100,12 +111,12 @@ def _said(one: WalkedEntry) -> str:
     return f"  ({one.by}, {one.on.isoformat()}{note})"
 
 
-def _heading(one: WalkedEntry, thing: Entry | None) -> str:
+def _heading(machine: Machine, one: WalkedEntry, thing: Entry | None) -> str:
     if one.section == "nets" or thing is None or one.section == "whole":
         return one.id
     if isinstance(thing, Supply):
         return f"{one.id} {thing.kind}, {thing.isolator.where}"
-    kind, where = getattr(thing, "kind", ""), getattr(thing, "where", "")
+    kind, where = getattr(thing, "kind", ""), _where(machine, one, thing)
     name = getattr(thing, "name", "") or kind
     told = name if name == kind else f"{name} ({kind})"
     return f"{one.id} {told}, {where}"

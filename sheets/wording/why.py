@@ -10,6 +10,7 @@ from sheets.errors import InputError, Problem, quoted
 from sheets.procedure.answers import NearMiss, NotFound, NotInUse, TestState
 from sheets.procedure.changes import Change
 from sheets.procedure.steps import Procedure
+from sheets.wording.as_json import FORMAT, Json, rounded
 from sheets.wording.findings import say_failure, say_not_in_use
 from sheets.wording.sentences import Sentences
 from sheets.wording.steps import Speaker
@@ -33,11 +34,7 @@ def say_changes(speaker: Speaker, changes: tuple[Change, ...]) -> str:
     return "; ".join(said) or texts.say("at_rest")
 
 
-def why_lines(speaker: Speaker, procedure: Procedure, adjuster: str) -> Iterator[str]:
-    """The answer for one adjuster, its reasons, and the nearest states that don't serve.
-
-    Raises InputError for an adjuster that wasn't searched for.
-    """
+def _answer(procedure: Procedure, adjuster: str) -> TestState | NotInUse | NotFound:
     answers = procedure.search.answers
     if adjuster not in answers:
         raise InputError(
@@ -47,7 +44,47 @@ def why_lines(speaker: Speaker, procedure: Procedure, adjuster: str) -> Iterator
                 fix=f"Name one of: {', '.join(answers)}.",
             )
         )
-    answer = answers[adjuster]
+    return answers[adjuster]
+
+
+def why_data(speaker: Speaker, procedure: Procedure, adjuster: str) -> dict[str, Json]:
+    """What `why_lines` says, with stable names. Raises InputError likewise."""
+    answer = _answer(procedure, adjuster)
+    found = answer if isinstance(answer, TestState) else None
+    return {
+        "format": FORMAT,
+        "tag": speaker.machine.tag,
+        "adjuster": adjuster,
+        "in_use": not isinstance(answer, NotInUse),
+        "found": found is not None,
+        "verdict": answer.verdict.value if isinstance(answer, NotFound) else "established",
+        "reading_bar": rounded(found.reading_bar) if found else None,
+        "changes": [
+            {
+                "change": say_changes(speaker, (change,)),
+                "condition": failure.condition.value,
+                "without": speaker.otherwise(failure, adjuster),
+            }
+            for change, failure in (found.reasons if found else ())
+        ],
+        "near": [
+            {
+                "changes": [say_changes(speaker, (change,)) for change in miss.changes],
+                "condition": miss.failure.condition.value,
+                "what": say_failure(speaker, miss.failure)[0],
+                "fix": say_failure(speaker, miss.failure)[1],
+            }
+            for miss in ([] if isinstance(answer, NotInUse) else answer.near_misses)
+        ],
+    }
+
+
+def why_lines(speaker: Speaker, procedure: Procedure, adjuster: str) -> Iterator[str]:
+    """The answer for one adjuster, its reasons, and the nearest states that don't serve.
+
+    Raises InputError for an adjuster that wasn't searched for.
+    """
+    answer = _answer(procedure, adjuster)
     sentences = Sentences(speaker.machine.language, "findings.j2")
     match answer:
         case NotInUse():

@@ -487,3 +487,49 @@ def test_progress_is_for_a_terminal(
     assert done.status == 0
     assert bool(re.search(r"^… \w", done.err)) is terminal
     assert done.out.count("\n") == 1
+
+
+def test_one_question_at_a_time(run: Callable[..., object], sample: Path) -> None:
+    done = run("steps", sample, "--skew", "--why", "RV1")
+    assert (done.status, done.out) == (2, "")
+    assert "two questions" in done.err
+
+
+def test_why_as_data(run: Callable[..., object], root: Path) -> None:
+    done = run("steps", root / "sample_machines" / "kiln_pusher.yaml", "--why", "RV1", "--json")
+    assert (done.status, done.err) == (0, "")
+    data = json.loads(done.out)
+    assert {"adjuster", "verdict", "changes", "near", "reading_bar", "in_use"} <= set(data)
+    assert data["verdict"] == "established"
+    assert [one["change"] for one in data["changes"]] == ["HV2 closed"]
+    assert all(one["fix"] and one["condition"] for one in data["near"])
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="needs /dev/full")
+def test_output_that_takes_no_more(root: Path, sample: Path) -> None:
+    with Path("/dev/full").open("w", encoding="utf-8") as full:
+        done = subprocess.run(
+            [sys.executable, "-c", "from sheets.cli import entry; entry()", "check", str(sample)],
+            cwd=root,
+            env={**os.environ, "PYTHONPATH": str(root)},
+            stdout=full,
+            stderr=subprocess.PIPE,
+            timeout=120,
+            check=False,
+        )
+    assert done.returncode == 2
+    said = "The output can't be written: No space left on device. Write it elsewhere.\n"
+    assert done.stderr.decode() == said
+
+
+def test_who_stops_a_command_hears_what_was_noted(
+    run: Callable[..., object], sample: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def stop(*_: object) -> None:
+        stopped = KeyboardInterrupt()
+        stopped.add_note("revision 2 is void")
+        raise stopped
+
+    monkeypatch.setattr(pipeline, "check", stop)
+    done = run("check", sample)
+    assert (done.status, done.err.split()) == (130, ["stopped", "revision", "2", "is", "void"])

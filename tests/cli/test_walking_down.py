@@ -5,7 +5,9 @@ from __future__ import annotations
 import io
 import json
 import sys
+import time
 from collections.abc import Callable
+from concurrent.futures import ThreadPoolExecutor
 from datetime import date
 from pathlib import Path
 
@@ -13,7 +15,10 @@ import pypdfium2
 import pytest
 import yaml
 
-from sheets import cli
+from sheets import cli, pipeline
+from sheets.errors import InputError
+from sheets.machine import files
+from sheets.pipeline import walking
 
 COMPUTED = ("      setting: 180 bar\n      given by: machine manual, sheet 2\n", "")
 """Without its two lines the setting of RV1 is computed."""
@@ -199,3 +204,38 @@ def test_data_of_the_list(run: Callable[..., object], file: Path) -> None:
     (setting,) = data["settings"]
     assert set(setting) == {"adjuster", "state", "computed_bar", "accepted_bar", "by", "on"}
     assert (setting["state"], setting["accepted_bar"]) == ("proposal", None)
+
+
+def test_answers_of_several_at_once_are_all_kept(file: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Each reads, adds its own and writes back; begun together, none may write over another's."""
+    read = walking.walkdown_beside
+
+    def read_slowly(*given: object) -> object:
+        found = read(*given)
+        time.sleep(0.2)  # long enough that every other has read meanwhile, if nothing keeps it
+        return found
+
+    monkeypatch.setattr(walking, "walkdown_beside", read_slowly)
+    described = pipeline.check(file)
+    entries = ("M1", "HV1", "PU1", "TP1")
+
+    def answer(id_: str) -> None:
+        day = date(2026, 11, 13)
+        said = pipeline.Answers(by="A", on="", today=day, agree=(id_,))
+        pipeline.write_walkdown(file, described, said)
+
+    with ThreadPoolExecutor(len(entries)) as together:
+        list(together.map(answer, entries))
+    assert set(answers_in(file)["parts"]) == set(entries)
+
+
+def test_a_file_that_another_command_holds_is_told(tmp_path: Path) -> None:
+    target = tmp_path / "a.walkdown.yaml"
+    with (
+        files.held(target),
+        pytest.raises(InputError, match="Another command is writing"),
+        files.held(target, seconds=0.1),
+    ):
+        pass
+    with files.held(target, seconds=0.1):
+        assert not target.exists()

@@ -47,6 +47,7 @@ FENCES = {
     "argon2": "seal",
     "click": "cli",
     "cryptography": "seal",
+    "filelock": "machine",
     "fontpkg_ibm_plex_sans": "pages",
     "fontpkg_ibm_plex_sans_condensed": "pages",
     "jinja2": "wording",

@@ -195,6 +195,36 @@ def test_a_target_that_is_no_pdf_stays(works: Works, job: Matter) -> None:
     assert len(works.revisions()) == 1
 
 
+def test_an_issued_pack_is_never_overwritten(works: Works, job: Matter) -> None:
+    before = works.files()
+    with pytest.raises(InputError, match="An issued pack stands there"):
+        works.issue(job, works.pack)
+    assert works.files() == before
+    assert len(works.revisions()) == 1
+
+
+def test_a_folder_that_takes_no_file_is_told_before_a_number_is_given_out(works: Works, job: Matter) -> None:
+    target = works.folder / "again.pdf"
+    (works.folder / ".again.pdf.probe").mkdir()  # whoever runs the tests may write into any folder
+    with pytest.raises(InputError, match="can't be written"):
+        works.issue(job, target)
+    assert len(works.revisions()) == 1
+    assert not target.exists()
+
+
+def test_who_stops_it_hears_that_a_number_is_used(
+    works: Works, job: Matter, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def stop(*_: object, **__: object) -> None:
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr(issuing, "printed", stop)
+    with pytest.raises(KeyboardInterrupt) as caught:
+        works.issue(job)
+    (note,) = caught.value.__notes__
+    assert note == "revision 2 of WI-0139 was given out, and is void; its number isn't used again"
+
+
 def test_a_register_that_is_missing_is_made_and_another_machine_s_document_refused(
     works: Works, job: Matter
 ) -> None:
@@ -386,6 +416,7 @@ def test_other_samples_and_papers_are_issued_and_good(root: Path, tmp_path: Path
     file = made.issued.file
     if paper == "Letter":
         matter = pipeline.steps(pipeline.check(works.folder / sample.name))
+        file = works.folder / "letter.pdf"
         fresh = works.folder / "letter.db"  # the paper alone makes no revision
         works.issue(matter, file, layout=pipeline.layout_named("Letter"), register_at=fresh)
         assert words(works.verify(file, register_at=fresh)) == ("good", "good", "good")

@@ -74,7 +74,10 @@ class Works:
         return Signing(meaning=meaning, name=who)
 
     def issue(self, matter: Matter, target: Path | None = None, **other: object) -> Issued:
-        """By three keys, unless said otherwise; ``None`` names nobody."""
+        """By three keys, unless said otherwise; ``None`` names nobody.
+
+        Without a target the pack that stands there is put away before, and back if nothing comes of it.
+        """
         people = {meaning: other.pop(meaning, KEYS[meaning]) for meaning in MEANINGS}
         given: dict[str, object] = {
             "signings": [self.signing(meaning, who) for meaning, who in people.items() if who],  # type: ignore[arg-type]  # names
@@ -87,7 +90,17 @@ class Works:
             "reason": "a name was wrong",
             **other,
         }
-        return pipeline.issue(matter, target or self.pack, **given)
+        old = self.pack.with_suffix(".put-away")
+        if target is None and self.pack.exists():
+            self.pack.rename(old)
+        try:
+            return pipeline.issue(matter, target or self.pack, **given)
+        except BaseException:
+            if old.exists():
+                old.rename(self.pack)
+            raise
+        finally:
+            old.unlink(missing_ok=True)
 
     def sign(self, meaning: str, who: str | None = None, **other: object) -> Issued:
         given: dict[str, object] = {

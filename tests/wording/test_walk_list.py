@@ -71,3 +71,11 @@ def test_nobody_has_compared_anything_yet(any_sample: Matter) -> None:
 
     assert data["complete"] is False
     assert {entry["state"] for entry in data["entries"]} == {"not compared"}  # type: ignore[index,union-attr]  # data
+
+
+def test_a_gauge_on_a_line_is_in_no_box(changed: Callable[..., Described]) -> None:
+    fixed = ("    fitted at: [TP1]\n", ""), ("RV1.P, TP1.P, HV2.A]", "RV1.P, TP1.P, HV2.A, G1.P]")
+    lines = list_of(changed("kiln_pusher", *fixed))
+    assert "  [ ] G1 dial gauge, fixed on the line “pump line”" in lines
+    assert not any("gauge box" in line for line in lines)
+    assert any("G1 dial gauge, in the gauge box" in line for line in list_of(changed("kiln_pusher")))
