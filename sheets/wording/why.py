@@ -110,8 +110,10 @@ def why_lines(speaker: Speaker, procedure: Procedure, adjuster: str) -> Iterator
     if answer.near_misses:
         yield ""
         yield sentences.say("why_near")
+        # What a state lacks may be a change that wasn't tried yet: then nothing need be added to the machine.
+        refuted = isinstance(answer, NotFound) and answer.verdict is Verdict.REFUTED
         for miss in answer.near_misses:
-            yield from _miss(speaker, miss, advice=isinstance(answer, NotFound))
+            yield from _miss(speaker, miss, advice=refuted)
 
 
 def _miss(speaker: Speaker, miss: NearMiss, *, advice: bool) -> Iterator[str]:

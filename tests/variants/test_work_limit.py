@@ -61,6 +61,7 @@ def test_the_command_names_the_limit_and_gives_its_status(
     assert f"within the limit of {FEW} solved states" in ran.stdout
     assert "there may be one" in ran.stdout
     assert "can't be set" not in ran.stdout
+    assert "Add a lockable hand valve" not in ran.stdout  # it has them; they weren't shut yet
     why = CliRunner().invoke(main, ["steps", "--why", "RV1", str(four_sections)])
     assert why.exit_code == 3
     assert f"not found within the limit of {FEW} solved states" in why.stdout
