@@ -74,7 +74,7 @@ FOUND = {
     "never_exceed_bar",
     "accuracy_ratio",
 }
-NOT_IN_USE = {"adjuster", "answer", "by_law"}
+NOT_IN_USE = {"adjuster", "answer", "by_law", "guards"}
 NOT_FOUND = {"adjuster", "answer", "condition", "nearest"}
 READING = {
     "adjuster",
