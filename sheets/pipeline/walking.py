@@ -8,7 +8,7 @@ from pathlib import Path
 
 from sheets.machine.answering import Answers, answered
 from sheets.machine.files import held, move_into_place, walkdown_file
-from sheets.machine.walkdown import walkdown_text
+from sheets.machine.walkdown import Walkdown, walkdown_text
 from sheets.machine.walking import (
     EntryState,
     Place,
@@ -54,27 +54,33 @@ def write_walkdown(machine_file: Path, described: Described, answers: Answers) -
 
     Raises InputError for unknown entries, wrong dates, and what can't be accepted, and writes nothing.
     """
-    by, on = answers.signed(dated=described.machine.dated)
     found = _targets(described)
+    _with_answers(machine_file, described, answers, found)  # what is refused leaves no lock beside the file
     with held(walkdown_file(machine_file)):  # another's answer between reading and writing would be lost
-        beside = walkdown_beside(machine_file, described.machine, answers.today)
-        now = replace(described, walkdown=beside.walkdown if beside else None)
-        computed_from = _computing_digest(now)
-        changed = with_answers(
-            now.walkdown,
-            now.machine,
-            answered(answers, now.walkdown, _entry_digests(now), by=by, on=on),
-            {
-                id_: accept(now.machine, found, id_, by=by, on=on, computed_from=computed_from)
-                for id_ in answers.accept
-            },
-        )
+        changed = _with_answers(machine_file, described, answers, found)
         move_into_place(
             walkdown_file(machine_file),
             walkdown_text(changed).encode(),
             fix="Look whether you may write into the folder of the machine file.",
         )
-    return walked(replace(now, walkdown=changed), found)
+    return walked(replace(described, walkdown=changed), found)
+
+
+def _with_answers(machine_file: Path, described: Described, answers: Answers, found: Targets) -> Walkdown:
+    """The walk-down as it stands beside the machine file now, with these answers in it. Raises InputError."""
+    by, on = answers.signed(dated=described.machine.dated)
+    beside = walkdown_beside(machine_file, described.machine, answers.today)
+    now = replace(described, walkdown=beside.walkdown if beside else None)
+    computed_from = _computing_digest(now)
+    return with_answers(
+        now.walkdown,
+        now.machine,
+        answered(answers, now.walkdown, _entry_digests(now), by=by, on=on),
+        {
+            id_: accept(now.machine, found, id_, by=by, on=on, computed_from=computed_from)
+            for id_ in answers.accept
+        },
+    )
 
 
 def walkdown_text_lines(described: Described, state: WalkdownState) -> Iterator[str]:
