@@ -1,4 +1,4 @@
-"""Commands of what an auditor asks: inspections, the whole bundle."""
+"""Commands of what an auditor asks: inspections, the bundle, what would come out otherwise today."""
 
 from __future__ import annotations
 
@@ -7,7 +7,7 @@ from typing import Literal
 
 import click
 
-from sheets.cli.common import ANCHORS, AS_JSON, REGISTER, day, leave, now, show, today, wrong
+from sheets.cli.common import ANCHORS, AS_JSON, REGISTER, day, leave, now, show, tell, today, wrong
 
 
 @click.command()
@@ -87,4 +87,24 @@ def audit(file: Path, register_at: str, anchors: tuple[str, ...], paper: Literal
     show(pipeline.audit_text(made))
 
 
-COMMANDS = (inspect, audit)
+@click.command()
+@click.argument("document", metavar="DOCUMENT", required=False)
+@REGISTER
+@AS_JSON
+def reprove(document: str | None, register_at: str, as_json: bool) -> None:
+    """Say which issued packs would come out otherwise today: makes each current one again, replaces nothing.
+
+    Exit status 1 if one differs or would be refused. DOCUMENT as for inspect; without it, all.
+
+    Example: jamnut reprove --register demonstration/register.db
+    """
+    from sheets import pipeline
+
+    made = pipeline.reprove(
+        register_at, given=document, telling=lambda one: tell(f"making {one} again by the present engine")
+    )
+    show(pipeline.reprove_json(made) if as_json else pipeline.reprove_text(made))
+    leave(made.status)
+
+
+COMMANDS = (inspect, audit, reprove)

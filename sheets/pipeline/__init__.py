@@ -111,6 +111,9 @@ if TYPE_CHECKING:
     from sheets.pipeline.registering import restore as restore
     from sheets.pipeline.registering import take_down as take_down
     from sheets.pipeline.registering import withdraw as withdraw
+    from sheets.pipeline.reproving import reprove as reprove
+    from sheets.pipeline.reproving import reprove_json as reprove_json
+    from sheets.pipeline.reproving import reprove_text as reprove_text
     from sheets.pipeline.serving import serve as serve
     from sheets.pipeline.signing import reject as reject
     from sheets.pipeline.signing import sign as sign
@@ -218,6 +221,9 @@ _CONTENTS: Final[dict[str, str]] = {
     "deviations_text": "pipeline.asking",
     "used": "pipeline.asking",
     "used_text": "pipeline.asking",
+    "reprove": "pipeline.reproving",
+    "reprove_json": "pipeline.reproving",
+    "reprove_text": "pipeline.reproving",
     "inspect": "pipeline.inspecting",
     "inspected_text": "pipeline.inspecting",
     "inspections_json": "pipeline.inspecting",

@@ -53,14 +53,19 @@ def hold_reason(before: Revision | None, reason: str) -> None:
 
 
 def changes_since(kept: Kept, matter: Matter, content: bytes) -> tuple[str, ...]:
-    """One line for each change of targets, parts and steps; ``content`` is the new one's canonical form."""
+    """What is printed of a revision's changes; ``content`` is the new one's canonical form."""
     old = json.loads(kept.content)
-    lines = list(_targets(kept.rows, rows_of(matter)))
-    lines += _files(kept, matter)
-    lines += _steps(_orders(old), _orders(json.loads(content)))
+    lines = list(computed_changes(kept, matter, content))
     if old.get("engine") != str(ENGINE) and old.get("engine") != ENGINE:
         lines.append(f"computed by engine {ENGINE}, before by engine {old.get('engine')}")
     return tuple(lines) or ("wording or layout of the sheets only",)
+
+
+def computed_changes(kept: Kept, matter: Matter, content: bytes) -> Iterator[str]:
+    """One line for each change of targets, parts and steps; ``content`` as in `changes_since`."""
+    yield from _targets(kept.rows, rows_of(matter))
+    yield from _files(kept, matter)
+    yield from _steps(_orders(json.loads(kept.content)), _orders(json.loads(content)))
 
 
 def _targets(old: tuple[Row, ...], new: tuple[Row, ...]) -> Iterator[str]:
@@ -98,11 +103,11 @@ def _files(kept: Kept, matter: Matter) -> Iterator[str]:
         yield f"{change.section} {change_line(change).strip()}"
 
 
-Orders = dict[str, list[tuple[str, tuple[str, ...]]]]
+Orders = dict[str, list[tuple[str, str]]]
 
 
 def _orders(content: Mapping[str, Any]) -> Orders:
-    """Orders of a content with the light lines below them, by the title of their section."""
+    """Orders of a content with all that stands with them, by the title of their section."""
     found: Orders = {}
     for section in content["sections"]:
         if section["kind"] not in _ORDERS:
@@ -111,8 +116,13 @@ def _orders(content: Mapping[str, Any]) -> Orders:
         for block in section["blocks"]:
             steps = block.get("steps", ()) if block["is"] == "Steps" else block.get("rows", ())
             if block["is"] in ("Steps", "Act"):
-                found.setdefault(place, []).extend((one["order"], tuple(one["lines"])) for one in steps)
+                found.setdefault(place, []).extend((one["order"], _with_order(one)) for one in steps)
     return found
+
+
+def _with_order(step: Mapping[str, Any]) -> str:
+    """Lines, boxes, warnings and hold of a step: everything but its order and its number."""
+    return json.dumps({key: value for key, value in step.items() if key not in ("number", "order")})
 
 
 def _steps(old: Orders, new: Orders) -> Iterator[str]:
@@ -121,9 +131,9 @@ def _steps(old: Orders, new: Orders) -> Iterator[str]:
         orders = [[order for order, _ in side] for side in (was, now)]
         for tag, a, b, c, d in SequenceMatcher(None, orders[0], orders[1], autojunk=False).get_opcodes():
             if tag == "equal":
-                for (order, lines), (_, others) in zip(was[a:b], now[c:d], strict=True):
-                    if lines != others:
-                        yield f"step of '{place}': {order} Its lines changed."
+                for (order, one), (_, other) in zip(was[a:b], now[c:d], strict=True):
+                    if one != other:
+                        yield f"step of '{place}': {order} What stands with it changed."
                 continue
             if b - a == d - c:
                 for (order, _), (other, _) in zip(was[a:b], now[c:d], strict=True):
