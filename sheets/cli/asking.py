@@ -32,7 +32,7 @@ def current(key: str, register_at: str, anchors: tuple[str, ...]) -> None:
 def used(what: str, register_at: str, on: str) -> None:
     """Say which sheets were used on a day, by whom, with which digest. DOCUMENT as for inspect.
 
-    Example: jamnut used WI-0142 --on 2026-12-01 --register demonstration/register.db
+    Example: jamnut used WI-0147 --on 2026-12-01 --register demonstration/register.db
     """
     from sheets import pipeline
 
@@ -47,7 +47,7 @@ def used(what: str, register_at: str, on: str) -> None:
 def deviations(what: str | None, register_at: str, number: int | None, only_open: bool) -> None:
     """List deviations with who accepted or corrected each, when and how; exit status 1 while one is open.
 
-    Example: jamnut deviations WI-0142 --register demonstration/register.db
+    Example: jamnut deviations WI-0147 --register demonstration/register.db
     """
     from sheets import pipeline
 
@@ -56,4 +56,17 @@ def deviations(what: str | None, register_at: str, number: int | None, only_open
     leave(found.status)
 
 
-COMMANDS = (current, used, deviations)
+@click.command()
+@WHAT
+@REGISTER
+def zeros(what: str, register_at: str) -> None:
+    """Say where each zero is shown: by the current sheets, line by line, and every zero that was read.
+
+    Example: jamnut zeros WI-0147 --register demonstration/register.db
+    """
+    from sheets import pipeline
+
+    show(pipeline.zeros_text(pipeline.zeros(register_at, what)))
+
+
+COMMANDS = (current, used, deviations, zeros)

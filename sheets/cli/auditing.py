@@ -38,7 +38,7 @@ def inspect(
     DOCUMENT is a document number, a record id, or the tag of a machine.
 
     \b
-    Example: jamnut inspect WI-0142 --register demonstration/register.db \\
+    Example: jamnut inspect WI-0147 --register demonstration/register.db \\
         --inspector "Edda Fenn" --with "Ada Quarrow" --with "Bram Tolliver"
     """
     from sheets import pipeline

@@ -131,6 +131,8 @@ if TYPE_CHECKING:
     from sheets.pipeline.walking import walkdown_standing as walkdown_standing
     from sheets.pipeline.walking import walkdown_text_lines as walkdown_text_lines
     from sheets.pipeline.walking import write_walkdown as write_walkdown
+    from sheets.pipeline.zeroing import zeros as zeros
+    from sheets.pipeline.zeroing import zeros_text as zeros_text
     from sheets.register.saying import day_of as day_of
     from sheets.wording.as_json import Json as Json
     from sheets.wording.summary import Outcome as Outcome
@@ -219,6 +221,8 @@ _CONTENTS: Final[dict[str, str]] = {
     "current_text": "pipeline.asking",
     "deviations": "pipeline.asking",
     "deviations_text": "pipeline.asking",
+    "zeros": "pipeline.zeroing",
+    "zeros_text": "pipeline.zeroing",
     "used": "pipeline.asking",
     "used_text": "pipeline.asking",
     "reprove": "pipeline.reproving",

@@ -89,9 +89,9 @@ def test_people_as_data(run: Callable[..., object]) -> None:
         ("instruments", "BT-1", "--certificate", "C-1", "--due", "2027-01-01", "--by", "Edda Fenn"),
         ("instruments", "BT-1", "--certificate", "C-1", "--bad", "sticks"),
         ("instruments", "BT-1", "--bad", "sticks", "--by", "Edda Fenn"),
-        ("inspect", "WI-0142"),
+        ("inspect", "WI-0147"),
         ("inspect", "--inspector", "Edda Fenn"),
-        ("inspect", "WI-0142", "--with", "Ada Quarrow"),
+        ("inspect", "WI-0147", "--with", "Ada Quarrow"),
     ],
 )
 def test_what_is_left_out_or_unknown_is_wrong_input(
@@ -124,7 +124,7 @@ def issued(tmp_path: Path) -> str:
     with open_register(tmp_path / "demonstration" / "register.db") as register:
         held = reserve(
             register,
-            document="WI-0142",
+            document="WI-0147",
             machine="PU-07",
             by="Ada Quarrow",
             when=NOW,
@@ -150,7 +150,7 @@ def test_the_last_inspection_and_whether_it_was_independent(
 ) -> None:
     done = run("inspect", *REGISTER)
     assert done.status == 0
-    assert done.out.splitlines()[-1].split()[:5] == ["WI-0142", "PU-07", "1", "never", "2027-12-01"]
+    assert done.out.splitlines()[-1].split()[:5] == ["WI-0147", "PU-07", "1", "never", "2027-12-01"]
     assert run("inspect", *REGISTER, "--on", "2027-12-02").status == 1
     assert "OVERDUE by 1 day" in run("inspect", *REGISTER, "--on", "2027-12-02").out
 
@@ -162,7 +162,7 @@ def test_the_last_inspection_and_whether_it_was_independent(
     done = run(*example("inspect"), "--deviation", "tag of Q1 unreadable")
     assert done.err == ""
     assert done.out.splitlines() == [
-        "event 5: revision 1 of WI-0142 inspected",
+        "event 5: revision 1 of WI-0147 inspected",
         "open: 1 deviation, 6",
     ]
     shown = run("inspect", "PU-07", *REGISTER)
@@ -176,7 +176,7 @@ def test_the_last_inspection_and_whether_it_was_independent(
         used = WindowOpened(
             job=1, people=("Edda Fenn",), where="at the lever", minutes=5, by="Edda Fenn", on=NOW.date()
         )
-        told = {"machine": "PU-07", "document": "WI-0142", "record_id": issued}
+        told = {"machine": "PU-07", "document": "WI-0147", "record_id": issued}
         tell(writer, used, who="Ada Quarrow", when=NOW, **told)
     shown = run("inspect", issued, *REGISTER)
     assert shown.status == 1
@@ -207,10 +207,27 @@ def test_a_paper_in_hand(run: Callable[..., object], issued: str) -> None:
     assert issued in example("current")
     done = run(*example("current"))
     assert (done.status, done.err) == (0, "")
-    assert done.out.startswith("current: revision 1 of WI-0142, machine PU-07\n")
+    assert done.out.startswith("current: revision 1 of WI-0147, machine PU-07\n")
     assert run("current", "0000000000", *REGISTER).status == 3
     done = run(*example("used"))
     assert (done.status, done.err) == (0, "")
     assert done.out.splitlines()[1] == "nothing was told to be used that day"
     done = run(*example("deviations"))
     assert (done.status, done.out, done.err) == (0, "0 deviations\n", "")
+
+
+def test_what_nothing_was_kept_of_is_not_established(run: Callable[..., object], issued: str) -> None:
+    done = run(*example("reprove"))
+    assert (done.status, done.err) == (3, "")
+    assert f"record {issued}, engine 1: NOTHING WAS KEPT OF IT" in done.out
+    (pack,) = json.loads(run(*example("reprove"), "--json").out)["packs"]
+    assert (pack["reproof"], pack["content_now"]) == ("nothing was kept of it", None)
+    done = run(*example("zeros"))
+    assert (done.status, done.out) == (2, "")
+    assert "No revision of it is current with what its sheets say" in done.err
+
+
+def test_nothing_issued_is_nothing_to_make_again(run: Callable[..., object]) -> None:
+    done = run(*example("reprove"))
+    assert done.status == 0
+    assert done.out.endswith(": 0 current packs\n")

@@ -345,6 +345,7 @@ def test_a_bug_keeps_its_traceback_in_a_file(
         "audit": (tmp_path / "audit.pdf", *register),
         "current": ("0123456789", *register),
         "reprove": register,
+        "zeros": ("WI-0147", *register),
         "used": ("WI-0142", "--on", "2026-12-01", *register),
         "deviations": register,
         "serve": (tmp_path, *register),

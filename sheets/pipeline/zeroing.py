@@ -67,7 +67,7 @@ def _lockouts(content: Mapping[str, Any]) -> Iterator[Mapping[str, Any]]:
 
 
 def _lines(content: Mapping[str, Any]) -> Iterator[tuple[str, ...]]:
-    title = Sentences(content["language"], _TEXTS).say("lines_title")
+    title = Sentences(content["language"], _TEXTS).say("trapped_title")
     for section in _lockouts(content):
         for block in section["blocks"]:
             if block["is"] == "Table" and block["title"] == title:
@@ -91,6 +91,8 @@ def zeros_text(found: ZerosShown) -> Iterator[str]:
     yield "by the sheets:"
     if found.lines:
         yield from (f"    {line}" for line in columns(found.lines))
+    else:
+        yield "    no list of lines in a form that this version knows: look at the sheets"
     for sheet, order in found.verified:
         yield f"    {sheet}: {order}"
     yield f"read: {counted(len(found.read), 'zero')}"
