@@ -175,7 +175,8 @@ def open_window(writer: Writer, job: int, how: Telling, *, where: str, minutes: 
             Problem(where="powered window", what="It has no length.", fix="Give its minutes, at least 1.")
         )
     known = open_one(writer, job).opened.said.people
-    strangers = [name for name in how.people if not any(same_person(name, one) for one in known)]
+    # A job that a reading opened names nobody yet: the window itself names who takes part.
+    strangers = [name for name in how.people if known and not any(same_person(name, one) for one in known)]
     others = windows_open(writer, machine=revision.machine)
     if strangers or others:
         what = (

@@ -163,7 +163,7 @@ class PostgresDatabase(Database):
         state = getattr(error.orig, "sqlstate", None)
         if state is None and isinstance(error, OperationalError):
             # psycopg couldn't connect, or lost the server; the end of what it says tells why, no password
-            why = str(error.orig).strip().rsplit("\n", 1)[-1].rsplit("FATAL:  ", 1)[-1]
+            why = str(error.orig).split("\n", 1)[0].rsplit("failed: ", 1)[-1].removeprefix("FATAL:  ")
             what, fix = _SAYINGS["08"]
             return Problem(where=self.where, what=f"{what} {quoted(why)}", fix=fix)
         for begins, (what, fix) in _SAYINGS.items():

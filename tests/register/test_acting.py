@@ -15,6 +15,7 @@ from sheets.register.acts import PeopleTold, acts, locks_on, windows_open
 from sheets.register.copies import CopyHung, CopyTakenDown, copies
 from sheets.register.jobs import Ending
 from sheets.register.people import AuthorisationEnded, Authorised, Trained, person_on
+from sheets.register.readings import Phase
 from sheets.register.recording import tell_of
 from sheets.register.revisions import Revision
 from sheets.register.saying import tell
@@ -86,6 +87,13 @@ def test_a_powered_window_is_for_people_of_the_job_and_one_at_a_time(bench: Benc
     with bench.register.reading() as view:
         assert windows_open(view, machine="KP-2") == ()
     bench.do(end_job, bench.job, HOW, ending=Ending.DONE)
+
+
+def test_a_job_that_a_reading_opened_has_no_people_until_somebody_works_on_it(bench: Bench) -> None:
+    job = bench.take(Phase.FOUND, "180").opened
+    opened = bench.do(open_window, job, ADA, where="at the lever", minutes=10)
+    bench.do(close_window, opened, ADA)
+    bench.do(end_job, job, ADA, ending=Ending.DONE)
 
 
 def test_who_was_told_stands_with_the_other_acts_of_a_job(bench: Bench) -> None:
