@@ -6,7 +6,6 @@ It never runs as root, which PostgreSQL refuses: then it runs as the user postgr
 from __future__ import annotations
 
 import os
-import pwd
 import shutil
 import signal
 import socket
@@ -33,8 +32,16 @@ def user() -> str | None:
     """The user to run it as; None for oneself."""
     if os.geteuid() != 0:
         return None
+    import pwd  # only where there are such users
+
     known = {one.pw_name for one in pwd.getpwall()}
     return "postgres" if "postgres" in known else "nobody"
+
+
+def _group_of(name: str) -> int:
+    import pwd
+
+    return pwd.getpwnam(name).pw_gid
 
 
 @dataclass(frozen=True)
@@ -86,7 +93,7 @@ def running() -> Iterator[Server]:
     who = user()
     if who is not None:
         shutil.chown(folder, who)
-    as_user = {"user": who, "group": pwd.getpwnam(who).pw_gid} if who else {}
+    as_user = {"user": who, "group": _group_of(who)} if who else {}
     data = folder / "data"
     quiet = {"stdout": subprocess.PIPE, "stderr": subprocess.STDOUT, "cwd": folder, "extra_groups": []}
     if who is None:
