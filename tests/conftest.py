@@ -11,6 +11,7 @@ import pytest
 
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline import Described, check, steps
+from sheets.procedure.task import Task, TaskKind
 
 ROOT = Path(__file__).resolve().parent.parent
 SAMPLE_FOLDER = ROOT / "sample_machines"
@@ -94,3 +95,48 @@ def postgres() -> Iterator[postgres_server.Server]:
         except LookupError as missing:
             pytest.skip(str(missing))
         yield server
+
+
+Replacements = tuple[tuple[str, str], ...]
+
+
+@pytest.fixture(scope="session")
+def without_hand_valve() -> Replacements:
+    """Makes the pusher's only hand valve after RV1 an open throttle."""
+    head = (
+        "    name: pressure line valve\n    designation: 1-H1.4\n"
+        "    where: after the pump manifold, beyond RV1 and TP1\n    rating: 315 bar\n"
+    )
+    valve = f"  HV2:\n    kind: hand valve\n{head}    rest: open\n    lockable: yes\n"
+    return ((valve, f"  HV2:\n    kind: orifice\n{head}"),)
+
+
+@pytest.fixture(scope="session")
+def leave() -> Callable[..., Replacements]:
+    """Gives leave to hold the pusher's carriage at its stop."""
+
+    def text(
+        stop: str = "extended", *, weight: str = "    weight: 0 kN\n", guard: str = "the chain is closed"
+    ) -> Replacements:
+        moves = "    moves: pusher carriage\n"
+        given = (
+            "    may run to stop:\n"
+            f"      stop: {stop}\n"
+            "      given by: drawing 3, the end cap takes the full force\n"
+            f"      guarded by: {guard}\n"
+            "      stand at: pusher platform, behind the rail\n"
+            "      before service: its operator brings it back\n"
+        )
+        return ((moves, moves + weight + given),)
+
+    return text
+
+
+@pytest.fixture(scope="session")
+def pusher_at_its_stop(
+    changed: Callable[..., Described], without_hand_valve: Replacements, leave: Callable[..., Replacements]
+) -> Callable[[TaskKind], Matter]:
+    """The pusher without that hand valve, set with its carriage held at its stop; by task."""
+    return lru_cache(
+        lambda kind: steps(changed("kiln_pusher", *without_hand_valve, *leave()), Task(kind=kind))
+    )

@@ -10,7 +10,8 @@ from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from typing import Literal
 
-Travel = Literal["between", "near stop", "far stop"]
+Stop = Literal["near stop", "far stop"]
+Travel = Literal["between"] | Stop
 """Where an actuator stands. Near stop: retracted; far stop: extended. Motors are always between."""
 
 
@@ -46,6 +47,18 @@ class PlantState:
     def unloaded(self) -> PlantState:
         """The same state without the work loads: nothing but weights and oil acts on the actuators."""
         return replace(self, loaded=False)
+
+    def standing(self, actuator: str, travel: Travel) -> PlantState:
+        """The same state with one actuator elsewhere on its way."""
+        return replace(self, travel={**self.travel, actuator: travel})
+
+
+@dataclass(frozen=True, kw_only=True)
+class AtStop:
+    """A cylinder that stands at one of its stops, pressed against it."""
+
+    actuator: str
+    stop: Stop
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 from dataclasses import dataclass, field, replace
 from enum import Enum
 from typing import Final
@@ -40,14 +40,17 @@ class StepOutcome:
 
 
 def take_step(
-    circuit: Circuit, state: PlantState, action: PlantAction | None, *, to_stops: bool = True
+    circuit: Circuit, state: PlantState, action: PlantAction | None, *, runs: Collection[str] | None = None
 ) -> StepOutcome:
     """Give what follows from an action, down to where things stand; see ``take_steps``."""
-    return take_steps(circuit, [(state, action)], to_stops=to_stops)[0]
+    return take_steps(circuit, [(state, action)], runs=runs)[0]
 
 
 def take_steps(
-    circuit: Circuit, steps: Sequence[tuple[PlantState, PlantAction | None]], *, to_stops: bool = True
+    circuit: Circuit,
+    steps: Sequence[tuple[PlantState, PlantAction | None]],
+    *,
+    runs: Collection[str] | None = None,
 ) -> tuple[StepOutcome, ...]:
     """Give what follows from actions, each on a plant of its own, solved together for speed.
 
@@ -57,8 +60,10 @@ def take_steps(
         The circuit of all the plants.
     steps : sequence of (PlantState, PlantAction or None)
         The plant before and what is done; None settles the state as it is.
-    to_stops : truth
-        Whether a moving cylinder runs to its stop. Without it the first pass is the last.
+    runs : identifiers
+        Cylinders that run to their stops where they move; all of them, if left out. Those that are named are
+        taken to stand anywhere at first, for nobody knows where a cylinder stands before it runs. With none
+        named the first pass is the last.
 
     Returns
     -------
@@ -68,16 +73,20 @@ def take_steps(
 
     Valid for steady states between events. Source: the solver's.
     """
-    runs = [
-        _Run(circuit=circuit, now=state if action is None else act(state, action)) for state, action in steps
-    ]
-    going = runs
+    may_run = frozenset(circuit.actuators.ids if runs is None else runs)
+    plants = []
+    for state, action in steps:
+        now = state if action is None else act(state, action)
+        for actuator in runs or ():
+            now = now.standing(actuator, "between")
+        plants.append(_Run(circuit=circuit, may_run=may_run, now=now))
+    going = plants
     while going:
-        batch = solve(circuit, [run.now for run in going])
-        for index, run in enumerate(going):
-            run.settle(batch.one(index), to_stops=to_stops)
-        going = [run for run in going if run.outcome is None]
-    return tuple(run.result() for run in runs)
+        batch = solve(circuit, [plant.now for plant in going])
+        for index, plant in enumerate(going):
+            plant.settle(batch.one(index))
+        going = [plant for plant in going if plant.outcome is None]
+    return tuple(plant.result() for plant in plants)
 
 
 @dataclass
@@ -85,13 +94,14 @@ class _Run:
     """One plant on its way to where it stands."""
 
     circuit: Circuit
+    may_run: frozenset[str]
     now: PlantState
     passes: list[Solution] = field(default_factory=list)
     moved: set[str] = field(default_factory=set)
     seen: set[tuple[Travel, ...]] = field(default_factory=set)
     outcome: Outcome | None = None
 
-    def settle(self, solution: Solution, *, to_stops: bool) -> None:
+    def settle(self, solution: Solution) -> None:
         """Take in the next pass: carry its pressures, run the first moving cylinder to its stop."""
         self.seen.add(_stops(self.circuit, self.now))
         self.passes.append(solution)
@@ -100,12 +110,12 @@ class _Run:
             return
         self.moved |= solution.moving
         self.now = replace(self.now, pressures_bar=solution.pressures_bar)
-        runs = _first_to_a_stop(self.circuit, solution)
-        if runs is None or not to_stops:
+        runs = _first_to_a_stop(self.circuit, solution, self.may_run)
+        if runs is None:
             self.outcome = Outcome.MOVING if solution.moving else Outcome.STILL
             return
         actuator, stop = runs
-        self.now = replace(self.now, travel={**self.now.travel, actuator: stop})
+        self.now = self.now.standing(actuator, stop)
         if _stops(self.circuit, self.now) in self.seen:
             self.outcome = Outcome.CYCLING
 
@@ -124,9 +134,11 @@ def _stops(circuit: Circuit, state: PlantState) -> tuple[Travel, ...]:
     return tuple(state.travel.get(actuator, "between") for actuator in circuit.actuators.ids)
 
 
-def _first_to_a_stop(circuit: Circuit, solution: Solution) -> tuple[str, Travel] | None:
-    """The first moving cylinder and the stop that it runs to."""
+def _first_to_a_stop(
+    circuit: Circuit, solution: Solution, may_run: frozenset[str]
+) -> tuple[str, Travel] | None:
+    """The first moving cylinder that may run, and the stop that it runs to."""
     for actuator, stops in zip(circuit.actuators.ids, circuit.actuators.has_stops, strict=True):
-        if stops and actuator in solution.moving:
+        if stops and actuator in may_run & solution.moving:
             return actuator, "far stop" if solution.speeds[actuator] > 0.0 else "near stop"
     return None

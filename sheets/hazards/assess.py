@@ -12,7 +12,7 @@ from typing import Literal
 
 from sheets.amounts import Amount, bar, kw
 from sheets.circuit.model import Circuit
-from sheets.circuit.plant import MoveValve
+from sheets.circuit.plant import AtStop, MoveValve
 from sheets.machine.model import Machine
 from sheets.machine.parts import Cylinder, HydraulicMotor
 from sheets.machine.site import Policies
@@ -39,6 +39,7 @@ class HazardKind(Enum):
     SETTLING = "settling"
     START = "start"
     MOVEMENT = "movement"
+    RUN = "run"
     INJECTION = "injection"
     HOT_OIL = "hot_oil"
 
@@ -73,6 +74,7 @@ def assess(
 ) -> dict[tuple[int, int], tuple[Hazard, ...]]:
     """Hazards by stage and step number, both from 0; each kind once a stage, at its first step.
 
+    What a step itself sets in motion is warned of at every such step.
     ``shut_in_bar``: highest pressure that may come to each node, in bar; None where that isn't known.
     """
     states = procedure.search.found()
@@ -91,7 +93,7 @@ def assess(
             new = [hazard for hazard in _of_step(facts, stage, step, hot) if hazard.kind not in warned]
             if new:
                 found[at, place] = tuple(new)
-                warned.update(hazard.kind for hazard in new)
+                warned.update(hazard.kind for hazard in new if hazard.kind is not HazardKind.RUN)
     return found
 
 
@@ -130,6 +132,8 @@ def _of_step(facts: _Facts, stage: Stage, step: Step, heat_kw: float) -> tuple[H
     if not stage.powered or step.trace is None or not step.trace.established:
         return ()
     hazards: list[Hazard] = []
+    if step.runs is not None:
+        hazards.append(_run(machine, step, step.runs))
     if step.kind in (StepKind.HOLD_VALVE, StepKind.CLOSE_GRADUALLY):
         hazards.extend(_movement(machine, facts.states, stage, step))
     if step.kind in _PRESSURISING:
@@ -169,8 +173,29 @@ def _heat(facts: _Facts, heat_kw: float) -> Hazard:
 
 
 _PRESSURISING = frozenset(
-    {StepKind.HOLD_VALVE, StepKind.CLOSE_GRADUALLY, StepKind.READ, StepKind.COME_UP, StepKind.TURN_BELOW}
+    {
+        StepKind.HOLD_VALVE,
+        StepKind.RUN_TO_STOP,
+        StepKind.HOLD_RUNNING,
+        StepKind.RAISE_TO_STOP,
+        StepKind.CLOSE_GRADUALLY,
+        StepKind.READ,
+        StepKind.COME_UP,
+        StepKind.TURN_BELOW,
+    }
 )
+
+
+def _run(machine: Machine, step: Step, runs: AtStop) -> Hazard:
+    """The movement that a step names: what runs, how fast at most, and what keeps people away from it."""
+    part = machine.parts[runs.actuator]
+    leave = part.may_run_to_stop if isinstance(part, Cylinder) else None
+    data: dict[str, Amount | str] = {
+        "moves": _moves(machine, runs.actuator),
+        "speed": step.data["speed"],
+        "guard": leave.guarded_by if leave is not None else "",
+    }
+    return Hazard(kind=HazardKind.RUN, signal="DANGER", data=data)
 
 
 def _moves(machine: Machine, actuator: str) -> str:

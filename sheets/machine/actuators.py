@@ -7,6 +7,7 @@ from typing import ClassVar, Literal
 
 from sheets.machine.fields import (
     Cm3,
+    Entry,
     Kilonewton,
     Lpm,
     Millimetre,
@@ -14,11 +15,27 @@ from sheets.machine.fields import (
     PositiveKilonewton,
     PositiveNewtonMetre,
     Ratio,
+    SaidText,
     Text,
     YesNo,
 )
 from sheets.machine.flaws import Flaw
 from sheets.machine.part_base import RatedPart
+
+
+class StopRun(Entry):
+    """Leave to run a cylinder to one of its stops, and to hold it there, while an adjuster is set."""
+
+    stop: Literal["extended", "retracted"]
+    """At which of its stops it may be held."""
+    given_by: SaidText
+    """Who says that this stop takes the full force: the maker's drawing, the site."""
+    guarded_by: SaidText
+    """What keeps people out of its reach while it runs."""
+    stand_at: SaidText
+    """Where the person stands who holds the lever."""
+    before_service: SaidText
+    """What is done with it, from that stop, before the machine works again."""
 
 
 class Cylinder(RatedPart):
@@ -46,9 +63,19 @@ class Cylinder(RatedPart):
     """Highest force, either way, that the structure it works on stands."""
     moves: Text = "cylinder rod"
     """What people see move."""
+    may_run_to_stop: StopRun | None = None
+    """Leave to run it to a stop for a setting. Left out, no setting moves it."""
 
     def contradictions(self) -> Iterator[Flaw]:
         yield from super().contradictions()
+        if self.may_run_to_stop is not None and (
+            self.weight_kn > 0.0 or "weight_kn" not in self.model_fields_set
+        ):
+            yield Flaw(
+                at=("may run to stop",),
+                what="A cylinder runs to its stop for a setting only where nothing drives it by itself.",
+                fix="If that is so, write weight: 0 kN. Else leave may run to stop out.",
+            )
         if self.rod_mm >= self.bore_mm:
             yield Flaw(
                 at=("rod",),

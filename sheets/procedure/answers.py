@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from sheets.amounts import Finding
 from sheets.circuit.plant import Adjust
 from sheets.circuit.verdict import Verdict
+from sheets.procedure.at_stop import Approach
 from sheets.procedure.changes import Change
 from sheets.procedure.conditions import Failure
 from sheets.procedure.gauges import GaugeChoice
@@ -40,6 +41,8 @@ class TestState:
     near_misses: tuple[NearMiss, ...]
     """Cheaper states that failed, the nearest first."""
     findings: tuple[Finding, ...]
+    approach: Approach | None = None
+    """How a cylinder gets to the stop at which this state holds it, where it does."""
 
     @property
     def raised(self) -> tuple[str, ...]:

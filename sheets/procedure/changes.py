@@ -5,17 +5,17 @@ Adjusters differ by their laws alone here: no kind of part or adjuster is named.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from heapq import heappop, heappush
 
 from sheets.circuit.model import Circuit
-from sheets.circuit.plant import Adjust, MoveValve, PlantState, act
+from sheets.circuit.plant import Adjust, AtStop, MoveValve, PlantState, Stop, act
 from sheets.machine.model import Machine
-from sheets.machine.parts import HandValve
+from sheets.machine.parts import Cylinder, HandValve
 from sheets.machine.screws import screws_of
 
-Change = MoveValve | Adjust
+Change = MoveValve | Adjust | AtStop
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -32,16 +32,22 @@ LEVER_COST = 3.0
 ADJUSTER_COST = 4.0
 SOLENOID_COST = 6.0
 OPENED_COST = 8.0
+RUN_COST = 9.0
 """Policy, by reach and exposure: a hand valve stays where it is put, a lever must be held, a screw must be
 brought back, a forced signal puts a person at a live panel, a way that is shut in service lets oil where none
-is meant to go."""
+is meant to go, a cylinder that runs to its stop moves beside people, on top of the lever that is held."""
+
+STOPS: Mapping[str, Stop] = {"extended": "far stop", "retracted": "near stop"}
+"""Stops of a cylinder as the file calls them."""
+WAYS: Mapping[Stop, str] = {stop: way for way, stop in STOPS.items()}
 
 
 def possible_options(machine: Machine, circuit: Circuit) -> tuple[Option, ...]:
     """Every single change, cheapest first, ties in the order of the file.
 
     An adjuster only moves out of the way, to the end of its range, never to a value that flatters another.
-    One that may not be touched, or whose direction nobody knows, stays.
+    One that may not be touched, or whose direction nobody knows, stays. A cylinder stands at a stop only
+    where the file gives leave, one at a time.
     """
     options: list[Option] = []
     for id_, part in machine.parts.items():
@@ -56,6 +62,9 @@ def possible_options(machine: Machine, circuit: Circuit) -> tuple[Option, ...]:
             Option(change=MoveValve(valve=id_, position=position), touches=id_, cost=cost)
             for position in positions[1:]
         )
+        if isinstance(part, Cylinder) and part.may_run_to_stop is not None:
+            at_stop = AtStop(actuator=id_, stop=STOPS[part.may_run_to_stop.stop])
+            options.append(Option(change=at_stop, touches="a cylinder at its stop", cost=RUN_COST))
     screws = screws_of(machine)
     options.extend(
         Option(
@@ -104,7 +113,10 @@ def count_candidates(options: tuple[Option, ...]) -> int:
 
 
 def apply(state: PlantState, changes: tuple[Change, ...]) -> PlantState:
-    """The state with all changes made."""
+    """The state with all changes made. That a cylinder gets to its stop is another question."""
     for change in changes:
-        state = act(state, change)
+        if isinstance(change, AtStop):
+            state = state.standing(change.actuator, change.stop)
+        else:
+            state = act(state, change)
     return state

@@ -34,6 +34,7 @@ class Condition(Enum):
     ALONE = "alone"
     AT_FLOW = "at_flow"
     THROUGH = "through"
+    REACHES = "reaches"
     WITHIN = "within"
     BARRED = "barred"
     POWERED = "powered"

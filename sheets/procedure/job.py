@@ -9,11 +9,13 @@ from sheets.circuit.plant import Adjust, MoveValve, PlantState
 from sheets.circuit.solver import solve, solve_one
 from sheets.machine.parts import HandValve
 from sheets.procedure.answers import TestState
+from sheets.procedure.at_stop import find_approach
 from sheets.procedure.case import Case
 from sheets.procedure.changes import apply
-from sheets.procedure.conditions import first_failure, over_rating, unestablished
+from sheets.procedure.conditions import Failure, first_failure, over_rating, unestablished
 from sheets.procedure.faulted import moved_by_fault
 from sheets.procedure.task import Task, TaskKind
+from sheets.procedure.work import ALL, Work
 
 _STUCK_FACTOR = 5.0
 """An adjuster stuck shut, as a multiple of the end of its range: it limits nothing."""
@@ -39,7 +41,8 @@ class Job:
     gauges: tuple[tuple[str, str], ...]
     """Gauge and the test point at which it is fitted for the job; two never share one."""
     locked: bool
-    """The job has lockouts: something is fitted, or the site wants them always."""
+    """The job has lockouts: something is fitted, a cylinder is left pressed against its stop, or the site
+    wants them always."""
 
     @property
     def limits_unknown(self) -> tuple[str, ...]:
@@ -69,7 +72,11 @@ def prepare(case: Case, task: Task, found: dict[str, TestState], order: tuple[st
         unknown=unknown,
         line_up=_line_up(case, found, order),
         gauges=_gauges(case, found, order),
-        locked=bool(_gauges(case, found, order)) or case.policies.lockout_always,
+        locked=(
+            bool(_gauges(case, found, order))
+            or any(found[id_].approach is not None for id_ in order)
+            or case.policies.lockout_always
+        ),
     )
 
 
@@ -126,12 +133,14 @@ def _still_serves(case: Case, line_up: tuple[MoveValve, ...], state: TestState) 
     """Whether an adjuster's state still shows it with the valves of the others left in place."""
     site = case.site(state.adjuster)
     standing = apply(apply(case.base, line_up), state.changes)
+    changes = (*line_up, *state.changes)
     solution = solve_one(case.circuit, standing, effects=True)
     target_bar = case.targets.settings[state.adjuster].target_bar
     return (
         first_failure(solution, site, target_bar, case.trusted_ports) is None
         and abs(solution.pressures_bar[site.controlled_node] - state.reading_bar) < SAME_READING_BAR
         and moved_by_fault(case, standing) is None
+        and not isinstance(find_approach(case, changes, state.adjuster, Work(ALL)), Failure)
     )
 
 

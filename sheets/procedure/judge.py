@@ -12,6 +12,7 @@ from sheets.circuit.reach import weakest_loaded
 from sheets.circuit.solution import Solution
 from sheets.machine.parts import HandValve
 from sheets.procedure.answers import TestState
+from sheets.procedure.at_stop import Approach, find_approach
 from sheets.procedure.case import Case
 from sheets.procedure.changes import Candidate, Change, apply
 from sheets.procedure.conditions import (
@@ -55,6 +56,7 @@ class Serving:
     target: Solution
     gauge: GaugeChoice
     load: tuple[Finding, ...]
+    approach: Approach | None
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -146,9 +148,12 @@ def _judge(
     faults = moved_by_faults(case, [(solved[index].state, solved[index].target) for index in left], work)
     for index, failure in zip(left, faults, strict=True):
         one = solved[index]
-        load = failure or drive_findings(
-            case.machine, at_target=one.target, at_top=one.top, adjuster=adjuster
-        )
+        changes = one.finalist.candidate.changes
+        approach = failure or find_approach(case, changes, adjuster, work)
+        if isinstance(approach, Failure):
+            outcomes[index] = approach
+            continue
+        load = drive_findings(case.machine, at_target=one.target, at_top=one.top, adjuster=adjuster)
         if isinstance(load, Failure):
             outcomes[index] = load
             continue
@@ -158,7 +163,13 @@ def _judge(
         outcomes[index] = (
             gauge
             if isinstance(gauge, Failure)
-            else Serving(candidate=one.finalist.candidate, target=one.target, gauge=gauge, load=load)
+            else Serving(
+                candidate=one.finalist.candidate,
+                target=one.target,
+                gauge=gauge,
+                load=load,
+                approach=approach,
+            )
         )
     return [outcomes[index] for index in range(len(solved))]
 
@@ -238,6 +249,7 @@ def answer_of(case: Case, serving: Serving, adjuster: str, work: Work) -> TestSt
         reasons=reasons_of(case, serving.candidate, adjuster, work),
         near_misses=(),
         findings=(*serving.load, *serving.gauge.findings),
+        approach=serving.approach,
     )
 
 

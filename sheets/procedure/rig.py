@@ -8,14 +8,14 @@ from collections.abc import Mapping
 from sheets.amounts import Amount, Finding, Severity
 from sheets.circuit.drive_load import drive_loads, hydraulic_power
 from sheets.circuit.model import Circuit
-from sheets.circuit.plant import PlantAction, PlantState
+from sheets.circuit.plant import AtStop, PlantAction, PlantState
 from sheets.circuit.solution import Solution
 from sheets.circuit.solver import solve_one
 from sheets.circuit.step import Outcome, take_step
 from sheets.machine.model import Machine
 from sheets.procedure.conditions import OWN_SHARE, Failure, over_rating
 from sheets.procedure.gauges import GaugeChoice, graduation_bar
-from sheets.procedure.steps import Band, Reading, Step, StepKind, Trace
+from sheets.procedure.steps import MUST_REACH, Band, Reading, Step, StepKind, Trace
 
 AS_FOUND_SHARE = 0.10
 """Policy: a setting that is out by more than this has a cause to be found before it is adjusted."""
@@ -69,14 +69,17 @@ class Rig:
         reason: Failure | None = None,
         window_of: str = "",
         data: Mapping[str, Amount | str] | None = None,
+        runs: AtStop | None = None,
     ) -> None:
         """A step that acts on the plant; its readings are those after the last action.
 
         ``window_of`` names the adjuster whose window the reading must lie in; without it the reading is a
-        band around what is expected.
+        band around what is expected. ``runs`` is the one movement that the step names.
         """
         for action in actions:
-            self._act(kind, subject, action)
+            self._act(kind, subject, action, runs)
+        if runs is not None and kind in MUST_REACH and self.state.travel[runs.actuator] != runs.stop:
+            self._find("step_stops_short", Severity.REFUSED, runs.actuator, {"step": kind.value})
         solution = self.look()
         self.steps.append(
             Step(
@@ -85,19 +88,24 @@ class Rig:
                 data=data or {},
                 reason=reason,
                 actions=actions,
+                runs=runs,
                 reading=self._reading(solution, window_of),
                 bands=self._bands(solution),
                 trace=self._trace(solution),
             )
         )
 
-    def _act(self, kind: StepKind, subject: str, action: PlantAction) -> None:
+    def _act(self, kind: StepKind, subject: str, action: PlantAction, runs: AtStop | None) -> None:
         before = self.state
-        result = take_step(self.circuit, before, action, to_stops=False)
+        may_run = frozenset() if runs is None else frozenset({runs.actuator})
+        result = take_step(self.circuit, before, action, runs=may_run)
         self.state = result.state
+        strays = result.moved - may_run
+        if runs is not None and self.state.travel[runs.actuator] not in ("between", runs.stop):
+            strays |= may_run
         if result.outcome is Outcome.NOT_ESTABLISHED:
             self._find("step_not_established", Severity.NOT_ESTABLISHED, subject, {"step": kind.value})
-        elif result.moved and self.state.running:
+        elif (strays or result.outcome is Outcome.CYCLING) and self.state.running:
             self._find("step_moves", Severity.REFUSED, subject, {"step": kind.value})
         for solution in result.passes:
             over = over_rating(solution) if solution.established else None

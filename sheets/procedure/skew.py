@@ -25,6 +25,7 @@ from sheets.machine.parts import (
 )
 from sheets.machine.site import Policies
 from sheets.procedure.answers import NotFound, NotInUse, TestState
+from sheets.procedure.at_stop import held_at
 from sheets.procedure.case import Case
 from sheets.procedure.order import derive_order
 from sheets.procedure.search import WORK_LIMIT, find_test_states
@@ -169,4 +170,4 @@ def _shape(answer: TestState | NotInUse | NotFound) -> object:
     moves = frozenset(
         (change.valve, change.position) for change in answer.changes if isinstance(change, MoveValve)
     )
-    return moves, frozenset(answer.raised)
+    return moves, frozenset(answer.raised), held_at(answer.changes)

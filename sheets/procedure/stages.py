@@ -10,19 +10,21 @@ from dataclasses import replace
 from itertools import permutations
 
 from sheets.amounts import Amount, Finding, Severity, bar
-from sheets.circuit.plant import Adjust, MoveValve, PlantAction, PlantState, StartDrive, StopDrive
+from sheets.circuit.plant import Adjust, MoveValve, PlantState, StartDrive, StopDrive
 from sheets.circuit.solution import Solution
 from sheets.circuit.solver import solve, solve_one
 from sheets.energy.held import held_loads
 from sheets.energy.trapped import Trapped, find_trapped
 from sheets.machine.parts import HandValve
 from sheets.procedure.answers import TestState
+from sheets.procedure.changes import Change
 from sheets.procedure.conditions import Failure, moving, over_rating, starved, unestablished
 from sheets.procedure.faulted import without_load
 from sheets.procedure.gauges import error_bar
 from sheets.procedure.job import Job, shows
 from sheets.procedure.rig import Rig
 from sheets.procedure.steps import Stage, StageKind, StepKind
+from sheets.procedure.stop_steps import run_to_stop
 from sheets.procedure.task import TaskKind
 
 HEAT_KW = 1.0
@@ -283,10 +285,13 @@ def _stop(job: Job, rig: Rig) -> None:
 def _enter(job: Job, rig: Rig, state: TestState) -> None:
     """Brings the plant into an adjuster's state: hand valves in increments, then what must be held."""
     reasons = dict(state.reasons)
+    approach = state.approach
     open_moves = [
         change
         for change in state.changes
-        if isinstance(change, MoveValve) and rig.state.positions[change.valve] != change.position
+        if isinstance(change, MoveValve)
+        and rig.state.positions[change.valve] != change.position
+        and (approach is None or change != approach.lever)
     ]
     for change in _gentlest(job, rig, open_moves):
         by_hand = isinstance(job.case.machine.parts[change.valve], HandValve)
@@ -297,6 +302,13 @@ def _enter(job: Job, rig: Rig, state: TestState) -> None:
             reason=reasons.get(change),
             data={"position": change.position, **rig.turned(change.valve)},
         )
+    if approach is not None:
+        run_to_stop(rig, state, approach, _below(job, state.adjuster))
+
+
+def _below(job: Job, adjuster: str) -> float:
+    """Setting from which an adjuster comes up; bar."""
+    return max(job.case.site(adjuster).lowest_bar, BELOW_SHARE * job.case.targets.settings[adjuster].low_bar)
 
 
 def _gentlest(job: Job, rig: Rig, moves: list[MoveValve]) -> list[MoveValve]:
@@ -313,8 +325,9 @@ def _gentlest(job: Job, rig: Rig, moves: list[MoveValve]) -> list[MoveValve]:
 
 
 def _leave(job: Job, rig: Rig, state: TestState) -> None:
-    """Lets go of what was held, and opens what was closed under power."""
-    for change in reversed(state.changes):
+    """Lets go of what was held, and opens what was closed under power; a lever at a stop comes first."""
+    first = [state.approach.lever] if state.approach is not None else []
+    for change in (*first, *(one for one in reversed(state.changes) if one not in first)):
         if not isinstance(change, MoveValve) or change in job.line_up:
             continue
         rest = job.case.circuit.positions[change.valve][0]
@@ -356,7 +369,6 @@ def _hider(job: Job, adjuster: str) -> str:
 def _set(job: Job, rig: Rig, adjuster: str, *, first: bool) -> Stage:
     """One adjuster, in its state: others out of the way, come up from below, lock, read again."""
     state, setting = job.found[adjuster], job.case.targets.settings[adjuster]
-    site = job.case.site(adjuster)
     _choice(job, rig, adjuster)
     if first:
         _open_window(job, rig)
@@ -380,14 +392,13 @@ def _set(job: Job, rig: Rig, adjuster: str, *, first: bool) -> Stage:
     _enter(job, rig, state)
     if rig.state.settings_bar[adjuster] >= setting.target_bar:
         governor = rig.governor()
-        below_bar = max(site.lowest_bar, BELOW_SHARE * setting.low_bar)
         rig.do(
             StepKind.TURN_BELOW,
             adjuster,
-            Adjust(adjuster=adjuster, setting_bar=below_bar),
+            Adjust(adjuster=adjuster, setting_bar=_below(job, adjuster)),
             data=_held(job, rig, adjuster, governor),
         )
-    from_out = "yes" if adjuster in rig.backed_out else ""
+    from_out = "yes" if adjuster in rig.backed_out and state.approach is None else ""
     rig.backed_out.discard(adjuster)
     rig.unknown.discard(adjuster)
     rig.do(
@@ -414,9 +425,7 @@ def _held(job: Job, rig: Rig, adjuster: str, governor: str) -> dict[str, Amount 
     return {"held_by": governor, "ahead": bar(ahead_bar)}
 
 
-def _raise(
-    job: Job, rig: Rig, adjuster: str, to_raise: list[Adjust], reasons: dict[PlantAction, Failure]
-) -> None:
+def _raise(job: Job, rig: Rig, adjuster: str, to_raise: list[Adjust], reasons: dict[Change, Failure]) -> None:
     """With the drive off: the one that is set goes low first, then the others go out of its way.
 
     A screw whose direction nobody knows stays: the state was judged with it at its stop, too, and its
@@ -460,6 +469,9 @@ def _return(job: Job, rig: Rig) -> Stage:
         _stop(job, rig)
         _put_back(job, rig, list(job.case.circuit.positions))
     rig.say(StepKind.INSPECT)
+    runs = (job.found[adjuster].approach for adjuster in job.order)
+    for actuator in dict.fromkeys(run.at.actuator for run in runs if run is not None):
+        rig.say(StepKind.LOOK_WHERE, actuator)
     for valve, positions in job.case.circuit.positions.items():
         reason = _otherwise(job, valve, positions[0])
         if reason is not None:

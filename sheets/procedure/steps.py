@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 from enum import Enum
 
 from sheets.amounts import Amount, Finding
-from sheets.circuit.plant import PlantAction
+from sheets.circuit.plant import AtStop, PlantAction
 from sheets.circuit.verdict import Verdict
 from sheets.energy.trapped import Trapped
 from sheets.procedure.answers import Search
@@ -41,6 +41,10 @@ class StepKind(Enum):
     CLOSE_GRADUALLY = "close_gradually"
     OPEN_AGAIN = "open_again"
     HOLD_VALVE = "hold_valve"
+    GUARD_RUN = "guard_run"
+    RUN_TO_STOP = "run_to_stop"
+    HOLD_RUNNING = "hold_running"
+    RAISE_TO_STOP = "raise_to_stop"
     LET_GO = "let_go"
     READ = "read"
     READ_AGAIN = "read_again"
@@ -54,8 +58,13 @@ class StepKind(Enum):
     LOCK_NUT = "lock_nut"
     REMOVE_GAUGE = "remove_gauge"
     INSPECT = "inspect"
+    LOOK_WHERE = "look_where"
     UNBLOCK = "unblock"
     WATCH = "watch"
+
+
+MUST_REACH = frozenset({StepKind.RUN_TO_STOP, StepKind.RAISE_TO_STOP})
+"""Steps that end only when the cylinder that they run stands at its stop; short of it the work ends."""
 
 
 class StageKind(Enum):
@@ -124,6 +133,8 @@ class Step:
     """What fails if it is left out."""
     actions: tuple[PlantAction, ...] = ()
     """What it does to the plant, in order."""
+    runs: AtStop | None = None
+    """The one movement that it names: this cylinder runs to this stop, or stops short of it."""
     reading: Reading | None = None
     bands: tuple[Band, ...] = ()
     trace: Trace | None = None

@@ -3,15 +3,16 @@
 from __future__ import annotations
 
 import sys
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Collection, Sequence
 
 import numpy as np
 
 from sheets.circuit.faults import Fault, solve_under_faults
 from sheets.circuit.model import Circuit
-from sheets.circuit.plant import PlantState
+from sheets.circuit.plant import PlantAction, PlantState
 from sheets.circuit.solution import BatchSolution, Solution
 from sheets.circuit.solver import solve
+from sheets.circuit.step import StepOutcome, take_steps
 
 ALL = sys.maxsize
 """No limit: what is asked for is few."""
@@ -60,6 +61,18 @@ class Work:
         """``solve_under_faults`` of the circuit, counted."""
         self._count(len(asked))
         return solve_under_faults(circuit, asked)
+
+    def run(
+        self,
+        circuit: Circuit,
+        steps: Sequence[tuple[PlantState, PlantAction | None]],
+        *,
+        runs: Collection[str],
+    ) -> tuple[StepOutcome, ...]:
+        """``take_steps`` of the circuit, counted by its passes."""
+        outcomes = take_steps(circuit, steps, runs=runs)
+        self._count(sum(len(outcome.passes) for outcome in outcomes))
+        return outcomes
 
     def _count(self, states: int) -> None:
         self.done += states

@@ -9,12 +9,13 @@ from enum import Enum
 from sheets.amounts import Amount, bar, kw
 from sheets.circuit.drive_load import drive_loads
 from sheets.circuit.model import TANK, Circuit
+from sheets.circuit.plant import AtStop, Stop, Travel
 from sheets.circuit.solution import Solution
 from sheets.machine.model import Machine
-from sheets.machine.parts import ElectricMotor
+from sheets.machine.parts import Cylinder, ElectricMotor
 from sheets.machine.site import Policies
 from sheets.procedure.gauges import gauge_port
-from sheets.procedure.steps import Step, StepKind
+from sheets.procedure.steps import MUST_REACH, Step, StepKind
 
 _DUST_BAR = 1e-6
 
@@ -36,6 +37,7 @@ class Invariant(Enum):
     ON_TARGET = "run_off_target"
     AS_IN_SERVICE = "run_left_shifted"
     GAUGES_OFF = "run_gauge_left"
+    AT_STOP = "run_not_at_stop"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -68,6 +70,12 @@ class Moment:
     running: frozenset[str]
     moved: frozenset[str]
     """Actuators that moved on the way."""
+    travel: Mapping[str, Travel]
+    """Where each actuator stands now."""
+    guarded: str = ""
+    """Cylinder whose guard was looked at since a valve was last moved for anything else."""
+    held: AtStop | None = None
+    """Cylinder that is held at its stop, or on its way there, since a step ran it."""
 
 
 Check = Callable[[Moment], tuple[str, dict[str, Amount | str]] | None]
@@ -91,10 +99,38 @@ def within_rating(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
 
 
 def still(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
-    """Nothing moves with a drive on. A lever that is worked to relieve a line may let a cylinder settle."""
-    if not moment.running or not moment.moved:
+    """Nothing moves with a drive on but what the step itself names, the way that the machine file allows.
+
+    A lever that is worked to relieve a line may let a cylinder settle.
+    """
+    strays = moment.moved - _named(moment)
+    if not moment.running or not strays:
         return None
-    return min(moment.moved), {}
+    return min(strays), {}
+
+
+def _named(moment: Moment) -> frozenset[str]:
+    """The cylinder that a step runs to its stop: with the file's leave, its guard looked at, and that way."""
+    runs = moment.step.runs if moment.step is not None else None
+    if runs is None or moment.guarded != runs.actuator:
+        return frozenset()
+    part = moment.machine.parts[runs.actuator]
+    leave = part.may_run_to_stop if isinstance(part, Cylinder) else None
+    allowed: Stop | None = None
+    if leave is not None:
+        allowed = "far stop" if leave.stop == "extended" else "near stop"
+    right_way = moment.travel[runs.actuator] in ("between", allowed)
+    return frozenset({runs.actuator}) if allowed == runs.stop and right_way else frozenset()
+
+
+def at_stop(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
+    """While a cylinder is held against its stop nothing counts as read before it stands there."""
+    held, step = moment.held, moment.step
+    if held is None or step is None or moment.travel[held.actuator] == held.stop:
+        return None
+    if step.kind in MUST_REACH or (step.reading is not None and step.runs is None):
+        return held.actuator, {"step": step.kind.value}
+    return None
 
 
 def filled(moment: Moment) -> tuple[str, dict[str, Amount | str]] | None:
@@ -176,5 +212,6 @@ CHECKS: Mapping[Invariant, Check] = {
     Invariant.LOCKED: locked,
     Invariant.GAUGE_WITHIN: gauge_within,
     Invariant.GAUGE_FITTED: gauge_fitted,
+    Invariant.AT_STOP: at_stop,
 }
 """Held on the start state and after every step, once its pressures are established."""

@@ -10,14 +10,14 @@ from dataclasses import dataclass, replace
 
 from sheets.amounts import Finding, Severity, bar
 from sheets.circuit.model import Circuit
-from sheets.circuit.plant import PlantState
+from sheets.circuit.plant import AtStop, MoveValve, PlantState
 from sheets.circuit.solution import Solution
 from sheets.circuit.step import take_steps
 from sheets.circuit.verdict import Verdict
 from sheets.machine.model import Machine
 from sheets.machine.site import Policies
 from sheets.procedure.gauges import gauge_port
-from sheets.procedure.steps import Procedure, Stage, Step, StepKind
+from sheets.procedure.steps import MUST_REACH, Procedure, Stage, Step, StepKind
 from sheets.targets.settings import Targets
 from sheets.trial.invariants import CHECKS, Invariant, Moment, Violation, established
 
@@ -27,6 +27,8 @@ _JUDGED_KINDS = frozenset(
     {
         StepKind.START,
         StepKind.HOLD_VALVE,
+        StepKind.RUN_TO_STOP,
+        StepKind.HOLD_RUNNING,
         StepKind.CLOSE_GRADUALLY,
         StepKind.COME_UP,
         StepKind.LOCK_NUT,
@@ -34,6 +36,10 @@ _JUDGED_KINDS = frozenset(
     }
 )
 """Steps that end the work where the reading isn't what they print."""
+
+
+_ENDED_BY_STOPPING = frozenset({Invariant.DRIVE_CARRIES, Invariant.AT_STOP})
+"""What a step itself sees and ends: a load that a reading stops, a cylinder that stops short."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -148,10 +154,12 @@ class _Runner:
         self.machine, self.circuit, self.policies = machine, circuit, policies
         self.trusted_ports, self.starts = trusted_ports, starts
         standing = [_standing(circuit, start) for start in starts]
-        outcomes = take_steps(circuit, [(state, None) for state in standing], to_stops=False)
+        outcomes = take_steps(circuit, [(state, None) for state in standing], runs=())
         self.states = [outcome.state for outcome in outcomes]
         self.solutions = [outcome.solution for outcome in outcomes]
         self.fitted: dict[str, str] = {}
+        self.guarded = ""
+        self.held: AtStop | None = None
         self.traces: list[list[Traced]] = [[] for _ in starts]
         self.violations: list[list[Violation]] = [[] for _ in starts]
         self.stopped_at: list[tuple[int, int] | None] = [None] * len(starts)
@@ -175,8 +183,15 @@ class _Runner:
 
     def _step(self, stage: Stage, step: Step, at: int, place: int) -> None:
         moved: list[frozenset[str]] = [frozenset()] * len(self.starts)
+        may_run = () if step.runs is None else (step.runs.actuator,)
+        if step.runs is not None:
+            self.held = step.runs
+        elif any(isinstance(action, MoveValve) for action in step.actions):
+            self.guarded, self.held = "", None
+        if step.kind is StepKind.GUARD_RUN:
+            self.guarded = step.subject
         for action in step.actions:
-            outcomes = take_steps(self.circuit, [(state, action) for state in self.states], to_stops=False)
+            outcomes = take_steps(self.circuit, [(state, action) for state in self.states], runs=may_run)
             self.states = [outcome.state for outcome in outcomes]
             self.solutions = [outcome.solution for outcome in outcomes]
             moved = [before | outcome.moved for before, outcome in zip(moved, outcomes, strict=True)]
@@ -185,7 +200,9 @@ class _Runner:
         for index, start in enumerate(self.starts):
             if self.stopped_at[index] is not None:
                 continue
-            stops = not start.as_printed and self._tells_to_stop(step, self.solutions[index])
+            stops = not start.as_printed and (
+                self._tells_to_stop(step, self.solutions[index]) or self._stops_short(step, index)
+            )
             self._hold(index, step, moved[index], stage.powered, at, place, stopping=stops)
             if stops:
                 self.stopped_at[index] = (at, place)
@@ -203,6 +220,15 @@ class _Runner:
         outside = not reading.low_bar - READING_DUST_BAR <= seen_bar <= reading.high_bar + READING_DUST_BAR
         return (outside and step.kind in _JUDGED_KINDS) or seen_bar > reading.stop_above_bar
 
+    def _stops_short(self, step: Step, index: int) -> bool:
+        """Whether a cylinder that must reach its stop stands short of it: the step says to end the work."""
+        runs = step.runs
+        return (
+            runs is not None
+            and step.kind in MUST_REACH
+            and self.states[index].travel[runs.actuator] != runs.stop
+        )
+
     def _hold(
         self,
         index: int,
@@ -214,7 +240,7 @@ class _Runner:
         *,
         stopping: bool = False,
     ) -> None:
-        """Holds every invariant on one plant as it stands. A load that a reading stops is no overload."""
+        """Holds every invariant on one plant as it stands, but for what the step itself sees and ends."""
         solution = self.solutions[index]
         moment = Moment(
             machine=self.machine,
@@ -227,12 +253,15 @@ class _Runner:
             fitted=dict(self.fitted),
             running=self.states[index].running,
             moved=moved | solution.moving,
+            travel=self.states[index].travel,
+            guarded=self.guarded,
+            held=self.held,
         )
         self.traces[index].append(Traced(stage=at, step=place, solution=solution))
         checks = CHECKS if established(moment) is None else {Invariant.ESTABLISHED: established}
         for invariant, check in checks.items():
             broken = check(moment)
-            if broken is not None and not (stopping and invariant is Invariant.DRIVE_CARRIES):
+            if broken is not None and not (stopping and invariant in _ENDED_BY_STOPPING):
                 subject, data = broken
                 self.violations[index].append(
                     Violation(invariant=invariant, stage=at, step=place, subject=subject, data=data)

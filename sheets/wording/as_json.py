@@ -5,13 +5,13 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping
 
 from sheets.amounts import Amount, Derivation, Finding
-from sheets.circuit.plant import Adjust
+from sheets.circuit.plant import Adjust, AtStop
 from sheets.circuit.verdict import Verdict
 from sheets.errors import Problem
 from sheets.machine.model import Machine
 from sheets.machine.site import Site
 from sheets.procedure.answers import NotFound, NotInUse, TestState
-from sheets.procedure.changes import Change
+from sheets.procedure.changes import WAYS, Change
 from sheets.procedure.steps import Procedure, Reading
 from sheets.targets.settings import Targets
 from sheets.wording.findings import say_finding
@@ -185,6 +185,8 @@ def _answer(answer: TestState | NotInUse | NotFound) -> dict[str, Json]:
 def _change(change: Change) -> dict[str, Json]:
     if isinstance(change, Adjust):
         return {"adjuster": change.adjuster, "setting_bar": rounded(change.setting_bar)}
+    if isinstance(change, AtStop):
+        return {"actuator": change.actuator, "stop": WAYS[change.stop]}
     return {"valve": change.valve, "position": change.position}
 
 

@@ -8,7 +8,6 @@ from difflib import SequenceMatcher
 from typing import Final
 
 from sheets.amounts import Severity
-from sheets.circuit.plant import Adjust
 from sheets.errors import ExitStatus, gravest
 from sheets.machine.leaves import Leaf, leaves
 from sheets.machine.model import Machine, Units
@@ -19,8 +18,8 @@ from sheets.targets.settings import Setting, Targets
 from sheets.wording.as_json import FORMAT, Json
 from sheets.wording.findings import say_finding
 from sheets.wording.plates import plate_value
-from sheets.wording.sentences import Sentences
 from sheets.wording.steps import Speaker, SpokenStep
+from sheets.wording.why import say_changes
 
 _FILE_SECTIONS: Final = ("parts", "gauges", "nets", "energy")
 SECTIONS: Final = (
@@ -202,24 +201,13 @@ def _states(side: Side) -> Texts:
 
 
 def _state(side: Side, answer: TestState | NotInUse | NotFound) -> str:
-    say = Sentences(side.machine.language, "texts.j2")
     match answer:
         case NotInUse():
             return "protects only" if answer.guard else "not in use"
         case NotFound():
             return f"{answer.verdict.value}: {answer.failure.condition.value}"
         case TestState():
-            changes = [
-                say.say(
-                    "change_adjuster",
-                    adjuster=side.speaker.adjuster(change.adjuster),
-                    setting=side.speaker.figures.pressure(change.setting_bar),
-                )
-                if isinstance(change, Adjust)
-                else say.say("change_valve", valve=change.valve, position=change.position)
-                for change in answer.changes
-            ]
-            return "; ".join(changes) or say.say("at_rest")
+            return say_changes(side.speaker, answer.changes)
 
 
 def _order(side: Side) -> Texts:

@@ -39,6 +39,7 @@ def _values(speaker: Speaker, data: Mapping[str, Amount | str]) -> dict[str, str
     """Figures and names as text; adjusters by what people call them."""
     values = {key: speaker.figures.amount(value) for key, value in data.items()}
     values["range_end"] = "yes" if _at_range_end(speaker, data) else ""
+    values["stoppable"] = "yes" if _may_get_leave(speaker, str(data.get("part", ""))) else ""
     values["unknown_turn"] = "yes" if _turn_unknown(speaker, str(data.get("governs", ""))) else ""
     for key in ("part", "rated_part"):
         if _by_structure(speaker, str(data.get(key, "")), data.get("rating")):
@@ -47,6 +48,12 @@ def _values(speaker: Speaker, data: Mapping[str, Amount | str]) -> dict[str, str
         if values.get(key) in speaker.screws:
             values[key] = speaker.adjuster(values[key])
     return values
+
+
+def _may_get_leave(speaker: Speaker, part: str) -> bool:
+    """A cylinder that nothing drives by itself could be held at its stop, if the file gave leave."""
+    cylinder = speaker.machine.parts.get(part)
+    return isinstance(cylinder, Cylinder) and cylinder.weight_kn == 0.0 and cylinder.may_run_to_stop is None
 
 
 def _turn_unknown(speaker: Speaker, adjuster: str) -> bool:

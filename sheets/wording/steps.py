@@ -10,6 +10,7 @@ from sheets.amounts import Amount
 from sheets.circuit.model import Circuit
 from sheets.circuit.plant import MoveValve
 from sheets.hazards.assess import Hazard, HazardKind, Signal
+from sheets.machine.actuators import StopRun
 from sheets.machine.model import Machine
 from sheets.machine.parts import Cylinder, DialGauge, DirectionalValve, ElectricMotor, HydraulicMotor
 from sheets.machine.screws import screws_of
@@ -75,6 +76,15 @@ class Speaker:
         """``RV1``, or ``compensator of PU1``."""
         screw = self.screws[id_]
         return self._names.say("adjuster", name=screw.name, part=screw.part)
+
+    def way(self, id_: str) -> str:
+        """``extended``: how a cylinder stands at the stop to which it may be run; empty without leave."""
+        leave = self._leave(id_)
+        return leave.stop if leave is not None else ""
+
+    def _leave(self, id_: str) -> StopRun | None:
+        part = self.machine.parts.get(id_)
+        return part.may_run_to_stop if isinstance(part, Cylinder) else None
 
     def structure(self, id_: str) -> str:
         """``the structure at CY1``: what an actuator works on."""
@@ -181,6 +191,7 @@ class Speaker:
             values["hides"] = self.figures.pressure(hides.value, up=True)
         gauge = step.reading.gauge if step.reading else ""
         values |= {"subject": step.subject, "stop": self.stop, "gauge": gauge}
+        values |= self._run_values(str(data.get("actuator", step.subject)))
         part = machine.parts.get(step.subject)
         if part is not None:
             values |= {"label": self.part(step.subject), "where": part.where}
@@ -212,6 +223,19 @@ class Speaker:
                 "tool": screw.adjuster.lock_nut,
             }
         return values
+
+    def _run_values(self, actuator: str) -> dict[str, str]:
+        """What the file says of a cylinder that may run to its stop."""
+        part, leave = self.machine.parts.get(actuator), self._leave(actuator)
+        if not isinstance(part, Cylinder) or leave is None:
+            return {}
+        return {
+            "moves": part.moves,
+            "way": leave.stop,
+            "guard": leave.guarded_by,
+            "stand": leave.stand_at,
+            "before": leave.before_service.rstrip("."),
+        }
 
     def _solenoid(self, valve: str, part: DirectionalValve) -> str:
         """Solenoid that the test states hold on; empty for a lever."""
@@ -329,6 +353,17 @@ class Speaker:
                     lines.append(say("wrong_screw", gauge=values["gauge"]))
             case StepKind.COME_UP:
                 lines.extend(self._come_up(stage, step, values))
+            case StepKind.RUN_TO_STOP:
+                lines.append(say("runs_until_held", way=values["way"], speed=values["speed"]))
+                lines.append(say("stops_short", stop=self.stop))
+            case StepKind.HOLD_RUNNING:
+                lines.append(say("runs_while_raised", way=values["way"], speed=values["speed"]))
+            case StepKind.RAISE_TO_STOP:
+                direction = self.turning(step.subject, raising=True)
+                key, gauge = values["key"], values["gauge"]
+                lines.append(say("raise_to_stop_line", direction=direction, key=key, gauge=gauge))
+                lines.append(say("raise_fails"))
+                lines.append(say("stops_short", stop=self.stop))
             case StepKind.LOCK_NUT:
                 if values["tool"]:
                     lines.append(say("lock_nut_line", tool=values["tool"]))
@@ -406,8 +441,12 @@ class Speaker:
             case StepKind.CLOSE_GRADUALLY:
                 lines.append(shows)
                 lines.append(say("open_if_above", gauge=reading.gauge, limit=limit, label=values["subject"]))
-            case StepKind.COME_UP:
+            case StepKind.COME_UP | StepKind.RAISE_TO_STOP:
                 lines.append(say("stop_above", gauge=reading.gauge, limit=limit, stop=self.stop))
+            case StepKind.RUN_TO_STOP:
+                lines.append(f"{say('at_its_stop', shows=shows)} {say('outside', stop=self.stop)}")
+            case StepKind.HOLD_RUNNING:
+                lines.append(f"{shows} {say('above', stop=self.stop)}")
             case StepKind.START | StepKind.HOLD_VALVE:
                 lines.append(f"{shows} {say('outside', stop=self.stop)}")
             case StepKind.LET_GO:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from sheets.circuit.plant import MoveValve
+from sheets.circuit.plant import Adjust, AtStop, MoveValve
 from sheets.circuit.verdict import Verdict
 from sheets.errors import InputError, Problem, quoted
 from sheets.procedure.answers import NearMiss, NotFound, NotInUse, TestState
@@ -19,19 +19,22 @@ from sheets.wording.steps import Speaker
 def say_changes(speaker: Speaker, changes: tuple[Change, ...]) -> str:
     """Changes to the running rest state, in a few words."""
     texts = Sentences(speaker.machine.language, "texts.j2")
-    said = [
-        texts.say("change_valve", valve=change.valve, position=change.position)
-        if isinstance(change, MoveValve)
-        else texts.say(
-            "change_ahead"
-            if change.setting_bar < speaker.screws[change.adjuster].adjuster.highest_bar
-            else "change_adjuster",
-            adjuster=speaker.adjuster(change.adjuster),
-            setting=speaker.figures.pressure(change.setting_bar),
-        )
-        for change in changes
-    ]
-    return "; ".join(said) or texts.say("at_rest")
+    return "; ".join(_say_change(speaker, texts, change) for change in changes) or texts.say("at_rest")
+
+
+def _say_change(speaker: Speaker, texts: Sentences, change: Change) -> str:
+    match change:
+        case MoveValve(valve=valve, position=position):
+            return texts.say("change_valve", valve=valve, position=position)
+        case AtStop(actuator=actuator):
+            return texts.say("change_at_stop", actuator=actuator, way=speaker.way(actuator))
+        case Adjust(adjuster=adjuster, setting_bar=setting_bar):
+            ahead = setting_bar < speaker.screws[adjuster].adjuster.highest_bar
+            return texts.say(
+                "change_ahead" if ahead else "change_adjuster",
+                adjuster=speaker.adjuster(adjuster),
+                setting=speaker.figures.pressure(setting_bar),
+            )
 
 
 def _answer(procedure: Procedure, adjuster: str) -> TestState | NotInUse | NotFound:

@@ -63,10 +63,31 @@ def test_a_moving_cylinder_runs_to_its_stop_and_keeps_its_pressure_when_blocked_
 
 def test_without_running_to_stops_the_first_pass_is_the_last(press: Circuit):
     state = press.rest_state({"PU1.compensator": 160.0}).driven("M1", on=True)
-    step = take_step(press, state, MoveValve(valve="DV1", position="out"), to_stops=False)
+    step = take_step(press, state, MoveValve(valve="DV1", position="out"), runs=())
     assert step.outcome is Outcome.MOVING
     assert step.state.travel["CY1"] == "between"
     assert len(step.passes) == 1
+
+
+def test_a_cylinder_that_is_named_runs_from_anywhere_and_the_others_do_not(press: Circuit):
+    """Where it stood before doesn't count: that it is said to stand at its stop moves it all the same."""
+    state = press.rest_state({"PU1.compensator": 160.0}).driven("M1", on=True).standing("CY1", "far stop")
+    out = MoveValve(valve="DV1", position="out")
+    step = take_step(press, state, out, runs=("CY1",))
+    assert (step.outcome, step.moved, step.state.travel["CY1"]) == (Outcome.STILL, {"CY1"}, "far stop")
+    assert len(step.passes) == 2
+
+    other = take_step(press, state.standing("CY1", "between"), out, runs=("CY2",))
+    assert (other.outcome, other.moved) == (Outcome.MOVING, {"CY1"})
+    assert other.state.travel["CY1"] == "between"
+
+
+def test_a_cylinder_stops_short_where_the_pressure_does_not_suffice(press: Circuit):
+    # 30 kN over 78.54 cm² are 38.2 bar.
+    for setting_bar, moved, travel in ((35.0, set(), "between"), (45.0, {"CY1"}, "far stop")):
+        state = press.rest_state({"PU1.compensator": setting_bar}).driven("M1", on=True)
+        step = take_step(press, state, MoveValve(valve="DV1", position="out"), runs=("CY1",))
+        assert (step.outcome, step.moved, step.state.travel["CY1"]) == (Outcome.STILL, moved, travel)
 
 
 def test_an_adjustment_changes_the_setting_in_the_state(press: Circuit):

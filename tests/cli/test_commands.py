@@ -59,7 +59,7 @@ def section(text: str, title: str) -> str:
 
 AMOUNT = {"value", "quantity"}
 FINDING = {"code", "severity", "subject", "what", "fix", "data"}
-CHANGES = ({"adjuster", "setting_bar"}, {"valve", "position"})
+CHANGES = ({"adjuster", "setting_bar"}, {"valve", "position"}, {"actuator", "stop"})
 FOUND = {
     "adjuster",
     "answer",

@@ -9,7 +9,7 @@ import pytest
 
 import sheets
 from sheets.amounts import Severity, bar
-from sheets.circuit.plant import Adjust, MoveValve, StartDrive
+from sheets.circuit.plant import Adjust, AtStop, MoveValve, StartDrive
 from sheets.circuit.verdict import Verdict
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline import Described, steps
@@ -454,6 +454,76 @@ def test_cut_off_port_leaves_a_step_not_established(glaze_press: Matter, changed
         trusted_ports=frozenset({"PU1.X"}),
     )
     assert Invariant.ESTABLISHED not in {one.invariant for one in trusting.violations}
+
+
+# A cylinder that runs to its stop
+
+Runs = Callable[[TaskKind], Matter]
+
+
+def test_a_run_to_the_stop_holds_as_it_is_printed(pusher_at_its_stop: Runs) -> None:
+    for kind in (TaskKind.SET, TaskKind.COMMISSION):
+        matter = pusher_at_its_stop(kind)
+        assert again(matter, matter.procedure).verdict is Verdict.ESTABLISHED
+
+
+def test_a_lever_that_is_held_without_naming_the_run(pusher_at_its_stop: Runs) -> None:
+    matter = pusher_at_its_stop(TaskKind.SET)
+    silent = step_with(StepKind.RUN_TO_STOP, "DV1", runs=None)
+    wrong = edited(matter.procedure, StageKind.AS_FOUND, silent)
+    refused_for(again(matter, wrong), Invariant.STILL, "CY1")
+
+
+def test_a_run_whose_guard_nobody_looked_at(pusher_at_its_stop: Runs) -> None:
+    matter = pusher_at_its_stop(TaskKind.SET)
+    wrong = edited(matter.procedure, StageKind.AS_FOUND, without(StepKind.GUARD_RUN, "CY1"))
+    refused_for(again(matter, wrong), Invariant.STILL, "CY1")
+
+
+def test_a_run_to_the_other_stop_than_the_step_and_the_file_say(pusher_at_its_stop: Runs) -> None:
+    matter = pusher_at_its_stop(TaskKind.SET)
+    for change in (
+        {"actions": (MoveValve(valve="DV1", position="return"),)},
+        {"runs": AtStop(actuator="CY1", stop="near stop")},
+    ):
+        edit = step_with(StepKind.RUN_TO_STOP, "DV1", **change)
+        wrong = edited(matter.procedure, StageKind.AS_FOUND, edit)
+        refused_for(again(matter, wrong), Invariant.STILL, "CY1")
+
+
+def test_a_run_without_leave_in_the_file(pusher_at_its_stop: Runs) -> None:
+    matter = pusher_at_its_stop(TaskKind.SET)
+    cylinder = matter.machine.parts["CY1"].model_copy(update={"may_run_to_stop": None})
+    machine = matter.machine.model_copy(update={"parts": {**matter.machine.parts, "CY1": cylinder}})
+    result = replay(machine, matter.circuit, matter.targets, matter.speaker.policies, matter.procedure)
+    refused_for(result, Invariant.STILL, "CY1")
+
+
+def test_a_reading_before_the_stop_is_reached(pusher_at_its_stop: Runs) -> None:
+    # 60 kN/0.95 over 50.3 cm² need 125.6 bar: at 60 bar the carriage stands where it was, and RV1 reads 60.
+    matter = pusher_at_its_stop(TaskKind.SET)
+    low = Step(kind=StepKind.TURN_BELOW, subject="RV1", actions=(Adjust(adjuster="RV1", setting_bar=60.0),))
+
+    def before_the_run(given: Steps) -> Steps:
+        at = place_of(given, StepKind.GUARD_RUN, "CY1")
+        return (*given[:at], low, *given[at:])
+
+    wrong = edited(matter.procedure, StageKind.AS_FOUND, before_the_run)
+    first, second, *_ = [one for one in printed(again(matter, wrong)).violations if one.subject == "CY1"]
+    assert (first.invariant, second.invariant) == (Invariant.AT_STOP, Invariant.AT_STOP)
+    at = wrong.stages[first.stage].steps
+    assert (at[first.step].kind, at[second.step].kind) == (StepKind.RUN_TO_STOP, StepKind.READ)
+    refused_for(again(matter, wrong), Invariant.AT_STOP, "CY1")
+
+
+def test_a_setting_that_comes_up_while_the_cylinder_still_runs(pusher_at_its_stop: Runs) -> None:
+    # Backed out, 30 bar hold the carriage short. Without the step that waits for it, coming up moves it.
+    matter = pusher_at_its_stop(TaskKind.COMMISSION)
+    wrong = edited(matter.procedure, StageKind.SET, without(StepKind.RAISE_TO_STOP, "RV1"), "RV1")
+    result = again(matter, wrong)
+    broken = {one.invariant for one in printed(result).violations if one.subject == "CY1"}
+    assert broken == {Invariant.STILL, Invariant.AT_STOP}
+    assert result.verdict is Verdict.REFUTED
 
 
 def test_nothing_to_run_is_refuted(clay_mixer: Matter) -> None:

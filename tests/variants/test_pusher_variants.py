@@ -16,7 +16,6 @@ from variant_bench import (
     refused_adjuster,
     said,
     state,
-    without_valve,
 )
 
 from sheets.circuit.solver import solve_one
@@ -28,6 +27,7 @@ from sheets.procedure.case import Case
 from sheets.procedure.conditions import Condition
 
 Refused = Callable[..., Matter]
+Replacements = tuple[tuple[str, str], ...]
 
 INLET_VALVE = """\
   TP1:
@@ -104,16 +104,10 @@ def test_g_no_test_point_at_the_outlet(refused: Refused) -> None:
 # h and s: no hand valve after the relief
 
 
-HEADER_VALVE = (
-    "    name: pressure line valve\n    designation: 1-H1.4\n"
-    "    where: after the pump manifold, beyond RV1 and TP1\n    rating: 315 bar\n"
-)
-
-
-def test_h_open_centre_without_a_hand_valve(refused: Refused) -> None:
+def test_h_open_centre_without_a_hand_valve(refused: Refused, without_hand_valve: Replacements) -> None:
     # At rest the spool passes all of the pump's 46.4 L/min: 4 · (46.4/60)² = 2.4 bar and a little, RV1 is
     # never loaded. With the lever held the carriage runs.
-    matter = refused("kiln_pusher", without_valve("HV2", HEADER_VALVE))
+    matter = refused("kiln_pusher", *without_hand_valve)
     lost = refused_adjuster(matter, "RV1")
 
     assert lost.failure.condition is Condition.STILL
@@ -125,10 +119,12 @@ def test_h_open_centre_without_a_hand_valve(refused: Refused) -> None:
     assert 2.4 < at_rest.pressure_at("RV1.P") < 3.0
 
 
-def test_s_cylinder_at_its_stop_would_load_the_relief_but_isnt_a_state_here(refused: Refused) -> None:
-    # Run out and held there, the cylinder shuts the line: RV1 reads 180.3 bar as with HV2 shut. Running an
-    # actuator to its stop is no change that the search makes, so what it answers is what to add.
-    matter = refused("kiln_pusher", without_valve("HV2", HEADER_VALVE))
+def test_s_cylinder_at_its_stop_would_load_the_relief_but_the_file_gives_no_leave(
+    refused: Refused, without_hand_valve: Replacements
+) -> None:
+    # Run out and held there, the cylinder shuts the line: RV1 reads 180.3 bar as with HV2 shut. Nobody says
+    # that it may be, so the answer is what to add: a valve, or that leave.
+    matter = refused("kiln_pusher", *without_hand_valve)
     base = Case(matter.machine, matter.circuit, matter.targets, Policies()).base
     held = replace(base.moved("DV1", "push"), travel={**base.travel, "CY1": "far stop"})
     there = solve_one(matter.circuit, held)
@@ -136,6 +132,7 @@ def test_s_cylinder_at_its_stop_would_load_the_relief_but_isnt_a_state_here(refu
     assert there.moving == set()
     assert there.pressure_at("RV1.P") == pytest.approx(180.3, abs=0.1)
     assert moves(refused_adjuster(matter, "RV1")) == {("DV1", "push")}
+    assert "say so in the file: may run to stop" in said(matter, "cannot_be_set", "RV1")
 
 
 # k: a coarse gauge

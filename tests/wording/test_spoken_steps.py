@@ -1,13 +1,14 @@
 """Orders and light lines as they are printed for the samples."""
 
 import re
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 
 import pytest
 
 from sheets.amounts import Amount
 from sheets.pages.compose.matter import Matter
 from sheets.procedure.steps import StageKind, StepKind
+from sheets.procedure.task import TaskKind
 from sheets.wording.findings import say_finding
 from sheets.wording.steps import SpokenStep
 
@@ -24,6 +25,16 @@ STATEMENTS = ("Nothing starts.", "It shows 0.", "Guards are on, caps are on, not
 OWN_LOCK = "Each person takes their own lock off the isolators."
 
 
+@pytest.fixture(params=["clay_mixer", "glaze_press", "kiln_pusher", TaskKind.SET, TaskKind.COMMISSION])
+def any_job(request: pytest.FixtureRequest, pusher_at_its_stop: Callable[[TaskKind], Matter]) -> Matter:
+    """The samples, and the pusher with its carriage held at its stop."""
+    wanted: str | TaskKind = request.param
+    if isinstance(wanted, TaskKind):
+        return pusher_at_its_stop(wanted)
+    sample: Matter = request.getfixturevalue(wanted)
+    return sample
+
+
 def spoken(matter: Matter) -> Iterator[SpokenStep]:
     for stage in matter.procedure.stages:
         yield from matter.spoken(stage)
@@ -37,14 +48,14 @@ def words(sentence: str) -> int:
     return len(sentence.split())
 
 
-def test_orders_are_short(any_sample: Matter) -> None:
-    for step in spoken(any_sample):
+def test_orders_are_short(any_job: Matter) -> None:
+    for step in spoken(any_job):
         for sentence in sentences(step.order):
             assert words(sentence) <= 20, sentence
 
 
-def test_orders_are_imperative(any_sample: Matter) -> None:
-    for step in spoken(any_sample):
+def test_orders_are_imperative(any_job: Matter) -> None:
+    for step in spoken(any_job):
         for sentence in sentences(step.order):
             if sentence in (*STATEMENTS, OWN_LOCK) or sentence.startswith("It is "):
                 continue
@@ -54,8 +65,8 @@ def test_orders_are_imperative(any_sample: Matter) -> None:
             assert not re.search(r"\b(should|shall|must|may|might|please|can|could)\b", order), sentence
 
 
-def test_light_lines_are_short(any_sample: Matter) -> None:
-    for step in spoken(any_sample):
+def test_light_lines_are_short(any_job: Matter) -> None:
+    for step in spoken(any_job):
         texts = [
             *step.lines,
             *(line for warning in step.warnings for line in (warning.hazard, *warning.lines)),
@@ -65,8 +76,8 @@ def test_light_lines_are_short(any_sample: Matter) -> None:
                 assert words(sentence) <= 25, sentence
 
 
-def test_nothing_is_left_empty_or_unfilled(any_sample: Matter) -> None:
-    for step in spoken(any_sample):
+def test_nothing_is_left_empty_or_unfilled(any_job: Matter) -> None:
+    for step in spoken(any_job):
         for text in (step.order, *step.lines):
             assert text.strip() == text
             assert text
