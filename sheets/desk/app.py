@@ -16,7 +16,7 @@ from starlette.requests import Request
 from starlette.responses import RedirectResponse, Response
 from starlette.routing import Mount, Route
 
-from sheets.desk import reading, signing_in
+from sheets.desk import reading, signing_in, writing
 from sheets.desk.gatekeeping import Gatekeeper
 from sheets.desk.guard import Guard
 from sheets.desk.sessions import Sessions
@@ -109,6 +109,13 @@ def _routes(desk: Desk) -> list[Route]:
         *routes,
         always("/sign-in", signing_in.ask),
         always("/sign-in", signing_in.sign_in, method="POST"),
+        at("/r/{record_id}/row/{row:int}", writing.ask_row, needs=Role.TECHNICIAN),
+        at("/r/{record_id}/row/{row:int}", writing.record_row, method="POST", needs=Role.TECHNICIAN),
+        at("/r/{record_id}/deviation/{number:int}", writing.ask_deviation, needs=Role.TECHNICIAN),
+        at("/r/{record_id}/deviation/{number:int}", writing.settle, method="POST", needs=Role.TECHNICIAN),
+        at("/r/{record_id}/tag", writing.ask_tag, needs=Role.TECHNICIAN),
+        at("/r/{record_id}/tag", writing.post_tag, method="POST", needs=Role.TECHNICIAN),
+        at("/r/{record_id}/tags.pdf", writing.tags, needs=Role.TECHNICIAN),
         at("/sign-out", signing_in.ask_out, needs=Role.READER),
         at("/sign-out", signing_in.sign_out, method="POST", needs=Role.READER),
     ]

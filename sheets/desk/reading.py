@@ -9,7 +9,7 @@ from starlette.responses import RedirectResponse, Response
 
 from sheets import pipeline
 from sheets.errors import Problem
-from sheets.pipeline import Paper
+from sheets.pipeline import Paper, Role
 
 if TYPE_CHECKING:
     from sheets.desk.showing import Visit
@@ -30,7 +30,7 @@ def record(visit: Visit) -> Response:
     )
     look = pipeline.look_at_record(visit.desk.room, paper, now=visit.desk.now())
     status = {"unknown": 404, "not_established": 503}.get(look.shown.value, 200)
-    return visit.page("record", status=status, look=look)
+    return visit.page("record", status=status, look=look, may_record=visit.may(Role.TECHNICIAN))
 
 
 def file(visit: Visit) -> Response:
@@ -52,7 +52,7 @@ def find(visit: Visit) -> Response:
         return visit.page("find")
     if not (key.isascii() and key.isalnum()):
         look = pipeline.look_at_record(visit.desk.room, Paper(record_id=key), now=visit.desk.now())
-        return visit.page("record", status=404, look=look)
+        return visit.page("record", status=404, look=look, may_record=False)
     typed = {name: visit.request.query_params.get(name, "").strip()[:40] for name in ("d", "v")}
     query = urlencode({name: text for name, text in typed.items() if text})
     return RedirectResponse(f"{visit.desk.base}/r/{key}{'?' if query else ''}{query}", status_code=303)

@@ -9,30 +9,24 @@ from collections.abc import Iterator, Sequence
 from html import escape
 
 from sheets.pages.document import GaugeFace
-from sheets.pages.face import dial_face, number_face
+from sheets.pages.face import dial_face
 from sheets.pages.fonts import Weight
 from sheets.pages.ink import Ink
 from sheets.pages.placed import MM, Circle, Code, Item, Line, Polygon, Rect, TextRun
 from sheets.pages.text import style
 
 FACE_SIDE = 60 * MM
-NUMBER_HEIGHT = 36 * MM
 _WEIGHTS = {Weight.REGULAR: "400", Weight.SEMIBOLD: "600", Weight.BOLD: "700"}
 
 
-def face_svg(face: GaugeFace, *, alternative: str) -> str:
-    """A gauge face by itself; ``alternative`` is said to who doesn't see it.
+def dial_svg(face: GaugeFace, *, alternative: str) -> str:
+    """A dial by itself; ``alternative`` is said to who doesn't see it.
 
     Raises InputError for a face whose numbers don't stand on its own scale.
     """
     ink = Ink()
-    if face.digital:
-        height = NUMBER_HEIGHT
-        number_face(ink, face, x=0, y=0, width=FACE_SIDE, height=height, labels=None)
-    else:
-        height = FACE_SIDE
-        dial_face(ink, face, x=FACE_SIDE / 2, y=FACE_SIDE / 2, diameter=FACE_SIDE)
-    return svg(ink.items, width=FACE_SIDE, height=height, alternative=alternative, name="face")
+    dial_face(ink, face, x=FACE_SIDE / 2, y=FACE_SIDE / 2, diameter=FACE_SIDE)
+    return svg(ink.items, width=FACE_SIDE, height=FACE_SIDE, alternative=alternative, name="face")
 
 
 def svg(items: Sequence[Item], *, width: float, height: float, alternative: str, name: str) -> str:
@@ -78,12 +72,13 @@ def _drawn(item: Item) -> Iterator[str]:
 
 
 def _text(item: TextRun) -> str:
-    """Anchored in its middle: the screen's font is another one, and a bit wider or narrower."""
+    """Anchored in its middle and held to its width: the screen's font is another one."""
     width = style(item.size, item.weight).width(item.text)
     x, y = (item.x, item.y - width / 2) if item.upward else (item.x + width / 2, item.y)
     turn = f' transform="rotate(-90 {_n(x)} {_n(y)})"' if item.upward else ""
     return (
         f'<text x="{_n(x)}" y="{_n(y)}" text-anchor="middle" font-size="{_n(item.size)}" '
+        f'textLength="{_n(width)}" lengthAdjust="spacingAndGlyphs" '
         f'font-weight="{_WEIGHTS[item.weight]}" fill="{_ink(white=item.white)}"{turn}>'
         f"{escape(item.text)}</text>"
     )

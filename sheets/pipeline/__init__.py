@@ -84,6 +84,9 @@ if TYPE_CHECKING:
     from sheets.pipeline.many import outcome_of_pack as outcome_of_pack
     from sheets.pipeline.many import outcome_of_steps as outcome_of_steps
     from sheets.pipeline.many import outcome_of_targets as outcome_of_targets
+    from sheets.pipeline.page_recording import RowForm as RowForm
+    from sheets.pipeline.page_recording import acceptable as acceptable
+    from sheets.pipeline.page_recording import record_row as record_row
     from sheets.pipeline.persons import Signing as Signing
     from sheets.pipeline.printing import content as content
     from sheets.pipeline.printing import draft_name as draft_name
@@ -92,6 +95,7 @@ if TYPE_CHECKING:
     from sheets.pipeline.printing import write_pack as write_pack
     from sheets.pipeline.reading_room import DeskSettings as DeskSettings
     from sheets.pipeline.reading_room import ReadingRoom as ReadingRoom
+    from sheets.pipeline.recording import Acceptance as Acceptance
     from sheets.pipeline.recording import end as end
     from sheets.pipeline.recording import record as record
     from sheets.pipeline.recording import record_answers as record_answers
@@ -115,6 +119,7 @@ if TYPE_CHECKING:
     from sheets.pipeline.reproving import reprove_json as reprove_json
     from sheets.pipeline.reproving import reprove_text as reprove_text
     from sheets.pipeline.serving import serve as serve
+    from sheets.pipeline.settings_shown import SettingShown as SettingShown
     from sheets.pipeline.signing import reject as reject
     from sheets.pipeline.signing import sign as sign
     from sheets.pipeline.starting import new as new
@@ -234,6 +239,11 @@ _CONTENTS: Final[dict[str, str]] = {
     "inspections_on": "pipeline.inspecting",
     "inspections_text": "pipeline.inspecting",
     # show it on a screen
+    "SettingShown": "pipeline.settings_shown",
+    "Acceptance": "pipeline.recording",
+    "acceptable": "pipeline.page_recording",
+    "RowForm": "pipeline.page_recording",
+    "record_row": "pipeline.page_recording",
     "Role": "pipeline.admitting",
     "User": "pipeline.admitting",
     "users": "pipeline.admitting",

@@ -14,10 +14,13 @@ from typing import Final
 
 from sheets.crockford import as_printed
 from sheets.pipeline.reading_room import ReadingRoom
+from sheets.pipeline.settings_shown import SettingShown, settings_shown
 from sheets.register.chain import ChainVerdict
 from sheets.register.currency import Currency, Standing, currency_in
 from sheets.register.deviations import Deviation, deviations, out_of_service
 from sheets.register.deviations import Standing as DeviationStanding
+from sheets.register.jobs import jobs
+from sheets.register.readings import readings
 from sheets.register.revisions import Revision
 from sheets.register.store import View
 
@@ -106,6 +109,15 @@ class OpenDeviation:
 
 
 @dataclass(frozen=True, kw_only=True)
+class JobLine:
+    """An open job."""
+
+    number: int
+    why: str
+    on: str
+
+
+@dataclass(frozen=True, kw_only=True)
 class RecordLook:
     """One record as its page shows it."""
 
@@ -123,6 +135,9 @@ class RecordLook:
     out_of_service: str = ""
     """Since when and why the machine isn't used; empty while it is."""
     open: tuple[OpenDeviation, ...] = ()
+    settings: tuple[SettingShown, ...] = ()
+    jobs: tuple[JobLine, ...] = ()
+    """Open jobs from these sheets."""
     file: bool = False
     """Whether the signed file is at hand."""
 
@@ -183,6 +198,16 @@ def _look(room: ReadingRoom, view: View, found: Currency, paper: Paper) -> Recor
         ink=issue.ink if issue else False,
         out_of_service=f"{out.said.on}: {out.said.why} ({out.said.by})" if out else "",
         open=open_deviations(deviations(view, machine=revision.machine)),
+        settings=(
+            settings_shown(issue.kept, readings(view, machine=revision.machine))
+            if shown is Shown.CURRENT and issue is not None and issue.kept is not None
+            else ()
+        ),
+        jobs=tuple(
+            JobLine(number=one.number, why=one.opened.said.why, on=one.opened.said.on.isoformat())
+            for one in jobs(view, record_id=revision.record_id)
+            if one.open
+        ),
         file=shown is Shown.CURRENT and issue is not None and room.files.holds(issue.file_digest),
     )
 

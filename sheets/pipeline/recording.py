@@ -24,8 +24,17 @@ from sheets.register.readings import Phase, Seal
 from sheets.register.recording import Recorded, Taken, Telling, kept_of_issue, open_job
 from sheets.register.recording import record as record_one
 from sheets.register.recording import strike as strike_one
+from sheets.register.rows import NEVER_ACCEPTED
 from sheets.register.settling import accept, back_in_service, correct, end_job, note
 from sheets.register.store import Writer
+
+
+@dataclass(frozen=True, kw_only=True)
+class Acceptance:
+    """Somebody named answers for what is left outside its window."""
+
+    by: str
+    why: str
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -44,19 +53,47 @@ def record(file: Path, *, register_at: Place, by: str, when: datetime) -> JobRec
     return record_said(load_record(file), register_at=register_at, by=by, when=when)
 
 
-def record_answers(answers: Mapping[str, Any], *, register_at: Place, by: str, when: datetime) -> JobRecorded:
-    """The same from answers with the keys of a record file."""
+def record_answers(
+    answers: Mapping[str, Any],
+    *,
+    register_at: Place,
+    by: str,
+    when: datetime,
+    acceptance: Acceptance | None = None,
+    hold_windows: bool = False,
+) -> JobRecorded:
+    """The same from answers with the keys of a record file; the rest as in `record_said`."""
     said = parse_record(json.dumps(answers, ensure_ascii=False).encode(), "answers")
-    return record_said(said, register_at=register_at, by=by, when=when)
+    return record_said(
+        said, register_at=register_at, by=by, when=when, acceptance=acceptance, hold_windows=hold_windows
+    )
 
 
-def record_said(said: RecordFile, *, register_at: Place, by: str, when: datetime) -> JobRecorded:
-    """The same of a record that was read. A row that is refused is named by its number."""
+def record_said(
+    said: RecordFile,
+    *,
+    register_at: Place,
+    by: str,
+    when: datetime,
+    acceptance: Acceptance | None = None,
+    hold_windows: bool = False,
+) -> JobRecorded:
+    """The same of a record that was read. A row that is refused is named by its number.
+
+    ``acceptance``: who answers at once for what was left outside its window. ``hold_windows``: without one,
+    nothing is recorded that would leave a setting open.
+    """
     how = Telling(by=by, when=when, on=said.day, people=said.people, transcribed=said.from_paper)
     with open_register(register_at) as register, register.writing() as writer:
         job = int(said.job) if said.job else open_job(writer, said.record, how, why=said.why)
         _hold_record(writer, job, said.record)
         recorded = [*_acts(writer, job, said, how)]
+        for made in recorded:
+            if made.deviation and acceptance is not None:
+                by_name = Telling(by=acceptance.by, when=when, on=said.day, people=(acceptance.by,))
+                accept(writer, made.deviation, by_name, authoriser=acceptance.by, why=acceptance.why)
+            elif made.deviation and hold_windows:
+                raise _outside(made)
         for one in said.deviations:
             note(writer, job, how, what=one.what, row=int(one.row or 0))
         left = tuple(
@@ -128,6 +165,16 @@ def _taken(reading: RecordReading, phase: Phase) -> Taken:
         seal_number=reading.seal_number,
         clock=reading.at,
     )
+
+
+def _outside(one: Recorded) -> RefusedError:
+    where = f"row {one.row.row}, {one.row.called}"
+    what = f"{one.taken.value} {one.row.unit} is {one.outcome}: accepted are {one.row.low} to {one.row.high}."
+    if one.outcome in NEVER_ACCEPTED:
+        fix = "Nobody can accept that. Set it again, or take the machine out of service."
+        return RefusedError(Problem(where=where, what=what, fix=fix))
+    fix = "Set it again, or have it accepted by name."
+    return RefusedError(Problem(where=where, what=what, fix=fix))
 
 
 def _hold_record(writer: Writer, job: int, record_id: str) -> None:

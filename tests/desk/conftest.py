@@ -8,6 +8,16 @@ import pytest
 from desk_bench import Bench
 from starlette.testclient import TestClient
 
+from sheets.seal import passwords
+
+
+@pytest.fixture(autouse=True)
+def _quick(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Hashes that cost little: how slow they are is the library's own matter."""
+    cheap = passwords.PasswordHasher(time_cost=1, memory_cost=8, parallelism=1)
+    monkeypatch.setattr(passwords, "_HASHER", cheap)
+    passwords._nobody.cache_clear()
+
 
 @pytest.fixture
 def bench(tmp_path: Path) -> Bench:

@@ -7,25 +7,13 @@ import shlex
 from collections.abc import Iterator
 
 import click
-import httpx2
 import pytest
 from click.testing import CliRunner
-from desk_bench import Bench, code_of, word
+from desk_bench import PASSWORD, Bench, code_of, form_in, sign_in, word
 from starlette.testclient import TestClient
 
 from sheets import cli, pipeline
 from sheets.errors import InputError
-from sheets.seal import passwords
-
-PASSWORD = "clay goes in first"
-
-
-@pytest.fixture(autouse=True)
-def _quick(monkeypatch: pytest.MonkeyPatch) -> None:
-    """Hashes that cost little: how slow they are is the library's own matter."""
-    cheap = passwords.PasswordHasher(time_cost=1, memory_cost=8, parallelism=1)
-    monkeypatch.setattr(passwords, "_HASHER", cheap)
-    passwords._nobody.cache_clear()
 
 
 @pytest.fixture
@@ -36,18 +24,6 @@ def site(bench: Bench) -> Iterator[TestClient]:
         pipeline.set_user(bench.users, name=name, role=role, password=PASSWORD)
     with bench.client(users=bench.users) as client:
         yield client
-
-
-def form_in(answer: httpx2.Response) -> str:
-    (found,) = re.findall(r'name="form" value="([^"]+)"', answer.text)
-    return found
-
-
-def sign_in(
-    client: TestClient, name: str = "Tom Ness", password: str = PASSWORD, to: str = ""
-) -> httpx2.Response:
-    form = form_in(client.get("/sign-in", params={"to": to}))
-    return client.post("/sign-in", data={"form": form, "name": name, "password": password, "to": to})
 
 
 def test_whoever_signed_in_may_read_and_comes_back_to_the_paper(bench: Bench, site: TestClient) -> None:
