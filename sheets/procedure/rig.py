@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
+from dataclasses import replace
 
-from sheets.amounts import Amount, Finding, Severity
+from sheets.amounts import Amount, Finding, Severity, bar
 from sheets.circuit.drive_load import drive_loads, hydraulic_power
 from sheets.circuit.model import Circuit
 from sheets.circuit.plant import AtStop, PlantAction, PlantState
@@ -20,6 +21,8 @@ from sheets.procedure.steps import MUST_REACH, Band, Reading, Step, StepKind, Tr
 AS_FOUND_SHARE = 0.10
 """Policy: a setting that is out by more than this has a cause to be found before it is adjusted."""
 AS_FOUND_LEAST_BAR = 3.0
+OLD_PRESSURE_BAR = 0.05
+"""Above what the line shows without a past, it is pressure that was shut in before."""
 _DUST = 1e-6
 """Of a graduation: a band that ends on one doesn't take the next."""
 
@@ -81,6 +84,8 @@ class Rig:
         if runs is not None and kind in MUST_REACH and self.state.travel[runs.actuator] != runs.stop:
             self._find("step_stops_short", Severity.REFUSED, runs.actuator, {"step": kind.value})
         solution = self.look()
+        if window_of:
+            self._refuse_old_pressure(solution, window_of)
         self.steps.append(
             Step(
                 kind=kind,
@@ -111,6 +116,22 @@ class Rig:
             over = over_rating(solution) if solution.established else None
             if over is not None:
                 self._find("step_over_rating", Severity.REFUSED, str(over.data["part"]), dict(over.data))
+
+    def _refuse_old_pressure(self, solution: Solution, adjuster: str) -> None:
+        """A gauge on a line that keeps what stood there before shows nothing of a setting that is lower."""
+        if self.gauge is None or not self.state.running or not solution.established:
+            return
+        node = self.circuit.node_of[self.gauge.port]
+        empty = replace(self.state, pressures_bar=(0.0,) * len(self.state.pressures_bar))
+        follows = solve_one(self.circuit, empty)
+        kept_bar, held_bar = solution.pressures_bar[node], follows.pressures_bar[node]
+        if follows.established and kept_bar > held_bar + OLD_PRESSURE_BAR:
+            data: dict[str, Amount | str] = {
+                "gauge": self.gauge.gauge,
+                "kept": bar(kept_bar),
+                "held": bar(held_bar),
+            }
+            self._find("line_keeps_pressure", Severity.REFUSED, adjuster, data)
 
     def look(self) -> Solution:
         """The plant as it stands, solved with effects."""

@@ -23,8 +23,10 @@ from variant_bench import (
 )
 
 from sheets.circuit.faults import FaultKind, every_fault, solve_faults
+from sheets.circuit.verdict import Verdict
 from sheets.machine.site import Policies
 from sheets.pages.compose.matter import Matter
+from sheets.pipeline.computing import findings_of_job
 from sheets.procedure.answers import NotInUse
 from sheets.procedure.case import Case
 from sheets.procedure.changes import apply
@@ -213,3 +215,38 @@ def test_p_rating_of_the_cylinder_itself_is_not_called_the_structure(refused: Re
     text = said(matter, "setting_over_rating", "PU1.compensator")
     assert "CY1 carries 2500 psi" in text
     assert "structure" not in text
+
+
+# w: a check valve between the pump and everything else
+
+CHECK = (
+    "  CV1: {kind: check valve, where: pump outlet, rating: 5000 psi, opening: 2 psi,\n"
+    "    rated flow: 60 gal/min, rated drop: 8 psi}\n"
+)
+PUMP_LINE = "  pump line: [PU1.P, RV1.P, TP1.P, BV1.A, HV1.A]\n"
+BEHIND = "[CV1.B, RV1.P, TP1.P, BV1.A, HV1.A]\n"
+
+
+def test_w_line_behind_a_check_valve_keeps_what_the_relief_left(refused: Refused) -> None:
+    # With HV1 shut nothing but RV1 lets oil out behind CV1, and RV1 shuts at 0.95 · 3300 = 3135 psi: there G1
+    # stays, however far the compensator comes down to its 2800 psi (less what its own flow takes: none).
+    matter = refused(
+        "glaze_press",
+        ("  TP1:\n", CHECK + "  TP1:\n"),
+        (PUMP_LINE, f"  pump: [PU1.P, CV1.A]\n  pump line: {BEHIND}"),
+    )
+    assert matter.procedure.verdict is Verdict.REFUTED
+    one = finding(matter, "line_keeps_pressure", "PU1.compensator")
+    assert amount(one, "kept") == pytest.approx(3135 * BAR_OF_PSI, abs=0.1)
+    assert "from the step before" in said(matter, "line_keeps_pressure", "PU1.compensator")
+    assert "run_reads_wrong" not in {found.code for found in findings_of_job(matter)}
+
+
+def test_w_a_gauge_before_the_check_valve_sees_the_compensator(refused: Refused) -> None:
+    matter = refused(
+        "glaze_press",
+        ("  TP1:\n", CHECK + "  TP9: {kind: test point, where: pump, rating: 6000 psi}\n  TP1:\n"),
+        (PUMP_LINE, f"  pump: [PU1.P, TP9.P, CV1.A]\n  pump line: {BEHIND}"),
+        ("    fitted at: [TP1, TP2]\n", "    fitted at: [TP9]\n"),
+    )
+    assert_good(matter)
