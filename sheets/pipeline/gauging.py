@@ -9,7 +9,7 @@ from datetime import date, datetime
 from sheets.errors import InputError, Problem
 from sheets.pipeline.whole import whole_register
 from sheets.register.acts import ZeroRead
-from sheets.register.instruments import Instrument, InstrumentListed
+from sheets.register.instruments import Instrument, InstrumentFoundBad, InstrumentListed
 from sheets.register.instruments import instruments as known_instruments
 from sheets.register.listing_instruments import amount_of, largest_error, list_instrument, listed
 from sheets.register.listing_instruments import found_bad as told_bad
@@ -87,15 +87,13 @@ def instruments(register_at: Place, *, on: date, given: str | None = None) -> Ga
 def hanging_on(view: View, found: Instrument) -> tuple[Hanging, ...]:
     """All readings and zeros that were made with a gauge, of all machines, by day."""
     serial = found.listed.said.serial
-    good_until = found.bad.said.good_until if found.bad is not None else None
-    made = [_reading(one, good_until) for one in readings(view, instrument=serial)]
-    made += [
-        _zero(one, good_until) for one in told(view, ZeroRead, saying=serial) if one.said.instrument == serial
-    ]
+    bad = found.bad.said if found.bad is not None else None
+    made = [_reading(one, bad) for one in readings(view, instrument=serial)]
+    made += [_zero(one, bad) for one in told(view, ZeroRead, saying=serial) if one.said.instrument == serial]
     return tuple(sorted(made, key=lambda one: (one.on, one.event)))
 
 
-def _reading(one: KeptReading, good_until: date | None) -> Hanging:
+def _reading(one: KeptReading, bad: InstrumentFoundBad | None) -> Hanging:
     said = one.said
     return Hanging(
         event=one.told.sequence,
@@ -107,11 +105,11 @@ def _reading(one: KeptReading, good_until: date | None) -> Hanging:
         value=f"{said.value} {said.unit}",
         people=said.people,
         counts=one.counts,
-        in_doubt=good_until is not None and said.on > good_until,
+        in_doubt=bad is not None and bad.doubts(said.on),
     )
 
 
-def _zero(one: Told[ZeroRead], good_until: date | None) -> Hanging:
+def _zero(one: Told[ZeroRead], bad: InstrumentFoundBad | None) -> Hanging:
     said = one.said
     return Hanging(
         event=one.sequence,
@@ -123,7 +121,7 @@ def _zero(one: Told[ZeroRead], good_until: date | None) -> Hanging:
         value=f"{said.value} {said.unit}",
         people=(said.by,),
         counts=True,
-        in_doubt=good_until is not None and said.on > good_until,
+        in_doubt=bad is not None and bad.doubts(said.on),
     )
 
 

@@ -51,6 +51,10 @@ class InstrumentFoundBad(Said):
     what: str
     by: str
 
+    def doubts(self, day: date) -> bool:
+        """Whether what was read with it on that ``day`` is in doubt."""
+        return day > self.good_until
+
 
 @dataclass(frozen=True, kw_only=True)
 class Instrument:
@@ -123,7 +127,7 @@ def usable(view: View, given: str, *, day: date) -> Instrument:
 
 def in_doubt(view: View, bad: InstrumentFoundBad) -> tuple[KeptReading, ...]:
     """Every reading that was made with a gauge since it was last known good, of all machines."""
-    return tuple(one for one in readings(view, instrument=bad.serial) if one.said.on > bad.good_until)
+    return tuple(one for one in readings(view, instrument=bad.serial) if bad.doubts(one.said.on))
 
 
 def coarser(listed: InstrumentListed, *, unit: str, error: str) -> bool:

@@ -69,6 +69,8 @@ def test_windows_states_and_steps_that_differ_are_told(
     ]
     monkeypatch.setattr(gauges, "never_exceed_bar", lambda **given: real(**given) - 20)
     monkeypatch.setattr(rig, "AS_FOUND_SHARE", rig.AS_FOUND_SHARE / 2)
+    ratio: Callable[..., float] = gauges.accuracy_ratio
+    monkeypatch.setattr(gauges, "accuracy_ratio", lambda **given: 2 * ratio(**given))
     before = issued.files()
     made = reproved(issued, DOCUMENT)
     one = only(made)
@@ -76,6 +78,8 @@ def test_windows_states_and_steps_that_differ_are_told(
     now = int(row.never_exceed) - 20
     assert f"never exceed {row.called}: {row.never_exceed} {row.unit} → {now} {row.unit}" in one.lines
     assert any(line.startswith(("step of '", "step new in '")) for line in one.lines)
+    states = [line for line in one.lines if line.startswith("Test states found, ")]
+    assert [line.split(": ")[0] for line in states] == ["Test states found, before", "Test states found, now"]
     assert "Record of settings PU-03" in one.sheets
     assert one.revision.issue is not None
     assert one.digest not in ("", one.revision.issue.content_digest)

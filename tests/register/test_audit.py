@@ -77,10 +77,10 @@ def test_what_it_says_of_the_year(audited: Audited, year: Numbers) -> None:
     ]
     # 2026-09-14 and a year; issued 2026-02-02 and never inspected: a day is left on 2027-02-01
     assert [(row[1], row[3], row[5]) for row in found["due"]] == [
-        ("PU-07", "2026-09-14", "2027-09-14"),
         ("PU-11", "never", "2027-02-02"),
+        ("PU-07", "2026-09-14", "2027-09-14"),
     ]
-    assert [row[-1] for row in found["due"]] == ["in 225 days", "in 1 day"]
+    assert [row[-1] for row in found["due"]] == ["in 1 day", "in 225 days"]
     assert [(row[0], row[-1]) for row in found["deviations"]] == [(str(year.open_deviation), "OPEN")]
     assert [row[-1] for row in found["inspections"]] == [
         f"{year.open_deviation - 2} corrected; {year.open_deviation} open"
@@ -108,7 +108,7 @@ def test_later_something_is_overdue(register: Register, year: Numbers) -> None:
     with register.reading() as view:
         found = {one.name: one.rows for one in lists_of(view, date(2027, 4, 1))}
     assert (
-        found["due"][1][-1] == "OVERDUE by 58 days"
+        found["due"][0][-1] == "OVERDUE by 58 days"
     )  # February has 26 days left after the 2nd, March 31, April 1
     assert [row[-1] for row in found["instruments"]] == [
         "usable",

@@ -87,6 +87,13 @@ def test_a_day_on_which_one_took_the_place_of_another(place: Place, year: Number
     assert "current was none" in said(pipeline.used_text(pipeline.used(place, MIXER, on=date(2026, 2, 1))))
 
 
+def test_one_that_was_withdrawn_was_current_until_that_day(place: Place, year: Numbers) -> None:
+    assert year
+    days = (date(2026, 11, 30), date(2026, 12, 1), date(2026, 12, 2))
+    found = [pipeline.used(place, "WI-0139", on=day).current for day in days]
+    assert [[one.number for one in current] for current in found] == [[], [1], []]
+
+
 def test_last_inspection_and_was_it_independent(place: Place, year: Numbers) -> None:
     found = pipeline.inspections_on(place, day=TODAY, document=MIXER)
     (clock,) = found.clocks
@@ -134,6 +141,20 @@ def test_which_readings_hang_on_gauge_17(place: Place, year: Numbers) -> None:
     (gauge,) = pipeline.instruments(place, on=TODAY, given="17").gauges
     assert [one.in_doubt for one in gauge.hanging] == [True, True, True]
     assert gauge.standing == "found bad"
+
+
+def test_what_was_read_while_a_gauge_was_known_good_isn_t_in_doubt(place: Place, year: Numbers) -> None:
+    pipeline.gauge_found_bad(
+        place,
+        given="17",
+        what="zero is off",
+        good_until=USED_ON,
+        on=TODAY,
+        by="Gita Stoll",
+        when=year.mixer[1].reserved_at,
+    )
+    (gauge,) = pipeline.instruments(place, on=TODAY, given="17").gauges
+    assert [one.in_doubt for one in gauge.hanging] == [False, False, False]
 
 
 def test_a_deviation_closed(place: Place, year: Numbers) -> None:
