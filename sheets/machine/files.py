@@ -3,11 +3,9 @@
 from __future__ import annotations
 
 import contextlib
-from collections.abc import Iterator, Sequence
+from collections.abc import Sequence
 from pathlib import Path
 from typing import Final
-
-from filelock import FileLock, Timeout
 
 from sheets.errors import InputError, Problem
 
@@ -108,32 +106,6 @@ def move_into_place(target: Path, data: bytes, *, fix: str, private: bool = Fals
         aside.unlink(missing_ok=True)
 
 
-@contextlib.contextmanager
-def held(target: Path, *, seconds: float = 10.0) -> Iterator[None]:
-    """Keeps other processes from reading, changing and writing back the same file meanwhile.
-
-    ``seconds``: how long to wait for another one. Raises InputError when it takes longer, and where no lock
-    can be made beside the file. The operating system takes the lock off a process that ends.
-    """
-    lock = FileLock(target.parent / f".{target.name}.lock")
-    try:
-        lock.acquire(timeout=seconds)
-    except Timeout:
-        raise InputError(
-            Problem(
-                where=str(target),
-                what="Another command is writing to this file.",
-                fix="Wait until it has ended, then say it again; nothing was written.",
-            )
-        ) from None
-    except OSError as error:
-        raise _unwritten(target, error, "Look whether you may write into its folder.") from None
-    try:
-        yield
-    finally:
-        lock.release()
-
-
 def check_writable(target: Path) -> None:
     """Whether a file can be written into that folder now. Raises InputError."""
     probe = target.parent / f".{target.name}.probe"
@@ -142,7 +114,7 @@ def check_writable(target: Path) -> None:
             opened.write(b"0")
         probe.unlink()
     except OSError as error:
-        raise _unwritten(target, error, _NAME_ANOTHER) from None
+        raise unwritten(target, error, _NAME_ANOTHER) from None
 
 
 def aside_of(target: Path) -> Path:
@@ -160,7 +132,7 @@ def write_aside(target: Path, data: bytes, *, fix: str = _NAME_ANOTHER, private:
     except OSError as error:
         with contextlib.suppress(OSError):
             aside.unlink(missing_ok=True)
-        raise _unwritten(target, error, fix) from None
+        raise unwritten(target, error, fix) from None
 
 
 def move_aside(target: Path, *, fix: str = _NAME_ANOTHER) -> None:
@@ -168,10 +140,11 @@ def move_aside(target: Path, *, fix: str = _NAME_ANOTHER) -> None:
     try:
         aside_of(target).replace(target)
     except OSError as error:
-        raise _unwritten(target, error, fix) from None
+        raise unwritten(target, error, fix) from None
 
 
-def _unwritten(target: Path, error: OSError, fix: str) -> InputError:
+def unwritten(target: Path, error: OSError, fix: str) -> InputError:
+    """The error for a file that the system doesn't let us write."""
     what = f"The file can't be written: {error.strerror}."
     return InputError(Problem(where=str(target), what=what, fix=fix))
 

@@ -19,7 +19,6 @@ from sheets.machine.fields import Entry, Identifier, PortRef
 from sheets.machine.flaws import Flaw
 from sheets.machine.model import Machine, Supply
 from sheets.machine.parts import AnyGauge, Part
-from sheets.machine.record import RecordFile
 from sheets.machine.reporting import flaws_of
 from sheets.machine.site import Site
 from sheets.machine.site_checks import site_check
@@ -138,14 +137,14 @@ def parse_walkdown(text: bytes, name: str, *, machine: Machine, today: date | No
     return _parsed(text, name, Walkdown, check, lambda _: None)
 
 
-def load_record(path: Path) -> RecordFile:
-    """Read a record file. Raises InputError with every problem in it, in the order of its lines."""
-    return parse_record(_bytes_of(path), path.name)
+def load_entry(path: Path, model: type[E]) -> E:
+    """A file that stands by itself, such as a record file. Raises InputError with all that is wrong in it."""
+    return parse_entry(_bytes_of(path), path.name, model)
 
 
-def parse_record(text: bytes, name: str) -> RecordFile:
-    """The record in that text; ``name`` stands in the problems. Raises InputError."""
-    return _parsed(text, name, RecordFile, lambda _: (), lambda _: None)
+def parse_entry(text: bytes, name: str, model: type[E]) -> E:
+    """The same from its text."""
+    return _parsed(text, name, model, lambda _: (), lambda _: None)
 
 
 def _bytes_of(path: Path) -> bytes:

@@ -139,7 +139,7 @@ if TYPE_CHECKING:
     from sheets.pipeline.zeroing import zeros as zeros
     from sheets.pipeline.zeroing import zeros_text as zeros_text
     from sheets.register.saying import day_of as day_of
-    from sheets.wording.as_json import Json as Json
+    from sheets.wording.plain import Json as Json
     from sheets.wording.summary import Outcome as Outcome
     from sheets.wording.summary import broken as broken
     from sheets.wording.summary import summary_json as summary_json

@@ -26,7 +26,7 @@ from sheets.register.readings import readings
 from sheets.register.revisions import Revision
 from sheets.register.saying import told
 from sheets.register.store import View
-from sheets.wording.terminal import columns, counted
+from sheets.wording.plain import columns, counted
 
 # Is this paper the current one?
 

@@ -22,7 +22,7 @@ from sheets.register.chain import Anchor, ChainVerdict
 from sheets.register.opening import Place
 from sheets.register.store import View
 from sheets.seal.canonical import canonical_bytes, digest
-from sheets.wording.terminal import counted
+from sheets.wording.plain import counted
 
 CSV_TYPE: Final = "text/csv"
 """RFC 4180."""

@@ -14,8 +14,7 @@ from sheets.register.listing_people import end_authorisation as told_ended
 from sheets.register.listing_people import train as told_trained
 from sheets.register.opening import Place, open_register
 from sheets.register.people import AuthorisationEnded, Authorised, PersonOn, Trained, names, person_on
-from sheets.wording.as_json import FORMAT, Json
-from sheets.wording.terminal import columns
+from sheets.wording.plain import FORMAT, Json, columns
 
 
 @dataclass(frozen=True, kw_only=True)

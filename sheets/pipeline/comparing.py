@@ -10,8 +10,8 @@ from sheets.errors import InputError, Problem
 from sheets.machine.model import Units
 from sheets.pipeline.computing import spoken_of, status_of, steps
 from sheets.pipeline.describing import Described, check
-from sheets.wording.as_json import Json
 from sheets.wording.difference import Differing, Side, difference_json, difference_lines, differences
+from sheets.wording.plain import Json
 from sheets.wording.steps import Speaker
 
 

@@ -12,7 +12,8 @@ from sheets.errors import ExitStatus, Problem
 from sheets.hazards.assess import assess
 from sheets.machine.walking import walkdown_state
 from sheets.pages.compose.matter import Matter
-from sheets.pipeline.describing import Described, speaker_of
+from sheets.pipeline.describing import Described
+from sheets.pipeline.speaking import speaker_of
 from sheets.pipeline.walking import walked
 from sheets.procedure.case import Case
 from sheets.procedure.plan import make_procedure
@@ -26,8 +27,8 @@ from sheets.targets.settings import Targets
 from sheets.trial.invariants import Invariant
 from sheets.trial.replay import Replay, findings_of, replay
 from sheets.wording import as_json
-from sheets.wording.as_json import Json
 from sheets.wording.obstacles import obstacles
+from sheets.wording.plain import Json
 from sheets.wording.steps import Speaker, SpokenStep
 from sheets.wording.terminal import note_lines, skew_lines, step_lines, target_lines
 from sheets.wording.walk_list import proposal_words

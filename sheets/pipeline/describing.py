@@ -24,9 +24,8 @@ from sheets.machine.loading import (
 from sheets.machine.model import Machine
 from sheets.machine.site import Policies, Site
 from sheets.machine.walkdown import Walkdown
-from sheets.wording.as_json import Json, machine_json
-from sheets.wording.steps import Speaker
-from sheets.wording.terminal import machine_lines
+from sheets.wording.identity import machine_json, machine_lines
+from sheets.wording.plain import Json
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -114,7 +113,3 @@ def check_text(described: Described) -> Iterator[str]:
 
 def check_json(described: Described) -> dict[str, Json]:
     return machine_json(described.machine, described.site, described.site_name)
-
-
-def speaker_of(described: Described) -> Speaker:
-    return Speaker(described.machine, described.circuit, described.policies, {})

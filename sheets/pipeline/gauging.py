@@ -17,8 +17,7 @@ from sheets.register.opening import Place, open_register
 from sheets.register.readings import KeptReading, readings
 from sheets.register.saying import Told, told
 from sheets.register.store import View
-from sheets.wording.as_json import FORMAT, Json
-from sheets.wording.terminal import columns
+from sheets.wording.plain import FORMAT, Json, columns
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -15,8 +15,7 @@ from sheets.register.inspecting import inspect as told_inspected
 from sheets.register.inspections import Clock, Inspected, Inspection, clock_of, inspections
 from sheets.register.opening import Place, open_register
 from sheets.register.revisions import current
-from sheets.wording.as_json import FORMAT, Json
-from sheets.wording.terminal import columns, counted
+from sheets.wording.plain import FORMAT, Json, columns, counted
 
 
 @dataclass(frozen=True, kw_only=True)

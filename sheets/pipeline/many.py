@@ -19,8 +19,9 @@ from sheets.pipeline.computing import (
     targets_json,
     task_of,
 )
-from sheets.pipeline.describing import check, check_json, speaker_of
+from sheets.pipeline.describing import check, check_json
 from sheets.pipeline.printing import draft_name, write_pack
+from sheets.pipeline.speaking import speaker_of
 from sheets.wording.summary import Outcome, failed, known, worst_finding
 
 

@@ -13,7 +13,7 @@ from pathlib import Path
 from typing import Any
 
 from sheets.errors import InputError, Problem, RefusedError
-from sheets.machine.loading import load_record, parse_record
+from sheets.machine.loading import load_entry, parse_entry
 from sheets.machine.record import RecordFile, RecordReading
 from sheets.register.acting import close_window, open_window, put_on, read_zero, take_off, tell_people
 from sheets.register.deviations import Standing, deviations
@@ -50,7 +50,7 @@ class JobRecorded:
 
 def record(file: Path, *, register_at: Place, by: str, when: datetime) -> JobRecorded:
     """Records what a record file says. Raises InputError and RefusedError, and then nothing is recorded."""
-    return record_said(load_record(file), register_at=register_at, by=by, when=when)
+    return record_said(load_entry(file, RecordFile), register_at=register_at, by=by, when=when)
 
 
 def record_answers(
@@ -63,7 +63,7 @@ def record_answers(
     hold_windows: bool = False,
 ) -> JobRecorded:
     """The same from answers with the keys of a record file; the rest as in `record_said`."""
-    said = parse_record(json.dumps(answers, ensure_ascii=False).encode(), "answers")
+    said = parse_entry(json.dumps(answers, ensure_ascii=False).encode(), "answers", RecordFile)
     return record_said(
         said, register_at=register_at, by=by, when=when, acceptance=acceptance, hold_windows=hold_windows
     )

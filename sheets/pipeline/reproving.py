@@ -26,8 +26,7 @@ from sheets.register.finding import document_of, documents_in
 from sheets.register.opening import Place
 from sheets.register.revisions import Issue, Revision
 from sheets.register.revisions import current as current_of
-from sheets.wording.as_json import FORMAT, Json
-from sheets.wording.terminal import counted
+from sheets.wording.plain import FORMAT, Json, counted
 
 
 class Reproof(Enum):

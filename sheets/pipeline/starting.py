@@ -6,7 +6,7 @@ from collections.abc import Iterator
 from pathlib import Path
 
 from sheets.machine.starters import Starter, starters, write_starter
-from sheets.wording.terminal import columns
+from sheets.wording.plain import columns
 
 
 def new(kind: str, target: Path) -> Starter:

@@ -41,7 +41,7 @@ from sheets.register.opening import Place, open_register
 from sheets.seal.canonical import digest
 from sheets.seal.signatures import judge_signatures
 from sheets.seal.signatures_report import Cause, Judgement, Reason, SignatureReport, SignaturesReport, worst
-from sheets.wording.as_json import Json
+from sheets.wording.plain import Json
 from sheets.wording.verification import Judged, sentences, verification_lines
 
 _AFTER_READING = {

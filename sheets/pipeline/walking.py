@@ -7,7 +7,8 @@ from dataclasses import replace
 from pathlib import Path
 
 from sheets.machine.answering import Answers, answered
-from sheets.machine.files import held, move_into_place, walkdown_file
+from sheets.machine.files import move_into_place, walkdown_file
+from sheets.machine.holding import held
 from sheets.machine.walkdown import Walkdown, walkdown_text
 from sheets.machine.walking import (
     EntryState,
@@ -18,12 +19,13 @@ from sheets.machine.walking import (
     walkdown_state,
     with_answers,
 )
-from sheets.pipeline.describing import Described, speaker_of, walkdown_beside
+from sheets.pipeline.describing import Described, walkdown_beside
+from sheets.pipeline.speaking import speaker_of
 from sheets.seal.canonical import canonical_bytes, digest
 from sheets.targets.accepting import accept, computed_settings
 from sheets.targets.compute import compute_targets
 from sheets.targets.settings import Targets
-from sheets.wording.as_json import Json
+from sheets.wording.plain import Json
 from sheets.wording.walk_list import entry_lines, standing, walk_json, walk_lines
 
 

@@ -16,8 +16,8 @@ from sheets.register.opening import Place
 from sheets.register.revisions import Revision
 from sheets.register.revisions import current as current_of
 from sheets.register.saying import Told, told
+from sheets.wording.plain import columns, counted
 from sheets.wording.sentences import Sentences
-from sheets.wording.terminal import columns, counted
 
 _TEXTS: Final = "texts.j2"
 

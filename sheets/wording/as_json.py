@@ -8,38 +8,13 @@ from sheets.amounts import Amount, Derivation, Finding
 from sheets.circuit.plant import Adjust, AtStop
 from sheets.circuit.verdict import Verdict
 from sheets.errors import Problem
-from sheets.machine.model import Machine
-from sheets.machine.site import Site
 from sheets.procedure.answers import NotFound, NotInUse, TestState
 from sheets.procedure.changes import WAYS, Change
 from sheets.procedure.steps import Procedure, Reading
 from sheets.targets.settings import Targets
 from sheets.wording.findings import say_finding
+from sheets.wording.plain import FORMAT, Json, rounded
 from sheets.wording.steps import Speaker, SpokenStep
-
-Json = None | bool | int | float | str | list["Json"] | dict[str, "Json"]
-FORMAT = 1
-
-
-def rounded(value: float) -> float:
-    """A figure without the last bits, which depend on the computer."""
-    return round(value, 6)
-
-
-def machine_json(machine: Machine, site: Site | None = None, site_name: str = "") -> dict[str, Json]:
-    """Identity and counts of a machine file, and the site file that was taken with it."""
-    return {
-        "format": FORMAT,
-        "tag": machine.tag,
-        "name": machine.name,
-        "document": machine.document,
-        "dated": machine.dated.isoformat(),
-        "parts": len(machine.parts),
-        "nets": len(machine.nets),
-        "gauges": len(machine.gauges),
-        "energy_sources": len(machine.energy),
-        "site": {"file": site_name, "plant": site.plant} if site is not None else None,
-    }
 
 
 def targets_json(speaker: Speaker, targets: Targets, proposals: Mapping[str, str]) -> dict[str, Json]:

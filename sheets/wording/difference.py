@@ -15,8 +15,8 @@ from sheets.procedure.answers import NotFound, NotInUse, TestState
 from sheets.procedure.steps import Procedure, Reading
 from sheets.quantities import number
 from sheets.targets.settings import Setting, Targets
-from sheets.wording.as_json import FORMAT, Json
 from sheets.wording.findings import say_finding
+from sheets.wording.plain import FORMAT, Json
 from sheets.wording.plates import plate_value
 from sheets.wording.steps import Speaker, SpokenStep
 from sheets.wording.why import say_changes

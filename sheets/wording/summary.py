@@ -8,10 +8,9 @@ from dataclasses import dataclass
 from sheets.amounts import Finding, Severity
 from sheets.errors import ExitStatus, JamnutError, Problem
 from sheets.machine.model import Machine
-from sheets.wording.as_json import Json
 from sheets.wording.findings import say_finding
+from sheets.wording.plain import Json, columns
 from sheets.wording.steps import Speaker
-from sheets.wording.terminal import columns
 
 _VERDICTS = {
     ExitStatus.GOOD: "good",

@@ -6,11 +6,10 @@ from collections.abc import Iterable, Iterator, Mapping
 
 from sheets.amounts import Finding, Severity
 from sheets.errors import Problem
-from sheets.machine.model import Machine
-from sheets.machine.site import Site
 from sheets.procedure.steps import Procedure
 from sheets.targets.settings import Targets
 from sheets.wording.findings import say_finding, say_not_in_use
+from sheets.wording.plain import columns
 from sheets.wording.steps import Speaker, SpokenStep
 
 _WORD = {
@@ -19,24 +18,6 @@ _WORD = {
     Severity.WARNING: "warning",
     Severity.NOTE: "note",
 }
-
-
-def machine_lines(machine: Machine, site: Site | None = None, site_name: str = "") -> Iterator[str]:
-    """That the file is good, with what it holds, and which site file was taken with it."""
-    yield (
-        f"{machine.tag} {machine.name}: good, {counted(len(machine.parts), 'part')}, "
-        f"{counted(len(machine.nets), 'net')}, {counted(len(machine.gauges), 'gauge')}, "
-        f"machine data of {machine.dated.isoformat()}"
-    )
-    if site is not None:
-        yield f"with the site file {site_name} of {site.plant}"
-    else:
-        yield "without a site file: policy figures are the project's own"
-
-
-def counted(count: int, thing: str) -> str:
-    """A number of things: ``1 gauge``, ``2 gauges``."""
-    return f"{count} {thing}" if count == 1 else f"{count} {thing}s"
 
 
 def finding_lines(speaker: Speaker, findings: Iterable[Finding]) -> Iterator[str]:
@@ -87,14 +68,6 @@ def skew_lines(speaker: Speaker, findings: Iterable[Finding]) -> Iterator[str]:
         yield from finding_lines(speaker, kept)
     else:
         yield "no plate value changes order or states when it is a tenth higher or lower"
-
-
-def columns(rows: Iterable[tuple[str, ...]]) -> Iterator[str]:
-    """Rows in columns, two spaces apart."""
-    kept = list(rows)
-    widths = [max(len(row[place]) for row in kept) for place in range(len(kept[0]))]
-    for row in kept:
-        yield "  ".join(cell.ljust(width) for cell, width in zip(row, widths, strict=True)).rstrip()
 
 
 def step_lines(

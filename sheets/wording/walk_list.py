@@ -10,8 +10,8 @@ from sheets.machine.gauges import Gauge
 from sheets.machine.leaves import Leaf, leaves
 from sheets.machine.model import Machine, Supply
 from sheets.machine.walking import AcceptanceState, AcceptedSetting, EntryState, WalkdownState, WalkedEntry
-from sheets.wording.as_json import FORMAT, Json, rounded
 from sheets.wording.figures import Figures
+from sheets.wording.plain import FORMAT, Json, rounded
 from sheets.wording.plates import plate_values
 from sheets.wording.sentences import Sentences
 from sheets.wording.steps import Speaker, capital

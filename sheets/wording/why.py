@@ -10,8 +10,8 @@ from sheets.errors import InputError, Problem, quoted
 from sheets.procedure.answers import NearMiss, NotFound, NotInUse, TestState
 from sheets.procedure.changes import Change
 from sheets.procedure.steps import Procedure
-from sheets.wording.as_json import FORMAT, Json, rounded
 from sheets.wording.findings import say_failure, say_not_in_use
+from sheets.wording.plain import FORMAT, Json, rounded
 from sheets.wording.sentences import Sentences
 from sheets.wording.steps import Speaker
 

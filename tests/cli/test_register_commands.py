@@ -19,7 +19,8 @@ from test_issuing_commands import NOW, example
 
 from sheets import cli, pipeline
 from sheets.cli import common, issuing, people, recording, registering, tagging
-from sheets.machine.loading import parse_record
+from sheets.machine.loading import parse_entry
+from sheets.machine.record import RecordFile
 from sheets.register.opening import open_register
 from sheets.register.readings import readings
 from sheets.register.rows import Row
@@ -263,6 +264,6 @@ def test_the_readme_s_record_file_is_one(root: Path) -> None:
     text = (root / "README.md").read_text(encoding="utf-8")
     (piece,) = re.findall(r"```yaml\n( *format: 1\n *record: .+?)```", text, re.DOTALL)
     lines = [line.removeprefix("   ") for line in piece.splitlines()]
-    said = parse_record("\n".join(lines).encode(), "README")
+    said = parse_entry("\n".join(lines).encode(), "README", RecordFile)
     assert (said.record, said.from_paper, said.end) == ("0123456789", True, "done")
     assert [len(part) for part in (said.told, said.locks, said.zeros, said.windows, said.readings)] == [1] * 5

@@ -17,7 +17,7 @@ import yaml
 
 from sheets import cli, pipeline
 from sheets.errors import InputError
-from sheets.machine import files
+from sheets.machine.holding import held
 from sheets.pipeline import walking
 
 COMPUTED = ("      setting: 180 bar\n      given by: machine manual, sheet 2\n", "")
@@ -232,10 +232,10 @@ def test_answers_of_several_at_once_are_all_kept(file: Path, monkeypatch: pytest
 def test_a_file_that_another_command_holds_is_told(tmp_path: Path) -> None:
     target = tmp_path / "a.walkdown.yaml"
     with (
-        files.held(target),
+        held(target),
         pytest.raises(InputError, match="Another command is writing"),
-        files.held(target, seconds=0.1),
+        held(target, seconds=0.1),
     ):
         pass
-    with files.held(target, seconds=0.1):
+    with held(target, seconds=0.1):
         assert not target.exists()

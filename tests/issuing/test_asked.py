@@ -6,13 +6,11 @@ import pytest
 from works import BRAM, DOCUMENT, LATER, Works
 
 from sheets import pipeline
-from sheets.errors import InputError, RefusedError
+from sheets.errors import InputError
 from sheets.pages.compose.matter import Matter
 from sheets.register.acts import ZeroRead
 from sheets.register.opening import open_register
 from sheets.register.saying import tell
-
-EDDA = "Edda Fenn"
 
 
 def test_where_each_zero_is_shown(works: Works, job: Matter) -> None:
@@ -70,82 +68,3 @@ def test_what_the_paper_says_is_current_or_not(works: Works, job: Matter) -> Non
     assert pipeline.current(works.register, first.record_id).status == 1
     assert pipeline.current(works.register, second.record_id).status == 0
     assert pipeline.current(works.register, second.digest).status == 0
-
-
-def test_from_a_recorded_job_to_an_inspection_that_somebody_else_makes(works: Works) -> None:
-    """Whoever took a reading by these sheets doesn't inspect them; what is found is closed by number."""
-    (revision,) = works.revisions()
-    day = LATER.date()
-    told = {"register_at": works.register, "by": EDDA, "when": LATER}
-    for name in (BRAM, EDDA):
-        pipeline.authorise(
-            works.register, name=name, what="lockout", since=day, until=None, by="Gita Stoll", when=LATER
-        )
-    pipeline.list_gauge(
-        works.register,
-        serial="BT-4471",
-        number="17",
-        what="digital gauge",
-        range_text="400 bar",
-        accuracy_class="",
-        error_text="0.2 bar",
-        certificate="C-2209",
-        due=day,
-        by=EDDA,
-        when=LATER,
-    )
-    issue = revision.issue
-    assert issue is not None
-    assert issue.kept is not None
-    row = issue.kept.rows[0]
-    made = pipeline.record_answers(
-        {
-            "format": "1",
-            "record": revision.record_id,
-            "why": "yearly setting",
-            "day": day.isoformat(),
-            "people": [BRAM],
-            "from paper": "no",
-            "readings": [
-                {"row": "1", "as found": f"{row.target} {row.unit}", "gauge": "17", "seal": "whole"},
-            ],
-        },
-        **told,
-    )
-    (reading,) = [one.reading for one in made.readings]
-
-    def inspected(inspector: str, *employees: str) -> list[int]:
-        _, left = pipeline.inspect(
-            works.register,
-            document="PU-03",
-            record_id=None,
-            inspector=inspector,
-            employees=employees,
-            on=day,
-            deviations=("tag of Q1 unreadable",),
-            corrections=(),
-            by=inspector,
-            today=day,
-            when=LATER,
-        )
-        return left
-
-    with pytest.raises(
-        RefusedError, match=rf"They used the procedure themselves: events {made.job}, {reading}\."
-    ):
-        inspected(BRAM, "Cleo Harnett")
-    (deviation,) = inspected(EDDA, BRAM)
-    assert pipeline.deviations(works.register, given="PU-03").status == 1
-    pipeline.settle(deviation, accepted="", done="new tag put on", on=day, **told)
-    shown = pipeline.deviations(works.register, number=deviation)
-    assert shown.status == 0
-    text = "; ".join(pipeline.deviations_text(shown))
-    assert f"corrected on {day} by {EDDA}: new tag put on" in text
-
-    (gauge,) = pipeline.instruments(works.register, on=day, given="17").gauges
-    assert [one.event for one in gauge.hanging] == [reading]
-    used = pipeline.used(works.register, "PU-03", on=day)
-    assert [(one.revision.number, [use.event for use in one.uses]) for one in used.used] == [
-        (1, [made.job, reading])
-    ]
-    pipeline.audit(works.register, works.folder / "audit.pdf", day=day)
