@@ -20,7 +20,7 @@ from sheets.desk import reading, signing_in, writing
 from sheets.desk.gatekeeping import Gatekeeper
 from sheets.desk.guard import Guard
 from sheets.desk.sessions import Sessions
-from sheets.desk.showing import Desk, Visit, bug, status_of
+from sheets.desk.showing import Desk, KeptPages, Visit, bug, status_of
 from sheets.errors import JamnutError, Problem
 from sheets.pipeline import DeskSettings, ReadingRoom, Role
 
@@ -59,6 +59,7 @@ def create(
         base=address.path.rstrip("/") if address else "",
         sessions=Sessions(now, random_text),
         gate=Gatekeeper(now, random_text),
+        kept=KeptPages(),
     )
     hosts = {*OWN_NAMES, *settings.hosts, *([address.hostname] if address and address.hostname else [])}
     routes = _routes(desk)
@@ -100,8 +101,12 @@ def _routes(desk: Desk) -> list[Route]:
     routes = [
         at("/r/{record_id}", reading.record),
         at("/r/{record_id}/file", reading.file),
+        at("/", reading.machines),
+        at("/dates", reading.dates),
+        at("/machine", reading.machine),
         at("/find", reading.find),
         always("/look.css", reading.look_css),
+        always("/favicon.ico", reading.no_icon),
     ]
     if desk.room.settings.users is None:
         return routes

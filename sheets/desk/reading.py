@@ -5,15 +5,20 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 from urllib.parse import urlencode
 
-from starlette.responses import RedirectResponse, Response
+from starlette.responses import HTMLResponse, RedirectResponse, Response
 
 from sheets import pipeline
+from sheets.desk.showing import UNREADABLE
 from sheets.errors import Problem
 from sheets.pipeline import Paper, Role
 
 if TYPE_CHECKING:
     from sheets.desk.showing import Visit
 
+LONGEST_TAG = 200
+NO_MACHINE = Problem(
+    where="", what="Nothing can be told of such a machine.", fix="Choose one from the list of machines."
+)
 NO_FILE = Problem(
     where="",
     what="The signed file of this record isn't kept here.",
@@ -30,7 +35,16 @@ def record(visit: Visit) -> Response:
     )
     look = pipeline.look_at_record(visit.desk.room, paper, now=visit.desk.now())
     status = {"unknown": 404, "not_established": 503}.get(look.shown.value, 200)
-    return visit.page("record", status=status, look=look, may_record=visit.may(Role.TECHNICIAN))
+    if visit.user is not None:
+        return visit.page("record", status=status, look=look, may_record=visit.may(Role.TECHNICIAN))
+    kept = visit.desk.kept
+    at = f"{visit.desk.now():%Y-%m-%d %H:%M}"
+    # The look was judged just now; what is kept is only its drawing, and only for this very look.
+    body = kept.find(paper, look, at)
+    if body is None:
+        body = bytes(visit.page("record", status=status, look=look, may_record=False).body)
+        kept.keep(paper, look, at, body)
+    return HTMLResponse(body, status_code=status)
 
 
 def file(visit: Visit) -> Response:
@@ -58,6 +72,30 @@ def find(visit: Visit) -> Response:
     return RedirectResponse(f"{visit.desk.base}/r/{key}{'?' if query else ''}{query}", status_code=303)
 
 
+def machines(visit: Visit) -> Response:
+    """All machines, a plain list."""
+    lists = pipeline.look_at_lists(visit.desk.room, now=visit.desk.now())
+    return visit.page("machines", lists=lists) if lists.whole else visit.problem(503, UNREADABLE)
+
+
+def dates(visit: Visit) -> Response:
+    """What is due when, a plain list."""
+    lists = pipeline.look_at_lists(visit.desk.room, now=visit.desk.now())
+    return visit.page("dates", lists=lists) if lists.whole else visit.problem(503, UNREADABLE)
+
+
+def machine(visit: Visit) -> Response:
+    """One machine: revisions, and each setting over time."""
+    tag = visit.request.query_params.get("tag", "")[:LONGEST_TAG]
+    look = pipeline.look_at_machine(visit.desk.room, tag, now=visit.desk.now())
+    return visit.page("machine", look=look) if look is not None else visit.problem(404, NO_MACHINE)
+
+
 def look_css(_: Visit) -> Response:
     """The style sheet; a page that was never cached may keep it a while."""
     return Response(pipeline.web_style(), media_type="text/css")
+
+
+def no_icon(_: Visit) -> Response:
+    """Browsers ask for a picture without being told to; there is none."""
+    return Response(status_code=204)

@@ -22,10 +22,11 @@ if TYPE_CHECKING:
 
     from sheets.desk.gatekeeping import Gatekeeper
     from sheets.desk.sessions import Session, Sessions
-    from sheets.pipeline import ReadingRoom, Role, User
+    from sheets.pipeline import Paper, ReadingRoom, RecordLook, Role, User
 
 LOG: Final = logging.getLogger("jamnut.desk")
 MOST_FIELDS: Final = 60
+MOST_PAGES: Final = 64
 _HTTP: Final = {
     ExitStatus.WRONG_INPUT: 422,
     ExitStatus.REFUSED: 409,
@@ -43,11 +44,29 @@ _HEADINGS: Final = {
     500: "an error of the page",
     503: "not established",
 }
-_UNREADABLE: Final = Problem(
+UNREADABLE: Final = Problem(
     where="",
     what="The register can't be read, so nothing can be told from it.",
     fix="Nothing here says whether a paper is current. Telephone the planner.",
 )
+
+
+class KeptPages:
+    """Pages as they were drawn for who isn't signed in; drawing takes longer than looking up."""
+
+    def __init__(self) -> None:
+        self._held: dict[Paper, tuple[RecordLook, str, bytes]] = {}
+
+    def find(self, paper: Paper, look: RecordLook, at: str) -> bytes | None:
+        """The page of this very look, of this minute ``at``."""
+        held = self._held.get(paper)
+        return held[2] if held is not None and held[0] is look and held[1] == at else None
+
+    def keep(self, paper: Paper, look: RecordLook, at: str, body: bytes) -> None:
+        """Keeps it, and forgets all where there are too many; ``at``: its minute, ``body``: the page."""
+        if len(self._held) >= MOST_PAGES:
+            self._held.clear()
+        self._held[paper] = (look, at, body)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -60,6 +79,7 @@ class Desk:
     """Path under which it is reached, without a closing slash: that of the site's record address."""
     sessions: Sessions
     gate: Gatekeeper
+    kept: KeptPages
 
     @property
     def secure(self) -> bool:
@@ -102,7 +122,7 @@ class Desk:
     def unread(self, error: JamnutError) -> Response:
         """The register didn't answer: what is wrong with it is told to the log, not to the reader."""
         LOG.error("the register can't be read: %s", error)
-        return self.problem(503, _UNREADABLE)
+        return self.problem(503, UNREADABLE)
 
 
 class Visit:

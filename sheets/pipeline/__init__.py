@@ -75,6 +75,8 @@ if TYPE_CHECKING:
     from sheets.pipeline.issuing import issue as issue
     from sheets.pipeline.issuing import issued_text as issued_text
     from sheets.pipeline.keying import keys as keys
+    from sheets.pipeline.lists_shown import look_at_lists as look_at_lists
+    from sheets.pipeline.lists_shown import look_at_machine as look_at_machine
     from sheets.pipeline.looking import Paper as Paper
     from sheets.pipeline.looking import RecordLook as RecordLook
     from sheets.pipeline.looking import look_at_file as look_at_file
@@ -239,6 +241,8 @@ _CONTENTS: Final[dict[str, str]] = {
     "inspections_on": "pipeline.inspecting",
     "inspections_text": "pipeline.inspecting",
     # show it on a screen
+    "look_at_machine": "pipeline.lists_shown",
+    "look_at_lists": "pipeline.lists_shown",
     "SettingShown": "pipeline.settings_shown",
     "Acceptance": "pipeline.recording",
     "acceptable": "pipeline.page_recording",

@@ -88,12 +88,13 @@ class ReadingRoom:
     def view(self, now: datetime) -> Iterator[tuple[View, ChainVerdict]]:
         """The register as it stands, with the verdict on its chain. Raises InputError if it can't be read."""
         with self._opened().reading() as view:
-            yield view, self._verdict(view, now)
+            yield view, self._verdict(view, view.last(), now)
 
     def answer(self, key: Hashable, now: datetime, find: Callable[[View, ChainVerdict], T]) -> T:
         """What ``find`` gives, kept until the register's next event or judgement, or the next day."""
-        with self.view(now) as (view, chain):
+        with self._opened().reading() as view:
             last = view.last()
+            chain = self._verdict(view, last, now)
             whole = (key, self.day(now), chain)
             with self._lock:
                 if self._kept_at != last:
@@ -109,8 +110,7 @@ class ReadingRoom:
                     self._kept[whole] = found
             return found
 
-    def _verdict(self, view: View, now: datetime) -> ChainVerdict:
-        last = view.last()
+    def _verdict(self, view: View, last: tuple[int, str], now: datetime) -> ChainVerdict:
         with self._lock:
             if self._judged is not None:
                 at, verdict, when = self._judged

@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 import json
 import re
+import sqlite3
 from dataclasses import dataclass, field
 from datetime import UTC, date, datetime, timedelta
 from pathlib import Path
@@ -170,21 +171,26 @@ def kept(called: str = "RV1") -> Kept:
 
 
 def list_gauge(
-    bench: Bench, serial: str = "4711", number: str = "17", due: date = date(2031, 12, 31)
+    register: Path,
+    serial: str = "4711",
+    number: str = "17",
+    due: date = date(2031, 12, 31),
+    when: datetime = NOON,
+    accuracy_class: str = "1.0",
 ) -> None:
-    """A dial to 400 bar, class 1.0: out by at most 4 bar."""
+    """A dial to 400 bar; of class 1.0 it is out by at most 4 bar."""
     pipeline.list_gauge(
-        bench.register,
+        register,
         serial=serial,
         number=number,
         what="dial gauge",
         range_text="400 bar",
-        accuracy_class="1.0",
+        accuracy_class=accuracy_class,
         error_text="",
         certificate="C-1",
         due=due,
         by="Ines Kurz",
-        when=bench.clock(),
+        when=when,
     )
 
 
@@ -192,6 +198,15 @@ def events(bench: Bench, *kinds: str) -> list[tuple[str, str, dict[str, object]]
     """Kind, who and data of the register's events of those kinds."""
     with open_register(bench.register, read_only=True) as register, register.reading() as view:
         return [(one.kind, one.who, one.facts) for one in view.events() if one.kind in kinds]
+
+
+def rewrite(bench: Bench) -> None:
+    """What an administrator can do: change an old event in its place."""
+    with sqlite3.connect(bench.register) as other:
+        (sql,) = other.execute("SELECT sql FROM sqlite_master WHERE name = 'no_update'").fetchone()
+        other.execute("DROP TRIGGER no_update")
+        other.execute("UPDATE events SET who = 'Somebody Else' WHERE kind = 'signed'")
+        other.execute(sql)
 
 
 def code_of(revision: Revision) -> str:

@@ -6,7 +6,7 @@ import sqlite3
 from datetime import timedelta
 
 import pytest
-from desk_bench import NOON, Bench, code_of, word
+from desk_bench import NOON, Bench, code_of, rewrite, word
 
 from sheets.register import issuing
 from sheets.register.opening import open_register
@@ -120,7 +120,7 @@ def test_a_register_that_does_not_hold_says_nothing(bench: Bench) -> None:
     issued = bench.issue()
     client = bench.client()
     assert word(client.get(code_of(issued))) == "current"
-    _rewrite(bench)
+    rewrite(bench)
     bench.clock.move(seconds=31)  # an old event behind the last one: seen when it is judged anew
     answer = client.get(code_of(issued))
     assert (answer.status_code, word(answer)) == (503, "not established")
@@ -222,12 +222,3 @@ def test_days_are_those_of_the_works(bench: Bench) -> None:
     bench.clock.at = NOON + timedelta(hours=1)
     # Noon UTC on 4 March is 1 in the morning of 5 March there: UTC+13, daylight time (IANA tz database).
     assert "issued 2031-03-05" in bench.client().get(code_of(issued)).text
-
-
-def _rewrite(bench: Bench) -> None:
-    """What an administrator can do: change an old event in its place."""
-    with sqlite3.connect(bench.register) as other:
-        (sql,) = other.execute("SELECT sql FROM sqlite_master WHERE name = 'no_update'").fetchone()
-        other.execute("DROP TRIGGER no_update")
-        other.execute("UPDATE events SET who = 'Somebody Else' WHERE kind = 'signed'")
-        other.execute(sql)

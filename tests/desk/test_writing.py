@@ -27,7 +27,7 @@ ACCEPTED = {
 def issued(bench: Bench) -> Revision:
     for name, role in (("Rita Sorn", "reader"), ("Tom Ness", "technician"), ("Ada Quarrow", "approver")):
         pipeline.set_user(bench.users, name=name, role=role, password=PASSWORD)
-    list_gauge(bench)
+    list_gauge(bench.register)
     return bench.issue(kept=kept())
 
 
@@ -164,7 +164,7 @@ def test_wrong_figures_come_back_with_the_form(
 
 
 def test_an_overdue_gauge_is_refused(bench: Bench, site: TestClient, issued: Revision) -> None:
-    list_gauge(bench, serial="12", number="18", due=date(2031, 3, 3))
+    list_gauge(bench.register, serial="12", number="18", due=date(2031, 3, 3))
     sign_in(site)
     answer = sent(site, issued, gauge="12")
     assert answer.status_code == 409
