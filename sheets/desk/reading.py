@@ -35,14 +35,16 @@ def record(visit: Visit) -> Response:
     )
     look = pipeline.look_at_record(visit.desk.room, paper, now=visit.desk.now())
     status = {"unknown": 404, "not_established": 503}.get(look.shown.value, 200)
+    file = bool(look.file_digest) and visit.desk.room.files.holds(look.file_digest)
     if visit.user is not None:
-        return visit.page("record", status=status, look=look, may_record=visit.may(Role.TECHNICIAN))
+        may = visit.may(Role.TECHNICIAN)
+        return visit.page("record", status=status, look=look, may_record=may, file=file)
     kept = visit.desk.kept
-    at = f"{visit.desk.now():%Y-%m-%d %H:%M}"
+    at = f"{visit.desk.now():%Y-%m-%d %H:%M} {file}"
     # The look was judged just now; what is kept is only its drawing, and only for this very look.
     body = kept.find(paper, look, at)
     if body is None:
-        body = bytes(visit.page("record", status=status, look=look, may_record=False).body)
+        body = bytes(visit.page("record", status=status, look=look, may_record=False, file=file).body)
         kept.keep(paper, look, at, body)
     return HTMLResponse(body, status_code=status)
 
@@ -66,7 +68,7 @@ def find(visit: Visit) -> Response:
         return visit.page("find")
     if not (key.isascii() and key.isalnum()):
         look = pipeline.look_at_record(visit.desk.room, Paper(record_id=key), now=visit.desk.now())
-        return visit.page("record", status=404, look=look, may_record=False)
+        return visit.page("record", status=404, look=look, may_record=False, file=False)
     typed = {name: visit.request.query_params.get(name, "").strip()[:40] for name in ("d", "v")}
     query = urlencode({name: text for name, text in typed.items() if text})
     return RedirectResponse(f"{visit.desk.base}/r/{key}{'?' if query else ''}{query}", status_code=303)

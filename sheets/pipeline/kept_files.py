@@ -21,7 +21,6 @@ class KeptFiles:
     def __init__(self, folder: Path | None) -> None:
         self.folder = folder
         self._lock = Lock()
-        self._folder_stamp: int | None = None
         self._digests: dict[Path, tuple[_Stamp, str]] = {}
 
     def holds(self, digest: str) -> bool:
@@ -50,10 +49,7 @@ class KeptFiles:
             return next((file for file, (_, found) in self._digests.items() if found == digest), None)
 
     def _look(self, folder: Path) -> None:
-        """Reads what is new or was changed; the folder's own time tells whether files came or went."""
-        stamp = folder.stat().st_mtime_ns
-        if stamp == self._folder_stamp:
-            return
+        """Reads what is new or was changed. A folder's own time is too coarse to tell that files came."""
         known, self._digests = self._digests, {}
         for file in sorted(folder.glob("*.pdf"))[:MOST_FILES]:
             found = file.stat()
@@ -64,4 +60,3 @@ class KeptFiles:
                 self._digests[file] = known[file]
             else:
                 self._digests[file] = (mark, file_digest(file.read_bytes()))
-        self._folder_stamp = stamp

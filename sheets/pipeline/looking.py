@@ -138,8 +138,8 @@ class RecordLook:
     settings: tuple[SettingShown, ...] = ()
     jobs: tuple[JobLine, ...] = ()
     """Open jobs from these sheets."""
-    file: bool = False
-    """Whether the signed file is at hand."""
+    file_digest: str = ""
+    """Of the signed file of a current revision, which may be at hand or not."""
 
     @property
     def scanned(self) -> bool:
@@ -171,9 +171,7 @@ def look_at_file(room: ReadingRoom, record_id: str, *, now: datetime) -> tuple[s
     seen = look_at_record(room, Paper(record_id=record_id), now=now)
     if not seen.good or seen.revision is None:
         return None
-    with room.view(now) as (view, chain):
-        revision = currency_in(view, chain, seen.key).revision
-    data = room.files.read(revision.issue.file_digest) if revision and revision.issue else None
+    data = room.files.read(seen.file_digest)
     return None if data is None else (f"{seen.revision.record_id}.pdf", data)
 
 
@@ -208,7 +206,7 @@ def _look(room: ReadingRoom, view: View, found: Currency, paper: Paper) -> Recor
             for one in jobs(view, record_id=revision.record_id)
             if one.open
         ),
-        file=shown is Shown.CURRENT and issue is not None and room.files.holds(issue.file_digest),
+        file_digest=issue.file_digest if shown is Shown.CURRENT and issue is not None else "",
     )
 
 

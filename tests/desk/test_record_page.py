@@ -192,6 +192,7 @@ def test_the_signed_file_is_offered_only_to_the_byte(bench: Bench) -> None:
     assert word(client.get(code_of(issued))) == "current"
     answer = client.get(link)
     assert (answer.status_code, answer.content) == (200, b"%PDF-1.7 the pack")
+    assert link in client.get(code_of(issued)).text
     assert answer.headers["content-type"] == "application/pdf"
     (bench.folder / "packs" / "KP-2.pdf").write_bytes(b"%PDF-1.7 changed in its place")
     assert client.get(link).status_code == 404
