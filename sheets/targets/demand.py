@@ -15,6 +15,8 @@ from sheets.energy.held import held_loads
 from sheets.machine.model import Machine
 from sheets.machine.parts import Cylinder, DirectionalValve, FixedPump, HydraulicMotor, Part, VariablePump
 
+_SAME_DIGITS = 6
+"""After the point, in bar: what the solver is good for."""
 _MOST_POSITIONS = 1024
 """Sets of spool positions that are tried."""
 _BATCH = 256
@@ -107,11 +109,16 @@ def work_of(
     for found in moves.values():
         demands += _of_load(found)
     return Work(
-        demands=tuple(sorted(demands, key=lambda demand: (-demand.pump_pressure_bar, demand.actuator))),
+        demands=tuple(sorted(demands, key=_heaviest_first)),
         findings=tuple(_unmoved(load, *loads[load], known=known) for load in loads if not moves[load])
         if spools
         else (),
     )
+
+
+def _heaviest_first(demand: Demand) -> tuple[float, str]:
+    """Equal ones, as both ways of a motor are, in the order of the file: the last bits decide nothing."""
+    return -round(demand.pump_pressure_bar, _SAME_DIGITS), demand.actuator
 
 
 def _sets(circuit: Circuit, spools: list[str]) -> Iterator[tuple[tuple[str, str], ...]]:

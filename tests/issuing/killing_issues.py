@@ -54,6 +54,7 @@ def killed_once(works: Works, matters: list[Matter], turn: int, wait_s: float) -
     time.sleep(wait_s)
     os.kill(child, signal.SIGKILL)
     os.waitpid(child, 0)
+    works.take_back()
     with os.fdopen(reader, "rb") as told:
         return told.read().count(b"\n")
 

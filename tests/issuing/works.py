@@ -90,17 +90,22 @@ class Works:
             "reason": "a name was wrong",
             **other,
         }
-        old = self.pack.with_suffix(".put-away")
         if target is None and self.pack.exists():
-            self.pack.rename(old)
+            self.pack.rename(self._put_away)
         try:
             return pipeline.issue(matter, target or self.pack, **given)
-        except BaseException:
-            if old.exists():
-                old.rename(self.pack)
-            raise
         finally:
-            old.unlink(missing_ok=True)
+            self.take_back()
+
+    @property
+    def _put_away(self) -> Path:
+        return self.pack.with_suffix(".put-away")
+
+    def take_back(self) -> None:
+        """The pack that was put away for another stands in its place again, unless the other came."""
+        if self._put_away.exists() and not self.pack.exists():
+            self._put_away.rename(self.pack)
+        self._put_away.unlink(missing_ok=True)
 
     def sign(self, meaning: str, who: str | None = None, **other: object) -> Issued:
         given: dict[str, object] = {

@@ -310,7 +310,7 @@ def test_j_torque_limit_lowers_the_reading_at_the_relief(refused: Refused) -> No
     assert found.flow_lpm == pytest.approx(power / expected_bar - LEAK * expected_bar, abs=0.1)
     # Target and window convert together: 202 … 210 bar at the same flow, inward to divisions of 2 bar.
     assert (found.gauge.window.low_bar, found.gauge.window.high_bar) == (200.0, 206.0)
-    assert "up to 203 bar" in orders(matter, "RV1")
+    assert "then by the smallest steps to 203 bar" in orders(matter, "RV1")
     assert matter.targets.settings["RV1"].target_bar == 206.0
 
 
