@@ -17,6 +17,7 @@ from sheets.pages.compose.audit import AuditList, audit_document
 from sheets.pages.document import Layout
 from sheets.pages.press import print_pack
 from sheets.pipeline.listing import lists_of
+from sheets.pipeline.replacing import keep_all_but_audits
 from sheets.pipeline.whole import whole_register
 from sheets.register.chain import Anchor, ChainVerdict
 from sheets.register.opening import Place
@@ -28,7 +29,7 @@ CSV_TYPE: Final = "text/csv"
 """RFC 4180."""
 _FORMULA: Final = ("=", "+", "-", "@", "\t")
 """What a spreadsheet would compute instead of showing."""
-_FIX: Final = "Name a file with -o, in a folder that exists and that you may write to."
+_FIX: Final = "Name a file in a folder that exists and that you may write to."
 _NO_ANCHOR: Final = (
     "No anchor from outside was given: an end that was cut off, or a register written anew from some event "
     "on, wouldn't be seen."
@@ -57,7 +58,8 @@ def audit(
     """Writes the bundle: a PDF with every list, and each list as CSV, beside it and in it.
 
     ``day``: today at the works; due dates and people are as of it. ``anchors``: kept outside. Raises
-    NotEstablishedError, and writes nothing, where the chain of the register doesn't hold.
+    NotEstablishedError, and writes nothing, where the chain of the register doesn't hold; InputError where
+    anything but an audit stands there.
     """
     check_pdf_target(target)
     known = [Anchor.read(text) for text in anchors]
@@ -75,6 +77,8 @@ def audit(
     )
     said = digest(canonical_bytes(document))
     texts = {one.name: _csv(one) for one in lists}
+    beside = {one.name: target.with_name(f"{target.stem}-{one.name}.csv") for one in lists}
+    keep_all_but_audits(target, [(beside[one.name], _head(one)) for one in lists])
     data = print_pack(
         document,
         layout=Layout(paper=paper),
@@ -92,9 +96,8 @@ def audit(
     )
     files = [target]
     for name, text in texts.items():
-        beside = target.with_name(f"{target.stem}-{name}.csv")
-        move_into_place(beside, text, fix=_FIX)
-        files.append(beside)
+        move_into_place(beside[name], text, fix=_FIX)
+        files.append(beside[name])
     write_pdf(target, data)
     return Audited(files=tuple(files), lists=lists, anchor=last, digest=said)
 
@@ -126,9 +129,16 @@ def _facts(
 
 def _csv(one: AuditList) -> bytes:
     """A list as CSV (RFC 4180). What a spreadsheet would take for a formula gets an apostrophe before it."""
+    rows = ([f"'{cell}" if cell.startswith(_FORMULA) else cell for cell in row] for row in one.rows)
+    return _lines([one.head, *rows]).encode()
+
+
+def _head(one: AuditList) -> str:
+    """The first line of a list as CSV."""
+    return _lines([one.head])
+
+
+def _lines(rows: Sequence[Sequence[str]]) -> str:
     text = io.StringIO(newline="")
-    writer = csv.writer(text, lineterminator="\r\n")
-    writer.writerow(one.head)
-    for row in one.rows:
-        writer.writerow([f"'{cell}" if cell.startswith(_FORMULA) else cell for cell in row])
-    return text.getvalue().encode()
+    csv.writer(text, lineterminator="\r\n").writerows(rows)
+    return text.getvalue()

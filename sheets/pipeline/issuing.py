@@ -30,7 +30,8 @@ from sheets.pipeline.changing import changes_since, hold_changed, hold_reason
 from sheets.pipeline.computing import issuable
 from sheets.pipeline.keeping import kept_of
 from sheets.pipeline.persons import Named, Signing, check_people, check_trusted, named_by, trust_of
-from sheets.pipeline.printing import Content, keep_issued, printed, whole_content
+from sheets.pipeline.printing import Content, printed, whole_content
+from sheets.pipeline.replacing import keep_issued
 from sheets.register.finding import document_revisions, revision_of
 from sheets.register.issuing import Reservation, commit, reserve, sign_event, void
 from sheets.register.opening import Place, create_register, is_there, open_register

@@ -7,17 +7,17 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Literal
 
-from sheets.errors import ExitStatus, InputError, NotEstablishedError, Problem, RefusedError
+from sheets.errors import ExitStatus, NotEstablishedError, RefusedError
 from sheets.machine.files import write_pdf
 from sheets.machine.model import Machine
-from sheets.pages.attached import attachments_in
 from sheets.pages.compose.matter import Matter
 from sheets.pages.compose.pack import compose
 from sheets.pages.document import Document, IssueContext, Layout, SheetKind
 from sheets.pages.layout import place
 from sheets.pages.press import pdf_bytes, print_pack
-from sheets.pipeline.attaching import ISSUE_NAME, attachments_of
+from sheets.pipeline.attaching import attachments_of
 from sheets.pipeline.computing import findings_of_job, status_of
+from sheets.pipeline.replacing import keep_issued
 from sheets.seal.canonical import canonical_bytes, digest
 from sheets.wording.obstacles import refusals
 
@@ -109,22 +109,6 @@ def write_pack(
     attachments = attachments_of(matter, layout, said.data)
     write_pdf(target, pdf_bytes(pages, said.document, attachments=attachments))
     return Written(pages=len(pages), digest=said.digest)
-
-
-def keep_issued(target: Path) -> None:
-    """Nothing that is printed takes the place of an issued pack. Raises InputError."""
-    try:
-        held = attachments_in(target.read_bytes())
-    except (OSError, InputError):
-        return  # none there, or no pack
-    if ISSUE_NAME in held:
-        raise InputError(
-            Problem(
-                where=str(target),
-                what="An issued pack stands there.",
-                fix="Name another file with -o; nothing was overwritten.",
-            )
-        )
 
 
 def _hold(matter: Matter) -> None:

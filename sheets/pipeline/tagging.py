@@ -17,7 +17,8 @@ from sheets.pipeline.computing import steps, task_of
 from sheets.pipeline.describing import check_sources
 from sheets.pipeline.issuing import ISSUED, zone_of
 from sheets.pipeline.keeping import sources_of
-from sheets.pipeline.printing import keep_issued, whole_content
+from sheets.pipeline.printing import whole_content
+from sheets.pipeline.replacing import keep_issued
 from sheets.register.copies import TagPosted
 from sheets.register.deviations import DeviationKind, Standing, deviations
 from sheets.register.finding import found_in

@@ -8,6 +8,7 @@ from collections.abc import Callable
 from datetime import date
 from pathlib import Path
 
+import pikepdf
 import pytest
 from register_bench import rehash
 from told_year import GITA, START, TODAY, Numbers, tell_year
@@ -15,13 +16,14 @@ from told_year import GITA, START, TODAY, Numbers, tell_year
 from sheets import pipeline
 from sheets.errors import InputError, NotEstablishedError
 from sheets.pages.archive import archive_flaws
-from sheets.pages.attached import attachments_in
+from sheets.pages.attached import Attachment, attachments_in, write_attachments
 from sheets.pages.compose.audit import LONGEST_CELL, audit_document
 from sheets.pages.document import Layout
 from sheets.pages.layout import place as placed
 from sheets.pages.placed import TextRun
 from sheets.pipeline.auditing import Audited
 from sheets.pipeline.listing import lists_of
+from sheets.pipeline.replacing import keep_issued
 from sheets.register.chain import Anchor, check_chain
 from sheets.register.events import EventKind
 from sheets.register.instruments import InstrumentListed
@@ -221,3 +223,45 @@ def test_nothing_is_written_over_another_file(place: Place, year: Numbers, tmp_p
     with pytest.raises(InputError, match="isn't a PDF"):
         pipeline.audit(place, tmp_path / "audit.pdf", day=TODAY)
     assert [file.name for file in tmp_path.glob("audit*")] == ["audit.pdf"]
+
+
+def pdf_with(target: Path, *names: str) -> bytes:
+    """A PDF in which files of those names travel."""
+    with pikepdf.new() as pdf:
+        pdf.add_blank_page()
+        files = [
+            Attachment(name=name, media_type="text/csv", data=b"a", relationship="Data", description=name)
+            for name in names
+        ]
+        write_attachments(pdf, files)
+        pdf.save(target)
+    return target.read_bytes()
+
+
+@pytest.mark.parametrize(
+    ("names", "told"), [(("issue.json",), "An issued pack stands there"), ((), "A PDF that is no audit")]
+)
+def test_an_audit_replaces_no_other_pdf(
+    place: Place, year: Numbers, tmp_path: Path, names: tuple[str, ...], told: str
+) -> None:
+    assert year
+    target = tmp_path / "audit.pdf"
+    held = pdf_with(target, *names)
+    with pytest.raises(InputError, match=told):
+        pipeline.audit(place, target, day=TODAY)
+    assert target.read_bytes() == held
+    assert [file.name for file in tmp_path.glob("audit*")] == ["audit.pdf"]
+
+
+def test_an_audit_replaces_an_audit_and_nobody_s_list(place: Place, audited: Audited, tmp_path: Path) -> None:
+    pipeline.audit(place, tmp_path / "audit.pdf", day=TODAY)
+    own = tmp_path / "audit-people.csv"
+    own.write_text("name,telephone\n", encoding="utf-8")
+    with pytest.raises(InputError, match="isn't this list of an audit"):
+        pipeline.audit(place, audited.files[0], day=TODAY)
+    assert own.read_text(encoding="utf-8") == "name,telephone\n"
+
+
+def test_what_is_printed_replaces_no_audit(audited: Audited) -> None:
+    with pytest.raises(InputError, match="An audit of the register stands there"):
+        keep_issued(audited.files[0])
