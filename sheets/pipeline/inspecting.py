@@ -154,7 +154,7 @@ def ending_lines(one: Deviation) -> Iterator[str]:
         yield f"accepted on {it.on} by {it.by}: {it.why} (event {one.accepted.sequence})"
     if one.corrected is not None:
         done = one.corrected.said
-        yield f"corrected on {done.on} by {done.by}: {done.how} (event {one.corrected.sequence})"
+        yield f"{one.standing.value} on {done.on} by {done.by}: {done.how} (event {one.corrected.sequence})"
 
 
 def _row(one: Clock, day: date) -> tuple[str, ...]:

@@ -9,7 +9,7 @@ from sheets.pages.compose.audit import AuditList
 from sheets.pages.layout import grouped
 from sheets.pipeline.inspecting import independence, standing_of
 from sheets.register.copies import copies
-from sheets.register.deviations import Deviation, Standing, deviations, out_of_service
+from sheets.register.deviations import Deviation, deviations, out_of_service
 from sheets.register.finding import documents_in
 from sheets.register.inspections import clock_of, inspections
 from sheets.register.instruments import instruments
@@ -208,7 +208,7 @@ def _copies(view: View, documents: Documents) -> Rows:
 
 def _deviations(view: View) -> Rows:
     for one in deviations(view):
-        if one.standing is Standing.CORRECTED:
+        if not one.stands:
             continue
         noted = one.noted
         yield (

@@ -12,7 +12,7 @@ from sheets.pages.document import GaugeFace
 from sheets.pages.face import face_alternative
 from sheets.pages.svg import dial_svg
 from sheets.register.kept import Kept
-from sheets.register.readings import KeptReading, Phase
+from sheets.register.readings import KeptReading, Phase, in_order
 from sheets.register.rows import Outcome, Row, judged
 
 
@@ -60,14 +60,10 @@ def settings_shown(kept: Kept, readings: Sequence[KeptReading]) -> tuple[Setting
 
 
 def _last(row: Row, readings: Sequence[KeptReading], phase: Phase) -> ReadingShown | None:
-    alike = [
-        one
-        for one in readings
-        if one.counts and one.said.adjuster == row.adjuster and one.said.phase is phase
-    ]
+    alike = in_order(readings, adjuster=row.adjuster, phase=phase)
     if not alike:
         return None
-    last = max(alike, key=lambda one: (one.said.on, one.said.clock, one.told.sequence))
+    last = alike[-1]
     said = last.said
     outcome = judged(row, said.value) if said.unit == row.unit else None
     return ReadingShown(

@@ -1,7 +1,8 @@
 """Deviations: what was otherwise than the sheet says, who decided about it, and how it ended.
 
-Outside a window a setting ends by a named acceptance, or by being set again. Outside the order of limits or
-above what must never be exceeded nobody can accept it: it is set again, or the machine is out of service.
+Outside a window a setting ends by a named acceptance, or by being set again within it. Outside the order of
+limits or above what must never be exceeded nobody can accept it: it is set again, or the machine is out of
+service.
 """
 
 from __future__ import annotations
@@ -67,7 +68,7 @@ class DeviationAccepted(Said):
 
 @dataclass(frozen=True, kw_only=True)
 class DeviationCorrected(Said):
-    """It was put right."""
+    """It was put right; or, where it says by which, another deviation stands in its place."""
 
     KIND: ClassVar[EventKind] = EventKind.DEVIATION_CORRECTED
 
@@ -76,6 +77,8 @@ class DeviationCorrected(Said):
     how: str
     reading: int = 0
     """Event of the reading as left that shows it; 0 where it isn't about a reading."""
+    replaced_by: int = 0
+    """Event of the deviation in its place: set again, and outside still. 0 where it was put right."""
     on: date
 
 
@@ -109,6 +112,8 @@ class Standing(StrEnum):
     OPEN = "open"
     ACCEPTED = "accepted"
     CORRECTED = "corrected"
+    REPLACED = "replaced"
+    """Another deviation of the same setting stands in its place."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -126,8 +131,13 @@ class Deviation:
     @property
     def standing(self) -> Standing:
         if self.corrected is not None:
-            return Standing.CORRECTED
+            return Standing.REPLACED if self.corrected.said.replaced_by else Standing.CORRECTED
         return Standing.ACCEPTED if self.accepted is not None else Standing.OPEN
+
+    @property
+    def stands(self) -> bool:
+        """Whether it is so still, accepted or not."""
+        return self.corrected is None
 
     @property
     def acceptable(self) -> bool:

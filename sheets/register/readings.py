@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 from datetime import date
 from enum import StrEnum
@@ -116,16 +117,36 @@ def readings(
     )
 
 
+def in_order(kept: Iterable[KeptReading], *, adjuster: str, phase: Phase | None = None) -> list[KeptReading]:
+    """The readings of one adjuster that count, oldest first: by day and time of day, then as they were told.
+
+    ``kept``: of one machine, as they were told; ``phase``: only those. One without a time of day stands
+    behind all of its day that were told before it: when else it was read isn't known.
+    """
+    latest: dict[date, str] = {}
+    keyed: list[tuple[date, str, int, KeptReading]] = []
+    for one in kept:
+        said = one.said
+        if not one.counts or said.adjuster != adjuster or phase not in (None, said.phase):
+            continue
+        before = latest.get(said.on, "")
+        clock = said.clock or before
+        latest[said.on] = max(before, clock)
+        keyed.append((said.on, clock, one.told.sequence, one))
+    return [one for *_, one in sorted(keyed, key=lambda each: each[:3])]
+
+
 def last_left(view: View, *, machine: str) -> dict[str, KeptReading]:
-    """The last reading as left of every adjuster of a machine, by adjuster: what its tag prints."""
-    return {
-        one.said.adjuster: one
-        for one in readings(view, machine=machine)
-        if one.counts and one.said.phase is Phase.LEFT
-    }
+    """The newest reading as left of every adjuster of a machine, by adjuster: what its tag prints."""
+    kept = readings(view, machine=machine)
+    ordered = ((name, in_order(kept, adjuster=name, phase=Phase.LEFT)) for name in _adjusters(kept))
+    return {name: every[-1] for name, every in ordered if every}
 
 
 def series(view: View, *, machine: str, adjuster: str) -> tuple[KeptReading, ...]:
-    """All readings of one adjuster that count, by day and then as they were told: what a plot shows."""
-    found = (one for one in readings(view, machine=machine) if one.counts and one.said.adjuster == adjuster)
-    return tuple(sorted(found, key=lambda one: (one.said.on, one.said.clock, one.told.sequence)))
+    """All readings of one adjuster that count, oldest first: what a plot shows."""
+    return tuple(in_order(readings(view, machine=machine), adjuster=adjuster))
+
+
+def _adjusters(kept: Iterable[KeptReading]) -> tuple[str, ...]:
+    return tuple(dict.fromkeys(one.said.adjuster for one in kept))

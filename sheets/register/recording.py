@@ -21,7 +21,15 @@ from sheets.register.finding import found_in, revisions_in
 from sheets.register.instruments import coarser, usable
 from sheets.register.jobs import Job, JobOpened, jobs
 from sheets.register.kept import Kept
-from sheets.register.readings import Phase, Reading, ReadingStruck, Seal, readings
+from sheets.register.readings import (
+    KeptReading,
+    Phase,
+    Reading,
+    ReadingStruck,
+    Seal,
+    in_order,
+    readings,
+)
 from sheets.register.revisions import Revision, RevisionState
 from sheets.register.rows import Outcome, Row, digits_of, drifted, judged, row_of
 from sheets.register.saying import Said, tell
@@ -117,10 +125,10 @@ def open_job(writer: Writer, record_id: str, how: Telling, *, why: str) -> int:
 def record(writer: Writer, number: int, taken: Taken, how: Telling) -> Recorded:
     """Records a reading of an open job, and what follows from it.
 
-    ``number`` is the job's. As left outside its window, it leaves a deviation open; inside, it corrects those
-    of its adjuster. As found past its limit, it opens a job. Raises RefusedError for a gauge that is overdue,
-    bad or unknown, for a job that has ended and for a setting as left that nobody read as found; InputError
-    for what isn't on the sheet.
+    ``number`` is the job's. As left outside its window, it leaves a deviation open in the place of older ones
+    of its adjuster; inside, it corrects those. As found past its limit, it opens a job. Raises RefusedError
+    for a gauge that is overdue, bad or unknown, for a job that has ended and for a setting as left that
+    nobody read as found; InputError for what isn't on the sheet.
     """
     job = open_one(writer, number)
     revision = found_in(writer, job.opened.record_id)
@@ -183,7 +191,7 @@ def strike(writer: Writer, reading: int, how: Telling, *, why: str) -> None:
         raise _wrong(f"event {reading}", "It is no reading that counts.", "Look it up: jamnut history.")
     revision = found_in(writer, found.told.record_id)
     for one in deviations(writer, machine=revision.machine):
-        if one.noted.said.reading != reading or one.standing is Standing.CORRECTED:
+        if one.noted.said.reading != reading or not one.stands:
             continue
         if one.standing is Standing.ACCEPTED:
             raise RefusedError(
@@ -234,8 +242,7 @@ def hold_current(view: View, revision: Revision, how: Telling) -> None:
 
     Raises RefusedError, and InputError for a day that hasn't come anywhere on earth.
     """
-    if how.on > (how.when + _EARLIEST_ZONE).date():
-        raise _wrong("the day", f"{how.on} lies in the future.", "Write the day on which it was done.")
+    hold_past(how)
     if revision.state is RevisionState.ISSUED:
         return
     if how.transcribed and revision.issue is not None and how.on <= _last_day(view, revision):
@@ -247,6 +254,12 @@ def hold_current(view: View, revision: Revision, how: Telling) -> None:
             fix="Work from the current one; what was written on paper before is transcribed with its day.",
         )
     )
+
+
+def hold_past(how: Telling) -> None:
+    """Nothing is told of a day to come. Raises InputError for one that hasn't come anywhere on earth."""
+    if how.on > (how.when + _EARLIEST_ZONE).date():
+        raise _wrong("the day", f"{how.on} lies in the future.", "Write the day on which it was done.")
 
 
 def hold_people(where: str, how: Telling) -> None:
@@ -300,34 +313,56 @@ def _look_for_cause(
 
 
 def _follow(writer: Writer, revision: Revision, row: Row, said: Reading, reading: int, how: Telling) -> int:
-    """What a reading as left does to deviations: it corrects those of its adjuster, and may leave one."""
+    """What a reading as left does to deviations: it may leave one, and ends older ones of its adjuster.
+
+    One of an earlier day or hour than others that were told before it ends none that came after it, and what
+    it leaves has ended already. Gives the deviation that is open now, or 0.
+    """
     kept = readings(writer, machine=revision.machine)
-    adjusters = {one.told.sequence: one.said.adjuster for one in kept}
-    for one in deviations(writer, machine=revision.machine):
-        noted = one.noted.said
-        same = noted.kind is not DeviationKind.GAUGE and adjusters.get(noted.reading) == row.adjuster
-        if same and one.standing is not Standing.CORRECTED:
-            corrected = DeviationCorrected(
-                deviation=one.number,
-                by=how.people[0],
-                how=f"set again to {said.value} {row.unit}",
-                reading=reading,
-                on=how.on,
-            )
-            tell_of(writer, revision, corrected, how)
+    ordered = in_order(kept, adjuster=row.adjuster, phase=Phase.LEFT)
+    place = [one.told.sequence for one in ordered].index(reading)
+    older, newer = {one.told.sequence for one in ordered[:place]}, ordered[place + 1 :]
     outcome = judged(row, said.value)
-    if outcome is Outcome.WITHIN:
-        return 0
-    noted = DeviationNoted(
-        job=said.job,
-        kind=DeviationKind(outcome.value),
-        what=f"{row.called} was left at {said.value} {row.unit}; accepted are {row.low} to {row.high}",
-        row=row.row,
-        reading=reading,
-        by=how.people[0],
-        on=how.on,
+    noted = 0
+    if outcome is not Outcome.WITHIN:
+        left = DeviationNoted(
+            job=said.job,
+            kind=DeviationKind(outcome.value),
+            what=f"{row.called} was left at {said.value} {row.unit}; accepted are {row.low} to {row.high}",
+            row=row.row,
+            reading=reading,
+            by=how.people[0],
+            on=how.on,
+        )
+        noted = tell_of(writer, revision, left, how)
+    of_readings = {
+        one.noted.said.reading: one
+        for one in deviations(writer, machine=revision.machine)
+        if one.noted.said.kind is not DeviationKind.GAUGE
+    }
+    for one in of_readings.values():
+        if one.stands and one.noted.said.reading in older:
+            _set_again(writer, revision, one.number, ordered[place], noted, how)
+    if not noted or not newer:
+        return noted
+    after = of_readings.get(newer[0].told.sequence)
+    _set_again(writer, revision, noted, newer[0], after.number if after else 0, how)
+    return 0
+
+
+def _set_again(
+    writer: Writer, revision: Revision, ended: int, by: KeptReading, outside: int, how: Telling
+) -> None:
+    """Ends a deviation by a newer reading; ``outside``: the deviation which that left itself, or 0."""
+    said = DeviationCorrected(
+        deviation=ended,
+        by=by.said.people[0],
+        how=f"replaced by deviation {outside}" if outside else f"set again to {by.said.value} {by.said.unit}",
+        reading=by.told.sequence,
+        replaced_by=outside,
+        on=by.said.on,
     )
-    return tell_of(writer, revision, noted, how)
+    tell_of(writer, revision, said, how)
 
 
 def _wrong(where: str, what: str, fix: str) -> InputError:

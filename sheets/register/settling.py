@@ -23,7 +23,7 @@ from sheets.register.deviations import (
 from sheets.register.finding import found_in
 from sheets.register.jobs import Ending, JobEnded
 from sheets.register.readings import readings
-from sheets.register.recording import FIND_CAUSE, Telling, open_one, tell_of
+from sheets.register.recording import FIND_CAUSE, Telling, hold_past, open_one, tell_of
 from sheets.register.revisions import Revision
 from sheets.register.store import View, Writer
 
@@ -44,9 +44,9 @@ def note(writer: Writer, job: int, how: Telling, *, what: str, row: int = 0) -> 
 def accept(writer: Writer, number: int, how: Telling, *, authoriser: str, why: str) -> None:
     """Somebody named answers for leaving a deviation as it is; ``number`` is the deviation's.
 
-    Raises RefusedError for one that nobody can accept, that has ended, whose reading the same person took,
-    and for a setting while another of the machine stands outside its window, too: the order of limits is
-    known with one of them out.
+    Raises RefusedError for one that nobody can accept, that has ended, whose reading the same person took or
+    told the register, on a day before it was noted, and for a setting while another of the machine stands
+    outside its window, too: the order of limits is known with one of them out.
     """
     one = _open_deviation(writer, number)
     if not one.acceptable:
@@ -55,25 +55,26 @@ def accept(writer: Writer, number: int, how: Telling, *, authoriser: str, why: s
             f"Nobody can accept a setting {one.noted.said.kind.value}.",
             "Set it again, or end the job with the machine out of service.",
         )
-    readers = {
-        name
+    _hold_day(one, how)
+    about = [
+        kept
         for kept in readings(writer, machine=one.noted.machine)
         if kept.told.sequence == one.noted.said.reading
-        for name in kept.said.people
-    } | {one.noted.said.by}
+    ]
+    # Who tells the register may have left their own name out of those who did it.
+    readers = {one.noted.said.by, one.noted.by, *(kept.told.by for kept in about)}
+    readers.update(name for kept in about for name in kept.said.people)
     if any(same_person(authoriser, name) for name in readers):
         raise _refused(
             number,
-            "Who read it or noted it doesn't accept it, too.",
+            "Who read it, noted it or told the register of it doesn't accept it, too.",
             "Name another who answers for it.",
         )
     if one.noted.said.kind is DeviationKind.WINDOW:
         others = [
             other
             for other in deviations(writer, machine=one.noted.machine)
-            if other.number != number
-            and other.noted.said.kind in _SETTINGS
-            and other.standing is not Standing.CORRECTED
+            if other.number != number and other.noted.said.kind in _SETTINGS and other.stands
         ]
         if others:
             raise _refused(
@@ -90,13 +91,15 @@ def accept(writer: Writer, number: int, how: Telling, *, authoriser: str, why: s
 def correct(writer: Writer, number: int, how: Telling, *, done: str) -> None:
     """Something was put right that isn't about a setting; ``number`` is the deviation's.
 
-    Raises RefusedError for a setting, which only a reading corrects, and for one that has ended.
+    Raises RefusedError for a setting, which only a reading corrects, for one that has ended, and for a day
+    before it was noted.
     """
     one = _open_deviation(writer, number)
     if one.noted.said.kind in _SETTINGS:
         raise _refused(
             number, "Only a reading shows that a setting was put right.", "Record the setting as left."
         )
+    _hold_day(one, how)
     revision = found_in(writer, one.noted.record_id)
     said = DeviationCorrected(deviation=number, by=_first(how), how=done, on=how.on)
     tell_of(writer, revision, said, how)
@@ -191,6 +194,17 @@ def _open_deviation(view: View, number: int) -> Deviation:
     if one.standing is not Standing.OPEN:
         raise _refused(number, f"It is {one.standing.value} already.", "Nothing is left to do about it.")
     return one
+
+
+def _hold_day(one: Deviation, how: Telling) -> None:
+    """A deviation ends on its day or later. Raises RefusedError; InputError for a day that is to come."""
+    hold_past(how)
+    if how.on < one.noted.said.on:
+        raise _refused(
+            one.number,
+            f"It is of {one.noted.said.on}; nothing ended it on {how.on}, before that.",
+            "Give the day on which it was accepted or put right.",
+        )
 
 
 def _refused(number: int, what: str, fix: str) -> RefusedError:

@@ -113,7 +113,7 @@ def test_outside_its_window_nothing_is_written_until_an_approver_accepts(
         ({"accept_name": "Tom Ness"}, 422, "those of an approver"),
         ({"accept_name": "Nobody"}, 422, "those of an approver"),
         ({"accept_why": ""}, 422, "Nothing says why"),
-        ({"people": "Tom Ness, Ada Quarrow"}, 409, "Who read it or noted it"),
+        ({"people": "Tom Ness, Ada Quarrow"}, 409, "Who read it, noted it"),
         ({"left": "235"}, 409, "outside the order of limits"),
         ({"left": "251"}, 409, "never be exceeded"),
     ],
@@ -126,6 +126,17 @@ def test_what_an_acceptance_can_not_do(
     assert answer.status_code == status
     assert told in answer.text
     assert PASSWORD not in answer.text
+    assert events(bench, *WRITTEN) == []
+
+
+def test_an_approver_at_the_form_does_not_accept_what_they_record(
+    bench: Bench, site: TestClient, issued: Revision
+) -> None:
+    """Signed in as an approver, naming another as who read: that other may not exist at all."""
+    sign_in(site, "Ada Quarrow")
+    answer = sent(site, issued, left="215", people="Zeno Fell", **ACCEPTED)
+    assert answer.status_code == 409
+    assert "told the register of it" in answer.text
     assert events(bench, *WRITTEN) == []
 
 

@@ -11,13 +11,14 @@ from recording_bench import DAY, HOW, Bench, gauge, refused
 from register_bench import NOON, at
 
 from sheets.errors import InputError, RefusedError
-from sheets.register.deviations import DeviationKind, Standing, out_of_service
+from sheets.register.deviations import DeviationKind, Standing, deviations, out_of_service
 from sheets.register.instruments import InstrumentFoundBad, in_doubt
 from sheets.register.issuing import withdraw
 from sheets.register.jobs import Ending, jobs
 from sheets.register.readings import Phase, Seal, last_left, readings, series
 from sheets.register.recording import (
     FIND_CAUSE,
+    Telling,
     open_job,
     strike,
 )
@@ -136,6 +137,8 @@ def test_outside_the_window_ends_by_a_named_acceptance_of_another(bench: Bench) 
             bench.do(accept, number, HOW, authoriser=reader, why="near enough")
     with refused(bench, "empty", InputError):
         bench.do(accept, number, HOW, authoriser="Cleo Harnett", why="")
+    with refused(bench, "told the register of it"):  # who types may leave the own name out of the people
+        bench.do(accept, number, HOW, authoriser="Ines Kurz", why="reviewed")
     bench.do(accept, number, HOW, authoriser="Cleo Harnett", why="no finer screw; reviewed")
     assert bench.deviations() == [(DeviationKind.WINDOW, Standing.ACCEPTED)]
     with refused(bench, "accepted already"):
@@ -174,15 +177,75 @@ def test_outside_rating_or_ladder_nobody_accepts_and_out_of_service_is_the_end(
 
 
 def test_setting_it_again_corrects_what_was_open_and_leaves_what_is_new(bench: Bench) -> None:
-    bench.left("212")
-    bench.take(Phase.LEFT, "232")
+    first = bench.left("212").deviation
+    second = bench.take(Phase.LEFT, "232").deviation
     assert bench.deviations() == [
-        (DeviationKind.WINDOW, Standing.CORRECTED),
+        (DeviationKind.WINDOW, Standing.REPLACED),
         (DeviationKind.LADDER, Standing.OPEN),
     ]
+    with bench.register.reading() as view:
+        ended = {one.number: one.corrected for one in deviations(view)}
+    assert ended[second] is None
+    assert ended[first] is not None
+    assert ended[first].said.how == f"replaced by deviation {second}"
     bench.take(Phase.LEFT, "209")
-    assert {standing for _, standing in bench.deviations()} == {Standing.CORRECTED}
+    assert [standing for _, standing in bench.deviations()] == [Standing.REPLACED, Standing.CORRECTED]
     bench.do(end_job, bench.job, HOW, ending=Ending.DONE)
+
+
+def of_day(days: int) -> Telling:
+    """Told within the same minute, of work so many days later; nothing more is known of it."""
+    return replace(HOW, on=DAY + timedelta(days=days), when=at(10) + timedelta(days=9))
+
+
+def test_an_older_day_told_later_is_not_what_was_left_last_and_corrects_nothing(bench: Bench) -> None:
+    """Out on the 6th; what was within on the 5th, copied later, changes nothing of that."""
+    bench.do(tell, gauge(due=DAY + timedelta(days=30)), who="Ines Kurz", when=at(6))
+    bench.take(Phase.FOUND, "206", how=of_day(1))
+    bench.take(Phase.LEFT, "212", how=of_day(2))
+    assert bench.take(Phase.LEFT, "206", how=of_day(1)).deviation == 0
+    assert bench.deviations() == [(DeviationKind.WINDOW, Standing.OPEN)]
+    with bench.register.reading() as view:
+        assert last_left(view, machine="KP-2")["RV1"].said.value == "212"
+        values = [one.said.value for one in series(view, machine="KP-2", adjuster="RV1")]
+    assert values == ["206", "206", "212"]
+    bench.take(Phase.LEFT, "207", how=of_day(2))
+    assert bench.deviations() == [(DeviationKind.WINDOW, Standing.CORRECTED)]
+
+
+@pytest.mark.parametrize(("newer", "stood"), [("206", Standing.CORRECTED), ("211", Standing.REPLACED)])
+def test_an_older_reading_outside_told_later_has_ended_already(
+    bench: Bench, newer: str, stood: Standing
+) -> None:
+    bench.do(tell, gauge(due=DAY + timedelta(days=30)), who="Ines Kurz", when=at(6))
+    bench.take(Phase.FOUND, "206", how=of_day(1))
+    open_now = [(DeviationKind.WINDOW, Standing.OPEN)] if newer == "211" else []
+    bench.take(Phase.LEFT, newer, how=of_day(2))
+    assert bench.deviations() == open_now
+    assert bench.take(Phase.LEFT, "212", how=of_day(1)).deviation == 0
+    assert bench.deviations() == [*open_now, (DeviationKind.WINDOW, stood)]
+
+
+def test_within_a_day_the_time_of_day_says_which_is_newer(bench: Bench) -> None:
+    """Told in this order; one without a time is taken as read after what was told before it."""
+    bench.take(Phase.FOUND, "206")
+    for value, clock in (("203", "09:00"), ("204", ""), ("205", "08:00"), ("207", "")):
+        bench.take(Phase.LEFT, value, clock=clock)
+    with bench.register.reading() as view:
+        values = [one.said.value for one in series(view, machine="KP-2", adjuster="RV1")]
+        assert last_left(view, machine="KP-2")["RV1"].said.value == "207"
+    assert values == ["206", "205", "203", "204", "207"]
+
+
+def test_nothing_ends_a_deviation_before_its_day_nor_on_one_to_come(bench: Bench) -> None:
+    setting = bench.left("212").deviation
+    noted = bench.do(note, bench.job, HOW, what="hose H3 chafed", row=0)
+    before, later = of_day(-1), replace(HOW, on=DAY + timedelta(days=3))
+    for how, says, error in ((before, "before that", RefusedError), (later, "in the future", InputError)):
+        with refused(bench, says, error):
+            bench.do(accept, setting, how, authoriser="Cleo Harnett", why="reviewed")
+        with refused(bench, says, error):
+            bench.do(correct, noted, how, done="H3 replaced")
 
 
 def test_with_two_settings_out_neither_is_accepted(bench: Bench) -> None:
