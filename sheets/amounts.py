@@ -23,6 +23,7 @@ Quantity = Literal[
     "force_kn",
     "torque_nm",
     "voltage_v",
+    "volume_l",
     "count",
 ]
 

@@ -18,7 +18,7 @@ from sheets.machine.parts import Cylinder, HydraulicMotor
 from sheets.machine.site import Policies
 from sheets.procedure.answers import TestState
 from sheets.procedure.conditions import Condition
-from sheets.procedure.stages import HEAT_KW
+from sheets.procedure.heat import HEAT_KW, Heat, heat_of
 from sheets.procedure.steps import Procedure, Stage, Step, StepKind
 
 Signal = Literal["DANGER", "WARNING", "CAUTION", "NOTICE"]
@@ -62,7 +62,6 @@ class _Facts:
     states: Mapping[str, TestState]
     pressure: Amount | str
     """Highest that the limits let come anywhere; empty where that isn't known."""
-    longest_try_s: float
 
 
 def assess(
@@ -83,12 +82,11 @@ def assess(
         actuators=circuit.actuators.ids,
         states=states,
         pressure="" if shut_in_bar is None else bar(max(shut_in_bar)),
-        longest_try_s=policies.longest_try_s,
     )
     found: dict[tuple[int, int], tuple[Hazard, ...]] = {}
     for at, stage in enumerate(procedure.stages):
         warned: set[HazardKind] = set()
-        hot = _heat_kw(procedure.stages, at)
+        hot = heat_of(machine, policies, procedure.stages, at)
         for place, step in enumerate(stage.steps):
             new = [hazard for hazard in _of_step(facts, stage, step, hot) if hazard.kind not in warned]
             if new:
@@ -97,14 +95,7 @@ def assess(
     return found
 
 
-def _heat_kw(stages: Sequence[Stage], at: int) -> float:
-    """Most that turns to heat over reliefs in a stage, its first moment included."""
-    before = [step.trace for stage in stages[:at] for step in stage.steps if step.trace is not None][-1:]
-    here = [step.trace for step in stages[at].steps if step.trace is not None]
-    return max((trace.relief_kw for trace in (*before, *here)), default=0.0)
-
-
-def _of_step(facts: _Facts, stage: Stage, step: Step, heat_kw: float) -> tuple[Hazard, ...]:
+def _of_step(facts: _Facts, stage: Stage, step: Step, heat: Heat | None) -> tuple[Hazard, ...]:
     machine = facts.machine
     match step.kind:
         case StepKind.ISOLATE | StepKind.RESTORE_SUPPLY:
@@ -128,7 +119,7 @@ def _of_step(facts: _Facts, stage: Stage, step: Step, heat_kw: float) -> tuple[H
         case StepKind.START:
             data = {"drive": step.subject, "moves": _all_moves(facts)}
             starts = Hazard(kind=HazardKind.START, signal="WARNING", data=data)
-            return (starts, *_under_pressure(facts, step, heat_kw))
+            return (starts, *_under_pressure(facts, step, heat))
     if not stage.powered or step.trace is None or not step.trace.established:
         return ()
     hazards: list[Hazard] = []
@@ -137,7 +128,7 @@ def _of_step(facts: _Facts, stage: Stage, step: Step, heat_kw: float) -> tuple[H
     if step.kind in (StepKind.HOLD_VALVE, StepKind.CLOSE_GRADUALLY):
         hazards.extend(_movement(machine, facts.states, stage, step))
     if step.kind in _PRESSURISING:
-        hazards.extend(_under_pressure(facts, step, heat_kw))
+        hazards.extend(_under_pressure(facts, step, heat))
     return tuple(hazards)
 
 
@@ -145,7 +136,7 @@ def _all_moves(facts: _Facts) -> str:
     return ", ".join(_moves(facts.machine, id_) for id_ in facts.actuators)
 
 
-def _under_pressure(facts: _Facts, step: Step, heat_kw: float) -> tuple[Hazard, ...]:
+def _under_pressure(facts: _Facts, step: Step, heat: Heat | None) -> tuple[Hazard, ...]:
     """Injection, and hot oil where the stage has it."""
     if step.trace is None or not step.trace.established:
         return ()
@@ -153,21 +144,22 @@ def _under_pressure(facts: _Facts, step: Step, heat_kw: float) -> tuple[Hazard, 
     if max(step.trace.pressures_bar) >= INJECTION_BAR:
         data = {"pressure": facts.pressure}
         hazards.append(Hazard(kind=HazardKind.INJECTION, signal="WARNING", data=data))
-    if heat_kw >= HEAT_KW and (step.kind in _PRESSURISING or step.trace.relief_kw >= HEAT_KW):
-        hazards.append(_heat(facts, heat_kw))
+    if heat is not None and (step.kind in _PRESSURISING or step.trace.relief_kw >= HEAT_KW):
+        hazards.append(_hot_oil(facts, heat))
     return tuple(hazards)
 
 
-def _heat(facts: _Facts, heat_kw: float) -> Hazard:
-    """Hot oil, with the most that turns to heat in the stage."""
+def _hot_oil(facts: _Facts, heat: Heat) -> Hazard:
+    """Hot oil, with the most that turns to heat in the stage and how long the oil stands it."""
     limit_c = facts.machine.fluid.limit_temperature_c
     return Hazard(
         kind=HazardKind.HOT_OIL,
         signal="CAUTION",
         data={
-            "power": kw(heat_kw),
+            "power": kw(heat.power_kw),
             "limit": Amount(value=limit_c, quantity="temperature_c"),
-            "seconds": Amount(value=facts.longest_try_s, quantity="time_s"),
+            "rise": Amount(value=heat.warming_k_per_s, quantity="temperature_rise_k"),
+            "seconds": Amount(value=heat.longest_s, quantity="time_s"),
         },
     )
 

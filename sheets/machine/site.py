@@ -71,7 +71,9 @@ class Policies(Entry):
     pilot_closing_ratio: Ratio = 0.90
     """Closing pressure of a pilot operated relief over its setting."""
     longest_try_s: TrySecond = 60.0
-    """Longest time of one try over a relief."""
+    """Longest time of one try over a relief; the oil's own warming may allow less."""
+    shortest_try_s: TrySecond = 10.0
+    """Shortest in which somebody can turn and read: where the oil allows less, the job is refused."""
     lowest_setting_temperature_c: SettingCelsius = 45.0
     """Lower end of the oil temperature window for settings; mineral oil only."""
     highest_setting_temperature_c: SettingCelsius = 55.0
@@ -93,6 +95,12 @@ class Policies(Entry):
                     what="A relief would close at a higher pressure than it opens at.",
                     fix=f"Write a {name} closing ratio of at most {name} opening ratio.",
                 )
+        if self.shortest_try_s > self.longest_try_s:
+            yield Flaw(
+                at=("shortest try",),
+                what="The shortest try is longer than the longest.",
+                fix="Write a shortest try of at most longest try, such as 10 s.",
+            )
         if self.lowest_setting_temperature_c >= self.highest_setting_temperature_c:
             yield Flaw(
                 at=("lowest setting temperature",),

@@ -144,6 +144,7 @@ class Rig:
             moving=solution.moving,
             pressures_bar=solution.pressures_bar,
             drive_kw=max((load.shaft_kw for load in loads), default=0.0),
+            shaft_kw=sum(load.shaft_kw for load in loads),
             relief_kw=sum(
                 hydraulic_power(
                     pressure_bar=solution.pressures_bar[site.controlled_node],

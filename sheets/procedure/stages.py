@@ -21,14 +21,13 @@ from sheets.procedure.changes import Change
 from sheets.procedure.conditions import Failure, moving, over_rating, starved, unestablished
 from sheets.procedure.faulted import without_load
 from sheets.procedure.gauges import error_bar
+from sheets.procedure.heat import HEAT_KW, heat_findings
 from sheets.procedure.job import Job, shows
 from sheets.procedure.rig import Rig
 from sheets.procedure.steps import Stage, StageKind, StepKind
 from sheets.procedure.stop_steps import run_to_stop
 from sheets.procedure.task import TaskKind
 
-HEAT_KW = 1.0
-"""Policy: power over a relief from which oil is spared and warned of."""
 BELOW_SHARE = 0.95
 """How far below its window a setting is brought, as a share of the window's bottom, before it comes up."""
 
@@ -57,6 +56,7 @@ def write_stages(job: Job) -> tuple[tuple[Stage, ...], tuple[Finding, ...]]:
     rig.findings += [
         Finding(code="lock_left_on", severity=Severity.REFUSED, subject=valve) for valve in sorted(rig.locks)
     ]
+    rig.findings += heat_findings(case.machine, case.policies, stages)
     return tuple(stages), tuple(rig.findings)
 
 

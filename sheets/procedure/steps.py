@@ -117,6 +117,8 @@ class Trace:
     pressures_bar: tuple[float, ...]
     drive_kw: float
     """Largest load of a drive."""
+    shaft_kw: float
+    """Load of all drives together."""
     relief_kw: float
     """Power that turns to heat over reliefs."""
 

@@ -16,10 +16,11 @@ _PLAIN: Final[dict[str, tuple[str, int]]] = {
     "ratio": ("", 2),
     "time_s": ("s", 0),
     "temperature_c": ("°C", 0),
-    "temperature_rise_k": ("K/s", 2),
+    "temperature_rise_k": ("°C", 3),
     "force_kn": ("kN", 1),
     "torque_nm": ("N·m", 0),
     "voltage_v": ("V", 0),
+    "volume_l": ("L", 0),
     "count": ("", 0),
 }
 """Quantities that have one printed unit only: that unit, and digits after the point."""

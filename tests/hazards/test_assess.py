@@ -1,8 +1,11 @@
 """Hazards stand before the steps that bring them, with figures worked out by hand."""
 
+from collections.abc import Callable
+
 import pytest
 
-from sheets.amounts import Amount
+from sheets.amounts import Amount, Severity
+from sheets.circuit.verdict import Verdict
 from sheets.hazards.assess import Hazard, HazardKind
 from sheets.pages.compose.matter import Matter
 from sheets.procedure.steps import StageKind, StepKind
@@ -104,14 +107,51 @@ def test_injection_wherever_a_powered_stage_holds_pressure(any_sample: Matter) -
 
 
 def test_hot_oil_where_a_relief_turns_power_to_heat(clay_mixer: Matter) -> None:
-    # RV1: 206.14 bar · 100.87 L/min / 600 = 34.66 kW. Standby passes nothing: no warning there.
+    # RV1: 206.14 bar · 100.87 L/min / 600 = 34.66 kW, over the pump's 0.88 all that the drive gives: 39.4 kW.
+    # In 250 L: 39.4 / (250 · 0.87 · 1.88) = 0.0963 K/s; from 55 to 65 °C that is 104 s, so the policy's 60 s
+    # hold. Standby passes nothing: no warning there.
     warned = {
         clay_mixer.procedure.stages[at].adjuster: hazard
         for (at, _), hazard in by_kind(clay_mixer, HazardKind.HOT_OIL).items()
     }
-    assert value(warned["RV1"], "power") == pytest.approx(206.14 * 100.87 / 600, rel=1e-3)
+    assert value(warned["RV1"], "power") == pytest.approx(206.14 * 100.87 / 600 / 0.88, rel=1e-3)
+    assert value(warned["RV1"], "rise") == pytest.approx(0.0963, abs=2e-4)
+    assert value(warned["RV1"], "seconds") == 60.0
     assert value(warned["RV1"], "limit") == 65.0
     assert "PU1.load sensing" not in warned
+
+
+def test_little_oil_shortens_a_try(refused: Callable[..., Matter]) -> None:
+    # 180 bar · 43.2 L/min / 600 / 0.865 = 15 kW. 20 L take up 32.7 kJ/K, so 10 K last 21.8 s: 20 s.
+    little = refused("kiln_pusher", ("    volume: 120 L", "    volume: 20 L"))
+    warned = by_kind(little, HazardKind.HOT_OIL)
+    assert warned
+    assert {value(hazard, "seconds") for hazard in warned.values()} == {20.0}
+    assert all(finding.code != "oil_heats_too_fast" for finding in little.procedure.findings)
+    (at, place), _ = next(iter(warned.items()))
+    said = little.spoken(little.procedure.stages[at])[place].warnings
+    assert any("After 20 s take the pressure off" in line for one in said for line in one.lines)
+
+
+@pytest.mark.parametrize(
+    ("change", "seconds"),
+    [
+        # 8 L take up 13.1 kJ/K: 10 K in 8.7 s.
+        (("    volume: 120 L", "    volume: 8 L"), 8.0),
+        # 196 kJ/K, but no room between the window and the limit.
+        (("  limit temperature: 65 °C", "  limit temperature: 55 °C"), 0.0),
+    ],
+)
+def test_too_little_time_for_a_try_is_refused_with_its_figures(
+    refused: Callable[..., Matter], change: tuple[str, str], seconds: float
+) -> None:
+    matter = refused("kiln_pusher", change)
+    assert matter.procedure.verdict is Verdict.REFUTED
+    (found,) = (one for one in matter.procedure.findings if one.code == "oil_heats_too_fast")
+    assert found.severity is Severity.REFUSED
+    assert found.subject == "TK1"
+    assert found.data["seconds"] == Amount(value=seconds, quantity="time_s")
+    assert found.data["least"] == Amount(value=10.0, quantity="time_s")
 
 
 def test_movement_where_only_a_valve_keeps_it_still(clay_mixer: Matter) -> None:

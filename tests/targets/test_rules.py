@@ -3,7 +3,7 @@
 import pytest
 
 from sheets.amounts import Finding, Severity
-from sheets.targets.power import oil_warming_k_per_s
+from sheets.targets.power import longest_time_s, oil_warming_k_per_s
 from sheets.targets.rules import (
     compensator_needed_bar,
     relief_capacity,
@@ -94,3 +94,17 @@ def test_relief_passes_every_flow_that_reaches_it() -> None:
 def test_oil_warms_by_what_the_relief_takes() -> None:
     # 34.6 kW into 250 L: 250 · 0.87 kg · 1.88 kJ/(kg·K) = 409 kJ/K, so 0.085 K/s, 5 K a minute.
     assert oil_warming_k_per_s(power_kw=34.6, volume_l=250.0) == pytest.approx(0.0846, abs=1e-4)
+
+
+@pytest.mark.parametrize(
+    ("volume_l", "room_k", "seconds"),
+    [
+        (250.0, 10.0, 60.0),  # 408.9 kJ/K · 10 K / 34.6 kW = 118 s: the policy is shorter
+        (100.0, 10.0, 45.0),  # 163.6 · 10 / 34.6 = 47.3 s, down to 5 s
+        (30.0, 1.0, 1.0),  # 49.1 · 1 / 34.6 = 1.4 s, down to 1 s
+        (30.0, 0.0, 0.0),
+        (30.0, -5.0, 0.0),
+    ],
+)
+def test_longest_time_is_what_the_oil_takes_up(volume_l: float, room_k: float, seconds: float) -> None:
+    assert longest_time_s(power_kw=34.6, volume_l=volume_l, room_k=room_k, most_s=60.0) == seconds
