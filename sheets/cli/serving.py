@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import errno
+import socket
+from contextlib import suppress
 from pathlib import Path
 
 import click
@@ -93,8 +96,7 @@ def serve(
         key=key,
         proxies=proxies,
     )
-    show([f"the record page: {serving.line} (Ctrl+C stops it)"])
-    uvicorn.run(
+    config = uvicorn.Config(
         create(serving.settings),
         host=serving.host,
         port=serving.port,
@@ -108,6 +110,26 @@ def serve(
         limit_concurrency=AT_ONCE,
         timeout_keep_alive=IDLE_S,
     )
+    with _listening(serving.host, serving.port) as listening, suppress(KeyboardInterrupt):
+        show([f"the record page: {serving.line} (Ctrl+C stops it)"])
+        uvicorn.Server(config).run(sockets=[listening])
+
+
+def _listening(host: str, port: int) -> socket.socket:
+    """A socket that listens there. Raises InputError where none can."""
+    try:
+        return socket.create_server((host, port), family=socket.AF_INET6 if ":" in host else socket.AF_INET)
+    except OSError as error:
+        used = error.errno == errno.EADDRINUSE
+        raise wrong(
+            "--port" if used else "--host, --port",
+            f"Something else listens at port {port} already."
+            if used
+            else f"Nothing can listen at {host}, port {port}: {error.strerror}.",
+            "Name another port with --port, or stop what listens there."
+            if used
+            else "Name an address of this computer, and a port above 1023.",
+        ) from None
 
 
 @click.command()

@@ -7,7 +7,7 @@ from collections.abc import AsyncIterator, Callable
 from contextlib import asynccontextmanager
 from datetime import UTC, datetime
 from functools import partial
-from typing import Final
+from typing import Final, Protocol
 from urllib.parse import urlencode, urlsplit
 
 from starlette.applications import Starlette
@@ -34,9 +34,22 @@ CLOSED: Final = Problem(
 
 SIGN_IN: Final = Problem(where="", what="Nobody is signed in.", fix="Sign in, and fill in the form again.")
 ROLE: Final = Problem(where="", what="Your role doesn't reach this.", fix="Ask who keeps the users file.")
+SENT: Final = Problem(
+    where="",
+    what="This form has been sent before, or is too old.",
+    fix="See first whether it was written. If it wasn't, send it again from here.",
+)
 FAST: Final = Problem(where="", what="That was too much in one minute.", fix="Wait a minute.")
 
 View = Callable[[Visit], Response]
+
+
+class Asking(Protocol):
+    """Shows a form with what was filled in, and what stood against it."""
+
+    __name__: str
+
+    def __call__(self, visit: Visit, /, *problems: Problem, status: int = 200) -> Response: ...
 
 
 def clock() -> datetime:
@@ -56,7 +69,7 @@ def create(
     desk = Desk(
         room=room,
         now=now,
-        base=address.path.rstrip("/") if address else "",
+        base=room.base,
         sessions=Sessions(now, random_text),
         gate=Gatekeeper(now, random_text),
         kept=KeptPages(),
@@ -70,7 +83,7 @@ def create(
         room.close()
 
     app = Starlette(
-        routes=[Mount(desk.base, routes=routes)] if desk.base else routes,
+        routes=[Mount(desk.base, routes=routes), Route("/", partial(_in, desk))] if desk.base else routes,
         exception_handlers={
             JamnutError: partial(_known, desk),
             HTTPException: partial(_http, desk),
@@ -81,16 +94,31 @@ def create(
     return Guard(app, hosts=hosts, secure=settings.secure)  # around the last gate, too
 
 
+def _in(desk: Desk, _: Request) -> Response:
+    """From the server's own address to where the page begins."""
+    return RedirectResponse(f"{desk.base}/", status_code=303)
+
+
 def _routes(desk: Desk) -> list[Route]:
-    def at(path: str, view: View, *, method: str = "GET", needs: Role | None = None) -> Route:
-        """A route for whoever may read, or for a role; a form only once, and from whom it was shown to."""
+    def at(path: str, view: View, *, needs: Role | None = None) -> Route:
+        """A route for whoever may read, or for a role."""
 
         def endpoint(request: Request) -> Response:
             visit = Visit(desk, request)
-            refusal = _refusal(visit, needs, form=method == "POST")
+            refusal = _refusal(visit, needs)
             return view(visit) if refusal is None else refusal
 
-        return Route(path, endpoint, methods=[method], name=view.__name__)
+        return Route(path, endpoint, methods=["GET"], name=view.__name__)
+
+    def form(path: str, ask: Asking, view: View, *, needs: Role) -> list[Route]:
+        """The routes of a form for a role: taken once, from whom it was shown to; else shown again."""
+
+        def endpoint(request: Request) -> Response:
+            visit = Visit(desk, request)
+            refusal = _refusal(visit, needs, ask=ask)
+            return view(visit) if refusal is None else refusal
+
+        return [at(path, ask, needs=needs), Route(path, endpoint, methods=["POST"], name=view.__name__)]
 
     def always(path: str, view: View, *, method: str = "GET") -> Route:
         def endpoint(request: Request) -> Response:
@@ -114,21 +142,22 @@ def _routes(desk: Desk) -> list[Route]:
         *routes,
         always("/sign-in", signing_in.ask),
         always("/sign-in", signing_in.sign_in, method="POST"),
-        at("/r/{record_id}/row/{row:int}", writing.ask_row, needs=Role.TECHNICIAN),
-        at("/r/{record_id}/row/{row:int}", writing.record_row, method="POST", needs=Role.TECHNICIAN),
-        at("/r/{record_id}/deviation/{number:int}", writing.ask_deviation, needs=Role.TECHNICIAN),
-        at("/r/{record_id}/deviation/{number:int}", writing.settle, method="POST", needs=Role.TECHNICIAN),
-        at("/r/{record_id}/tag", writing.ask_tag, needs=Role.TECHNICIAN),
-        at("/r/{record_id}/tag", writing.post_tag, method="POST", needs=Role.TECHNICIAN),
+        *form("/r/{record_id}/row/{row:int}", writing.ask_row, writing.record_row, needs=Role.TECHNICIAN),
+        *form(
+            "/r/{record_id}/deviation/{number:int}",
+            writing.ask_deviation,
+            writing.settle,
+            needs=Role.TECHNICIAN,
+        ),
+        *form("/r/{record_id}/tag", writing.ask_tag, writing.post_tag, needs=Role.TECHNICIAN),
         at("/r/{record_id}/tags.pdf", writing.tags, needs=Role.TECHNICIAN),
-        at("/sign-out", signing_in.ask_out, needs=Role.READER),
-        at("/sign-out", signing_in.sign_out, method="POST", needs=Role.READER),
+        *form("/sign-out", signing_in.ask_out, signing_in.sign_out, needs=Role.READER),
     ]
 
 
-def _refusal(visit: Visit, needs: Role | None, *, form: bool) -> Response | None:
-    """What stands against a request, or None. A form's token is used up by it."""
-    desk = visit.desk
+def _refusal(visit: Visit, needs: Role | None, *, ask: Asking | None = None) -> Response | None:
+    """What stands against a request, or None. ``ask`` shows the form that was sent; its token is used up."""
+    desk, form = visit.desk, ask is not None
     if visit.user is None and (needs is not None or not desk.room.open_to_all):
         if desk.room.settings.users is None or form:
             return visit.problem(401, CLOSED if needs is None else SIGN_IN)
@@ -138,9 +167,9 @@ def _refusal(visit: Visit, needs: Role | None, *, form: bool) -> Response | None
         return RedirectResponse(f"{desk.base}/sign-in?{to}", status_code=303)
     if needs is not None and not visit.may(needs):
         return visit.problem(403, ROLE)
-    if form and visit.session is not None:
+    if ask is not None and visit.session is not None:
         if not desk.sessions.take(visit.session, visit.said("form")):
-            return visit.problem(403, signing_in.STALE)
+            return ask(visit, SENT, status=403)
         if wait_s := desk.sessions.writes.take(visit.token):
             answer = visit.problem(429, FAST)
             answer.headers["Retry-After"] = str(wait_s)

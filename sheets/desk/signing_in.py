@@ -72,9 +72,9 @@ def sign_in(visit: Visit) -> Response:
     return answer
 
 
-def ask_out(visit: Visit) -> Response:
+def ask_out(visit: Visit, /, *problems: Problem, status: int = 200) -> Response:
     """The page to sign out: a link alone must not do it."""
-    return visit.page("sign_out", form=visit.form())
+    return visit.page("sign_out", status=status, form=visit.form(), problems=problems)
 
 
 def sign_out(visit: Visit) -> Response:

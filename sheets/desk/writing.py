@@ -29,10 +29,12 @@ SLOW: Final = Problem(where="acceptance", what="Too many wrong passwords.", fix=
 STATUSES: Final = {1: 409, 2: 422, 3: 503}
 
 
-def ask_row(visit: Visit) -> Response:
+def ask_row(visit: Visit, /, *problems: Problem, status: int = 200) -> Response:
     """The form for one row of the record sheet."""
     found = _row(visit)
-    return visit.problem(404, NO_ROW) if found is None else _row_form(visit, *found)
+    if found is None:
+        return visit.problem(404, NO_ROW)
+    return _row_form(visit, *found, *problems, status=status)
 
 
 def record_row(visit: Visit) -> Response:
@@ -78,10 +80,12 @@ def record_row(visit: Visit) -> Response:
     return _back(visit, look)
 
 
-def ask_deviation(visit: Visit) -> Response:
+def ask_deviation(visit: Visit, /, *problems: Problem, status: int = 200) -> Response:
     """The form for an open deviation of a record's machine."""
     found = _deviation(visit)
-    return visit.problem(404, NO_ROW) if found is None else _deviation_form(visit, *found)
+    if found is None:
+        return visit.problem(404, NO_ROW)
+    return _deviation_form(visit, *found, *problems, status=status)
 
 
 def settle(visit: Visit) -> Response:
@@ -108,10 +112,12 @@ def settle(visit: Visit) -> Response:
     return _back(visit, look)
 
 
-def ask_tag(visit: Visit) -> Response:
+def ask_tag(visit: Visit, /, *problems: Problem, status: int = 200) -> Response:
     """The form that tells of a setting tag at the machine."""
     look = _current(visit)
-    return visit.problem(404, NO_ROW) if look is None else _tag_form(visit, look)
+    if look is None:
+        return visit.problem(404, NO_ROW)
+    return _tag_form(visit, look, *problems, status=status)
 
 
 def post_tag(visit: Visit) -> Response:

@@ -14,6 +14,7 @@ from datetime import date, datetime, timedelta
 from pathlib import Path
 from threading import Lock
 from typing import Final, TypeVar, cast
+from urllib.parse import urlsplit
 from zoneinfo import ZoneInfo
 
 from sheets.errors import InputError
@@ -72,6 +73,11 @@ class ReadingRoom:
     def open_to_all(self) -> bool:
         """Whether anybody may read; else only who has signed in."""
         return self.site.record_page_open if self.site else True
+
+    @property
+    def base(self) -> str:
+        """Path under which it is reached, without a closing slash: that of the site's record address."""
+        return urlsplit(self.site.record_address or "").path.rstrip("/") if self.site else ""
 
     def day(self, now: datetime) -> date:
         """The day at the works."""

@@ -22,13 +22,15 @@ class Serving:
     key: Path | None
     proxies: tuple[str, ...]
     """Addresses of proxies whose word about the caller is believed."""
+    base: str
+    """Path under which the page is reached, without a closing slash."""
 
     @property
     def line(self) -> str:
         """Where it is reached from this computer."""
         kind = "https" if self.certificate else "http"
         host = f"[{self.host}]" if ":" in self.host else self.host
-        return f"{kind}://{host}:{self.port}/"
+        return f"{kind}://{host}:{self.port}{self.base}/"
 
 
 def serve(
@@ -85,5 +87,14 @@ def serve(
                 fix="Name --certificate and --key, or --proxy with the address of a proxy that does TLS.",
             )
         )
-    ReadingRoom(settings).close()
-    return Serving(settings=settings, host=host, port=port, certificate=certificate, key=key, proxies=proxies)
+    room = ReadingRoom(settings)
+    room.close()
+    return Serving(
+        settings=settings,
+        host=host,
+        port=port,
+        certificate=certificate,
+        key=key,
+        proxies=proxies,
+        base=room.base,
+    )

@@ -11,12 +11,23 @@ from sheets.resources import resource_folder
 FOLDER = "desk"
 
 
+def _shown(value: object) -> object:
+    """A value of a page: what would turn or hide the words around it is shown by its number."""
+    if not isinstance(value, str) or hasattr(value, "__html__") or value.isprintable():
+        return value
+    return "".join(
+        sign if sign.isprintable() or sign == "\n" else sign.encode("unicode_escape").decode()
+        for sign in value
+    )
+
+
 @lru_cache(maxsize=8)
 def _environment(language: str) -> Environment:
     return Environment(
         loader=FileSystemLoader(resource_folder("templates") / language / FOLDER),
         undefined=StrictUndefined,
         autoescape=True,
+        finalize=_shown,
         trim_blocks=True,
         lstrip_blocks=True,
         auto_reload=False,

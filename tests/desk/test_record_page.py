@@ -116,6 +116,15 @@ def test_what_was_typed_off_the_foot_of_a_page(bench: Bench) -> None:
     assert word(client.get(f"/r/{issued.record_id}", params={"d": wrong})) == "another paper"
 
 
+@pytest.mark.parametrize("path", ["/find?id=%E2%80%AE%00ab", "/r/%E2%80%AE%00ab"])
+def test_what_turns_the_words_around_it_is_shown_by_its_number(bench: Bench, path: str) -> None:
+    bench.issue()
+    answer = bench.client().get(path)
+    assert answer.status_code == 404
+    assert all(sign.isprintable() or sign == "\n" for sign in answer.text)
+    assert "\\u202e" in answer.text.lower()
+
+
 def test_a_register_that_does_not_hold_says_nothing(bench: Bench) -> None:
     issued = bench.issue()
     client = bench.client()

@@ -69,6 +69,35 @@ def test_the_example_serves_the_page(bench: Bench, root: Path) -> None:
     assert "Traceback" not in told
 
 
+def test_the_address_that_is_printed_answers(bench: Bench) -> None:
+    """A record address with a path, as behind a proxy that serves more than this page."""
+    bench.site.write_text(bench.site.read_text().replace(".example\n", ".example/oil\n", 1), encoding="utf-8")
+    line = pipeline.serve(bench.settings(), host="127.0.0.1", port=8417).line
+    assert line == "http://127.0.0.1:8417/oil/"
+    client = bench.client()
+    led = client.get("/")
+    assert (led.status_code, led.headers["location"]) == (303, "/oil/")
+    assert client.get("/oil/").status_code == 200
+
+
+def test_a_port_in_use_says_so_before_any_address(bench: Bench, root: Path) -> None:
+    with socket.create_server(("127.0.0.1", 0)) as taken:
+        port = taken.getsockname()[1]
+        words = ["serve", str(bench.folder), "--register", str(bench.register), "--port", str(port)]
+        done = subprocess.run(
+            [*COMMAND, *words],
+            env={"PYTHONPATH": str(root), "PATH": ""},
+            capture_output=True,
+            text=True,
+            check=False,
+            timeout=60,
+        )
+    assert done.returncode == 2
+    assert f"Something else listens at port {port} already" in done.stderr
+    assert done.stdout == ""
+    assert "Traceback" not in done.stderr
+
+
 def _asked(address: str) -> str:
     for _ in range(150):
         try:

@@ -108,6 +108,12 @@ def test_nobody_is_sent_elsewhere(site: TestClient, to: str) -> None:
     assert (answer.status_code, answer.headers["location"]) == (303, "/")
 
 
+def test_signing_in_without_a_target_leads_to_the_list(bench: Bench, site: TestClient) -> None:
+    bench.issue()
+    answer = sign_in(site)
+    assert site.get(answer.headers["location"]).status_code == 200
+
+
 def test_guessing_ends_by_name_and_a_right_password_waits_with_it(bench: Bench, site: TestClient) -> None:
     for _ in range(8):
         assert sign_in(site, password="a wrong guess").status_code == 403

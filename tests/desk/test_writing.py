@@ -212,6 +212,26 @@ def test_forged_and_replayed_forms_write_nothing(bench: Bench, site: TestClient,
     assert events(bench, *WRITTEN) == written
 
 
+def test_a_form_that_was_used_comes_back_with_what_was_filled_in(
+    bench: Bench, site: TestClient, issued: Revision
+) -> None:
+    sign_in(site)
+    path = f"/r/{issued.record_id}/row/1"
+    form = form_in(site.get(path))
+    again = site.post(path, data={**ROW, "form": form[:-1], "why": "after the storm"})
+    assert again.status_code == 403
+    assert "sent before, or is too old" in again.text
+    assert 'value="after the storm"' in again.text
+    assert 'value="207"' in again.text
+    assert events(bench, *WRITTEN) == []
+    fresh = site.post(path, data={**ROW, "form": form_in(again)})
+    assert fresh.status_code == 303
+    used = form_in(again)
+    assert site.post(f"/r/{issued.record_id}/deviation/1", data={"form": used}).status_code == 404
+    tag = site.post(f"/r/{issued.record_id}/tag", data={"form": used, "where": "on the valve"})
+    assert (tag.status_code, 'value="on the valve"' in tag.text) == (403, True)
+
+
 def test_too_many_forms_a_minute_have_to_wait(bench: Bench, site: TestClient, issued: Revision) -> None:
     sign_in(site)
     answers = [sent(site, issued, left="x").status_code for _ in range(42)]
