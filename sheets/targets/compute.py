@@ -15,6 +15,7 @@ from sheets.machine.parts import FixedPump, LoadSensingControl, ReliefValve, Var
 from sheets.machine.screws import Screw, screws_of
 from sheets.machine.site import Policies
 from sheets.targets.capacity import capacity_findings
+from sheets.targets.coming_up import with_room_below
 from sheets.targets.demand import Demand, undescribed_loads, work_of
 from sheets.targets.guarding import reliefs_cut_off
 from sheets.targets.rules import (
@@ -87,8 +88,9 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
             _settle(settings, findings, _given(id_, screws, policies))
     for id_, setting in list(settings.items()):
         checked = _within_rating(setting, sites[id_], machine, circuit, settings)
-        settings[id_] = replace(setting, findings=setting.findings + checked)
-        findings.extend(checked)
+        reached, against = with_room_below(setting)
+        settings[id_] = replace(reached, findings=(*setting.findings, *checked, *against))
+        findings += (*checked, *against)
     findings.extend(capacity_findings(machine, circuit, settings))
     ordered = {id_: settings[id_] for id_ in screws if id_ in settings}
     return Targets(settings=_apart(ordered, lines), findings=tuple(findings))

@@ -4,7 +4,7 @@ from collections.abc import Callable
 
 import pytest
 
-from sheets.amounts import Severity
+from sheets.amounts import Severity, bar
 from sheets.errors import InputError
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline import Described, targets
@@ -117,3 +117,51 @@ def test_a_differential_at_more_than_the_pump_gives_is_refused(changed: Callable
                 ("differential flow: 60 L/min", "differential flow: 100 L/min"),
             )
         )
+
+
+LOWEST = "      lowest: 40 bar\n"
+
+
+@pytest.mark.parametrize(
+    ("lowest", "refused"),
+    [
+        ("175 bar", True),  # 176 ± 4: the screw ends 3 bar above the window's bottom
+        ("172 bar", True),  # at it
+        ("171.5 bar", True),  # half a bar below it: no gauge would show that
+        ("171 bar", False),
+    ],
+)
+def test_a_given_window_that_cant_be_come_up_to_is_refused(
+    changed: Callable[..., Described], lowest: str, refused: bool
+) -> None:
+    found = targets(changed("clay_mixer", (LOWEST, f"      lowest: {lowest}\n")))
+    against = [finding for finding in found.findings if finding.code == "no_room_below"]
+    assert found.settings["PU1.compensator"].low_bar == 172.0
+    assert len(against) == refused
+    for finding in against:
+        assert finding.severity is Severity.REFUSED
+        assert finding.subject == "PU1.compensator"
+        assert finding.data["bottom"] == bar(172.0)
+        assert finding.data["lowest"] == bar(float(lowest.split()[0]))
+
+
+@pytest.mark.parametrize(
+    ("lowest", "low_bar", "refused"),
+    [
+        ("40 bar", 172.48, False),  # 2 % of 176 bar are 3.52 bar
+        ("173 bar", 174.0, False),  # cut to 1 bar over the end of the screw
+        ("175 bar", 172.48, True),  # 176 bar: nothing of it would be left below the target
+    ],
+)
+def test_a_policy_window_is_cut_to_what_the_screw_reaches_from_below(
+    changed: Callable[..., Described], lowest: str, low_bar: float, refused: bool
+) -> None:
+    given = COMPENSATOR.replace("      tolerance: 4 bar\n", "")
+    text = ((COMPENSATOR, given), (LOWEST, f"      lowest: {lowest}\n"))
+    found = targets(changed("clay_mixer", *text))
+    setting = found.settings["PU1.compensator"]
+    assert setting.low_bar == pytest.approx(low_bar)
+    assert setting.high_bar == pytest.approx(179.52)
+    assert any(finding.code == "no_room_below" for finding in found.refusals) == refused
+    if not refused:
+        assert setting.floor_bar >= float(lowest.split()[0]) + 1.0
