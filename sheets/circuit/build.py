@@ -11,7 +11,7 @@ from sheets.circuit.nodes import NodeBook, read_nodes
 from sheets.circuit.reliefs import Reliefs
 from sheets.circuit.rows import Rows
 from sheets.machine.model import Machine
-from sheets.machine.parts import DirectionalValve, ElectricMotor, HandValve, Pump, ReliefValve
+from sheets.machine.parts import DirectionalValve, HandValve, Pump, ReliefValve
 
 
 def build_circuit(
@@ -49,7 +49,8 @@ def build_circuit(
         control_width_bar=control_width_bar,
     )
     book = read_nodes(machine)
-    drives = tuple(sorted(name for name, part in machine.parts.items() if isinstance(part, ElectricMotor)))
+    # A motor that drives no pump (a fan's) is locked out with its supply; no pressure hangs on it.
+    drives = tuple(sorted({part.driven_by for part in machine.parts.values() if isinstance(part, Pump)}))
     full_flow_lpm = sum(
         full_flow(machine, part_id, part)
         for part_id, part in sorted(machine.parts.items())

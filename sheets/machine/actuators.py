@@ -89,6 +89,7 @@ class HydraulicMotor(RatedPart):
 
     kind: Literal["hydraulic motor"]
     LOW_PRESSURE_PORTS: ClassVar[frozenset[str]] = frozenset({"L"})
+    NEVER_PLUGGED: ClassVar[frozenset[str]] = frozenset({"L"})
     displacement_cm3: Cm3
     """Geometric displacement a revolution."""
     volumetric_efficiency: Ratio

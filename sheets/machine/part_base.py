@@ -19,6 +19,9 @@ class PartBase(Entry):
     LOW_PRESSURE_PORTS: ClassVar[frozenset[str]] = frozenset()
     """Ports that the part's rating doesn't speak of (suction, tank, case)."""
 
+    NEVER_PLUGGED: ClassVar[frozenset[str]] = frozenset()
+    """Ports that must lead somewhere: a case that leaks inside has no other way out."""
+
     designation: Text = ""
     """Code on the machine's own drawing (ISO 1219-2)."""
     name: Text = ""
@@ -45,6 +48,12 @@ class PartBase(Entry):
                     at=("plugged", place),
                     what=f"{quoted(port)} isn't a port of this part.",
                     fix=unknown_port(port, self.ports),
+                )
+            elif port in self.NEVER_PLUGGED:
+                yield Flaw(
+                    at=("plugged", place),
+                    what=f"{port} takes what leaks inside the part; plugged, the case bursts.",
+                    fix=f"Write {port} into the net that leads to the reservoir.",
                 )
             elif port in self.plugged[:place]:
                 yield Flaw(at=("plugged", place), what=f"{port} is named twice.", fix="Write it once.")

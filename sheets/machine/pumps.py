@@ -65,6 +65,7 @@ class VariablePump(Pump):
     """Variable pump with a compensator, and with a load-sensing control where it has one."""
 
     kind: Literal["variable pump"]
+    NEVER_PLUGGED: ClassVar[frozenset[str]] = frozenset({"L"})
     compensator: CompensatorControl
     """Its pressure compensator."""
     load_sensing: LoadSensingControl | None = None

@@ -2,14 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import replace
 
 from sheets.amounts import Amount
-from sheets.circuit.faults import CAN_MOVE, Fault, faults_of
+from sheets.circuit.faults import CAN_MOVE, Fault, FaultKind, faults_of
 from sheets.circuit.plant import PlantState
 from sheets.circuit.solution import Solution
 from sheets.circuit.solver import solve_one
+from sheets.machine.parts import HandValve
 from sheets.procedure.case import Case
 from sheets.procedure.conditions import Condition, Failure, moving, over_rating
 from sheets.procedure.work import ALL, Work
@@ -37,7 +38,10 @@ def moved_by_faults(
 
 
 def _moved(case: Case, states: Sequence[tuple[PlantState, Solution]], work: Work) -> list[Failure | None]:
-    faults = [faults_of(case.machine, case.circuit, state, kinds=CAN_MOVE) for state, _ in states]
+    faults = [
+        (*faults_of(case.machine, case.circuit, state, kinds=CAN_MOVE), *_other_ways(case, state))
+        for state, _ in states
+    ]
     asked = [
         (state, fault, sound.pressures_bar if sound.established else state.pressures_bar)
         for (state, sound), here in zip(states, faults, strict=True)
@@ -45,16 +49,27 @@ def _moved(case: Case, states: Sequence[tuple[PlantState, Solution]], work: Work
     ]
     solutions = iter(work.under_faults(case.circuit, asked))
     found: list[Failure | None] = []
-    for here in faults:
-        failures = [_under_fault(fault, next(solutions)) for fault in here]
+    for (state, _), here in zip(states, faults, strict=True):
+        failures = [_under_fault(fault, next(solutions), state) for fault in here]
         found.append(next((failure for failure in failures if failure is not None), None))
     return found
 
 
-def _under_fault(fault: Fault, solution: Solution) -> Failure | None:
+def _other_ways(case: Case, state: PlantState) -> Iterator[Fault]:
+    """A spool that is held in one shifted position, held or stuck in another: one slip of a hand away."""
+    for valve, positions in case.circuit.positions.items():
+        if state.positions[valve] == positions[0] or isinstance(case.machine.parts[valve], HandValve):
+            continue
+        for position in positions[1:]:
+            if position != state.positions[valve]:
+                yield Fault(kind=FaultKind.SPOOL_STUCK, part=valve, position=position)
+
+
+def _under_fault(fault: Fault, solution: Solution, state: PlantState) -> Failure | None:
+    slip = fault.kind is FaultKind.SPOOL_STUCK and not fault.shows_in(solution.circuit, state)
     if not solution.established:
         return Failure(condition=Condition.BARRED, data={"fault": fault.kind.value, "valve": fault.part})
-    failure = moving(solution)
+    failure = None if slip else moving(solution)
     if failure is not None:
         return Failure(condition=Condition.BARRED, data={**failure.data, **fault_data(fault)})
     failure = over_rating(solution)

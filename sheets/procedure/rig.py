@@ -84,8 +84,8 @@ class Rig:
         if runs is not None and kind in MUST_REACH and self.state.travel[runs.actuator] != runs.stop:
             self._find("step_stops_short", Severity.REFUSED, runs.actuator, {"step": kind.value})
         solution = self.look()
-        if window_of:
-            self._refuse_old_pressure(solution, window_of)
+        if window_of or kind is StepKind.TURN_BELOW:
+            self._refuse_old_pressure(solution, window_of or subject)
         self.steps.append(
             Step(
                 kind=kind,
@@ -125,7 +125,9 @@ class Rig:
         empty = replace(self.state, pressures_bar=(0.0,) * len(self.state.pressures_bar))
         follows = solve_one(self.circuit, empty)
         kept_bar, held_bar = solution.pressures_bar[node], follows.pressures_bar[node]
-        if follows.established and kept_bar > held_bar + OLD_PRESSURE_BAR:
+        seen_bar = max(OLD_PRESSURE_BAR, self.gauge.graduation_bar / 2.0)
+        told = any((one.code, one.subject) == ("line_keeps_pressure", adjuster) for one in self.findings)
+        if follows.established and kept_bar > held_bar + seen_bar and not told:
             data: dict[str, Amount | str] = {
                 "gauge": self.gauge.gauge,
                 "kept": bar(kept_bar),

@@ -16,8 +16,9 @@ from sheets.machine.screws import Screw, screws_of
 from sheets.machine.site import Policies
 from sheets.targets.capacity import capacity_findings
 from sheets.targets.coming_up import with_room_below
-from sheets.targets.demand import Demand, undescribed_loads, work_of
+from sheets.targets.demand import Demand, loads_not_given, undescribed_loads, work_of
 from sheets.targets.guarding import reliefs_cut_off
+from sheets.targets.intensified import intensified_lines
 from sheets.targets.rules import (
     compensator_needed_bar,
     relief_capacity,
@@ -92,6 +93,10 @@ def compute_targets(machine: Machine, circuit: Circuit, policies: Policies) -> T
         settings[id_] = replace(reached, findings=(*setting.findings, *checked, *against))
         findings += (*checked, *against)
     findings.extend(capacity_findings(machine, circuit, settings))
+    findings.extend(intensified_lines(machine, circuit, settings))
+    working = [id_ for line in lines for id_ in ((line.limit,) if line.limit else line.reliefs)]
+    by_work = any(settings[id_].origin is Origin.COMPUTED for id_ in working if id_ in settings)
+    findings.extend(loads_not_given(machine, needed=by_work))
     ordered = {id_: settings[id_] for id_ in screws if id_ in settings}
     return Targets(settings=_apart(ordered, lines), findings=tuple(findings))
 

@@ -186,6 +186,30 @@ def _unmoved(load: _Load, amount: Amount, sense: str, *, known: bool) -> Finding
     return Finding(code="load_not_known_to_move", severity=Severity.REFUSED, subject=load[0], data=data)
 
 
+def loads_not_given(machine: Machine, *, needed: bool) -> Iterator[Finding]:
+    """Work loads that the file doesn't say: nought is a load, and has to be written.
+
+    ``needed``: a setting is computed from the work. Then it is refused; else it is warned that no limit was
+    held against the work.
+    """
+    severity = Severity.REFUSED if needed else Severity.WARNING
+    for id_, part in machine.parts.items():
+        given = part.model_fields_set
+        if isinstance(part, Cylinder):
+            missing = [
+                key
+                for key in ("extending load", "retracting load")
+                if f"{key.replace(' ', '_')}_kn" not in given
+            ]
+        elif isinstance(part, HydraulicMotor):
+            missing = [] if "load_torque_nm" in given else ["load torque"]
+        else:
+            continue
+        if missing:
+            data: dict[str, Amount | str] = {"loads": " and ".join(missing)}
+            yield Finding(code="load_not_given", severity=severity, subject=id_, data=data)
+
+
 def undescribed_loads(machine: Machine) -> tuple[Finding, ...]:
     """Refuses a held-up load that no part describes, and one declared absent although a part has it."""
     described = held_loads(machine)

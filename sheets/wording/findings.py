@@ -20,7 +20,8 @@ def say_finding(speaker: Speaker, finding: Finding) -> tuple[str, str]:
     subject = speaker.adjuster(finding.subject) if finding.subject in speaker.screws else finding.subject
     if "condition" in values:
         values["why"], values["advice"] = _why(sentences, values)
-    what = sentences.say(f"{finding.code}_what", **values, subject=subject)
+    values["subject"] = subject
+    what = sentences.say(f"{finding.code}_what", **values)
     return capital(what), sentences.say(f"{finding.code}_fix", **values)
 
 

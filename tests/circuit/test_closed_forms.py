@@ -276,7 +276,8 @@ def test_blocked_rod_side_is_intensified_by_the_ratio_of_areas():
         )
     )
     solution = solved(circuit, running(circuit, compensator=150.0))
-    assert solution.pressure_at("CY1.B") == pytest.approx(150.0 / 0.51, abs=2.0 * BEND_BAR)
+    # Seals that break away at 0.5 bar over the bore (policy) leave 149.5 bar to be held: 149.5/0.51 = 293.1.
+    assert solution.pressure_at("CY1.B") == pytest.approx((150.0 - 0.5) / 0.51, abs=2.0 * BEND_BAR)
     assert solution.moving == frozenset()
     assert max(solution.pressures_bar) > 290.0  # far above anything that the pump gives
 

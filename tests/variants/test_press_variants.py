@@ -24,6 +24,7 @@ from variant_bench import (
 
 from sheets.circuit.faults import FaultKind, every_fault, solve_faults
 from sheets.circuit.verdict import Verdict
+from sheets.errors import InputError
 from sheets.machine.site import Policies
 from sheets.pages.compose.matter import Matter
 from sheets.pipeline.computing import findings_of_job
@@ -250,3 +251,13 @@ def test_w_a_gauge_before_the_check_valve_sees_the_compensator(refused: Refused)
         ("    fitted at: [TP1, TP2]\n", "    fitted at: [TP9]\n"),
     )
     assert_good(matter)
+
+
+def test_x_case_drain_of_a_pump_is_never_plugged(refused: Refused) -> None:
+    # What the pump leaks inside, 5 L/min and more, has no other way out than through the shaft's seal.
+    with pytest.raises(InputError, match="the case bursts"):
+        refused(
+            "glaze_press",
+            ("    kind: variable pump\n", "    kind: variable pump\n    plugged: [L]\n"),
+            ("PU1.L, ", ""),
+        )

@@ -12,10 +12,13 @@ from variant_bench import (
     assert_good,
     assert_refused,
     finding,
+    hand_valve,
     moves,
+    refusals,
     refused_adjuster,
     said,
     state,
+    warnings,
 )
 
 from sheets.circuit.solver import solve_one
@@ -25,6 +28,7 @@ from sheets.pages.compose.matter import Matter
 from sheets.pipeline import Described
 from sheets.procedure.case import Case
 from sheets.procedure.conditions import Condition
+from sheets.procedure.faulted import moved_by_fault
 
 Refused = Callable[..., Matter]
 Replacements = tuple[tuple[str, str], ...]
@@ -182,3 +186,78 @@ def test_nothing_stands_against_the_sample_itself(kiln_pusher: Matter) -> None:
     assert_good(kiln_pusher)
     with pytest.raises(AssertionError):
         assert_refused(kiln_pusher)
+
+
+# x: what a reader with bad intent found
+
+
+def test_x_relief_into_the_line_before_the_return_filter_is_an_ordinary_unit(refused: Refused) -> None:
+    # 43 L/min through a filter for 100 L/min at 0.5 bar leave 0.09 bar in the return line: on the rod's
+    # 15.9 cm² that is 14 N, and no seal lets go at that. A spool that leaks moves nothing.
+    matter = refused(
+        "kiln_pusher",
+        (
+            "  tank: [TK1.S, TK1.T, TK1.L, HV1.A, RV1.T, FR1.B]\n",
+            "  tank: [TK1.S, TK1.T, TK1.L, HV1.A, FR1.B]\n",
+        ),
+        ("  return: [DV1.T, FR1.A]\n", "  return: [DV1.T, RV1.T, FR1.A]\n"),
+    )
+    assert_good(matter)
+
+
+def test_x_throttle_behind_the_rod_side_lets_it_pass_its_rating(refused: Refused) -> None:
+    # All of RV1's window, 183.6 bar, on 50.27 cm² against 34.36 cm² (80/45): 0.5 bar kept by the seals leaves
+    # 268 bar where next to nothing flows out; CY1 carries 250.
+    throttle = (
+        "  FC1: {kind: flow control, where: line B, rating: 400 bar, rated flow: 1 L/min, "
+        "rated drop: 100 bar}\n"
+    )
+    matter = refused(
+        "kiln_pusher",
+        ("  FR1:\n", f"{throttle}  FR1:\n"),
+        ("  line B: [DV1.B, TP3.P, CY1.B]", "  line B: [DV1.B, FC1.B]\n  rod: [FC1.A, TP3.P, CY1.B]"),
+    )
+    one = finding(matter, "line_intensified", "rod")
+    assert amount(one, "pressure") == pytest.approx(268.0, abs=3.0)
+    assert (amount(one, "rating"), one.data["part"]) == (250.0, "CY1")
+
+
+def test_x_loads_that_the_file_does_not_say(refused: Refused) -> None:
+    # With the setting given nothing hangs on them but a check that isn't made; computed from them, it would
+    # be 12 bar of losses.
+    unsaid = [("    extending load: 60 kN\n", ""), ("    retracting load: 15 kN\n", "")]
+    given = refused("kiln_pusher", *unsaid)
+    assert ("load_not_given", "CY1") in warnings(given)
+    assert refusals(given) == set()
+    computed = refused(
+        "kiln_pusher", *unsaid, ("      setting: 180 bar\n      given by: machine manual, sheet 2\n", "")
+    )
+    assert ("load_not_given", "CY1") in refusals(computed)
+
+
+def test_x_motor_of_a_fan_hangs_on_no_pressure(refused: Refused) -> None:
+    fan = (
+        "  M2: {kind: electric motor, where: oil cooler, power: 0.75 kW, speed: 1400 rpm, "
+        "service factor: 1.0, coasts for: 3 s}\n"
+    )
+    matter = refused(
+        "kiln_pusher", ("  HV1:\n", f"{fan}  HV1:\n"), ("    feeds: [M1]\n", "    feeds: [M1, M2]\n")
+    )
+    assert_good(matter)
+    assert not any(step.subject == "M2" for stage in matter.procedure.stages for step in stage.steps)
+
+
+def test_x_lever_the_other_way_bursts_a_rod_side_that_is_shut(refused: Refused) -> None:
+    # Held in return with line B shut RV1 can be read. In push the rod side would come to
+    # (180.3 − 0.5) · 50.27/34.36 = 263 bar, one movement of a hand away; CY1 carries 250.
+    matter = refused(
+        "kiln_pusher",
+        ("  FR1:\n", hand_valve("HV6", "line B", flow="80 L/min") + "  FR1:\n"),
+        ("  line B: [DV1.B, TP3.P, CY1.B]", "  line B: [DV1.B, HV6.A]\n  rod: [HV6.B, TP3.P, CY1.B]"),
+    )
+    case = Case(matter.machine, matter.circuit, matter.targets, Policies())
+    failure = moved_by_fault(case, case.base.moved("HV6", "closed").moved("DV1", "return"))
+    assert failure is not None
+    assert failure.condition is Condition.WITHIN
+    assert (failure.data["part"], failure.data["position"]) == ("CY1", "push")
+    assert float(failure.data["pressure"].value) == pytest.approx(263.0, abs=1.0)  # type: ignore[union-attr]
