@@ -13,7 +13,7 @@ from sheets.amounts import Amount, Finding, Severity, bar
 from sheets.circuit.plant import Adjust, MoveValve, PlantState, StartDrive, StopDrive
 from sheets.circuit.solution import Solution
 from sheets.circuit.solver import solve, solve_one
-from sheets.energy.held import held_loads
+from sheets.energy.held import held_loads, stuck_loads
 from sheets.energy.trapped import Trapped, find_trapped
 from sheets.machine.parts import HandValve
 from sheets.procedure.answers import TestState
@@ -82,8 +82,10 @@ def _isolate(job: Job, rig: Rig, kind: StageKind) -> Stage:
         _stop(job, rig)
     for supply in machine.isolated:
         rig.say(StepKind.ISOLATE, supply)
+    stuck = stuck_loads(machine, circuit)
     for actuator, (_, amount) in held_loads(machine).items():
-        rig.say(StepKind.BLOCK, actuator, force=amount, again="" if first else "yes")
+        data = {"stuck": "yes" if actuator in stuck else "", "again": "" if first else "yes"}
+        rig.say(StepKind.BLOCK, actuator, force=amount, **data)
     trapped = find_trapped(machine, circuit, rig.state.positions)
     vents = {relief.valve for relief in trapped.reliefs if relief.stays}
     _relieve(job, rig, trapped)

@@ -5,7 +5,9 @@ from collections.abc import Callable
 import pytest
 
 from sheets.circuit.plant import MoveValve
+from sheets.energy.held import stuck_loads
 from sheets.pages.compose.matter import Matter
+from sheets.pipeline import Described
 from sheets.procedure.steps import StageKind, StepKind
 
 WEIGHT = ("    moves: press slide\n", "    weight: 5 kN\n    moves: press slide\n")
@@ -64,3 +66,49 @@ def test_a_block_comes_out_when_the_machine_carries_the_load(held: Matter) -> No
 def test_nothing_is_blocked_where_nothing_is_held_up(any_sample: Matter) -> None:
     kinds = {step.kind for stage in any_sample.procedure.stages for step in stage.steps}
     assert not kinds & {StepKind.BLOCK, StepKind.UNBLOCK}
+
+
+def test_a_load_that_only_a_dead_solenoid_could_lower_is_blocked(held: Matter) -> None:
+    # All four ports of DV1 are blocked at rest, and its solenoids are dead: the oil under CY1 can't leave.
+    said = [
+        one.order
+        for stage in held.procedure.stages
+        for one in held.spoken(stage)
+        if one.step.kind is StepKind.BLOCK
+    ]
+    assert said == [
+        "Block press slide (CY1). See the load rest on the block.",
+        "Check that press slide (CY1) still rests on its block.",
+    ]
+
+
+CENTRE = "      centre: []                       # all four ports blocked\n"
+
+
+@pytest.mark.parametrize(
+    ("centre", "drives", "stuck"),
+    [
+        ("[]", "retracting", True),
+        ("[A to T]", "retracting", False),  # the way out of A stands open at rest
+        ("[B to T]", "retracting", True),  # the load presses out of A
+        ("[B to T]", "extending", False),
+        ("[A to T]", "extending", True),
+    ],
+)
+def test_what_lets_a_load_down_is_a_way_for_the_oil_under_it(
+    changed: Callable[..., Described], centre: str, drives: str, stuck: bool
+) -> None:
+    weight = (WEIGHT[0], f"{WEIGHT[1]}    weight drives: {drives}\n")
+    absent = ("absent: [accumulator, suspended load, ", "absent: [accumulator, ")
+    described = changed("glaze_press", weight, absent, (CENTRE, f"      centre: {centre}\n"))
+    assert stuck_loads(described.machine, described.circuit) == ({"CY1"} if stuck else set())
+
+
+def test_a_lever_lets_a_load_down(changed: Callable[..., Described]) -> None:
+    moves = "    moves: pusher carriage\n"
+    described = changed(
+        "kiln_pusher",
+        (moves, f"    weight: 5 kN\n{moves}"),
+        ("absent: [accumulator, suspended load, ", "absent: [accumulator, "),
+    )
+    assert stuck_loads(described.machine, described.circuit) == set()
