@@ -32,6 +32,7 @@ from sheets.pipeline.keeping import kept_of
 from sheets.pipeline.persons import Named, Signing, check_people, check_trusted, named_by, trust_of
 from sheets.pipeline.printing import Content, printed, whole_content
 from sheets.pipeline.replacing import keep_issued
+from sheets.pipeline.zones import zone_of
 from sheets.register.finding import document_revisions, revision_of
 from sheets.register.issuing import Reservation, commit, reserve, sign_event, void
 from sheets.register.opening import Place, create_register, is_there, open_register
@@ -356,20 +357,6 @@ def _site(matter: Matter) -> Site:
             )
         )
     return site
-
-
-def zone_of(site: Site) -> ZoneInfo:
-    """The time zone of a works. Raises InputError if it isn't known."""
-    try:
-        return ZoneInfo(site.zone)
-    except (KeyError, ValueError, OSError):  # a folder of zones is no zone, either
-        raise InputError(
-            Problem(
-                where="site file, zone",
-                what=f"The time zone {quoted(site.zone)} isn't known.",
-                fix="Write an IANA name, such as Europe/Lisbon, or UTC.",
-            )
-        ) from None
 
 
 def _register(at: Place, by: str, when: datetime) -> Register:

@@ -20,8 +20,8 @@ from zoneinfo import ZoneInfo
 from sheets.errors import InputError
 from sheets.machine.loading import load_site
 from sheets.machine.site import Site
-from sheets.pipeline.issuing import zone_of
 from sheets.pipeline.kept_files import KeptFiles
+from sheets.pipeline.zones import zone_of
 from sheets.register.chain import Anchor, ChainVerdict, chain_in
 from sheets.register.opening import Place, is_url, open_register
 from sheets.register.store import Register, View

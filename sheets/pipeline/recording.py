@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import json
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date, datetime
 from pathlib import Path
 from typing import Any
@@ -15,6 +15,7 @@ from typing import Any
 from sheets.errors import InputError, Problem, RefusedError
 from sheets.machine.loading import load_entry, parse_entry
 from sheets.machine.record import RecordFile, RecordReading
+from sheets.pipeline.zones import zone_kept
 from sheets.register.acting import close_window, open_window, put_on, read_zero, take_off, tell_people
 from sheets.register.deviations import Standing, deviations
 from sheets.register.finding import found_in
@@ -83,14 +84,21 @@ def record_said(
     ``acceptance``: who answers at once for what was left outside its window. ``hold_windows``: without one,
     nothing is recorded that would leave a setting open.
     """
-    how = Telling(by=by, when=when, on=said.day, people=said.people, transcribed=said.from_paper)
     with open_register(register_at) as register, register.writing() as writer:
+        how = Telling(
+            by=by,
+            when=when,
+            on=said.day,
+            people=said.people,
+            transcribed=said.from_paper,
+            zone=zone_kept(found_in(writer, said.record)),
+        )
         job = int(said.job) if said.job else open_job(writer, said.record, how, why=said.why)
         _hold_record(writer, job, said.record)
         recorded = [*_acts(writer, job, said, how)]
         for made in recorded:
             if made.deviation and acceptance is not None:
-                by_name = Telling(by=acceptance.by, when=when, on=said.day, people=(acceptance.by,))
+                by_name = replace(how, by=acceptance.by, people=(acceptance.by,))
                 accept(writer, made.deviation, by_name, authoriser=acceptance.by, why=acceptance.why)
             elif made.deviation and hold_windows:
                 raise _outside(made)

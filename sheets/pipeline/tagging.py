@@ -15,10 +15,11 @@ from sheets.pages.layout import place
 from sheets.pages.press import pdf_bytes
 from sheets.pipeline.computing import steps, task_of
 from sheets.pipeline.describing import check_sources
-from sheets.pipeline.issuing import ISSUED, zone_of
+from sheets.pipeline.issuing import ISSUED
 from sheets.pipeline.keeping import sources_of
 from sheets.pipeline.printing import whole_content
 from sheets.pipeline.replacing import keep_issued
+from sheets.pipeline.zones import zone_of
 from sheets.register.copies import TagPosted
 from sheets.register.deviations import DeviationKind, Standing, deviations
 from sheets.register.finding import found_in

@@ -18,7 +18,15 @@ from sheets.register.acts import (
 )
 from sheets.register.finding import found_in
 from sheets.register.instruments import usable
-from sheets.register.recording import Telling, hold_current, hold_people, kept_of_issue, open_one, tell_of
+from sheets.register.recording import (
+    Telling,
+    hold_current,
+    hold_past,
+    hold_people,
+    kept_of_issue,
+    open_one,
+    tell_of,
+)
 from sheets.register.revisions import Revision
 from sheets.register.rows import digits_of
 from sheets.register.store import Writer
@@ -29,7 +37,7 @@ def tell_people(writer: Writer, job: int, how: Telling, *, before: bool, clock: 
 
     ``before`` the work, or after it. They are those of ``how``. Raises as `open_one` does.
     """
-    revision = _of(writer, job, how)
+    revision = _of(writer, job, how, clock)
     hold_people("people told", how)
     return tell_of(
         writer,
@@ -49,7 +57,7 @@ def tell_people(writer: Writer, job: int, how: Telling, *, before: bool, clock: 
 
 def put_on(writer: Writer, job: int, how: Telling, *, where: str, lock: str, clock: str = "") -> int:
     """A person puts a lock on; ``job`` is an open one's number. Gives the number of the event."""
-    revision = _of(writer, job, how)
+    revision = _of(writer, job, how, clock)
     hold_people(f"lock {lock}", how)
     said = LockPutOn(
         job=job,
@@ -79,6 +87,7 @@ def take_off(
     isn't at the works, what was tried to reach them, and how they learn of it. Raises RefusedError without
     them, InputError for a lock that isn't on.
     """
+    hold_past(how, clock)
     hanging = locks_on(writer, machine=_machine_of(writer, put))
     one = next((lock for lock in hanging if lock.sequence == put), None)
     if one is None:
@@ -86,6 +95,7 @@ def take_off(
             Problem(where=f"lock of event {put}", what="It isn't on.", fix="Look it up: jamnut history.")
         )
     hold_people(f"lock {one.said.lock}", how)
+    _hold_after(f"lock {one.said.lock} on {one.said.where}", one.said, how, clock)
     absent = (not_here, tried, will_know)
     if not same_person(how.people[0], one.said.by) and not all(absent):
         raise RefusedError(
@@ -128,7 +138,7 @@ def read_zero(
     ``moved``: whether that gauge was seen to move on that volume in this job. Raises RefusedError without
     that, above the limit of the works, in another unit than the sheet's, and for a gauge that isn't fit.
     """
-    revision = _of(writer, job, how)
+    revision = _of(writer, job, how, clock)
     hold_people(f"zero at {where}", how)
     kept = kept_of_issue(revision)
     gauge = usable(writer, instrument, day=how.on).listed.said
@@ -168,7 +178,7 @@ def open_window(writer: Writer, job: int, how: Telling, *, where: str, minutes: 
     ``where``: who stands where; ``minutes``: at most so long, from 1. Raises RefusedError while another
     window of the machine is open, and for people who don't take part in the job.
     """
-    revision = _of(writer, job, how)
+    revision = _of(writer, job, how, clock)
     hold_people("powered window", how)
     if minutes < 1:
         raise InputError(
@@ -206,6 +216,7 @@ def open_window(writer: Writer, job: int, how: Telling, *, where: str, minutes: 
 
 def close_window(writer: Writer, opened: int, how: Telling, *, clock: str = "") -> int:
     """Power is off again and locked; ``opened`` is the event that opened the window. Raises InputError."""
+    hold_past(how, clock)
     machine = _machine_of(writer, opened)
     one = next((each for each in windows_open(writer, machine=machine) if each.sequence == opened), None)
     if one is None:
@@ -216,6 +227,7 @@ def close_window(writer: Writer, opened: int, how: Telling, *, clock: str = "") 
                 fix="Look it up: jamnut history.",
             )
         )
+    _hold_after("powered window", one.said, how, clock)
     revision = found_in(writer, one.record_id)  # also where other sheets have come meanwhile
     said = WindowClosed(
         job=one.said.job, opened=opened, by=how.by, on=how.on, clock=clock, transcribed=how.transcribed
@@ -223,10 +235,24 @@ def close_window(writer: Writer, opened: int, how: Telling, *, clock: str = "") 
     return tell_of(writer, revision, said, how)
 
 
-def _of(writer: Writer, job: int, how: Telling) -> Revision:
+def _of(writer: Writer, job: int, how: Telling, clock: str) -> Revision:
     revision = found_in(writer, open_one(writer, job).opened.record_id)
-    hold_current(writer, revision, how)
+    hold_current(writer, revision, how, clock)
     return revision
+
+
+def _hold_after(where: str, begun: LockPutOn | WindowOpened, how: Telling, clock: str) -> None:
+    """What ends something comes after it, as far as times of day were written. Raises RefusedError."""
+    same_day = how.on == begun.on and begun.clock and clock
+    if how.on < begun.on or (same_day and clock < begun.clock):
+        raise RefusedError(
+            Problem(
+                where=where,
+                what=f"It ends on {how.on}{f' at {clock}' if clock else ''}, before it began on "
+                f"{begun.on}{f' at {begun.clock}' if begun.clock else ''}.",
+                fix="Look at the days and the times that were written.",
+            )
+        )
 
 
 def _machine_of(writer: Writer, sequence: int) -> str:

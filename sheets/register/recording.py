@@ -6,7 +6,7 @@ Every act checks and writes within the turn of the writer that it gets, so sever
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from datetime import date, datetime, timedelta
+from datetime import UTC, date, datetime, timedelta, timezone, tzinfo
 from typing import Final, Self
 
 from sheets.errors import InputError, Problem, RefusedError, quoted
@@ -39,8 +39,10 @@ FIND_CAUSE: Final = "find the cause"
 """Task of a job that a reading opens."""
 _WITHOUT_FOUND: Final = {"commission", "replace"}
 """Tasks on settings that nobody knows: there is nothing to be found before."""
-_EARLIEST_ZONE: Final = timedelta(hours=14)
+_EARLIEST_ZONE: Final = timezone(timedelta(hours=14))
 """No clock on earth is further ahead of UTC."""
+_LATEST_ZONE: Final = timezone(timedelta(hours=-12))
+"""None is further behind."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -91,6 +93,8 @@ class Telling:
     """Who did it."""
     transcribed: bool = False
     """Copied from paper."""
+    zone: tzinfo | None = None
+    """Of the works; None where it isn't known, and days are held against the widest zones on earth."""
 
     def of(self, *people: str) -> Self:
         """The same of other people's work."""
@@ -132,7 +136,7 @@ def record(writer: Writer, number: int, taken: Taken, how: Telling) -> Recorded:
     """
     job = open_one(writer, number)
     revision = found_in(writer, job.opened.record_id)
-    hold_current(writer, revision, how)
+    hold_current(writer, revision, how, taken.clock)
     row = row_of(kept_of_issue(revision).rows, taken.row, taken.unit)
     hold_people(f"row {row.row}", how)
     gauge = usable(writer, taken.instrument, day=how.on).listed
@@ -237,29 +241,43 @@ def kept_of_issue(revision: Revision) -> Kept:
     )
 
 
-def hold_current(view: View, revision: Revision, how: Telling) -> None:
+def hold_current(view: View, revision: Revision, how: Telling, clock: str = "") -> None:
     """Sheets are worked from while they are current; what was written on them then may be transcribed later.
 
-    Raises RefusedError, and InputError for a day that hasn't come anywhere on earth.
+    ``clock``: time of day of the work, such as 14:05, or empty. Raises RefusedError for a day or time at
+    which they weren't, and InputError for one that hasn't come.
     """
-    hold_past(how)
+    hold_past(how, clock)
+    where, issue = f"record {revision.record_id}", revision.issue
+    issued = issue.at.astimezone(how.zone or _LATEST_ZONE) if issue is not None else None
+    said = f"{how.on}{f' at {clock}' if clock else ''}"
+    if issued is not None and (how.on, clock or "24:00") < (issued.date(), f"{issued:%H:%M}"):
+        raise RefusedError(
+            Problem(
+                where=where,
+                what=f"Revision {revision.number} wasn't issued yet on {said}.",
+                fix="Look at the day and the time, and which sheets the work was done from.",
+            )
+        )
     if revision.state is RevisionState.ISSUED:
         return
-    if how.transcribed and revision.issue is not None and how.on <= _last_day(view, revision):
+    if how.transcribed and issue is not None and (how.on, clock) <= _last_moment(view, revision, how):
         return
     raise RefusedError(
         Problem(
-            where=f"record {revision.record_id}",
+            where=where,
             what=f"Revision {revision.number} is {revision.state.value}, so nothing is done from it.",
             fix="Work from the current one; what was written on paper before is transcribed with its day.",
         )
     )
 
 
-def hold_past(how: Telling) -> None:
-    """Nothing is told of a day to come. Raises InputError for one that hasn't come anywhere on earth."""
-    if how.on > (how.when + _EARLIEST_ZONE).date():
-        raise _wrong("the day", f"{how.on} lies in the future.", "Write the day on which it was done.")
+def hold_past(how: Telling, clock: str = "") -> None:
+    """Nothing is told of a day or a time to come; ``clock`` as in `hold_current`. Raises InputError."""
+    now = how.when.astimezone(how.zone or _EARLIEST_ZONE)
+    if (how.on, clock) > (now.date(), f"{now:%H:%M}"):
+        said = f"{how.on}{f' at {clock}' if clock else ''}"
+        raise _wrong("the day", f"{said} lies in the future.", "Write when it was done.")
 
 
 def hold_people(where: str, how: Telling) -> None:
@@ -268,12 +286,16 @@ def hold_people(where: str, how: Telling) -> None:
         raise _wrong(where, "Nobody is named who did it.", "Name who read and who turned.")
 
 
-def _last_day(view: View, revision: Revision) -> date:
-    """The last day on which a revision was current."""
-    if revision.ended_at is not None:
-        return revision.ended_at.date()
-    later = revisions_in(view, revision.document)[(revision.superseded_by or 1) - 1]
-    return later.issue.at.date() if later.issue is not None else date.min
+def _last_moment(view: View, revision: Revision, how: Telling) -> tuple[date, str]:
+    """The last day, with its time of day, on which a revision was current."""
+    ended = revision.ended_at
+    if ended is None:
+        later = revisions_in(view, revision.document)[(revision.superseded_by or 1) - 1]
+        ended = later.issue.at if later.issue is not None else None
+    if ended is None:
+        return date.min, ""
+    there = ended.astimezone(how.zone or UTC)
+    return there.date(), f"{there:%H:%M}"
 
 
 def _hold_phase(view: View, job: Job, row: Row, taken: Taken) -> None:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from datetime import date, timedelta
 
 import pytest
@@ -40,6 +41,20 @@ def test_a_lock_comes_off_by_its_owner_or_with_three_things_said(bench: Bench) -
     with bench.register.reading() as view:
         assert locks_on(view, machine="KP-2") == ()
     bench.do(end_job, bench.job, HOW, ending=Ending.DONE)
+
+
+def test_nothing_ends_before_it_began(bench: Bench) -> None:
+    """As far as the times were written: one without a time isn't held against another."""
+    lock = bench.do(put_on, bench.job, ADA, where="Q1", lock="A-3", clock="11:00")
+    window = bench.do(open_window, bench.job, ADA, where="at the panel", minutes=5, clock="11:05")
+    with refused(bench, "at 10:59, before it began on 2031-03-04 at 11:00"):
+        bench.do(take_off, lock, ADA, clock="10:59")
+    with refused(bench, "2031-03-03, before it began"):
+        bench.do(take_off, lock, replace(ADA, on=DAY - timedelta(days=1)))
+    with refused(bench, "at 11:04, before it began"):
+        bench.do(close_window, window, ADA, clock="11:04")
+    bench.do(close_window, window, ADA)
+    bench.do(take_off, lock, ADA, clock="11:00")
 
 
 def test_a_lock_comes_off_although_the_sheets_were_superseded_meanwhile(

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
-from datetime import date, timedelta
+from datetime import UTC, date, timedelta, timezone
 
 import pytest
 from recording_bench import DAY, HOW, Bench, gauge, refused
@@ -342,3 +342,52 @@ def test_withdrawn_sheets_begin_no_job(bench: Bench) -> None:
     withdraw(bench.register, bench.revision.record_id, reason="Why", by="Ines Kurz", when=at(30))
     with refused(bench, "Revision 1 is withdrawn"):
         bench.do(open_job, bench.revision.record_id, replace(HOW, when=at(31)), why="yearly check")
+
+
+@pytest.mark.parametrize(
+    ("days", "clock", "hours_ahead", "says"),
+    [
+        (-1, "", 0, "wasn't issued yet on 2031-03-03"),
+        (0, "12:02", 0, "wasn't issued yet on 2031-03-04 at 12:02"),
+        (0, "12:03", 0, ""),
+        (0, "12:10", 0, ""),
+        (0, "12:11", 0, "2031-03-04 at 12:11 lies in the future"),
+        (1, "", 0, "in the future"),
+        # Issued at 12:03 UTC: with the clock 13 hours ahead that was 01:03 on the 5th.
+        (0, "", 13, "wasn't issued yet on 2031-03-04"),
+        (1, "01:02", 13, "wasn't issued yet on 2031-03-05 at 01:02"),
+        (1, "01:03", 13, ""),
+        (1, "01:11", 13, "in the future"),
+        # Where the zone isn't known, what can't have been anywhere on earth.
+        (-1, "", None, "wasn't issued yet"),
+        (0, "00:02", None, "wasn't issued yet"),
+        (0, "23:59", None, ""),
+        (1, "02:10", None, ""),
+        (1, "02:11", None, "in the future"),
+    ],
+)
+def test_only_while_the_sheets_were_current_and_never_ahead_of_the_clock(
+    bench: Bench, days: int, clock: str, hours_ahead: int | None, says: str
+) -> None:
+    bench.do(tell, gauge(due=DAY + timedelta(days=30)), who="Ines Kurz", when=at(6))
+    zone = None if hours_ahead is None else timezone(timedelta(hours=hours_ahead))
+    how = replace(HOW, on=DAY + timedelta(days=days), zone=zone)
+    if not says:
+        bench.take(Phase.FOUND, "206", how=how, clock=clock)
+        return
+    with refused(bench, says, InputError if "future" in says else RefusedError):
+        bench.take(Phase.FOUND, "206", how=how, clock=clock)
+    if "issued" in says:  # nor is it copied from paper that wasn't there
+        with refused(bench, says):
+            bench.take(Phase.FOUND, "206", how=replace(how, transcribed=True), clock=clock)
+
+
+def test_paper_is_transcribed_with_hours_at_which_it_was_current(
+    bench: Bench, issue: Callable[..., Revision]
+) -> None:
+    """Superseded at 12:03, in the minute in which both were issued here."""
+    issue(content="0000000000000000")
+    how = replace(HOW, transcribed=True, zone=UTC)
+    with refused(bench, "Revision 1 is superseded"):
+        bench.take(Phase.FOUND, "206", how=how, clock="12:04")
+    bench.take(Phase.FOUND, "206", how=how, clock="12:03")
