@@ -5,14 +5,19 @@ from __future__ import annotations
 from dataclasses import dataclass
 from datetime import date
 from decimal import Decimal
-from typing import ClassVar
+from typing import ClassVar, Final
 
 from sheets.errors import Problem, RefusedError, quoted
+from sheets.quantities import from_unit, to_unit
 from sheets.register.events import EventKind
 from sheets.register.readings import KeptReading, readings
 from sheets.register.rows import digits_of
 from sheets.register.saying import Said, Told, told
 from sheets.register.store import View
+
+_PRESSURES: Final = frozenset({"bar", "psi", "MPa", "kPa"})
+_DECIMALS: Final = 4
+"""Of a figure in the register."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -128,6 +133,29 @@ def usable(view: View, given: str, *, day: date) -> Instrument:
 def in_doubt(view: View, bad: InstrumentFoundBad) -> tuple[KeptReading, ...]:
     """Every reading that was made with a gauge since it was last known good, of all machines."""
     return tuple(one for one in readings(view, instrument=bad.serial) if bad.doubts(one.said.on))
+
+
+def hold_in_range(listed: InstrumentListed, *, where: str, value: str, unit: str) -> None:
+    """A gauge shows nothing beyond its range. Raises RefusedError, also where its unit is no pressure.
+
+    ``where``: what the reading is of; ``value``: digits in ``unit``, the sheet's.
+    """
+    read, end = digits_of("reading", value), Decimal(listed.range_end)
+    if listed.unit != unit:
+        if {listed.unit, unit} <= _PRESSURES:
+            # In floats a gauge's own end may come out a hair below the reading that it shows there.
+            read = Decimal(round(to_unit(from_unit(float(read), unit), listed.unit), _DECIMALS))
+        else:
+            end = Decimal("-Infinity")
+    if read > end:
+        raise RefusedError(
+            Problem(
+                where=where,
+                what=f"{value} {unit} isn't in the range of gauge {listed.serial}, which ends at "
+                f"{listed.range_end} {listed.unit}.",
+                fix="Look at the figure, and at which gauge was read.",
+            )
+        )
 
 
 def coarser(listed: InstrumentListed, *, unit: str, error: str) -> bool:

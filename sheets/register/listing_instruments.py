@@ -22,13 +22,17 @@ UNITS: Final = ("bar", "psi", "MPa", "kPa", "°C")
 """In which an instrument shows: a sheet compares by them, so another spelling would be another unit."""
 _LAST_DIGIT: Final = Decimal("0.0001")
 """Of a figure in the register."""
+_COARSEST: Final = Decimal(10)
+"""Largest error in per cent of the range; EN 837-1:1996 ends at class 4, so beyond this it's a slip."""
 
 
 def list_instrument(register: Register, said: InstrumentListed, *, by: str, when: datetime) -> int:
     """Lists a gauge with a certificate, which clears what was found before; gives the number of the event.
 
-    Raises InputError where the works' number is another gauge's.
+    Raises InputError where the works' number is another gauge's, and for a range or an error that no gauge
+    has.
     """
+    _hold_figures(said)
     with register.writing() as writer:
         same = [
             one.listed.said.serial
@@ -44,6 +48,23 @@ def list_instrument(register: Register, said: InstrumentListed, *, by: str, when
                 )
             )
         return tell(writer, said, who=by, when=when)
+
+
+def _hold_figures(said: InstrumentListed) -> None:
+    """An instrument shows a range, and is out by something, if little. Raises InputError."""
+    end = digits_of("range", said.range_end)
+    most = end * _COARSEST / 100
+    if end <= 0:
+        what, fix = f"Its range ends at {said.range_end} {said.unit}.", "Give where its scale ends."
+    elif digits_of("largest error", said.largest_error) <= 0:
+        what = "It would never be out at all; by its class or error it is out by nothing."
+        fix = "Copy the class or the largest error from the certificate."
+    elif Decimal(said.largest_error) > most:
+        what = f"It may be out by {said.largest_error} {said.unit}, more than {_COARSEST} % of its range."
+        fix = "Look at the certificate; no setting could be held against a gauge that coarse."
+    else:
+        return
+    raise InputError(Problem(where=f"gauge {quoted(said.serial)}", what=what, fix=fix))
 
 
 def found_bad(

@@ -18,7 +18,7 @@ from sheets.register.deviations import (
     deviations,
 )
 from sheets.register.finding import found_in, revisions_in
-from sheets.register.instruments import coarser, usable
+from sheets.register.instruments import coarser, hold_in_range, usable
 from sheets.register.jobs import Job, JobOpened, jobs
 from sheets.register.kept import Kept
 from sheets.register.readings import (
@@ -131,8 +131,8 @@ def record(writer: Writer, number: int, taken: Taken, how: Telling) -> Recorded:
 
     ``number`` is the job's. As left outside its window, it leaves a deviation open in the place of older ones
     of its adjuster; inside, it corrects those. As found past its limit, it opens a job. Raises RefusedError
-    for a gauge that is overdue, bad or unknown, for a job that has ended and for a setting as left that
-    nobody read as found; InputError for what isn't on the sheet.
+    for a gauge that is overdue, bad, unknown or ends below the reading, for a job that has ended and for a
+    setting as left that nobody read as found; InputError for what isn't on the sheet.
     """
     job = open_one(writer, number)
     revision = found_in(writer, job.opened.record_id)
@@ -143,6 +143,7 @@ def record(writer: Writer, number: int, taken: Taken, how: Telling) -> Recorded:
     if taken.oil_c:
         digits_of("oil temperature", taken.oil_c)
     _hold_phase(writer, job, row, taken)
+    hold_in_range(gauge.said, where=f"row {row.row}, {row.called}", value=taken.value, unit=row.unit)
     outcome = judged(row, taken.value)
     said = Reading(
         job=number,

@@ -263,7 +263,12 @@ def test_with_two_settings_out_neither_is_accepted(bench: Bench) -> None:
 
 def test_a_coarser_gauge_is_a_deviation_that_somebody_answers_for(bench: Bench) -> None:
     bench.do(tell, gauge("4", number="4", range_end="400", largest_error="6.4"), who="Ines Kurz", when=at(6))
-    bench.do(tell, gauge("5", number="5", unit="psi"), who="Ines Kurz", when=at(6))
+    bench.do(
+        tell,
+        gauge("5", number="5", range_end="6000", largest_error="36", unit="psi"),
+        who="Ines Kurz",
+        when=at(6),
+    )
     for serial in ("4", "5"):
         bench.take(Phase.FOUND, "206", instrument=serial)
     assert bench.deviations() == [(DeviationKind.GAUGE, Standing.OPEN)] * 2
@@ -315,6 +320,30 @@ def test_a_bad_gauge_lists_all_that_hangs_on_it_and_is_used_no_more(bench: Bench
         bench.take(Phase.FOUND, "206")
     bench.do(tell, gauge(certificate="C-299"), who="Ines Kurz", when=at(21))
     bench.take(Phase.FOUND, "206")
+
+
+@pytest.mark.parametrize(
+    ("range_end", "unit", "value", "fits"),
+    [
+        ("250", "bar", "250", True),
+        ("250", "bar", "250.1", False),
+        ("25", "MPa", "250", True),  # 1 MPa is 10 bar
+        ("25", "MPa", "250.1", False),
+        ("3000", "psi", "206.8", True),  # 1 psi is 0.0689476 bar (NIST SP 811): 3000 psi are 206.84 bar
+        ("3000", "psi", "206.9", False),
+        ("300", "°C", "20", False),
+    ],
+)
+def test_a_gauge_shows_nothing_beyond_its_range(
+    bench: Bench, range_end: str, unit: str, value: str, fits: bool
+) -> None:
+    short = gauge("6", number="6", range_end=range_end, unit=unit)
+    bench.do(tell, short, who="Ines Kurz", when=at(6))
+    if fits:
+        bench.take(Phase.FOUND, value, instrument="6")
+        return
+    with refused(bench, f"isn't in the range of gauge 6, which ends at {range_end} {unit}"):
+        bench.take(Phase.FOUND, value, instrument="6")
 
 
 def test_a_works_number_that_two_gauges_have_names_neither(bench: Bench) -> None:

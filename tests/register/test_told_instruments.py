@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from datetime import date
 
 import pytest
@@ -50,6 +51,28 @@ def test_how_far_out_it_may_be(range_end: str, accuracy_class: str, stated: str,
 def test_an_error_that_nobody_knows_is_asked_for(accuracy_class: str, error: str) -> None:
     with pytest.raises(InputError):
         largest_error(range_end="400", accuracy_class=accuracy_class, error=error)
+
+
+@pytest.mark.parametrize(
+    ("range_end", "error", "says"),
+    [
+        ("0", "4", "range ends at 0"),
+        ("-1", "4", "range ends at -1"),
+        ("400", "0", "out by nothing"),
+        ("400", "-4", "out by nothing"),
+        ("400", "40.1", "more than 10 %"),
+        ("400", "40", ""),
+    ],
+)
+def test_a_gauge_with_figures_that_none_has(
+    register: Register, range_end: str, error: str, says: str
+) -> None:
+    said = replace(certificate(), range_end=range_end, largest_error=error)
+    if not says:
+        list_instrument(register, said, by="Ines Kurz", when=at(1))
+        return
+    with pytest.raises(InputError, match=says):
+        list_instrument(register, said, by="Ines Kurz", when=at(1))
 
 
 @pytest.mark.parametrize("text", ["400", "400 Bar", "400 kilo", "4oo bar", "4,5 bar", "bar 400", ""])
