@@ -10,7 +10,7 @@ import shlex
 import shutil
 import subprocess
 from collections.abc import Callable
-from datetime import date
+from datetime import date, timedelta
 from pathlib import Path
 
 import click
@@ -38,7 +38,8 @@ def made(root: Path, tmp_path_factory: pytest.TempPathFactory) -> Path:
     """A demonstration that no test changes."""
     folder = tmp_path_factory.mktemp("recorded") / "demonstration"
     sample = root / "sample_machines" / "clay_mixer.yaml"
-    pipeline.demo(sample, folder, when=NOW, random_bytes=lambda length: bytes(range(length)))
+    day_before = NOW - timedelta(days=1)
+    pipeline.demo(sample, folder, when=day_before, random_bytes=lambda length: bytes(range(length)))
     return folder
 
 
@@ -146,7 +147,7 @@ def test_outside_is_accepted_by_name_and_the_tag_waits_for_it(
     assert float(outside) <= float(row.ladder_high)
     line = f"  - {{row: 1, as found: {row.target} bar, as left: {outside} bar, gauge: '17', seal: none}}"
     file = record_file(tmp_path, record_id, "readings:", line)
-    done = run("record", file, "--by", "Cleo Harnett", *REGISTER)
+    done = run("record", file, "--by", "Ada Quarrow", *REGISTER)
     assert done.status == 0
     (job,) = re.findall(r"^job (\d+)", done.out)
     (number,) = re.findall(r"deviation (\d+) is open", done.out)
