@@ -33,7 +33,7 @@ SLACK = 1e-6
 
 NUMBER = re.compile(r"^[(±≤≥<>−-]*\d[\d.,]*$")
 UNIT = re.compile(
-    r"^(bar|psi|MPa|kPa|L/min|gal/min|cm3|cm³|°C|°F|mm|cm|m|in|s|min|h|kW|W|hp|V|A|Hz|kg|lb|kJ|J|N·m|N|rpm|r/min|m/s|%)"
+    r"^(bar|psi|MPa|kPa|L/min|gal/min|cm3|cm³|°C|°F|mm|cm|m|in|s|min|h|kW|W|hp|V|A|Hz|kg|lb|kJ|J|N·m|N|rpm|r/min|rev/min|m/s|mm/s|%)"
     r"[.,;:)]*$"
 )
 

@@ -30,8 +30,21 @@ _SMALL_PRESSURE_BAR: Final = 10.0
 
 _DUST: Final = 1e-6
 """Of a last digit: what a conversion of units leaves."""
+_SLOW_M_S: Final = 0.1
+"""Below this a speed is printed in mm/s: whatever moves never prints as nought."""
+_SLOW_RPM: Final = 10.0
+"""Below this it gets digits more, likewise."""
 _SMALL_FLOW_LPM: Final = 10.0
 """Below this a flow gets one digit more."""
+
+
+def _slow(value: float, unit: str) -> str:
+    """A small speed with two digits, and never as nought unless it is."""
+    size = abs(value)
+    if 0.0 < size < 0.01:
+        return f"less than 0.01 {unit}"
+    decimals = 0 if size >= 10.0 else 1 if size >= 1.0 else 2
+    return f"{number(value, decimals=decimals)} {unit}"
 
 
 class Figures:
@@ -50,6 +63,10 @@ class Figures:
             return self.pressure(amount.value)
         if amount.quantity == "flow_lpm":
             return self.flow(amount.value)
+        if amount.quantity == "speed_m_s" and abs(amount.value) < _SLOW_M_S:
+            return _slow(1000.0 * amount.value, "mm/s")
+        if amount.quantity == "speed_rpm" and abs(amount.value) < _SLOW_RPM:
+            return _slow(amount.value, "rev/min")
         unit, decimals = _PLAIN[amount.quantity]
         digits = number(amount.value, decimals=decimals)
         return f"{digits} {unit}" if unit else digits

@@ -4,6 +4,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from sheets.amounts import Amount
 from sheets.machine.model import Units
 from sheets.wording.figures import Figures
 
@@ -56,3 +57,25 @@ def test_target_stands_to_half_a_division() -> None:
     assert figures.reading(27.04, 0.1) == "27.0 bar"
     psi = Figures(Units(pressure=("psi",)))
     assert psi.reading(3302.4 * BAR["psi"], 20 * BAR["psi"], half=True) == "3300 psi"
+
+
+@pytest.mark.parametrize(
+    ("speed_m_s", "printed"),
+    [
+        (0.143, "0.14 m/s"),
+        (0.1, "0.10 m/s"),
+        (0.0421, "42 mm/s"),
+        (0.0042, "4.2 mm/s"),
+        (0.00042, "0.42 mm/s"),
+        (0.000004, "less than 0.01 mm/s"),  # it moves: nought would say that it doesn't
+        (0.0, "0.00 mm/s"),
+    ],
+)
+def test_a_slow_speed_isnt_printed_as_nought(speed_m_s: float, printed: str) -> None:
+    assert Figures(Units()).amount(Amount(value=speed_m_s, quantity="speed_m_s")) == printed
+
+
+def test_a_slow_turn_isnt_printed_as_nought() -> None:
+    figures = Figures(Units())
+    assert figures.amount(Amount(value=142.4, quantity="speed_rpm")) == "142 rev/min"
+    assert figures.amount(Amount(value=0.21, quantity="speed_rpm")) == "0.21 rev/min"
