@@ -360,6 +360,9 @@ def entry() -> None:
         error.show()
         sys.exit(int(ExitStatus.WRONG_INPUT))
     except (click.Abort, KeyboardInterrupt) as error:
+        if isinstance(error.__cause__ or error.__context__, EOFError):
+            click.echo("\nThe answers end before the questions do. Nothing was written.", err=True)
+            sys.exit(int(ExitStatus.WRONG_INPUT))
         notes = _notes(error) or ["what was being made is not written"]
         click.echo("\n".join(["stopped", *notes]), err=True)
         sys.exit(130)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -10,7 +11,7 @@ import click
 from sheets.cli.common import BY, ON, REGISTER, day, now, show, today, wrong
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    from collections.abc import Callable, Sequence
 
 SEALS = ("whole", "broken", "none", "new")
 
@@ -43,32 +44,70 @@ def record(file: Path | None, register_at: str, record_id: str | None, by: str) 
     show(pipeline.recorded_text(recorded))
 
 
+def _with_unit(unit: str, said: str) -> str:
+    """An amount as a record file holds it, whether or not its unit was typed."""
+    return f"{said.removesuffix(unit).strip()} {unit}"
+
+
 def _ask(record_id: str, rows: Sequence[tuple[str, str, str]]) -> dict[str, Any]:
     """The answers, with the keys of a record file."""
 
-    def asked(what: str, default: str = "") -> str:
-        answer: str = click.prompt(what, default=default, show_default=bool(default), err=True)
-        return answer.strip()
+    from sheets import pipeline
+
+    def asked(
+        what: str,
+        key: str,
+        default: str = "",
+        *,
+        reading: bool = False,
+        form: Callable[[str], Any] = str,
+    ) -> Any:
+        """An answer in its form, asked until it is one that a record file may hold."""
+        while True:
+            said: str = click.prompt(what, default=default, show_default=bool(default), err=True)
+            if not said.strip() and "or nothing" in what:
+                return ""
+            answer = form(said.strip())
+            problems = pipeline.wrong_answer(record_id, key, answer, reading=reading)
+            if not problems:
+                return answer
+            click.echo("\n".join(f"    {one.what} {one.fix}" for one in problems), err=True)
 
     answers: dict[str, Any] = {"format": "1", "record": record_id}
-    job = asked("number of the open job, or nothing to open one")
-    answers |= {"job": job} if job else {"why": asked("why the work is done")}
-    answers["day"] = asked("day of the work", today().isoformat())
-    answers["people"] = [name.strip() for name in asked("who worked, with commas between").split(",")]
-    answers["from paper"] = asked("copied from a sheet that was filled in by hand, yes or no", "no")
+    job = asked("number of the open job, or nothing to open one", "job")
+    answers |= {"job": job} if job else {"why": asked("why the work is done", "why")}
+    answers["day"] = asked("day of the work", "day", today().isoformat())
+    answers["people"] = asked(
+        "who worked, with commas between",
+        "people",
+        form=lambda said: [name.strip() for name in said.split(",")],
+    )
+    answers["from paper"] = asked(
+        "copied from a sheet that was filled in by hand, yes or no", "from paper", "no"
+    )
     readings: list[dict[str, str]] = []
     for number, called, unit in rows:
         one = {"row": number}
         for key in ("as found", "as left"):
-            digits = asked(f"row {number}, {called}, {key} in {unit}, or nothing")
-            if digits:
-                one[key] = f"{digits.removesuffix(unit).strip()} {unit}"
+            said = asked(
+                f"row {number}, {called}, {key} in {unit}, or nothing",
+                key,
+                reading=True,
+                form=partial(_with_unit, unit),
+            )
+            if said:
+                one[key] = said
         if len(one) == 1:
             continue
-        one["gauge"] = asked("    gauge, serial number or the works' own")
-        oil = asked("    oil temperature in °C, or nothing")
+        one["gauge"] = asked("    gauge, serial number or the works' own", "gauge", reading=True)
+        oil = asked(
+            "    oil temperature in °C, or nothing",
+            "oil",
+            reading=True,
+            form=partial(_with_unit, "°C"),
+        )
         if oil:
-            one["oil"] = f"{oil} °C"
+            one["oil"] = oil
         one["seal"] = click.prompt("    seal", type=click.Choice(SEALS), err=True)
         readings.append(one)
     answers["readings"] = readings

@@ -124,7 +124,7 @@ def restore(file: Path, register_at: str, anchors: tuple[str, ...]) -> None:
     from sheets import pipeline
 
     anchor = pipeline.restore(file, register_at=register_at, anchors=anchors)
-    show([f"{anchor.sequence} events, each as it was written", f"anchor to keep outside: {anchor}"])
+    show(pipeline.restored_text(anchor, anchored=bool(anchors)))
 
 
 @click.command("check-register")

@@ -105,6 +105,7 @@ if TYPE_CHECKING:
     from sheets.pipeline.recording import recorded_text as recorded_text
     from sheets.pipeline.recording import settle as settle
     from sheets.pipeline.recording import strike as strike
+    from sheets.pipeline.recording import wrong_answer as wrong_answer
     from sheets.pipeline.registering import backup as backup
     from sheets.pipeline.registering import check_register as check_register
     from sheets.pipeline.registering import check_register_text as check_register_text
@@ -115,6 +116,7 @@ if TYPE_CHECKING:
     from sheets.pipeline.registering import history as history
     from sheets.pipeline.registering import migrate as migrate
     from sheets.pipeline.registering import restore as restore
+    from sheets.pipeline.registering import restored_text as restored_text
     from sheets.pipeline.registering import take_down as take_down
     from sheets.pipeline.registering import withdraw as withdraw
     from sheets.pipeline.reproving import reprove as reprove
@@ -276,6 +278,7 @@ _CONTENTS: Final[dict[str, str]] = {
     "history": "pipeline.registering",
     "migrate": "pipeline.registering",
     "restore": "pipeline.registering",
+    "restored_text": "pipeline.registering",
     "take_down": "pipeline.registering",
     "withdraw": "pipeline.registering",
     # record what was found and left, with what, and what hangs
@@ -283,6 +286,7 @@ _CONTENTS: Final[dict[str, str]] = {
     "record": "pipeline.recording",
     "record_answers": "pipeline.recording",
     "record_rows": "pipeline.recording",
+    "wrong_answer": "pipeline.recording",
     "recorded_text": "pipeline.recording",
     "settle": "pipeline.recording",
     "strike": "pipeline.recording",

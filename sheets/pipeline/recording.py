@@ -10,7 +10,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 from datetime import date, datetime
 from pathlib import Path
-from typing import Any
+from typing import Any, Final
 
 from sheets.errors import InputError, Problem, RefusedError
 from sheets.machine.loading import load_entry, parse_entry
@@ -68,6 +68,24 @@ def record_answers(
     return record_said(
         said, register_at=register_at, by=by, when=when, acceptance=acceptance, hold_windows=hold_windows
     )
+
+
+_GOOD_READING: Final = {"row": "1", "as found": "1 bar", "gauge": "1", "seal": "whole"}
+_GOOD: Final = {"format": "1", "why": "asked", "day": "2000-01-01", "people": ["A"], "from paper": "no"}
+
+
+def wrong_answer(record_id: str, key: str, answer: object, *, reading: bool = False) -> tuple[Problem, ...]:
+    """What is wrong with one answer of a record that is asked for, so that it can be asked again at once.
+
+    ``key`` as in a record file, or in a ``reading`` of it. What only the register can judge isn't judged.
+    """
+    said: dict[str, object] = {**_GOOD, "record": record_id, "readings": [_GOOD_READING]}
+    said |= {"readings": [{**_GOOD_READING, key: answer}]} if reading else {key: answer}
+    try:
+        parse_entry(json.dumps(said, ensure_ascii=False).encode(), "answers", RecordFile)
+    except InputError as error:
+        return error.problems
+    return ()
 
 
 def record_said(

@@ -7,7 +7,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from datetime import date, datetime
 from pathlib import Path
-from typing import Literal
+from typing import Final, Literal
 
 from sheets.crockford import as_printed
 from sheets.errors import ExitStatus, InputError, Problem, RefusedError, quoted
@@ -23,6 +23,10 @@ from sheets.register.opening import Place, migrate_register, open_register
 from sheets.register.recording import Telling, tell_of
 from sheets.register.revisions import Revision, current
 from sheets.register.store import View
+
+_NO_ANCHOR: Final = (
+    "No anchor was given: an end that was cut off, or a register written anew, wouldn't be seen."
+)
 
 
 def history(what: str, *, register_at: Place, changes: bool) -> list[str]:
@@ -213,6 +217,14 @@ def restore(file: Path, *, register_at: Place, anchors: tuple[str, ...]) -> Anch
     return restore_lines(lines, register_at, anchors=[Anchor.read(one) for one in anchors])
 
 
+def restored_text(anchor: Anchor, *, anchored: bool) -> Iterator[str]:
+    """What was restored up to the ``anchor``, and what that doesn't show unless one was given."""
+    yield f"{anchor.sequence} events, each as it was written"
+    if not anchored:
+        yield _NO_ANCHOR
+    yield f"anchor to keep outside: {anchor}"
+
+
 @dataclass(frozen=True, kw_only=True)
 class RegisterCheck:
     """How far a register holds."""
@@ -239,7 +251,7 @@ def check_register_text(check: RegisterCheck) -> Iterator[str]:
         return
     yield f"whole: {verdict.last.sequence if verdict.last else 0} events, each as it was written"
     if not verdict.anchored:
-        yield "No anchor was given: an end that was cut off, or a register written anew, wouldn't be seen."
+        yield _NO_ANCHOR
     yield f"anchor to keep outside: {verdict.last}"
 
 

@@ -5,12 +5,12 @@ from __future__ import annotations
 import csv
 import io
 import json
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Mapping
 from typing import Final
 
 from sheets.errors import InputError, Problem
 from sheets.register.chain import Anchor
-from sheets.register.events import Event, hash_of
+from sheets.register.events import NO_EVENT, Event, hash_of
 from sheets.register.form import canonical
 from sheets.register.opening import Place, make_register
 from sheets.register.store import Register, View, Writer
@@ -72,26 +72,33 @@ def restore_lines(lines: Iterable[str], place: Place, *, anchors: Iterable[Ancho
     Every line is checked before it is written: its form, its hash, its place in the chain. Raises InputError
     for the first that doesn't hold or disagrees with one of the ``anchors``; then nothing is made.
     """
-    wanted = {anchor.sequence: anchor.hash for anchor in anchors}
-    last: list[Event] = []
+    events = _checked(lines, {anchor.sequence: anchor.hash for anchor in anchors})
 
     def fill(writer: Writer) -> None:
-        for number, line in enumerate(lines, start=1):
-            event = _event(line, number)
-            sequence, previous = writer.last()
-            if (event.sequence, event.previous) != (sequence + 1, previous):
-                raise _broken(number, "it doesn't follow on the event before it")
-            if event.hash != hash_of(event):
-                raise _broken(number, "its hash isn't the hash of what it says")
-            if wanted.get(number, event.hash) != event.hash:
-                raise _broken(number, "its hash isn't the one of the anchor")
+        for event in events:
             writer.copy(event)
-            last[:] = [event]
-        if not last or max(wanted, default=0) > last[0].sequence:
-            raise _broken(len(last), "the backup ends there, before the anchor or before it began")
 
     make_register(place, fill).close()
-    return Anchor(sequence=last[0].sequence, hash=last[0].hash)
+    return Anchor(sequence=events[-1].sequence, hash=events[-1].hash)
+
+
+def _checked(lines: Iterable[str], wanted: Mapping[int, str]) -> tuple[Event, ...]:
+    """The events of a backup, all of them, before anything is made; ``wanted``: hashes of anchors."""
+    events: list[Event] = []
+    previous = NO_EVENT
+    for number, line in enumerate(lines, start=1):
+        event = _event(line, number)
+        if (event.sequence, event.previous) != (number, previous):
+            raise _broken(number, "it doesn't follow on the event before it")
+        if event.hash != hash_of(event):
+            raise _broken(number, "its hash isn't the hash of what it says")
+        if wanted.get(number, event.hash) != event.hash:
+            raise _broken(number, "its hash isn't the one of the anchor")
+        events.append(event)
+        previous = event.hash
+    if not events or max(wanted, default=0) > len(events):
+        raise _broken(len(events), "the backup ends there, before the anchor or before it began")
+    return tuple(events)
 
 
 def _event(line: str, number: int) -> Event:

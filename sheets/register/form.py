@@ -62,17 +62,18 @@ def name_text(what: str, text: str, *, longest: int = LONGEST_NAME) -> str:
 
     ``what`` names it in the message. Raises InputError.
     """
+    fix = f"Give the {what} on one line."
     if not text.strip():
         wrong = "is empty"
     elif text != text.strip():
-        wrong = f"{quoted(text)} begins or ends with a blank"
+        wrong, fix = f"{quoted(text)} begins or ends with a blank", f"Take the blank away from the {what}."
     elif len(text) > longest:
         wrong = f"{quoted(text)} has {len(text)} characters; at most {longest} fit"
     elif not text.isprintable():
         wrong = f"{quoted(text)} holds a character that can't be printed"
     else:
         return text
-    raise InputError(Problem(where=what, what=f"The {what} {wrong}.", fix=f"Give the {what} on one line."))
+    raise InputError(Problem(where=what, what=f"The {what} {wrong}.", fix=fix))
 
 
 def is_digest(text: str) -> bool:

@@ -209,6 +209,43 @@ def test_asked_row_by_row(
     assert done.out == f"reading {one.told.sequence} is struck through\n"
 
 
+def test_a_wrong_answer_is_asked_again_at_once(
+    run: Callable[..., object], monkeypatch: pytest.MonkeyPatch, record_id: str, rows: tuple[Row, ...]
+) -> None:
+    run(*GAUGE)
+    said = {
+        "number of the open job": ["fourty", ""],
+        "why the work is done": ["", "yearly check"],
+        "day of": ["yesterday", "2026-12-01"],
+        "who worked": ["", "Ada Quarrow"],
+        "copied from": ["perhaps", "no"],
+        f"row 1, {rows[0].called}, as found": ["much", rows[0].target],
+        "    gauge": ["", "17"],
+        "    oil": ["warm", "48.5"],
+        "    seal": ["whole"],
+    }
+
+    def prompt(text: str, default: str = "", **_: object) -> str:
+        left = next((answers for begins, answers in said.items() if text.startswith(begins)), None)
+        return default if left is None else left.pop(0)
+
+    monkeypatch.setattr(click, "prompt", prompt)
+    done = run(*words_of("record", record_id))
+    assert done.status == 0, done.err
+    assert not any(said.values())
+    assert "'perhaps' is neither yes nor no" in done.err
+    assert f"row 1  {rows[0].called}  as found" in done.out
+
+
+def test_answers_that_end_early_are_wrong_input(
+    run: Callable[..., object], monkeypatch: pytest.MonkeyPatch, record_id: str
+) -> None:
+    monkeypatch.setattr("sys.stdin", io.StringIO("\n"))
+    done = run(*words_of("record", record_id))
+    assert done.status == 2
+    assert "The answers end before the questions do" in done.err
+
+
 def test_copies_from_hanging_to_taking_down(run: Callable[..., object], record_id: str) -> None:
     document = example("copies")[1]
     assert run(*example("copies")).out == "no copies\n"
@@ -239,6 +276,11 @@ def test_history_export_backup_restore_and_check(run: Callable[..., object], tmp
     assert run(*example("backup")).status == 2  # nothing is written over
     restored = run(*example("restore"), "--anchor", anchor)
     assert anchor in restored.out
+    assert "No anchor" not in restored.out
+    short = "".join(f"{line}\n" for line in lines[:-2])
+    (tmp_path / "short.jsonl").write_text(short, encoding="utf-8")
+    cut = run("restore", "short.jsonl", "--register", "cut.db")
+    assert (cut.status, "No anchor was given: an end that was cut off" in cut.out) == (0, True)
     checked = run("check-register", "--register", "restored.db", "--anchor", anchor)
     assert (checked.status, "No anchor" in checked.out) == (0, False)
     assert run("export", "--register", "restored.db").out.splitlines() == lines
@@ -249,7 +291,7 @@ def test_history_export_backup_restore_and_check(run: Callable[..., object], tmp
     damaged = (tmp_path / "monday.jsonl").read_text(encoding="utf-8").replace('"who":"Ada', '"who":"Eda', 1)
     (tmp_path / "monday.jsonl").write_text(damaged, encoding="utf-8")
     assert "damaged or was changed" in run("restore", "monday.jsonl", "--register", "other.db").err
-    assert (tmp_path / "other.db").read_bytes() == b""  # nothing was made
+    assert not (tmp_path / "other.db").exists()
     assert run(*example("migrate")).out == "format 2\n"
 
 
