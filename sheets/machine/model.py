@@ -93,15 +93,27 @@ class Units(Entry):
     """One or two units of pressure."""
     flow: tuple[Literal["L/min", "gal/min"], ...] = ("L/min",)
     """One or two units of flow; the gallon is the US gallon."""
+    temperature: tuple[Literal["°C", "°F"], ...] = ("°C",)
+    """Units of the oil's temperature; °C is the first, since readings are recorded in it."""
 
     def contradictions(self) -> Iterator[Flaw]:
         yield from super().contradictions()
-        for key, units in (("pressure", self.pressure), ("flow", self.flow)):
+        if self.temperature[:1] == ("°F",):
+            yield Flaw(
+                at=("temperature",),
+                what="°F can't be the first unit: oil temperatures are recorded in °C.",
+                fix="Write temperature: [°C, °F]; both are then printed where the oil is read.",
+            )
+        for key, units in (
+            ("pressure", self.pressure),
+            ("flow", self.flow),
+            ("temperature", self.temperature),
+        ):
             if not 1 <= len(units) <= 2 or len(set(units)) < len(units):
                 yield Flaw(
                     at=(key,),
                     what="One unit, or two different ones, can stand here.",
-                    fix="Write the unit that is worked in first, such as [bar, psi] or [L/min].",
+                    fix="Write the unit that is worked in first, such as [bar, psi], [L/min] or [°C, °F].",
                 )
 
 

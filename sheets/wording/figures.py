@@ -54,6 +54,7 @@ class Figures:
         self.pressure_unit: str = units.pressure[0]
         self.second_pressure_unit: str = units.pressure[1] if len(units.pressure) > 1 else ""
         self.flow_unit: str = units.flow[0]
+        self.second_temperature_unit: str = units.temperature[1] if len(units.temperature) > 1 else ""
 
     def amount(self, amount: Amount | str) -> str:
         """An amount with its unit; text as it stands."""
@@ -123,6 +124,18 @@ class Figures:
             if low < high:
                 break
         return f"{low_digits} to {high_digits} {unit}"
+
+    def oil_second(self, low_c: float, high_c: float, limit_c: float) -> tuple[str, str, str]:
+        """Both ends of a window and a limit in the second unit of temperature, whole degrees, never more.
+
+        Empty where the machine file names one unit only.
+        """
+        if not self.second_temperature_unit:
+            return "", "", ""
+        low, high, limit = (1.8 * value_c + 32.0 for value_c in (low_c, high_c, limit_c))
+        whole = (math.ceil(low - _DUST), math.floor(high + _DUST), math.floor(limit + _DUST))
+        first, last, most = (f"{number(value, decimals=0)} °F" for value in whole)
+        return first, last, most
 
     def limit_c(self, value_c: float) -> str:
         """A highest temperature in whole degrees, never more than it is."""

@@ -274,11 +274,13 @@ class Speaker:
 
     def oil_window(self) -> tuple[str, str]:
         """Oil temperatures between which settings are made."""
-        low, high = self.machine.fluid.setting_window_c(
+        return self.figures.inside_c(*self._oil_window_c())
+
+    def _oil_window_c(self) -> tuple[float, float]:
+        return self.machine.fluid.setting_window_c(
             lowest_c=self.policies.lowest_setting_temperature_c,
             highest_c=self.policies.highest_setting_temperature_c,
         )
-        return self.figures.inside_c(low, high)
 
     def oil_limit(self) -> str:
         """Oil temperature above which the work stops, never printed higher than it is."""
@@ -369,6 +371,9 @@ class Speaker:
                     lines.append(say("lock_nut_line", tool=values["tool"]))
             case StepKind.WARM_OIL:
                 lines.append(say("warm_oil_line", limit=self.oil_limit()))
+                limit_c = self.machine.fluid.limit_temperature_c
+                low, high, limit = self.figures.oil_second(*self._oil_window_c(), limit_c)
+                lines.append(say("warm_oil_second", low=low, high=high, limit=limit) if low else "")
             case StepKind.HOLD_VALVE if values.get("solenoid"):
                 lines.append(say("solenoid_line"))
             case _:

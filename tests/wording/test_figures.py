@@ -1,11 +1,17 @@
 """Amounts in the two units of a machine file."""
 
+from collections.abc import Callable
+
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
 from sheets.amounts import Amount
+from sheets.errors import InputError
 from sheets.machine.model import Units
+from sheets.pages.compose.matter import Matter
+from sheets.pipeline import Described
+from sheets.procedure.steps import StepKind
 from sheets.wording.figures import Figures
 
 BAR = {"bar": 1.0, "psi": 0.45359237 * 9.80665 / 0.0254**2 / 1e5, "MPa": 10.0}
@@ -79,3 +85,30 @@ def test_a_slow_turn_isnt_printed_as_nought() -> None:
     figures = Figures(Units())
     assert figures.amount(Amount(value=142.4, quantity="speed_rpm")) == "142 rev/min"
     assert figures.amount(Amount(value=0.21, quantity="speed_rpm")) == "0.21 rev/min"
+
+
+def test_oil_in_the_second_unit_by_hand() -> None:
+    # 45 °C = 113 °F, 55 °C = 131 °F, 65 °C = 149 °F; 46 °C = 114.8 °F, 54.1 °C = 129.38 °F, 64 °C = 147.2 °F.
+    figures = Figures(Units(temperature=("°C", "°F")))
+    assert figures.oil_second(45.0, 55.0, 65.0) == ("113 °F", "131 °F", "149 °F")
+    assert figures.oil_second(46.0, 54.1, 64.0) == ("115 °F", "129 °F", "147 °F")  # inward, never over
+    assert Figures(Units()).oil_second(45.0, 55.0, 65.0) == ("", "", "")
+
+
+def test_oil_is_read_in_both_units_where_the_file_names_them(refused: Callable[..., Matter]) -> None:
+    flow = "  flow: [gal/min, L/min]\n"
+    matter = refused("glaze_press", (flow, f"{flow}  temperature: [°C, °F]\n"))
+    said = [
+        one.lines
+        for stage in matter.procedure.stages
+        for one in matter.spoken(stage)
+        if one.step.kind is StepKind.WARM_OIL
+    ]
+    assert said
+    assert all("That is 113 °F to 131 °F; the limit is 149 °F." in lines for lines in said)
+
+
+def test_readings_are_recorded_in_degrees_celsius(changed: Callable[..., Described]) -> None:
+    flow = "  flow: [gal/min, L/min]\n"
+    with pytest.raises(InputError, match="recorded in °C"):
+        changed("glaze_press", (flow, f"{flow}  temperature: [°F, °C]\n"))
