@@ -66,7 +66,7 @@ def name_text(what: str, text: str, *, longest: int = LONGEST_NAME) -> str:
     if not text.strip():
         wrong = "is empty"
     elif text != text.strip():
-        wrong, fix = f"{quoted(text)} begins or ends with a blank", f"Take the blank away from the {what}."
+        wrong, fix = f"{quoted(text)} begins or ends with a blank", "Take that blank away."
     elif len(text) > longest:
         wrong = f"{quoted(text)} has {len(text)} characters; at most {longest} fit"
     elif not text.isprintable():

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import inspect
+import itertools
 import json
 import os
 import re
@@ -247,6 +248,15 @@ def test_readme_names_only_options_that_exist(root: Path) -> None:
     named = set(re.findall(r"`(-{1,2}[a-z-]+)", section(readme(root), "Commands")))
     assert named <= there | {"--help"}
     assert {word for word in there if word.startswith("-")} - {"--output"} <= named
+
+
+def test_readme_says_which_commands_give_data_and_keeps_its_lines_short(root: Path) -> None:
+    (told,) = re.findall(r"`--json` is for ([^.]+)\.", readme(root))
+    giving = {name for name, one in COMMANDS.items() if any("--json" in it.opts for it in one.params)}
+    assert set(re.findall(r"`([a-z]+)`", told)) == giving
+    lines = readme(root).splitlines()
+    assert [one for one in lines if len(one) > 120 and not one.startswith(("    ", "|"))] == []
+    assert not [one for one, below in itertools.pairwise(lines) if one.strip() and below.startswith("**")]
 
 
 def commands_in(root: Path) -> Iterator[str]:

@@ -216,7 +216,7 @@ def test_a_read_only_file_in_a_read_only_folder_can_be_read(
     [
         ("", "empty"),
         ("   ", "empty"),
-        (" Ines", "blank"),
+        (" Ines", "Take that blank away"),
         ("Ines\nKurz", "printed"),
         ("Ines\x00", "printed"),
         ("Ines \u202egnorw", "printed"),
