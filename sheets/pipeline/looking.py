@@ -183,6 +183,7 @@ def _look(room: ReadingRoom, view: View, found: Currency, paper: Paper) -> Recor
     if any(one.differs for one in compared):
         shown = Shown.OTHER_PAPER
     issue = revision.issue
+    noted = deviations(view, machine=revision.machine)
     out = out_of_service(view, machine=revision.machine)
     current = found.current if found.current and found.current.record_id != revision.record_id else None
     return RecordLook(
@@ -195,9 +196,9 @@ def _look(room: ReadingRoom, view: View, found: Currency, paper: Paper) -> Recor
         signers=tuple((one.meaning, one.name) for one in issue.signers) if issue else (),
         ink=issue.ink if issue else False,
         out_of_service=f"{out.said.on}: {out.said.why} ({out.said.by})" if out else "",
-        open=open_deviations(deviations(view, machine=revision.machine)),
+        open=open_deviations(noted),
         settings=(
-            settings_shown(issue.kept, readings(view, machine=revision.machine))
+            settings_shown(issue.kept, readings(view, machine=revision.machine), noted)
             if shown is Shown.CURRENT and issue is not None and issue.kept is not None
             else ()
         ),

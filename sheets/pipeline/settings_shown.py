@@ -11,6 +11,7 @@ from sheets.errors import InputError
 from sheets.pages.document import GaugeFace
 from sheets.pages.face import face_alternative
 from sheets.pages.svg import dial_svg
+from sheets.register.deviations import Deviation, standing_about
 from sheets.register.kept import Kept
 from sheets.register.readings import KeptReading, Phase, in_order
 from sheets.register.rows import Outcome, Row, judged
@@ -29,6 +30,8 @@ class ReadingShown:
     outside: str
     """What it is outside of, by the row that is shown; empty within its window."""
     event: int
+    deviation: str = ""
+    """What stands about it, such as 'deviation 11, accepted by Cleo Harnett'; empty for nothing."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -44,22 +47,26 @@ class SettingShown:
     left: ReadingShown | None
 
 
-def settings_shown(kept: Kept, readings: Sequence[KeptReading]) -> tuple[SettingShown, ...]:
-    """Every setting of a pack with its last readings, struck ones left out."""
+def settings_shown(
+    kept: Kept, readings: Sequence[KeptReading], deviations: Sequence[Deviation]
+) -> tuple[SettingShown, ...]:
+    """Every setting of a pack with its newest readings, struck ones left out, and what stands about them."""
     tags = _tags(kept.content)
     return tuple(
         SettingShown(
             row=row,
             second=str(tags.get(row.adjuster, {}).get("second_unit", "")),
             face=_face(tags.get(row.adjuster, {})),
-            found=_last(row, readings, Phase.FOUND),
-            left=_last(row, readings, Phase.LEFT),
+            found=_last(row, readings, deviations, Phase.FOUND),
+            left=_last(row, readings, deviations, Phase.LEFT),
         )
         for row in kept.rows
     )
 
 
-def _last(row: Row, readings: Sequence[KeptReading], phase: Phase) -> ReadingShown | None:
+def _last(
+    row: Row, readings: Sequence[KeptReading], deviations: Sequence[Deviation], phase: Phase
+) -> ReadingShown | None:
     alike = in_order(readings, adjuster=row.adjuster, phase=phase)
     if not alike:
         return None
@@ -75,7 +82,15 @@ def _last(row: Row, readings: Sequence[KeptReading], phase: Phase) -> ReadingSho
         reached=said.reached,
         outside="" if outcome in (None, Outcome.WITHIN) else outcome.value,
         event=last.told.sequence,
+        deviation=_deviation(standing_about(deviations, last.told.sequence)),
     )
+
+
+def _deviation(one: Deviation | None) -> str:
+    if one is None:
+        return ""
+    by = f" by {one.accepted.said.by}" if one.accepted is not None else ""
+    return f"deviation {one.number}, {one.standing}{by}"
 
 
 def _tags(content: str) -> dict[str, Mapping[str, Any]]:

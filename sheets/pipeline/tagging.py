@@ -21,7 +21,7 @@ from sheets.pipeline.printing import whole_content
 from sheets.pipeline.replacing import keep_issued
 from sheets.pipeline.zones import zone_of
 from sheets.register.copies import TagPosted
-from sheets.register.deviations import DeviationKind, Standing, deviations
+from sheets.register.deviations import Deviation, Standing, deviations, standing_about
 from sheets.register.finding import found_in
 from sheets.register.kept import Kept
 from sheets.register.opening import Place, open_register
@@ -37,6 +37,8 @@ class Left:
 
     reading: KeptReading
     line: str
+    open: int = 0
+    """Deviation that stands open about it, or 0."""
 
 
 def tags(record_id: str, target: Path, *, register_at: Place) -> tuple[str, ...]:
@@ -77,14 +79,13 @@ def post(
     with open_register(register_at) as register, register.writing() as writer:
         revision = _current(writer, record_id)
         left = left_of(writer, revision, remade(revision, kept_of_issue(revision))).get(adjuster)
-        if left is None:
-            raise RefusedError(
-                Problem(
-                    where=f"tag of {adjuster}",
-                    what="No reading as left that counts and is settled is recorded for it.",
-                    fix="Record it, and settle what it left open.",
-                )
+        if left is None or left.open:
+            what, fix = (
+                (f"Deviation {left.open} about how it was left is open.", "Settle it first.")
+                if left is not None
+                else ("No reading as left that counts is recorded for it.", "Record it.")
             )
+            raise RefusedError(Problem(where=f"tag of {adjuster}", what=what, fix=fix))
         how = Telling(by=by, when=when, on=on, people=(by,))
         said = TagPosted(
             adjuster=adjuster,
@@ -112,26 +113,26 @@ def _current(view: View, record_id: str) -> Revision:
 
 
 def left_of(view: View, revision: Revision, matter: Matter) -> dict[str, Left]:
-    """What the tags of a pack print as left: the last reading of each adjuster, unless it is open."""
-    opened = {
-        one.noted.said.reading
-        for one in deviations(view, machine=revision.machine)
-        if one.standing is Standing.OPEN and one.noted.said.kind is not DeviationKind.OTHER
-    }
+    """What the tags of a pack print as left: the newest reading of each adjuster, what stands about it."""
+    found = deviations(view, machine=revision.machine)
     rows = {row.adjuster for row in kept_of_issue(revision).rows}
     return {
-        adjuster: Left(
-            reading=one,
-            line=matter.text(
-                "tag_as_left",
-                reading=f"{one.said.value} {one.said.unit}",
-                on=one.said.on.isoformat(),
-                gauge=one.said.instrument,
-            ),
-        )
+        adjuster: _left(matter, one, standing_about(found, one.told.sequence))
         for adjuster, one in last_left(view, machine=revision.machine).items()
-        if adjuster in rows and one.told.sequence not in opened
+        if adjuster in rows
     }
+
+
+def _left(matter: Matter, one: KeptReading, deviation: Deviation | None) -> Left:
+    reading = f"{one.said.value} {one.said.unit}"
+    if deviation is None:
+        on = one.said.on.isoformat()
+        line = matter.text("tag_as_left", reading=reading, on=on, gauge=one.said.instrument)
+        return Left(reading=one, line=line)
+    is_open = deviation.standing is Standing.OPEN
+    text = "tag_left_open" if is_open else "tag_left_accepted"
+    line = matter.text(text, reading=reading, deviation=str(deviation.number))
+    return Left(reading=one, line=line, open=deviation.number if is_open else 0)
 
 
 def remade(revision: Revision, kept: Kept) -> Matter:

@@ -7,6 +7,7 @@ service.
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 from datetime import date
 from enum import StrEnum
@@ -156,6 +157,12 @@ def deviations(
         Deviation(noted=one, accepted=accepted.get(one.sequence), corrected=corrected.get(one.sequence))
         for one in told(view, DeviationNoted, **where)
     )
+
+
+def standing_about(found: Iterable[Deviation], reading: int) -> Deviation | None:
+    """What stands about a reading as left, by its event: an open one first; None where nothing does."""
+    about = [one for one in found if one.stands and reading and one.noted.said.reading == reading]
+    return next((one for one in about if one.standing is Standing.OPEN), next(iter(about), None))
 
 
 def out_of_service(view: View, *, machine: str) -> Told[OutOfService] | None:

@@ -79,6 +79,12 @@ def words_of(verb: str, record_id: str, **numbers: int) -> list[str]:
     ]
 
 
+def printed(file: str) -> str:
+    """The text of a PDF, blanks made single."""
+    made = subprocess.run(["pdftotext", file, "-"], capture_output=True, text=True, check=True)
+    return " ".join(made.stdout.split())
+
+
 def record_file(tmp_path: Path, record_id: str, *lines: str) -> Path:
     file = tmp_path / "job.yaml"
     head = (
@@ -128,8 +134,8 @@ def test_a_job_from_a_file_to_a_tag_with_what_was_left(
     done = run(*words_of("tags", record_id))
     assert (done.status, done.err) == (0, "")
     assert f"{first.adjuster}: as left {first.target} bar · 2026-12-01 · gauge 8831" in done.out
-    text = subprocess.run(["pdftotext", "tags.pdf", "-"], capture_output=True, text=True, check=True).stdout
-    assert f"as left {first.target} bar · 2026-12-01 · gauge 8831" in " ".join(text.split())
+    text = printed("tags.pdf")
+    assert f"as left {first.target} bar · 2026-12-01 · gauge 8831" in text
     assert "DRAFT" not in text
 
     post = ("tags", record_id, "--post", first.adjuster, "--where", "on the valve", "--by", "Ada Quarrow")
@@ -153,13 +159,19 @@ def test_outside_is_accepted_by_name_and_the_tag_waits_for_it(
     (number,) = re.findall(r"deviation (\d+) is open", done.out)
     assert f"set it again, or: jamnut settle {number} --accept" in done.out
 
-    assert run("tags", record_id, "-o", "tags.pdf", *REGISTER).out == "tags.pdf: written\n"
+    tag = f"left at {outside} bar · deviation {number} OPEN"
+    assert tag in run("tags", record_id, "-o", "tags.pdf", *REGISTER).out
+    assert tag in printed("tags.pdf")
+    hung = run("tags", record_id, "--post", row.adjuster, "--where", "here", "--by", "Ada Quarrow", *REGISTER)
+    assert (hung.status, f"Deviation {number} about how it was left is open" in hung.err) == (1, True)
     end = ("end", job, "--as", "done", "--by", "Ada Quarrow", *REGISTER)
     assert run(*end).status == 1
     done = run(*words_of("settle", record_id, number=int(number)))
     assert done.out == f"deviation {number} is accepted by Cleo Harnett\n"
     assert run(*words_of("end", record_id, number=int(job))).out == f"job {job}: done\n"
-    assert f"as left {outside} bar" in run("tags", record_id, "-o", "tags.pdf", *REGISTER).out
+    tag = f"as left {outside} bar · deviation {number} accepted"
+    assert tag in run("tags", record_id, "-o", "tags.pdf", *REGISTER).out
+    assert tag in printed("tags.pdf")
 
 
 def test_what_is_refused_leaves_nothing_of_the_rest(
