@@ -108,11 +108,19 @@ def correct(writer: Writer, number: int, how: Telling, *, done: str) -> None:
 def end_job(writer: Writer, number: int, how: Telling, *, ending: Ending, remark: str = "") -> None:
     """Ends a job; ``number`` is its own. Out of service, the machine is that from now on.
 
-    Raises RefusedError for a job that is done while something stands open: a deviation, a powered window, a
-    lock.
+    Raises RefusedError for a job that is done while something stands open (a deviation, a powered window, a
+    lock), and for one that looks for a cause and is done without a remark.
     """
     job = open_one(writer, number)
     revision = found_in(writer, job.opened.record_id)
+    if ending is Ending.DONE and job.opened.said.task == FIND_CAUSE and not remark:
+        raise RefusedError(
+            Problem(
+                where=f"job {number}",
+                what="It looks for a cause, and nothing says what was found.",
+                fix="Say it with --remark TEXT.",
+            )
+        )
     against = list(_against(writer, revision, number, ending))
     if ending is Ending.NOT_BEGUN and job.opened.said.task != FIND_CAUSE and _begun(writer, revision, number):
         against.append(f"job {number}: It was begun: something was read or done in it.")

@@ -159,7 +159,7 @@ def test_outside_is_accepted_by_name_and_the_tag_waits_for_it(
     (number,) = re.findall(r"deviation (\d+) is open", done.out)
     assert f"set it again, or: jamnut settle {number} --accept" in done.out
 
-    tag = f"left at {outside} bar · deviation {number} OPEN"
+    tag = f"left {outside} bar · dev. {number} OPEN"
     assert tag in run("tags", record_id, "-o", "tags.pdf", *REGISTER).out
     assert tag in printed("tags.pdf")
     hung = run("tags", record_id, "--post", row.adjuster, "--where", "here", "--by", "Ada Quarrow", *REGISTER)
@@ -169,7 +169,7 @@ def test_outside_is_accepted_by_name_and_the_tag_waits_for_it(
     done = run(*words_of("settle", record_id, number=int(number)))
     assert done.out == f"deviation {number} is accepted by Cleo Harnett\n"
     assert run(*words_of("end", record_id, number=int(job))).out == f"job {job}: done\n"
-    tag = f"as left {outside} bar · deviation {number} accepted"
+    tag = f"left {outside} bar · dev. {number} accepted"
     assert tag in run("tags", record_id, "-o", "tags.pdf", *REGISTER).out
     assert tag in printed("tags.pdf")
 

@@ -108,7 +108,7 @@ def test_a_job_that_a_reading_opened_has_no_people_until_somebody_works_on_it(be
     job = bench.take(Phase.FOUND, "180").opened
     opened = bench.do(open_window, job, ADA, where="at the lever", minutes=10)
     bench.do(close_window, opened, ADA)
-    bench.do(end_job, job, ADA, ending=Ending.DONE)
+    bench.do(end_job, job, ADA, ending=Ending.DONE, remark="seat worn")
 
 
 def test_who_was_told_stands_with_the_other_acts_of_a_job(bench: Bench) -> None:
