@@ -15,19 +15,21 @@ from typing import Any, Final
 from sheets.errors import InputError, Problem, RefusedError
 from sheets.machine.loading import load_entry, parse_entry
 from sheets.machine.record import RecordFile, RecordReading
+from sheets.names import spelled
 from sheets.pipeline.zones import zone_kept
 from sheets.register.acting import close_window, open_window, put_on, read_zero, take_off, tell_people
 from sheets.register.deviations import Standing, deviations
 from sheets.register.finding import found_in
 from sheets.register.jobs import Ending
 from sheets.register.opening import Place, open_register
+from sheets.register.people import names, person_on
 from sheets.register.readings import Phase, Seal
 from sheets.register.recording import Recorded, Taken, Telling, kept_of_issue, open_job
 from sheets.register.recording import record as record_one
 from sheets.register.recording import strike as strike_one
 from sheets.register.rows import NEVER_ACCEPTED
 from sheets.register.settling import accept, back_in_service, correct, end_job, note
-from sheets.register.store import Writer
+from sheets.register.store import View, Writer
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -47,6 +49,9 @@ class JobRecorded:
     open_deviations: tuple[tuple[int, str, bool], ...]
     """Number, what it is, and whether anybody may accept it."""
     end: str
+    day: date
+    unknown: tuple[str, ...]
+    """Who worked, and isn't known as authorised for anything on that day."""
 
 
 def record(file: Path, *, register_at: Place, by: str, when: datetime) -> JobRecorded:
@@ -129,7 +134,25 @@ def record_said(
         )
         if said.end:
             end_job(writer, job, how, ending=Ending(said.end))
-    return JobRecorded(job=job, readings=tuple(recorded), open_deviations=left, end=said.end)
+        unknown = tuple(_unknown(writer, said))
+    return JobRecorded(
+        job=job,
+        readings=tuple(recorded),
+        open_deviations=left,
+        end=said.end,
+        day=said.day,
+        unknown=unknown,
+    )
+
+
+def _unknown(view: View, said: RecordFile) -> Iterator[str]:
+    """Everybody who did something in a record and wasn't authorised for anything on its day."""
+    known = names(view)
+    did = (*said.people, *(one.by for one in said.locks), *(one.by for one in said.zeros))
+    for name in dict.fromkeys(did):
+        spelling = spelled(name, known)
+        if spelling is None or not person_on(view, spelling, said.day).authorised:
+            yield name
 
 
 def _acts(writer: Writer, job: int, said: RecordFile, how: Telling) -> Iterator[Recorded]:
@@ -235,6 +258,8 @@ def recorded_text(recorded: JobRecorded) -> Iterator[str]:
             if acceptable
             else "      nobody can accept it: set it again, or end the job out of service"
         )
+    if recorded.unknown:
+        yield f"  not known as authorised on {recorded.day}: {', '.join(recorded.unknown)}"
 
 
 def record_rows(record_id: str, *, register_at: Place) -> tuple[tuple[str, str, str], ...]:

@@ -22,8 +22,10 @@ from sheets.cli import common, issuing, people, recording, registering, tagging
 from sheets.machine.loading import parse_entry
 from sheets.machine.record import RecordFile
 from sheets.register.opening import open_register
+from sheets.register.people import Authorised
 from sheets.register.readings import readings
 from sheets.register.rows import Row
+from sheets.register.saying import tell
 
 REGISTER = ("--register", "demonstration/register.db")
 MODULES = (registering, recording, tagging)
@@ -106,6 +108,9 @@ def test_a_job_from_a_file_to_a_tag_with_what_was_left(
     run: Callable[..., object], tmp_path: Path, record_id: str, rows: tuple[Row, ...]
 ) -> None:
     assert run(*GAUGE).status == 0
+    told = Authorised(name="Ada Quarrow", what="lockout", since=date(2026, 12, 1), by="Cleo Harnett")
+    with open_register("demonstration/register.db") as register, register.writing() as writer:
+        tell(writer, told, who="Cleo Harnett", when=NOW)
     first, second, *_ = rows
     file = record_file(
         tmp_path,
@@ -130,6 +135,7 @@ def test_a_job_from_a_file_to_a_tag_with_what_was_left(
     assert re.search(rf"row 1  {first.called}  as left  {first.target} bar  within its window", done.out)
     assert done.out.startswith("job ")
     assert done.out.splitlines()[0].endswith(": done")
+    assert done.out.endswith("  not known as authorised on 2026-12-01: Bram Tolliver\n")
 
     done = run(*words_of("tags", record_id))
     assert (done.status, done.err) == (0, "")
