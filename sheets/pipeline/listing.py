@@ -8,11 +8,13 @@ from datetime import date
 from sheets.pages.compose.audit import AuditList
 from sheets.pages.layout import grouped
 from sheets.pipeline.inspecting import independence, standing_of
-from sheets.register.copies import copies
+from sheets.register.acts import ZeroRead, locks_on
+from sheets.register.copies import copies, tags
 from sheets.register.deviations import Deviation, deviations, out_of_service
 from sheets.register.finding import documents_in
 from sheets.register.inspections import clock_of, inspections
 from sheets.register.instruments import instruments
+from sheets.register.jobs import jobs
 from sheets.register.people import AuthorisationEnded, Authorised, Trained, names, person_on
 from sheets.register.revisions import Revision, current
 from sheets.register.saying import told
@@ -52,6 +54,15 @@ def lists_of(view: View, day: date) -> tuple[AuditList, ...]:
             rows=tuple(_deviations(view)),
             shares=(0.07, 0.1, 0.12, 0.33, 0.14, 0.24),
             none="none is open or accepted.",
+        ),
+        AuditList(
+            name="work",
+            title="Open jobs, locks, zeros and tags",
+            light="jobs and locks until they end; the last zero of each place; the tags that hang",
+            head=("event", "machine", "what", "where", "said", "day", "by"),
+            rows=tuple(_work(view, documents)),
+            shares=(0.07, 0.11, 0.11, 0.19, 0.22, 0.13, 0.17),
+            none="no job is open, no lock is on, and neither zero nor tag was told.",
         ),
         AuditList(
             name="inspections",
@@ -182,9 +193,32 @@ def _inspections(view: View) -> Rows:
             one.told.document,
             str(one.revision),
             f"{one.said.inspector}, {independence(one)}",
-            ", ".join(one.said.employees),
+            ", ".join(one.said.employees)
+            + (f"; used it and weren't included: {', '.join(one.left_out)}" if one.left_out else ""),
             "; ".join(f"{it.number} {it.standing.value}" for it in found) or "none",
         )
+
+
+def _work(view: View, documents: Documents) -> Rows:
+    """What stands at each machine: open jobs, locks on, the last zero of each place, tags that hang."""
+    for machine in sorted({revisions[0].machine for revisions in documents.values()}):
+        for job in jobs(view, machine=machine):
+            if job.open:
+                opened = job.opened.said
+                by = ", ".join(opened.people) or job.opened.by
+                yield str(job.number), machine, "open job", "", opened.why, opened.on.isoformat(), by
+        for lock in locks_on(view, machine=machine):
+            put, said = lock.said, f"lock {lock.said.lock}, job {lock.said.job}"
+            yield str(lock.sequence), machine, "lock on", put.where, said, put.on.isoformat(), put.by
+        for zero in {one.said.where: one for one in told(view, ZeroRead, machine=machine)}.values():
+            seen = zero.said
+            moved = "" if seen.moved else ", not seen to move"
+            said = f"{seen.value} {seen.unit} at {seen.instrument}{moved}"
+            yield str(zero.sequence), machine, "zero read", seen.where, said, seen.on.isoformat(), seen.by
+        for adjuster, tag in tags(view, machine=machine).items():
+            hung = tag.said
+            said = f"{adjuster}: {hung.as_left}"
+            yield str(tag.sequence), machine, "tag hangs", hung.where, said, hung.on.isoformat(), hung.by
 
 
 def _copies(view: View, documents: Documents) -> Rows:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import csv
 import io
 from collections.abc import Callable
-from datetime import date
+from datetime import UTC, date, datetime
 from pathlib import Path
 
 import pikepdf
@@ -27,6 +27,7 @@ from sheets.pipeline.replacing import keep_issued
 from sheets.register.chain import Anchor, check_chain
 from sheets.register.events import EventKind
 from sheets.register.instruments import InstrumentListed
+from sheets.register.jobs import jobs
 from sheets.register.listing_instruments import list_instrument
 from sheets.register.opening import Place
 from sheets.register.store import Register
@@ -35,6 +36,7 @@ KINDS = {
     "machines": {EventKind.ISSUED, EventKind.WITHDRAWN},
     "due": {EventKind.INSPECTED, EventKind.ISSUED},
     "deviations": {EventKind.DEVIATION_NOTED},
+    "work": {EventKind.JOB_OPENED, EventKind.LOCK_PUT_ON, EventKind.ZERO_READ, EventKind.TAG_POSTED},
     "inspections": {EventKind.INSPECTED},
     "revisions": {EventKind.ISSUED, EventKind.RESERVED},
     "copies": {EventKind.COPY_HUNG},
@@ -103,6 +105,36 @@ def test_what_it_says_of_the_year(audited: Audited, year: Numbers) -> None:
         ("Bram Tolliver", "trained", "lockout"),
         ("Edda Fenn", "authorised", "inspection"),
     ]
+
+
+def test_work_that_stands_is_listed_by_machine(register: Register, audited: Audited, year: Numbers) -> None:
+    rows = lines(audited)["work"]
+    assert str(year.zero) in {row[0] for row in rows if row[2] == "zero read"}
+    with register.reading() as view:
+        opened = {str(one.number) for one in jobs(view) if one.open}
+    assert {row[0] for row in rows if row[2] == "open job"} == opened
+
+
+def test_who_was_not_included_stands_in_the_list(place: Place, register: Register, year: Numbers) -> None:
+    """Bram Tolliver read PU-07 on 2026-03-09, within the year before this inspection."""
+    assert year
+    pipeline.inspect(
+        place,
+        document="WI-0142",
+        record_id=None,
+        inspector="Edda Fenn",
+        employees=("Ada Quarrow",),
+        on=date(2027, 1, 20),
+        deviations=(),
+        corrections=(),
+        by="Edda Fenn",
+        today=TODAY,
+        when=datetime(2027, 1, 31, 12, tzinfo=UTC),
+    )
+    with register.reading() as view:
+        (rows,) = (one.rows for one in lists_of(view, TODAY) if one.name == "inspections")
+    assert rows[-1][6] == "Ada Quarrow; used it and weren't included: Bram Tolliver"
+    assert "included:" not in rows[0][6]
 
 
 def test_later_something_is_overdue(register: Register, year: Numbers) -> None:
