@@ -11,9 +11,6 @@ from sheets.circuit.smooth import Bools, Floats, Ints, ramp
 from sheets.circuit.stamp import NO_ADJUSTERS, NO_SLOPES, Stamp, StateArrays
 
 LEAST_FORCE_BEND_BAR = 0.05
-BREAKAWAY_BAR = 0.5
-"""Policy: an actuator that nothing pushes by itself takes this much over its larger side before it moves.
-From memory: seals of cylinders break away at some bar, so this is little."""
 DAMPING_BAR_PER_LPM = 2e-4
 """Pressure that is left over to move: small against every reading, large enough to decide a speed."""
 
@@ -53,8 +50,9 @@ class Actuators:
         Work load and the friction that comes with it, against each sense, over the larger side. Only while
         the state is ``loaded``: an idle machine doesn't press on anything.
     friction_bar : bar
-        Friction of what pushes by itself (a weight), against both senses. It is always there. The dead
-        band is never less than the breakaway of the seals.
+        Friction of what pushes by itself (a weight), against both senses. It is always there.
+    breakaway_bar : bar
+        Over the larger side: the dead band is never less.
     drives_bar : bar
         What pushes in the positive sense by itself (a weight), over the larger side; negative for backward.
     case_leakage, cross_leakage : L/min/bar
@@ -82,6 +80,7 @@ class Actuators:
     load_forward_bar: Floats
     load_backward_bar: Floats
     friction_bar: Floats
+    breakaway_bar: Floats
     drives_bar: Floats
     case_leakage: Floats
     cross_leakage: Floats
@@ -134,11 +133,9 @@ class Actuators:
     def _resists(self, state: StateArrays) -> tuple[Floats, Floats]:
         """[B, actuators] the dead band against each sense, in bar over the larger side."""
         acts = state.loaded[:, None]
-        # What a weight pulls at is taken to move at once.
-        least_bar = np.where(self.drives_bar == 0.0, BREAKAWAY_BAR, 0.0)
         return (
-            np.maximum(acts * self.load_forward_bar + self.friction_bar, least_bar),
-            np.maximum(acts * self.load_backward_bar + self.friction_bar, least_bar),
+            np.maximum(acts * self.load_forward_bar + self.friction_bar, self.breakaway_bar),
+            np.maximum(acts * self.load_backward_bar + self.friction_bar, self.breakaway_bar),
         )
 
     @cached_property

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import numpy as np
+
 from sheets.circuit.actuators import Actuators
 from sheets.circuit.model import TANK
 from sheets.circuit.nodes import NodeBook
@@ -9,6 +11,10 @@ from sheets.circuit.ratings import BAR_LPM_OF_KW, pressure_of_torque, swept_by_a
 from sheets.circuit.rows import Rows
 from sheets.machine.model import Machine
 from sheets.machine.parts import Cylinder, HydraulicMotor
+
+BREAKAWAY_BAR = 0.5
+"""Policy: an actuator that nothing pushes by itself takes this much over its larger side before it moves.
+From memory: seals of cylinders break away at some bar, so this is little."""
 
 
 def build_actuators(machine: Machine, book: NodeBook, *, reference_flow_lpm: float) -> Actuators:
@@ -33,6 +39,8 @@ def build_actuators(machine: Machine, book: NodeBook, *, reference_flow_lpm: flo
         load_forward_bar=rows.floats("forward"),
         load_backward_bar=rows.floats("backward"),
         friction_bar=rows.floats("friction"),
+        # What a weight pulls at is taken to move at once.
+        breakaway_bar=np.where(rows.floats("drives") == 0.0, BREAKAWAY_BAR, 0.0),
         drives_bar=rows.floats("drives"),
         case_leakage=rows.floats("case_leakage"),
         cross_leakage=rows.floats("cross_leakage"),

@@ -41,6 +41,7 @@ def resistances(circuit: Circuit) -> Iterator[Circuit]:
             load_forward_bar=np.zeros(count),
             load_backward_bar=np.zeros(count),
             friction_bar=resists,
+            breakaway_bar=np.zeros(count),
         )
         yield replace(circuit, actuators=actuators)
 

@@ -121,12 +121,12 @@ def test_asked_entry_by_entry(
     assert parts["HV1"]["note"] == "the plate says 10 bar"
 
 
-def test_breaking_off_writes_nothing(
+def test_answers_that_end_early_write_nothing(
     run: Callable[..., object], file: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     monkeypatch.setattr(sys, "stdin", io.StringIO("y\ny\n"))
 
-    assert run("walkdown", file, "--by", "B", *DAY).status == 130
+    assert run("walkdown", file, "--by", "B", *DAY).status == 2
     assert [one.name for one in file.parent.iterdir()] == ["machine.yaml"]
 
 
