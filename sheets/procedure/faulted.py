@@ -19,8 +19,9 @@ from sheets.procedure.work import ALL, Work
 def moved_by_fault(case: Case, state: PlantState) -> Failure | None:
     """What moves, or passes a rating, when one spool sticks or leaks, or one coil is dead.
 
-    With the work loads of the file, then without them: a light load moves sooner, and the oil that a piston
-    shuts in rises farther.
+    A spool that is held may also stand in its other shifted position: then ratings alone are judged. With the
+    work loads of the file, then without them: a light load moves sooner, and the oil that a piston shuts in
+    rises farther.
     """
     return moved_by_faults(case, [(state, solve_one(case.circuit, state))], Work(ALL))[0]
 
